@@ -1,0 +1,1 @@
+//! Epiloom: the script language, the archive and the command line.

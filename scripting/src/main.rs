@@ -1,0 +1,3 @@
+//! The `epiloom` command.
+
+fn main() {}

@@ -1,0 +1,3 @@
+//! Benchmarks of the main job.
+
+fn main() {}

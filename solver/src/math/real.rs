@@ -1,0 +1,59 @@
+//! `f64` as a [`Num`].
+
+use super::number::{Num, Over, Scalar};
+use super::piecewise::Piecewise;
+use super::elementary;
+
+impl Num for f64 {
+    type Mask = bool;
+    #[inline(always)]
+    fn constant(value: f64) -> Self {
+        value
+    }
+    #[inline(always)]
+    fn less(self, other: Self) -> bool {
+        self < other
+    }
+    #[inline(always)]
+    fn select(mask: bool, yes: Self, no: Self) -> Self {
+        if mask { yes } else { no }
+    }
+    #[inline(always)]
+    fn recip(self) -> Self {
+        1.0 / self
+    }
+    #[inline(always)]
+    fn exp(self) -> Self {
+        elementary::exp(self)
+    }
+    #[inline(always)]
+    fn exp_m1(self) -> Self {
+        elementary::exp_m1(self)
+    }
+    #[inline(always)]
+    fn ln(self) -> Self {
+        elementary::ln(self)
+    }
+    #[inline(always)]
+    fn sqrt(self) -> Self {
+        f64::sqrt(self)
+    }
+    #[inline(always)]
+    fn piecewise(self, table: &Piecewise, order: usize) -> Self {
+        table.evaluate(self, order)
+    }
+}
+
+impl Scalar for f64 {
+    #[inline(always)]
+    fn value(self) -> f64 {
+        self
+    }
+}
+
+impl Over<f64> for f64 {
+    #[inline(always)]
+    fn lift(parameter: f64) -> f64 {
+        parameter
+    }
+}

@@ -1,0 +1,3 @@
+//! Runs all checks.
+
+fn main() {}
