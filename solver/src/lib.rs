@@ -4,4 +4,9 @@
 //! state. `METHOD.md` beside this crate states the equations; the modules below are floors, each of which uses
 //! only those listed after it.
 
+pub mod analysis;
+pub mod device;
+pub mod materials;
 pub mod math;
+pub mod optics;
+pub mod quantity;

@@ -1,8 +1,8 @@
 //! `f64` as a [`Num`].
 
+use super::elementary;
 use super::number::{Num, Over, Scalar};
 use super::piecewise::Piecewise;
-use super::elementary;
 
 impl Num for f64 {
     type Mask = bool;

@@ -1,0 +1,22 @@
+//! Figures of merit with their numerical error.
+
+/// A figure with what is known of its numerical error.
+#[derive(Clone, Debug, PartialEq)]
+pub struct Figure {
+    /// The value, extrapolated over the nested meshes, SI units.
+    pub value: f64,
+    /// Estimate of its absolute numerical error.
+    pub error: f64,
+    /// The value on each mesh, coarsest first.
+    pub levels: Vec<f64>,
+}
+
+/// Why a figure does not exist.
+#[derive(Clone, Debug, PartialEq)]
+pub struct Absent {
+    /// The reason, a phrase for a person.
+    pub reason: String,
+}
+
+/// A figure, or the reason why there is none.
+pub type Outcome = Result<Figure, Absent>;

@@ -1,0 +1,154 @@
+//! A stack as a person describes it: layers from the front, interfaces, contacts, optics, circuit. Not yet validated.
+
+use crate::materials::Material;
+use crate::optics::Reflectance;
+
+use super::profile::Profile;
+
+/// Carrier statistics.
+#[derive(Clone, Copy, Debug, PartialEq, Eq)]
+pub enum Statistics {
+    /// Fermi-Dirac, parabolic bands.
+    FermiDirac,
+    /// Boltzmann.
+    Boltzmann,
+}
+
+/// A face of the stack.
+#[derive(Clone, Copy, Debug, PartialEq, Eq)]
+pub enum Side {
+    /// The face of the first layer.
+    Front,
+    /// The face of the last layer.
+    Rear,
+}
+
+/// Whether a layer takes part in the optics.
+#[derive(Clone, Copy, Debug, PartialEq, Eq)]
+pub enum LayerOptics {
+    /// It absorbs by its absorption coefficient.
+    Absorbing,
+    /// It is transparent.
+    Inert,
+}
+
+/// One layer.
+#[derive(Clone, Debug)]
+pub struct Layer<P = f64> {
+    /// Its name, unique in the stack.
+    pub name: String,
+    /// Its material, layer options already merged into the overrides.
+    pub material: Material<P>,
+    /// Thickness, m.
+    pub thickness: P,
+    /// Ionised donor density, m^-3, against depth.
+    pub donors: Profile<P>,
+    /// Ionised acceptor density, m^-3, against depth.
+    pub acceptors: Profile<P>,
+    /// Composition against depth, instead of the material's own constant one.
+    pub composition: Option<Profile<P>>,
+    /// Its part in the optics.
+    pub optics: LayerOptics,
+}
+
+/// What happens between two layers beyond continuity.
+#[derive(Clone, Copy, Debug)]
+pub struct Interface<P = f64> {
+    /// Interface recombination velocity of electrons S_n, m/s.
+    pub electron_recombination_velocity: P,
+    /// Interface recombination velocity of holes S_p, m/s.
+    pub hole_recombination_velocity: P,
+}
+
+/// An ohmic contact.
+#[derive(Clone, Copy, Debug)]
+pub struct Contact<P = f64> {
+    /// Recombination velocity of the minority carrier, m/s; `None` is infinite.
+    pub recombination_velocity: Option<P>,
+}
+
+/// The optics of the whole stack.
+#[derive(Clone, Debug)]
+pub struct StackOptics<P = f64> {
+    /// The face that light enters.
+    pub lit_from: Side,
+    /// Reflectance of the lit face for light from outside.
+    pub front_reflectance: Reflectance<P>,
+    /// Share of the area under the grid, 0 to 1.
+    pub grid_shading: P,
+    /// Reflectance of the far face, from inside.
+    pub rear_reflectance: P,
+    /// Reflectance of the lit face for light from inside.
+    pub front_internal_reflectance: P,
+}
+
+/// What is connected to the device.
+#[derive(Clone, Copy, Debug)]
+pub struct Circuit<P = f64> {
+    /// Series resistance outside, ohm m^2.
+    pub series_resistance: P,
+    /// Shunt resistance across the junction, ohm m^2; `None` is infinite.
+    pub shunt_resistance: Option<P>,
+}
+
+/// A stack of layers with all that a solution needs but the light and the bias.
+#[derive(Clone, Debug)]
+pub struct Stack<P = f64> {
+    /// Its name.
+    pub name: String,
+    /// The layers, front first.
+    pub layers: Vec<Layer<P>>,
+    /// What lies between layer `i` and `i + 1`: `[layers - 1]`, `None` for plain continuity.
+    pub interfaces: Vec<Option<Interface<P>>>,
+    /// Contact at the front.
+    pub front: Contact<P>,
+    /// Contact at the rear.
+    pub rear: Contact<P>,
+    /// Optics.
+    pub optics: StackOptics<P>,
+    /// Circuit.
+    pub circuit: Circuit<P>,
+    /// Temperature, K.
+    pub temperature: P,
+    /// Carrier statistics.
+    pub statistics: Statistics,
+    /// Relative accuracy asked of the figures of merit.
+    pub accuracy: f64,
+}
+
+impl Stack<f64> {
+    /// Default temperature, K (25 deg C, the cell temperature of standard test conditions).
+    pub const TEMPERATURE: f64 = 298.15;
+    /// Default relative accuracy of the figures of merit.
+    pub const ACCURACY: f64 = 1e-5;
+
+    /// A stack with defaults: no reflectance, no shading, dark rear, lit from the front, no circuit, Fermi-Dirac, 298.15 K.
+    pub fn new(name: &str, layers: Vec<Layer>) -> Self {
+        let gaps = layers.len().saturating_sub(1);
+        Stack {
+            name: name.to_string(),
+            layers,
+            interfaces: vec![None; gaps],
+            front: Contact { recombination_velocity: None },
+            rear: Contact { recombination_velocity: None },
+            optics: StackOptics {
+                lit_from: Side::Front,
+                front_reflectance: Reflectance::Number(0.0),
+                grid_shading: 0.0,
+                rear_reflectance: 0.0,
+                front_internal_reflectance: 0.0,
+            },
+            circuit: Circuit { series_resistance: 0.0, shunt_resistance: None },
+            temperature: Self::TEMPERATURE,
+            statistics: Statistics::FermiDirac,
+            accuracy: Self::ACCURACY,
+        }
+    }
+}
+
+impl<P> Stack<P> {
+    /// The layer of this name.
+    pub fn layer(&self, name: &str) -> Option<&Layer<P>> {
+        self.layers.iter().find(|l| l.name == name)
+    }
+}

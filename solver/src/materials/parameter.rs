@@ -1,0 +1,76 @@
+//! The names of material parameters: one table for scripts, archive and Rust.
+
+use serde::{Deserialize, Serialize};
+
+/// The physical dimension of a material parameter, for units at the border.
+#[derive(Clone, Copy, Debug, PartialEq, Eq, Serialize, Deserialize)]
+pub enum Kind {
+    /// Energy, J.
+    Energy,
+    /// A plain number.
+    Number,
+    /// Number per volume, m^-3.
+    Density,
+    /// Mobility, m^2 V^-1 s^-1.
+    Mobility,
+    /// Time, s.
+    Time,
+    /// Radiative coefficient, m^3 s^-1.
+    RadiativeCoefficient,
+    /// Auger coefficient, m^6 s^-1.
+    AugerCoefficient,
+    /// Absorption coefficient, m^-1.
+    InverseLength,
+}
+
+macro_rules! parameters {
+    ($($variant:ident $key:literal $kind:ident $doc:literal;)*) => {
+        /// A parameter of a material that a script may set or override.
+        #[derive(Clone, Copy, Debug, PartialEq, Eq, PartialOrd, Ord, Hash, Serialize, Deserialize)]
+        pub enum Parameter {
+            $(#[doc = $doc] $variant,)*
+        }
+        impl Parameter {
+            /// Every parameter, in the order of the reference page.
+            pub const ALL: &'static [Parameter] = &[$(Parameter::$variant,)*];
+            /// The word for it in scripts and archives.
+            pub fn key(self) -> &'static str {
+                match self { $(Parameter::$variant => $key,)* }
+            }
+            /// Its dimension.
+            pub fn kind(self) -> Kind {
+                match self { $(Parameter::$variant => Kind::$kind,)* }
+            }
+            /// One sentence on what it is.
+            pub fn description(self) -> &'static str {
+                match self { $(Parameter::$variant => $doc,)* }
+            }
+        }
+    };
+}
+
+parameters! {
+    Gap "gap" Energy "Band gap (the lowest one).";
+    Affinity "affinity" Energy "Electron affinity: vacuum level minus conduction-band edge.";
+    Permittivity "permittivity" Number "Static relative permittivity.";
+    ConductionDensity "nc" Density "Effective density of states of the conduction band.";
+    ValenceDensity "nv" Density "Effective density of states of the valence band.";
+    ElectronMobility "electron_mobility" Mobility "Low-field mobility of electrons.";
+    HoleMobility "hole_mobility" Mobility "Low-field mobility of holes.";
+    ElectronLifetime "electron_lifetime" Time "Shockley-Read-Hall lifetime of electrons; infinite switches the channel off.";
+    HoleLifetime "hole_lifetime" Time "Shockley-Read-Hall lifetime of holes; infinite switches the channel off.";
+    TrapEnergy "trap_energy" Energy "Energy of the recombination level, counted upwards from the intrinsic level.";
+    TrapBelowConduction "trap_below_conduction_band" Energy "Energy of the recombination level below the conduction-band edge, instead of `trap_energy`.";
+    TrapAboveValence "trap_above_valence_band" Energy "Energy of the recombination level above the valence-band edge, instead of `trap_energy`.";
+    RadiativeCoefficient "radiative_coefficient" RadiativeCoefficient "Coefficient B of radiative (band-to-band) recombination.";
+    ElectronAuger "electron_auger" AugerCoefficient "Auger coefficient C_n (the energy goes to an electron).";
+    HoleAuger "hole_auger" AugerCoefficient "Auger coefficient C_p (the energy goes to a hole).";
+    Absorption "absorption" InverseLength "One absorption coefficient; under a spectrum it acts at photon energies above the gap.";
+}
+
+impl Parameter {
+    /// The parameter of a script's word, if there is one.
+    pub fn from_key(key: &str) -> Option<Parameter> {
+        Parameter::ALL.iter().copied().find(|p| p.key() == key)
+    }
+}
