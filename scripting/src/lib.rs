@@ -1,1 +1,3 @@
 //! Epiloom: the script language, the archive and the command line.
+
+pub mod diagnostics;

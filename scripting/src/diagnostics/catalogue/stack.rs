@@ -1,0 +1,83 @@
+//! E21 to E24: layers, materials, profiles, optics, light.
+
+super::rows! {
+    THICKNESS_NOT_POSITIVE = "E210", "a layer's thickness is not positive",
+        "A layer has a thickness above zero. A layer that may be absent is left out of the array by `if`: an entry \
+         without a value is skipped.",
+        "if t > 0.nm { layer(\"window\", wide, t, donors(2e18.per_cm3)) },";
+    NO_LAYERS = "E211", "a stack without layers",
+        "A stack needs at least one layer. Entries without a value are skipped, so a stack whose layers are all \
+         switched off by `if` is empty.",
+        "stack(\"bar\", [layer(\"bar\", material(\"GaAs\"), 1.um, donors(1e17.per_cm3))])";
+    LAYER_NAME_TWICE = "E212", "two layers of one name",
+        "Layers are found by name, in `cell[\"base\"]`, in ledgers and in archives, so each name stands once in a \
+         stack.",
+        "layer(\"upper base\", ..), layer(\"lower base\", ..)";
+    INTERFACE_MISPLACED = "E213", "an interface entry that is not between two layers",
+        "`interface(..)` stands in the array between the two layers it lies between, one at most per place.",
+        "[layer(\"emitter\", ..), interface(#{ recombination_velocity: 1e4.cm_per_s }), layer(\"base\", ..)]";
+    DOPING_NEGATIVE = "E214", "a negative doping",
+        "Donor and acceptor densities are zero or more. The kind is told by the word, not by a sign.",
+        "acceptors(1e17.per_cm3)        // not: donors(-1e17.per_cm3)";
+    MATERIAL_VALUE = "E215", "a material value that cannot be",
+        "A material value lies outside what its law allows: a gap, mobility, density of states, lifetime or \
+         permittivity must be positive; coefficients of recombination must not be negative.",
+        "material(\"GaAs\", #{ electron_lifetime: 20.ns })";
+    COMPOSITION = "E216", "a composition that cannot be",
+        "A composition `x` lies between 0 and 1 and within the range of the material's own laws; a compound of fixed \
+         composition takes none, an alloy needs one.",
+        "material(\"AlGaAs\", #{ x: 0.30 })";
+    UNKNOWN_MATERIAL = "E217", "unknown material",
+        "The library has no material of this name. `epiloom materials` lists all; `custom_material` builds one from \
+         its own numbers.",
+        "material(\"GaAs\")";
+    MATERIAL_INCOMPLETE = "E218", "a custom material lacks a value",
+        "A `custom_material` stands on its own numbers alone, so all that the equations use must be given. The \
+         message names what is missing.",
+        "custom_material(\"test\", #{ gap: 1.424.eV, affinity: 4.07.eV, permittivity: 12.9, .. })";
+    SHARE = "E219", "a share outside 0 to 1",
+        "Reflectance, shading and the like are shares between 0 and 1. A value in percent is divided by 100.",
+        "cell.front_reflectance = 0.05;     // 5 %";
+    TEMPERATURE = "E220", "a temperature that cannot be",
+        "The temperature is absolute, in kelvin, above zero, and within the range of the laws of the materials.",
+        "cell.temperature = 298.15.K;       // 25 degrees Celsius";
+    RESISTANCE = "E221", "a resistance that cannot be",
+        "A series resistance is zero or more, a shunt resistance above zero, both times area.",
+        "cell.series_resistance = 2.ohm_cm2;";
+    UNKNOWN_LAYER = "E222", "no layer of this name",
+        "The stack has no layer of the name in brackets. The message lists its layers.",
+        "cell[\"window\"].thickness = 5.nm;";
+    PROFILE = "E223", "a profile or table that cannot be",
+        "A graded profile needs positive values where it is exponential; a table needs two points or more, its \
+         depths or wavelengths increasing.",
+        "acceptors(graded(\"exponential\", 1e18.per_cm3, 1e16.per_cm3))";
+    VELOCITY = "E224", "a recombination velocity that cannot be",
+        "A recombination velocity is zero or more. Without one, an ohmic contact recombines without limit and an \
+         interface not at all.",
+        "ohmic(#{ recombination_velocity: 1e6.cm_per_s })";
+    LIGHT = "E225", "a light that cannot be",
+        "Concentration, photon flux and wavelength are positive and finite; light without any photons is `dark()`.",
+        "spectrum(\"AM1.5D\", 500.suns)";
+    UNKNOWN_SPECTRUM = "E226", "unknown spectrum",
+        "Built-in spectra are AM1.5G, AM1.5D and AM0; `black_body` makes one from a temperature, and a file of \
+         wavelength and irradiance beside the script can be read.",
+        "spectrum(\"AM1.5G\")";
+    WAVELENGTHS = "E227", "wavelengths that cannot be",
+        "A range of wavelengths goes from a shorter to a longer one in positive steps.",
+        "cell.eqe(300.nm, 900.nm, 5.nm)";
+    VOLTAGES = "E228", "voltages that cannot be",
+        "A range of voltages needs a step that leads from its first to its last voltage; a list of voltages needs \
+         one at least.",
+        "cell.jv(dark(), 0.V, 1.1.V, 20.mV)";
+    ACCURACY = "E229", "an accuracy that cannot be",
+        "The relative accuracy asked for is above zero and at most 0.01; very small values cost many nodes and are \
+         refused below what rounding allows.",
+        "cell.accuracy = 1e-6;";
+    ABSORPTION_MISSING = "E230", "a layer's absorption is unknown",
+        "Light falls on a layer whose material has neither an absorption table nor a coefficient. Give \
+         `absorption`, or declare the layer optically inert.",
+        "layer(\"window\", wide, 30.nm, donors(2e18.per_cm3), #{ optics: \"inert\" })";
+    STACK = "E240", "a stack that cannot be solved as described",
+        "Something else about the stack contradicts itself; the message says what, where, and the range allowed.",
+        "epiloom check cell.rhai        // lists all faults at once, solving nothing";
+}
