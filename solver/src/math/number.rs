@@ -33,6 +33,9 @@ pub trait Num:
     fn constant(value: f64) -> Self;
     /// Compares real parts: `self < other`.
     fn less(self, other: Self) -> Self::Mask;
+    /// Whether a mask holds anywhere. Only for leaving out work that a [`Num::select`] would discard: the result
+    /// must be the same, bit for bit, as without the short cut.
+    fn any(mask: Self::Mask) -> bool;
     /// `yes` where the mask holds, else `no`. Both must be finite.
     fn select(mask: Self::Mask, yes: Self, no: Self) -> Self;
     /// `1 / self`.
@@ -45,26 +48,39 @@ pub trait Num:
     fn ln(self) -> Self;
     /// Square root.
     fn sqrt(self) -> Self;
+    /// `self^exponent` for a positive number; also for zero with a positive exponent.
+    fn powf(self, exponent: f64) -> Self;
+    /// Sine, for set-up code.
+    fn sin(self) -> Self;
+    /// Cosine, for set-up code.
+    fn cos(self) -> Self;
+    /// Complementary error function, for set-up code.
+    fn erfc(self) -> Self;
     /// The derivative of the given order of a piecewise polynomial at `self`, clamped to its domain.
     fn piecewise(self, table: &Piecewise, order: usize) -> Self;
 
-    /// `self^exponent` for a positive number, as `exp(exponent ln self)`.
-    fn powf(self, exponent: f64) -> Self {
-        (self.ln() * exponent).exp()
+    /// [`Num::piecewise`] of two successive orders, with the same bits.
+    #[inline(always)]
+    fn piecewise_pair(self, table: &Piecewise, order: usize) -> (Self, Self) {
+        (self.piecewise(table, order), self.piecewise(table, order + 1))
     }
     /// `self * self`.
+    #[inline(always)]
     fn square(self) -> Self {
         self * self
     }
     /// The smaller of two numbers, by real part.
+    #[inline(always)]
     fn min(self, other: Self) -> Self {
         Self::select(other.less(self), other, self)
     }
     /// The larger of two numbers, by real part.
+    #[inline(always)]
     fn max(self, other: Self) -> Self {
         Self::select(self.less(other), other, self)
     }
     /// Absolute value, by real part.
+    #[inline(always)]
     fn abs(self) -> Self {
         Self::select(self.less(Self::constant(0.0)), -self, self)
     }

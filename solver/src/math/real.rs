@@ -15,6 +15,10 @@ impl Num for f64 {
         self < other
     }
     #[inline(always)]
+    fn any(mask: bool) -> bool {
+        mask
+    }
+    #[inline(always)]
     fn select(mask: bool, yes: Self, no: Self) -> Self {
         if mask { yes } else { no }
     }
@@ -38,9 +42,25 @@ impl Num for f64 {
     fn sqrt(self) -> Self {
         f64::sqrt(self)
     }
+    fn powf(self, exponent: f64) -> Self {
+        elementary::pow(self, exponent)
+    }
+    fn sin(self) -> Self {
+        elementary::sin(self)
+    }
+    fn cos(self) -> Self {
+        elementary::cos(self)
+    }
+    fn erfc(self) -> Self {
+        elementary::erfc(self)
+    }
     #[inline(always)]
     fn piecewise(self, table: &Piecewise, order: usize) -> Self {
         table.evaluate(self, order)
+    }
+    #[inline(always)]
+    fn piecewise_pair(self, table: &Piecewise, order: usize) -> (Self, Self) {
+        table.evaluate_pair(self, order)
     }
 }
 
