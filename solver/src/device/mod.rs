@@ -1,7 +1,16 @@
 //! Floor 4: the stack that a person describes, and the validated device made from it.
 
+pub mod check;
+#[allow(clippy::module_inception)] // the floor is named after what it makes
+mod device;
+pub mod fault;
 pub mod profile;
 pub mod stack;
 
+pub use device::Device;
+pub use fault::{Fault, Place, TableProblem, Warning};
 pub use profile::Profile;
 pub use stack::{Circuit, Contact, Interface, Layer, LayerOptics, Side, Stack, StackOptics, Statistics};
+
+#[cfg(test)]
+mod tests;

@@ -1,0 +1,259 @@
+//! Every check that a stack passes before it is a device.
+
+use std::collections::BTreeSet;
+
+use crate::materials::{Material, TEMPERATURE_LIMITS};
+use crate::math::Scalar;
+use crate::optics::Reflectance;
+
+use super::fault::{Fault, Place, TableProblem};
+use super::profile::Profile;
+use super::stack::{Interface, Layer, Side, Stack};
+
+/// Thickness of a layer, m.
+pub const THICKNESS_LIMITS: (f64, f64) = (1e-11, 1e-2);
+/// Highest doping, m^-3.
+pub const HIGHEST_DOPING: f64 = 1e28;
+/// Highest recombination velocity, m/s.
+pub const HIGHEST_VELOCITY: f64 = 1e12;
+/// Relative accuracies that can be asked for.
+pub const ACCURACY_LIMITS: (f64, f64) = (1e-9, 1e-1);
+/// Most layers in a stack.
+pub const MOST_LAYERS: usize = 1000;
+/// Most points of a table.
+const WAVELENGTH_LIMITS: (f64, f64) = (1e-9, 1e-3);
+
+struct Checker {
+    faults: Vec<Fault>,
+}
+
+impl Checker {
+    fn range<P: Scalar>(
+        &mut self,
+        place: &Place,
+        quantity: &'static str,
+        value: P,
+        (low, high): (f64, f64),
+        unit: &'static str,
+    ) {
+        let value = value.value();
+        let inside = value >= low && value <= high;
+        if !inside {
+            self.faults.push(Fault::OutOfRange { place: place.clone(), quantity, value, low, high, unit });
+        }
+    }
+
+    fn table(&mut self, place: &Place, quantity: &'static str, first: &[f64], others: &[&[f64]]) -> bool {
+        let finite = |column: &[f64]| column.iter().all(|v| v.is_finite());
+        let problem = if first.is_empty() {
+            TableProblem::Empty
+        } else if others.iter().any(|o| o.len() != first.len()) {
+            TableProblem::Lengths
+        } else if !finite(first) || !others.iter().all(|o| finite(o)) {
+            TableProblem::NotFinite
+        } else if first.windows(2).any(|w| w[0] >= w[1]) {
+            TableProblem::NotIncreasing
+        } else {
+            return true;
+        };
+        self.faults.push(Fault::Table { place: place.clone(), quantity, problem });
+        false
+    }
+
+    fn profile<P: Scalar>(
+        &mut self,
+        place: &Place,
+        quantity: &'static str,
+        profile: &Profile<P>,
+        (low, high): (f64, f64),
+        unit: &'static str,
+    ) {
+        match profile {
+            Profile::Constant(value) => self.range(place, quantity, *value, (low, high), unit),
+            Profile::Linear { front, rear } => {
+                self.range(place, quantity, *front, (low, high), unit);
+                self.range(place, quantity, *rear, (low, high), unit);
+            }
+            Profile::Exponential { front, rear } => {
+                // Zero has no logarithm: at least one atom per cubic metre.
+                let positive = (low.max(if unit.is_empty() { 1e-12 } else { 1.0 }), high);
+                self.range(place, quantity, *front, positive, unit);
+                self.range(place, quantity, *rear, positive, unit);
+            }
+            Profile::Erfc { surface, background, depth } => {
+                self.range(place, quantity, *surface, (low, high), unit);
+                self.range(place, quantity, *background, (low, high), unit);
+                self.range(place, "depth", *depth, THICKNESS_LIMITS, "m");
+            }
+            Profile::Table { depths, values } => {
+                let first: Vec<f64> = depths.iter().map(|d| d.value()).collect();
+                let second: Vec<f64> = values.iter().map(|v| v.value()).collect();
+                if self.table(place, quantity, &first, &[&second]) {
+                    self.range(place, "depth", depths[0], (0.0, THICKNESS_LIMITS.1), "m");
+                    if let Some(bad) = values.iter().find(|v| !(low..=high).contains(&v.value())) {
+                        self.range(place, quantity, *bad, (low, high), unit);
+                    }
+                }
+            }
+        }
+    }
+
+    fn layer<P: Scalar>(&mut self, layer: &Layer<P>, temperature: P) {
+        let place = Place::Layer(layer.name.clone());
+        if layer.thickness.value() == 0.0 {
+            self.faults.push(Fault::ZeroThickness { layer: layer.name.clone() });
+        } else {
+            self.range(&place, "thickness", layer.thickness, THICKNESS_LIMITS, "m");
+        }
+        self.profile(&place, "donors", &layer.donors, (0.0, HIGHEST_DOPING), "m^-3");
+        self.profile(&place, "acceptors", &layer.acceptors, (0.0, HIGHEST_DOPING), "m^-3");
+        if let Some(profile) = &layer.composition {
+            if layer.material.is_alloy() {
+                self.profile(&place, "x", profile, (0.0, 1.0), "");
+            } else {
+                self.faults.push(Fault::GradedCompound {
+                    layer: layer.name.clone(),
+                    material: layer.material.name().to_string(),
+                });
+            }
+        }
+        self.material(layer, temperature);
+    }
+
+    fn material<P: Scalar>(&mut self, layer: &Layer<P>, temperature: P) {
+        let wrap = |error| Fault::Material { layer: layer.name.clone(), error };
+        let own = layer.material.faults();
+        if !own.is_empty() {
+            self.faults.extend(own.into_iter().map(wrap));
+            return;
+        }
+        // A wrong temperature is one fault of the stack, not one of every layer; a wrong profile has its own.
+        let kelvin = temperature.value();
+        if !(kelvin >= TEMPERATURE_LIMITS.0 && kelvin <= TEMPERATURE_LIMITS.1) {
+            return;
+        }
+        let x = match &layer.composition {
+            Some(_) if !layer.material.is_alloy() => return,
+            Some(profile) => {
+                let (low, high) = profile.extremes();
+                if !(low >= 0.0 && high <= 1.0) {
+                    return;
+                }
+                Some(P::constant(low))
+            }
+            None => None,
+        };
+        if let Err(error) = layer.material.values(x, temperature, P::constant(0.0)) {
+            self.faults.push(wrap(error));
+        }
+    }
+
+    fn interface<P: Scalar>(&mut self, place: &Place, interface: &Interface<P>) {
+        let limits = (0.0, HIGHEST_VELOCITY);
+        let (electrons, holes) =
+            (interface.electron_recombination_velocity, interface.hole_recombination_velocity);
+        if electrons.value() == holes.value() {
+            self.range(place, "recombination_velocity", electrons, limits, "m/s");
+        } else {
+            self.range(place, "electron_recombination_velocity", electrons, limits, "m/s");
+            self.range(place, "hole_recombination_velocity", holes, limits, "m/s");
+        }
+    }
+
+    fn reflectance<P: Scalar>(&mut self, reflectance: &Reflectance<P>) {
+        let word = "front_reflectance";
+        match reflectance {
+            Reflectance::Number(value) => self.range(&Place::Stack, word, *value, (0.0, 1.0), ""),
+            Reflectance::Table { wavelength, reflectance } => {
+                let values: Vec<f64> = reflectance.iter().map(|r| r.value()).collect();
+                if self.table(&Place::Stack, word, wavelength, &[&values]) {
+                    self.range(&Place::Stack, "wavelength", wavelength[0], WAVELENGTH_LIMITS, "m");
+                    if let Some(bad) = values.iter().find(|r| !(0.0..=1.0).contains(*r)) {
+                        self.range(&Place::Stack, word, *bad, (0.0, 1.0), "");
+                    }
+                }
+            }
+            Reflectance::Coating(films) => {
+                for film in films {
+                    let constants = &film.constants;
+                    let place = Place::Layer(constants.name.clone());
+                    if film.thickness.value() == 0.0 {
+                        self.faults.push(Fault::ZeroThickness { layer: constants.name.clone() });
+                    } else {
+                        self.range(&place, "thickness", film.thickness, (1e-11, 1e-4), "m");
+                    }
+                    self.table(&place, "coating", &constants.wavelength, &[&constants.n, &constants.k]);
+                    for (quantity, column, limits) in
+                        [("n", &constants.n, (1e-3, 100.0)), ("k", &constants.k, (0.0, 100.0))]
+                    {
+                        if let Some(bad) = column.iter().find(|v| **v < limits.0 || **v > limits.1) {
+                            self.range(&place, quantity, *bad, limits, "");
+                        }
+                    }
+                }
+            }
+        }
+    }
+}
+
+impl<P: Scalar> Stack<P> {
+    /// All faults of the stack at once: from the layers (front first), then interfaces, contacts, optics, circuit, the rest.
+    pub fn faults(&self) -> Vec<Fault> {
+        let mut check = Checker { faults: Vec::new() };
+        if self.layers.is_empty() {
+            check.faults.push(Fault::NoLayers);
+        }
+        if self.layers.len() > MOST_LAYERS {
+            check.faults.push(Fault::TooManyLayers { found: self.layers.len(), most: MOST_LAYERS });
+            return check.faults;
+        }
+        let mut names = BTreeSet::new();
+        for (index, layer) in self.layers.iter().enumerate() {
+            if layer.name.is_empty() {
+                check.faults.push(Fault::NoName { position: index + 1 });
+            } else if !names.insert(&layer.name) {
+                check.faults.push(Fault::DuplicateLayer { layer: layer.name.clone() });
+            }
+            check.layer(layer, self.temperature);
+        }
+        if self.interfaces.len() + 1 != self.layers.len().max(1) {
+            check.faults.push(Fault::Interfaces { found: self.interfaces.len(), layers: self.layers.len() });
+        } else {
+            for (pair, interface) in self.layers.windows(2).zip(&self.interfaces) {
+                if let Some(interface) = interface {
+                    let place = Place::Interface(pair[0].name.clone(), pair[1].name.clone());
+                    check.interface(&place, interface);
+                }
+            }
+        }
+        for (side, contact) in [(Side::Front, &self.front), (Side::Rear, &self.rear)] {
+            if let Some(velocity) = contact.recombination_velocity {
+                let place = Place::Contact(side);
+                check.range(&place, "recombination_velocity", velocity, (0.0, HIGHEST_VELOCITY), "m/s");
+            }
+        }
+        let stack = Place::Stack;
+        let share = (0.0, 1.0);
+        check.reflectance(&self.optics.front_reflectance);
+        check.range(&stack, "grid_shading", self.optics.grid_shading, share, "");
+        check.range(&stack, "rear_reflectance", self.optics.rear_reflectance, share, "");
+        check.range(&stack, "front_internal_reflectance", self.optics.front_internal_reflectance, share, "");
+        if self.optics.rear_reflectance.value() == 1.0
+            && self.optics.front_internal_reflectance.value() == 1.0
+        {
+            check.faults.push(Fault::TrappedLight);
+        }
+        check.range(&stack, "series_resistance", self.circuit.series_resistance, (0.0, 1e12), "ohm m^2");
+        if let Some(shunt) = self.circuit.shunt_resistance {
+            check.range(&stack, "shunt_resistance", shunt, (1e-18, f64::INFINITY), "ohm m^2");
+        }
+        check.range(&stack, "temperature", self.temperature, TEMPERATURE_LIMITS, "K");
+        check.range(&stack, "accuracy", self.accuracy, ACCURACY_LIMITS, "");
+        check.faults
+    }
+}
+
+/// Whether two layers are made of one substance, so that no band offset lies between them.
+pub(crate) fn same_substance<P: Scalar>(a: &Material<P>, b: &Material<P>) -> bool {
+    a.base == b.base
+}

@@ -1,0 +1,111 @@
+//! A stack that has passed every check.
+
+use crate::materials::{MaterialBase, Origin, Parameter};
+use crate::math::Scalar;
+
+use super::check::same_substance;
+use super::fault::{Fault, Warning};
+use super::stack::{Layer, Stack};
+
+/// A valid stack: its materials can be evaluated everywhere, its numbers are within their limits.
+#[derive(Clone, Debug)]
+pub struct Device<P = f64> {
+    stack: Stack<P>,
+}
+
+impl<P: Scalar> Device<P> {
+    /// Checks a stack.
+    ///
+    /// # Errors
+    /// All faults of the stack, front to rear.
+    pub fn new(stack: Stack<P>) -> Result<Self, Vec<Fault>> {
+        let faults = stack.faults();
+        if faults.is_empty() { Ok(Device { stack }) } else { Err(faults) }
+    }
+
+    /// The stack it was made from.
+    pub fn stack(&self) -> &Stack<P> {
+        &self.stack
+    }
+
+    /// The stack, to be changed and checked again.
+    pub fn into_stack(self) -> Stack<P> {
+        self.stack
+    }
+
+    /// What a person should know before trusting the numbers, front to rear.
+    pub fn warnings(&self) -> Vec<Warning> {
+        let mut warnings = Vec::new();
+        for layer in &self.stack.layers {
+            self.layer_warnings(layer, &mut warnings);
+        }
+        for pair in self.stack.layers.windows(2) {
+            offset_warnings(&pair[0], &pair[1], &mut warnings);
+        }
+        warnings
+    }
+
+    fn layer_warnings(&self, layer: &Layer<P>, warnings: &mut Vec<Warning>) {
+        let temperature = self.stack.temperature.value();
+        let material = layer.material.name().to_string();
+        let provenance = layer.material.provenance();
+        let lifetime = |p: &Parameter| matches!(p, Parameter::ElectronLifetime | Parameter::HoleLifetime);
+        let x = layer.composition.as_ref().map(|c| c.at(P::constant(0.0), layer.thickness));
+        if provenance.iter().any(|p| lifetime(&p.parameter) && p.origin == Origin::Illustrative)
+            && let Ok(values) = layer.material.values(x, self.stack.temperature, P::constant(0.0))
+        {
+            warnings.push(Warning::IllustrativeLifetime {
+                layer: layer.name.clone(),
+                material: material.clone(),
+                electron: values.electron_lifetime.value(),
+                hole: values.hole_lifetime.value(),
+            });
+        }
+        for p in &provenance {
+            let worth_saying = matches!(p.parameter, Parameter::ElectronMobility | Parameter::HoleMobility);
+            if p.origin == Origin::Illustrative && worth_saying {
+                warnings.push(Warning::IllustrativeValue {
+                    layer: layer.name.clone(),
+                    material: material.clone(),
+                    parameter: p.parameter.key(),
+                    source_text: p.source,
+                });
+            }
+            if temperature < p.temperature.0 || temperature > p.temperature.1 {
+                warnings.push(Warning::TemperatureRange {
+                    layer: layer.name.clone(),
+                    material: material.clone(),
+                    parameter: p.parameter.key(),
+                    temperature,
+                    low: p.temperature.0,
+                    high: p.temperature.1,
+                });
+            }
+        }
+    }
+}
+
+/// An offset from memory counts only where two different substances meet and the script gave no affinity.
+fn offset_warnings<P: Scalar>(front: &Layer<P>, rear: &Layer<P>, warnings: &mut Vec<Warning>) {
+    if same_substance(&front.material, &rear.material) {
+        return;
+    }
+    for layer in [front, rear] {
+        let library = matches!(layer.material.base, MaterialBase::Library(_));
+        let of_affinity =
+            layer.material.provenance().into_iter().find(|p| p.parameter == Parameter::Affinity);
+        if let Some(p) = of_affinity
+            && library
+            && layer.material.name() != "GaAs"
+            && matches!(p.origin, Origin::FromMemory | Origin::Illustrative)
+        {
+            warnings.push(Warning::Offset {
+                front: front.name.clone(),
+                rear: rear.name.clone(),
+                material: layer.material.name().to_string(),
+                origin: p.origin,
+                source_text: p.source,
+            });
+        }
+    }
+}

@@ -1,0 +1,289 @@
+//! A material's values at a place: library laws, overrides, conversions, range checks.
+
+use crate::math::{Num, Scalar};
+use crate::quantity::constants::{BOLTZMANN, ELEMENTARY_CHARGE};
+
+use super::law::{density_of_states, thermal};
+use super::library::find;
+use super::material::{Material, MaterialBase, MaterialError, Values};
+use super::parameter::{Kind, Parameter};
+use super::record::{Ladder, Record};
+
+/// Electron affinity of GaAs, eV, at every temperature: the anchor between the ladder and the vacuum level. From memory.
+pub(crate) const GAAS_AFFINITY: f64 = 4.07;
+
+/// Temperatures, K, within which anything is computed at all.
+pub const TEMPERATURE_LIMITS: (f64, f64) = (20.0, 1000.0);
+
+/// The values a custom material cannot do without.
+pub const REQUIRED: [Parameter; 7] = [
+    Parameter::Gap,
+    Parameter::Affinity,
+    Parameter::Permittivity,
+    Parameter::ConductionDensity,
+    Parameter::ValenceDensity,
+    Parameter::ElectronMobility,
+    Parameter::HoleMobility,
+];
+
+impl Parameter {
+    /// Lowest and highest value that a script may set, SI units.
+    pub fn limits(self) -> (f64, f64) {
+        let ev = ELEMENTARY_CHARGE;
+        match self {
+            Parameter::Gap => (0.05 * ev, 10.0 * ev),
+            Parameter::TrapEnergy => (-10.0 * ev, 10.0 * ev),
+            Parameter::Permittivity => (1.0, 1e4),
+            _ => match self.kind() {
+                Kind::Energy => (0.0, 10.0 * ev),
+                Kind::Number => (0.0, f64::MAX),
+                Kind::Density => (1e18, 1e30),
+                Kind::Mobility => (1e-10, 1e3),
+                Kind::Time => (1e-18, f64::INFINITY),
+                Kind::RadiativeCoefficient => (0.0, 1e-6),
+                Kind::AugerCoefficient => (0.0, 1e-30),
+                Kind::InverseLength => (0.0, 1e10),
+            },
+        }
+    }
+}
+
+/// Band energies of a library material at one place, eV.
+pub(crate) struct Bands<P> {
+    /// The lowest gap.
+    pub gap: P,
+    /// Effective density of states of the conduction band, m^-3, all minima, referred to the lowest.
+    pub density: P,
+    /// Share of the electrons that sit in the direct minimum (non-degenerate).
+    pub direct_share: P,
+}
+
+impl Record {
+    pub(crate) fn bands<P: Num>(&self, x: P, temperature: P) -> Bands<P> {
+        let minima = self.minima.law;
+        let direct = minima[0].valley.energy(x, temperature);
+        let gap = minima[1..].iter().fold(direct, |low, m| low.min(m.valley.energy(x, temperature)));
+        let inverse = thermal(temperature).recip();
+        let weight = |m: &super::record::Minimum| {
+            let above = m.valley.energy(x, temperature) - gap;
+            density_of_states(m.mass.at(x), temperature) * (-(above * inverse)).exp()
+        };
+        let in_direct = weight(&minima[0]);
+        let density = minima[1..].iter().fold(in_direct, |sum, m| sum + weight(m));
+        let direct_share = match minima.len() {
+            1 => P::constant(1.0),
+            _ => in_direct * density.recip(),
+        };
+        Bands { gap, density, direct_share }
+    }
+
+    /// Valence-band edge above that of GaAs, eV.
+    pub(crate) fn valence_edge<P: Num>(&self, x: P, temperature: P) -> P {
+        match self.ladder.law {
+            Ladder::Step(below) => P::constant(-below),
+            Ladder::ShareOfDirectGap(share) => {
+                let direct = &self.minima.law[0].valley;
+                (direct.energy(P::constant(0.0), temperature) - direct.energy(x, temperature)) * share
+            }
+        }
+    }
+}
+
+fn range_error(
+    material: &str,
+    parameter: &str,
+    value: f64,
+    (low, high): (f64, f64),
+) -> Option<MaterialError> {
+    let inside = value >= low && value <= high;
+    (!inside).then(|| MaterialError::OutOfRange {
+        material: material.to_string(),
+        parameter: parameter.to_string(),
+        value,
+        low,
+        high,
+    })
+}
+
+impl<P: Scalar> Material<P> {
+    /// Everything that is wrong with the material by itself, in the order of the parameter table.
+    pub fn faults(&self) -> Vec<MaterialError> {
+        let name = self.name();
+        let mut faults = Vec::new();
+        match &self.base {
+            MaterialBase::Library(_) => match find(name) {
+                None => faults.push(MaterialError::Unknown { name: name.to_string() }),
+                Some(record) => match (record.composition, self.composition) {
+                    (Some(range), Some(x)) => faults.extend(range_error(name, "x", x.value(), range)),
+                    (None, Some(_)) => {
+                        faults.push(MaterialError::UnexpectedComposition { name: name.to_string() });
+                    }
+                    _ => {}
+                },
+            },
+            MaterialBase::Custom(_) => {
+                if self.composition.is_some() {
+                    faults.push(MaterialError::UnexpectedComposition { name: name.to_string() });
+                }
+                for parameter in REQUIRED {
+                    if !self.overrides.contains_key(&parameter) {
+                        faults.push(MaterialError::Missing {
+                            material: name.to_string(),
+                            parameter: parameter.key(),
+                        });
+                    }
+                }
+            }
+        }
+        for (parameter, value) in &self.overrides {
+            faults.extend(range_error(name, parameter.key(), value.value(), parameter.limits()));
+        }
+        let traps = [Parameter::TrapEnergy, Parameter::TrapBelowConduction, Parameter::TrapAboveValence];
+        if traps.iter().filter(|t| self.overrides.contains_key(t)).count() > 1 {
+            faults.push(MaterialError::TrapTwice { material: name.to_string() });
+        }
+        faults
+    }
+
+    /// Whether the material has a composition that a layer may grade.
+    pub fn is_alloy(&self) -> bool {
+        match &self.base {
+            MaterialBase::Library(name) => find(name).is_some_and(|r| r.composition.is_some()),
+            MaterialBase::Custom(_) => false,
+        }
+    }
+
+    /// The library record and the composition to evaluate it at.
+    pub(crate) fn record(&self, x: Option<P>) -> Result<(&'static Record, P), MaterialError> {
+        let name = self.name();
+        let record = match &self.base {
+            MaterialBase::Library(_) => find(name),
+            MaterialBase::Custom(_) => None,
+        };
+        let record = record.ok_or_else(|| MaterialError::Unknown { name: name.to_string() })?;
+        let x = match (record.composition, x.or(self.composition)) {
+            (Some(range), Some(x)) => match range_error(name, "x", x.value(), range) {
+                Some(fault) => return Err(fault),
+                None => x,
+            },
+            (Some(_), None) => return Err(MaterialError::NoComposition { name: name.to_string() }),
+            (None, Some(_)) => {
+                return Err(MaterialError::UnexpectedComposition { name: name.to_string() });
+            }
+            (None, None) => P::constant(0.0),
+        };
+        Ok((record, x))
+    }
+
+    /// All electronic values at one place, SI units.
+    ///
+    /// `x` is the composition there if the layer grades it (otherwise the material's own counts), `temperature` in K,
+    /// `doping` the sum of both dopant densities in m^-3, which the mobility depends on. A custom material has the same
+    /// values at every temperature.
+    ///
+    /// An override replaces the library's value. Where `gap` is overridden and `affinity` is not, the valence band stays
+    /// on the ladder and the affinity follows. `nc` and `nv` keep the library's values when masses have no other change.
+    ///
+    /// # Errors
+    /// The first fault of [`Material::faults`], a missing composition, or a composition or temperature out of range.
+    pub fn values(&self, x: Option<P>, temperature: P, doping: P) -> Result<Values<P>, MaterialError> {
+        if let Some(fault) = self.faults().into_iter().next() {
+            return Err(fault);
+        }
+        if let Some(fault) = range_error(self.name(), "temperature", temperature.value(), TEMPERATURE_LIMITS)
+        {
+            return Err(fault);
+        }
+        let mut values = match &self.base {
+            MaterialBase::Library(_) => self.library_values(x, temperature, doping)?,
+            MaterialBase::Custom(_) => self.custom_values(x)?,
+        };
+        for (parameter, value) in &self.overrides {
+            let slot = match parameter {
+                Parameter::Gap => &mut values.gap,
+                Parameter::Affinity => &mut values.affinity,
+                Parameter::Permittivity => &mut values.permittivity,
+                Parameter::ConductionDensity => &mut values.conduction_density,
+                Parameter::ValenceDensity => &mut values.valence_density,
+                Parameter::ElectronMobility => &mut values.electron_mobility,
+                Parameter::HoleMobility => &mut values.hole_mobility,
+                Parameter::ElectronLifetime => &mut values.electron_lifetime,
+                Parameter::HoleLifetime => &mut values.hole_lifetime,
+                Parameter::TrapEnergy => &mut values.trap_energy,
+                Parameter::RadiativeCoefficient => &mut values.radiative_coefficient,
+                Parameter::ElectronAuger => &mut values.electron_auger,
+                Parameter::HoleAuger => &mut values.hole_auger,
+                Parameter::TrapBelowConduction | Parameter::TrapAboveValence | Parameter::Absorption => {
+                    continue;
+                }
+            };
+            *slot = *value;
+        }
+        // E_trap - E_i with E_i = (Ec + Ev)/2 + (kT/2) ln(Nv/Nc), so that n1 = ni e^(E/kT) is Nc e^(-below/kT) exactly.
+        let tilt = (values.valence_density * values.conduction_density.recip()).ln()
+            * temperature
+            * (BOLTZMANN * 0.5);
+        if let Some(below) = self.overrides.get(&Parameter::TrapBelowConduction) {
+            values.trap_energy = values.gap * 0.5 - *below - tilt;
+        }
+        if let Some(above) = self.overrides.get(&Parameter::TrapAboveValence) {
+            values.trap_energy = *above - values.gap * 0.5 - tilt;
+        }
+        Ok(values)
+    }
+
+    fn library_values(&self, x: Option<P>, temperature: P, doping: P) -> Result<Values<P>, MaterialError> {
+        let (record, x) = self.record(x)?;
+        let bands = record.bands(x, temperature);
+        let gap = match self.overrides.get(&Parameter::Gap) {
+            Some(gap) => *gap,
+            None => bands.gap * ELEMENTARY_CHARGE,
+        };
+        let gaas = super::library::gaas::GAAS.bands(P::constant(0.0), temperature).gap;
+        let ionisation = gaas - record.valence_edge(x, temperature) + GAAS_AFFINITY;
+        Ok(Values {
+            gap,
+            affinity: ionisation * ELEMENTARY_CHARGE - gap,
+            permittivity: record.permittivity.law.at(x),
+            conduction_density: bands.density,
+            valence_density: density_of_states(record.hole_mass.law.at(x), temperature),
+            electron_mobility: record.electron_mobility.law.at(x, temperature, doping),
+            hole_mobility: record.hole_mobility.law.at(x, temperature, doping),
+            electron_lifetime: P::constant(record.electron_lifetime),
+            hole_lifetime: P::constant(record.hole_lifetime),
+            trap_energy: P::constant(0.0),
+            radiative_coefficient: bands.direct_share * record.radiative.law,
+            electron_auger: P::constant(record.electron_auger.law),
+            hole_auger: P::constant(record.hole_auger.law),
+        })
+    }
+
+    fn custom_values(&self, x: Option<P>) -> Result<Values<P>, MaterialError> {
+        if x.is_some() {
+            return Err(MaterialError::UnexpectedComposition { name: self.name().to_string() });
+        }
+        let get = |parameter: Parameter| {
+            self.overrides.get(&parameter).copied().ok_or_else(|| MaterialError::Missing {
+                material: self.name().to_string(),
+                parameter: parameter.key(),
+            })
+        };
+        let zero = P::constant(0.0);
+        let never = P::constant(f64::INFINITY);
+        Ok(Values {
+            gap: get(Parameter::Gap)?,
+            affinity: get(Parameter::Affinity)?,
+            permittivity: get(Parameter::Permittivity)?,
+            conduction_density: get(Parameter::ConductionDensity)?,
+            valence_density: get(Parameter::ValenceDensity)?,
+            electron_mobility: get(Parameter::ElectronMobility)?,
+            hole_mobility: get(Parameter::HoleMobility)?,
+            electron_lifetime: never,
+            hole_lifetime: never,
+            trap_energy: zero,
+            radiative_coefficient: zero,
+            electron_auger: zero,
+            hole_auger: zero,
+        })
+    }
+}
