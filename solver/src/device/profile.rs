@@ -52,7 +52,7 @@ impl<P: Scalar> Profile<P> {
                 *front * ((*rear * front.recip()).ln() * share).exp()
             }
             Profile::Erfc { surface, background, depth: length } => {
-                *background + (*surface - *background) * erfc(depth * length.recip())
+                *background + (*surface - *background) * (depth * length.recip()).erfc()
             }
             Profile::Table { depths, values } => {
                 let after = depths.iter().position(|d| d.value() > depth.value());
@@ -88,14 +88,4 @@ impl<P: Scalar> Profile<P> {
             Profile::Table { values, .. } => of(values),
         }
     }
-}
-
-/// Complementary error function of a number from 0 up, to 1.5e-7.
-///
-/// M. Abramowitz and I. A. Stegun, Handbook of Mathematical Functions, 7.1.26, from memory.
-fn erfc<P: Scalar>(x: P) -> P {
-    let t = (x * 0.3275911 + 1.0).recip();
-    let c = [0.254829592, -0.284496736, 1.421413741, -1.453152027, 1.061405429];
-    let sum = c.iter().rev().fold(P::constant(0.0), |sum, c| (sum + *c) * t);
-    sum * (-(x * x)).exp()
 }

@@ -133,7 +133,7 @@ pub(crate) static GAINAS: Record = Record {
         law: Linear(13.9, 0.0),
         temperature: (77.0, 400.0),
         origin: Origin::FromMemory,
-        source: "from memory",
+        source: "common handbook value, from memory",
     },
     electron_mobility: Sourced {
         law: Mobility::CaugheyThomas {
