@@ -1,0 +1,348 @@
+//! A light on a stack: what each control volume generates, and where every photon went.
+
+use crate::device::{LayerOptics, Side, Stack};
+use crate::math::Scalar;
+use crate::quantity::constants::photon_energy;
+
+use super::coating::Index;
+use super::generation::{Absorption, Faces, GenerationOperator, OpticalLayer};
+use super::light::Light;
+use super::samples::Samples;
+
+/// What the optics asks of the materials of the layers.
+pub trait LayerMaterials<P> {
+    /// The one absorption coefficient set for the layer, m^-1, if any. It goes before any table.
+    fn scalar_absorption(&self, layer: usize) -> Option<P>;
+    /// Band gap at a depth from the layer's front, J.
+    fn gap(&self, layer: usize, depth: P) -> P;
+    /// Absorption coefficient at a depth from the layer's front, m, and a vacuum wavelength, m; and whether the
+    /// layer's table covers that wavelength.
+    fn absorption(&self, layer: usize, depth: P, wavelength: f64) -> (P, bool);
+    /// Refractive index at the lit face of the layer.
+    fn index(&self, layer: usize, wavelength: f64) -> Option<Index<P>>;
+    /// Whether absorption varies with depth.
+    fn graded(&self, layer: usize) -> bool;
+}
+
+/// Why light on a stack cannot be worked out.
+#[derive(Clone, Debug, PartialEq, thiserror::Error)]
+#[non_exhaustive]
+pub enum OpticsError {
+    /// A coating on a layer without a refractive index.
+    #[error(
+        "a coating needs the refractive index of the layer it lies on, `{layer}`, whose material has none at {} nm", wavelength * 1e9
+    )]
+    NoIndex {
+        /// The lit layer.
+        layer: String,
+        /// Vacuum wavelength, m.
+        wavelength: f64,
+    },
+    /// A reflectance or film table without points, or with columns of different length.
+    #[error("the table behind the front reflectance has no value at {} nm", wavelength * 1e9)]
+    EmptyTable {
+        /// Vacuum wavelength, m.
+        wavelength: f64,
+    },
+    /// The nodes do not fit the stack.
+    #[error("{layers} layers need as many lists of at least 2 nodes, got {lists}")]
+    Nodes {
+        /// Layers of the stack.
+        layers: usize,
+        /// Lists of nodes given.
+        lists: usize,
+    },
+}
+
+/// Where the photons of a light went: photons, m^-2 s^-1, or their energy, W/m^2.
+#[derive(Clone, Debug)]
+pub struct PhotonAccount<P> {
+    /// Falls on the stack; of a monochromatic light, enters it.
+    pub incident: P,
+    /// Falls on the grid.
+    pub shaded: P,
+    /// Reflected at the lit face from outside.
+    pub reflected: P,
+    /// Absorbed in the films of the coating.
+    pub coating: P,
+    /// Absorbed in each layer: `[layers]`.
+    pub absorbed: Vec<P>,
+    /// Leaves at the far face.
+    pub transmitted: P,
+    /// Leaves again at the lit face, from inside.
+    pub escaped: P,
+}
+
+impl<P: Scalar> PhotonAccount<P> {
+    /// What comes in minus where it goes; rounding alone.
+    pub fn closure(&self) -> P {
+        let out = self.shaded + self.reflected + self.coating + self.transmitted + self.escaped;
+        self.incident - self.absorbed.iter().fold(out, |sum, &a| sum + a)
+    }
+}
+
+/// A light on a stack, on one mesh.
+#[derive(Clone, Debug)]
+pub struct Illumination<P> {
+    /// Pairs generated in each control volume, m^-2 s^-1: `[entries]`, layer by layer, node by node.
+    pub generation: Vec<P>,
+    /// Photon energy absorbed in each control volume, W/m^2: `[entries]`; `None` where photons have no energy.
+    pub photon_energy: Option<Vec<P>>,
+    /// Account of the photons, m^-2 s^-1.
+    pub photons: PhotonAccount<P>,
+    /// Account of their energy, W/m^2; `None` where photons have no energy.
+    pub energy: Option<PhotonAccount<P>>,
+    /// Irradiance on the stack at wavelengths outside each layer's absorption table, W/m^2: `[layers]`.
+    pub uncovered: Vec<P>,
+    /// Irradiance at wavelengths outside the tables of the front reflectance or coating, W/m^2.
+    pub uncovered_reflectance: P,
+    /// Irradiance that an efficiency divides by, W/m^2; `None` where photons have no energy or nothing shines.
+    pub input_power: Option<f64>,
+    /// Whether the light's flux is what enters the stack, so that shading and reflectance took no part.
+    pub flux_enters: bool,
+}
+
+/// A light prepared for a stack, ready for any mesh of it.
+pub struct LitStack<'a, P, M> {
+    stack: &'a Stack<P>,
+    materials: &'a M,
+    samples: Samples<P>,
+    faces: Faces<P>,
+    /// Whether the tables of the lit face cover each wavelength.
+    face_covered: Vec<bool>,
+    /// Reflectance of the lit face by wavelength, 0 where the flux is what enters.
+    absorbers: Vec<Absorber<P>>,
+}
+
+/// How a layer absorbs, as far as it is known without a mesh.
+enum Absorber<P> {
+    Inert,
+    Uniform(Vec<P>, Vec<bool>),
+    Graded,
+}
+
+impl<'a, P: Scalar, M: LayerMaterials<P>> LitStack<'a, P, M> {
+    /// Prepares a light: evaluates absorption, reflectance and coating at its wavelengths.
+    pub fn new(stack: &'a Stack<P>, materials: &'a M, light: &Light) -> Result<Self, OpticsError> {
+        let (edges, edge_of) = edges(stack, materials);
+        Self::with_samples(stack, materials, Samples::new(light, &edges), &edge_of)
+    }
+
+    /// Prepares probing light of the given vacuum wavelengths, m, one photon each, for a spectral response.
+    pub fn probed(stack: &'a Stack<P>, materials: &'a M, wavelengths: &[f64]) -> Result<Self, OpticsError> {
+        let (edges, edge_of) = edges(stack, materials);
+        Self::with_samples(stack, materials, Samples::probes(wavelengths, &edges), &edge_of)
+    }
+
+    fn with_samples(
+        stack: &'a Stack<P>,
+        materials: &'a M,
+        samples: Samples<P>,
+        edge_of: &[Option<usize>],
+    ) -> Result<Self, OpticsError> {
+        let zero = P::constant(0.0);
+        let optics = &stack.optics;
+        let from_rear = optics.lit_from == Side::Rear;
+        let lit_layer = if from_rear { stack.layers.len().saturating_sub(1) } else { 0 };
+        let mut entrance = Vec::with_capacity(samples.wavelength.len());
+        let mut face_covered = Vec::with_capacity(samples.wavelength.len());
+        for wavelength in &samples.wavelength {
+            let Some(wavelength) = wavelength.filter(|_| !samples.entered) else {
+                entrance.push((zero, zero));
+                face_covered.push(true);
+                continue;
+            };
+            let reflectance = &optics.front_reflectance;
+            let first = if reflectance.needs_index() { materials.index(lit_layer, wavelength) } else { None };
+            let shares = match reflectance.at(wavelength, first) {
+                Some(shares) => shares,
+                None if reflectance.needs_index() && first.is_none() => {
+                    let layer = stack.layers.get(lit_layer).map_or_else(String::new, |l| l.name.clone());
+                    return Err(OpticsError::NoIndex { layer, wavelength });
+                }
+                None => return Err(OpticsError::EmptyTable { wavelength }),
+            };
+            entrance.push((shares.reflected, shares.coating));
+            face_covered.push(shares.covered);
+        }
+        let faces = Faces {
+            from_rear,
+            shading: if samples.entered { zero } else { optics.grid_shading },
+            entrance,
+            far_reflectance: optics.rear_reflectance,
+            internal_reflectance: optics.front_internal_reflectance,
+        };
+        let absorbers = (0..stack.layers.len())
+            .map(|layer| {
+                if stack.layers[layer].optics == LayerOptics::Inert {
+                    return Absorber::Inert;
+                }
+                if materials.graded(layer) {
+                    return Absorber::Graded;
+                }
+                let above = edge_of[layer].and_then(|edge| samples.above.get(edge));
+                let at = |(w, wavelength): (usize, &Option<f64>)| {
+                    let above = above.and_then(|a| a.get(w)).copied().unwrap_or(true);
+                    coefficient(materials, layer, zero, *wavelength, above)
+                };
+                let (values, covered) = samples.wavelength.iter().enumerate().map(at).unzip();
+                Absorber::Uniform(values, covered)
+            })
+            .collect();
+        Ok(LitStack { stack, materials, samples, faces, face_covered, absorbers })
+    }
+
+    /// Vacuum wavelengths of the light's samples, m; `None` for photons without energy.
+    pub fn wavelengths(&self) -> &[Option<f64>] {
+        &self.samples.wavelength
+    }
+    /// Photon flux of each sample, m^-2 s^-1.
+    pub fn photon_flux(&self) -> &[P] {
+        &self.samples.flux
+    }
+    /// Reflectance of the lit face and share absorbed in its coating, for light beside the grid: `[wavelengths]`.
+    pub fn entrance(&self) -> &[(P, P)] {
+        &self.faces.entrance
+    }
+
+    /// The generation operator on a mesh: positions of each layer's nodes, m from the stack's front, both ends
+    /// included: `[layers][nodes]`. With it, whether each layer's table covers each wavelength:
+    /// `[layers][wavelengths]`.
+    pub fn operator(&self, nodes: &[Vec<P>]) -> Result<(GenerationOperator<P>, Vec<Vec<bool>>), OpticsError> {
+        if nodes.len() != self.stack.layers.len() || nodes.iter().any(|n| n.len() < 2) {
+            return Err(OpticsError::Nodes { layers: self.stack.layers.len(), lists: nodes.len() });
+        }
+        let mut covered = Vec::with_capacity(nodes.len());
+        let layers: Vec<OpticalLayer<P>> = nodes
+            .iter()
+            .enumerate()
+            .map(|(layer, nodes)| {
+                let half_widths = nodes.windows(2).map(|pair| (pair[1] - pair[0]) * 0.5).collect();
+                let (absorption, whole) = match &self.absorbers[layer] {
+                    Absorber::Inert => (Absorption::Inert, vec![true; self.samples.wavelength.len()]),
+                    Absorber::Uniform(values, whole) => (Absorption::Uniform(values.clone()), whole.clone()),
+                    Absorber::Graded => self.by_cell(layer, nodes),
+                };
+                covered.push(whole);
+                OpticalLayer { half_widths, absorption }
+            })
+            .collect();
+        Ok((GenerationOperator::new(&layers, &self.faces), covered))
+    }
+
+    /// Absorption of a graded layer, at the middle of each cell.
+    fn by_cell(&self, layer: usize, nodes: &[P]) -> (Absorption<P>, Vec<bool>) {
+        let middles: Vec<P> = nodes.windows(2).map(|pair| (pair[0] + pair[1]) * 0.5 - nodes[0]).collect();
+        let scalar = self.materials.scalar_absorption(layer).is_some();
+        let gaps: Vec<f64> = if scalar {
+            middles.iter().map(|&middle| self.materials.gap(layer, middle).value()).collect()
+        } else {
+            vec![0.0; middles.len()]
+        };
+        let mut whole = Vec::with_capacity(self.samples.wavelength.len());
+        let values = self.samples.wavelength.iter().map(|&wavelength| {
+            let mut all = true;
+            let row = middles.iter().zip(&gaps).map(|(&middle, &gap)| {
+                let above = wavelength.is_none_or(|l| photon_energy(l) >= gap);
+                let (value, covered) = coefficient(self.materials, layer, middle, wavelength, above);
+                all &= covered;
+                value
+            });
+            let row: Vec<P> = row.collect();
+            whole.push(all);
+            row
+        });
+        let values = values.collect();
+        (Absorption::Cells(values), whole)
+    }
+
+    /// What the light does on a mesh: positions of each layer's nodes, m from the stack's front, both ends
+    /// included: `[layers][nodes]`.
+    pub fn illuminate(&self, nodes: &[Vec<P>]) -> Result<Illumination<P>, OpticsError> {
+        let (operator, covered) = self.operator(nodes)?;
+        let samples = &self.samples;
+        let zero = P::constant(0.0);
+        let has_energy = samples.input_power.is_some();
+        let missing = |covered: &[bool]| {
+            let terms = covered.iter().zip(&samples.energy).filter(|(covered, _)| !**covered);
+            terms.fold(zero, |sum, (_, &energy)| sum + energy)
+        };
+        Ok(Illumination {
+            generation: operator.apply(&samples.flux),
+            photon_energy: has_energy.then(|| operator.apply(&samples.energy)),
+            photons: account(&operator, &samples.flux, self.stack.layers.len()),
+            energy: has_energy.then(|| account(&operator, &samples.energy, self.stack.layers.len())),
+            uncovered: covered.iter().map(|c| missing(c)).collect(),
+            uncovered_reflectance: missing(&self.face_covered),
+            input_power: samples.input_power,
+            flux_enters: samples.entered,
+        })
+    }
+}
+
+/// The energies at which layers with one absorption coefficient start to absorb, and which of them is each layer's.
+fn edges<P: Scalar, M: LayerMaterials<P>>(stack: &Stack<P>, materials: &M) -> (Vec<P>, Vec<Option<usize>>) {
+    let mut edges: Vec<P> = Vec::new();
+    let plain = size_of::<P>() == size_of::<f64>();
+    let edge_of = (0..stack.layers.len())
+        .map(|layer| {
+            let absorbs = stack.layers[layer].optics == LayerOptics::Absorbing;
+            if !absorbs || materials.graded(layer) || materials.scalar_absorption(layer).is_none() {
+                return None;
+            }
+            let gap = materials.gap(layer, P::constant(0.0));
+            // Numbers without derivatives share an edge; duals of one value may still differ.
+            let known = edges.iter().position(|edge| plain && edge.value() == gap.value());
+            Some(known.unwrap_or_else(|| {
+                edges.push(gap);
+                edges.len() - 1
+            }))
+        })
+        .collect();
+    (edges, edge_of)
+}
+
+/// Absorption coefficient of a layer at a depth and wavelength: its one number above its gap, or its table; of
+/// photons without energy, its one number or none.
+fn coefficient<P: Scalar, M: LayerMaterials<P>>(
+    materials: &M,
+    layer: usize,
+    depth: P,
+    wavelength: Option<f64>,
+    above: bool,
+) -> (P, bool) {
+    match (materials.scalar_absorption(layer), wavelength) {
+        (Some(value), _) if above => (value, true),
+        (Some(_), _) | (None, None) => (P::constant(0.0), true),
+        (None, Some(wavelength)) => materials.absorption(layer, depth, wavelength),
+    }
+}
+
+/// Sums the shares of each wavelength times its flux.
+fn account<P: Scalar>(operator: &GenerationOperator<P>, flux: &[P], layers: usize) -> PhotonAccount<P> {
+    let zero = P::constant(0.0);
+    let mut sum = PhotonAccount {
+        incident: zero,
+        shaded: zero,
+        reflected: zero,
+        coating: zero,
+        absorbed: vec![zero; layers],
+        transmitted: zero,
+        escaped: zero,
+    };
+    for (w, (&flux, shares)) in flux.iter().zip(operator.shares()).enumerate() {
+        sum.incident = sum.incident + flux;
+        sum.shaded = sum.shaded + flux * shares.shaded;
+        sum.reflected = sum.reflected + flux * shares.reflected;
+        sum.coating = sum.coating + flux * shares.coating;
+        sum.transmitted = sum.transmitted + flux * shares.transmitted;
+        sum.escaped = sum.escaped + flux * shares.escaped;
+        for (total, &share) in sum.absorbed.iter_mut().zip(operator.absorbed(w)) {
+            *total = *total + flux * share;
+        }
+    }
+    sum
+}
+
+#[cfg(test)]
+mod tests;
