@@ -1,3 +1,4 @@
 //! Epiloom: the script language, the archive and the command line.
 
+pub mod archive;
 pub mod diagnostics;

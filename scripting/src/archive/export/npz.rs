@@ -1,0 +1,123 @@
+//! A zip of `.npy` arrays (format 1.0), which numpy and its kin open.
+//!
+//! Each column is an array of `<f8` under `TABLE.COLUMN`; the figures are `figures.name`, `figures.value`,
+//! `figures.numerical_error` and `figures.unit` (absent numbers are NaN), the ledger and the conditions
+//! likewise. Nothing is compressed and every time stamp is the earliest that zip can hold, so that the same
+//! snapshot gives the same bytes.
+
+use std::collections::BTreeSet;
+use std::io::{Cursor, Write};
+
+use zip::write::SimpleFileOptions;
+use zip::{CompressionMethod, DateTime, ZipWriter};
+
+use super::{plain_name, unique_name};
+use crate::archive::error::ArchiveError;
+use crate::archive::model::{Snapshot, Value};
+
+/// The snapshot as the bytes of an NPZ file.
+///
+/// # Errors
+/// [`ArchiveError::Encoding`].
+pub fn npz(snapshot: &Snapshot) -> Result<Vec<u8>, ArchiveError> {
+    let mut arrays = Arrays { zip: ZipWriter::new(Cursor::new(Vec::new())), taken: BTreeSet::new() };
+    for table in &snapshot.tables {
+        for column in &table.columns {
+            arrays.numbers(&format!("{}.{}", table.name, column.name), &column.values)?;
+        }
+    }
+    if !snapshot.figures.is_empty() {
+        let figures = &snapshot.figures;
+        let of = |get: fn(&crate::archive::Figure) -> Option<f64>| -> Vec<f64> {
+            figures.iter().map(|figure| get(figure).unwrap_or(f64::NAN)).collect()
+        };
+        arrays.texts("figures.name", figures.iter().map(|figure| figure.name.as_str()))?;
+        arrays.numbers("figures.value", &of(|figure| figure.value))?;
+        arrays.numbers("figures.numerical_error", &of(|figure| figure.error))?;
+        arrays.texts("figures.unit", figures.iter().map(|figure| figure.unit.as_str()))?;
+    }
+    if !snapshot.ledgers.is_empty() {
+        let lines =
+            || snapshot.ledgers.iter().flat_map(|ledger| ledger.lines.iter().map(move |line| (ledger, line)));
+        let of = |get: fn(&crate::archive::LedgerLine) -> Option<f64>| -> Vec<f64> {
+            lines().map(|(_, line)| get(line).unwrap_or(f64::NAN)).collect()
+        };
+        arrays.texts("ledger.title", lines().map(|(ledger, _)| ledger.title.as_str()))?;
+        arrays.texts("ledger.group", lines().map(|(_, line)| line.group.as_str()))?;
+        arrays.texts("ledger.line", lines().map(|(_, line)| line.label.as_str()))?;
+        arrays.numbers("ledger.value", &of(|line| line.value))?;
+        arrays.texts("ledger.unit", lines().map(|(_, line)| line.unit.as_str()))?;
+        arrays.numbers("ledger.share", &of(|line| line.share))?;
+    }
+    if !snapshot.conditions.is_empty() {
+        let shown: Vec<(String, f64, &str)> = snapshot
+            .conditions
+            .iter()
+            .map(|condition| match &condition.value {
+                Value::Number { value, unit } => (condition.value.to_string(), *value, unit.as_str()),
+                other => (other.to_string(), f64::NAN, ""),
+            })
+            .collect();
+        arrays.texts("conditions.name", snapshot.conditions.iter().map(|each| each.name.as_str()))?;
+        arrays.texts("conditions.text", shown.iter().map(|(text, ..)| text.as_str()))?;
+        arrays.numbers("conditions.value", &shown.iter().map(|(_, value, _)| *value).collect::<Vec<_>>())?;
+        arrays.texts("conditions.unit", shown.iter().map(|(.., unit)| *unit))?;
+    }
+    Ok(arrays.zip.finish().map_err(failed)?.into_inner())
+}
+
+fn failed(error: impl std::fmt::Display) -> ArchiveError {
+    ArchiveError::Encoding { what: "NPZ".to_owned(), reason: error.to_string() }
+}
+
+struct Arrays {
+    zip: ZipWriter<Cursor<Vec<u8>>>,
+    taken: BTreeSet<String>,
+}
+
+impl Arrays {
+    fn numbers(&mut self, name: &str, values: &[f64]) -> Result<(), ArchiveError> {
+        let bytes: Vec<u8> = values.iter().flat_map(|value| value.to_le_bytes()).collect();
+        self.put(name, "<f8", values.len(), &bytes)
+    }
+
+    /// Texts as UCS-4, each padded with zeros to the longest.
+    fn texts<'a>(&mut self, name: &str, texts: impl Iterator<Item = &'a str>) -> Result<(), ArchiveError> {
+        // A zero character ends a text for numpy; none of ours has a use for one.
+        let texts: Vec<Vec<u32>> =
+            texts.map(|text| text.replace('\0', " ").chars().map(u32::from).collect()).collect();
+        let width = texts.iter().map(Vec::len).max().unwrap_or(0).max(1);
+        let mut bytes = Vec::with_capacity(4 * width * texts.len());
+        for text in &texts {
+            let padded = text.iter().copied().chain(std::iter::repeat(0)).take(width);
+            bytes.extend(padded.flat_map(u32::to_le_bytes));
+        }
+        self.put(name, &format!("<U{width}"), texts.len(), &bytes)
+    }
+
+    fn put(&mut self, name: &str, kind: &str, count: usize, data: &[u8]) -> Result<(), ArchiveError> {
+        let name = unique_name(plain_name(name), &mut self.taken);
+        let options = SimpleFileOptions::default()
+            .compression_method(CompressionMethod::Stored)
+            .last_modified_time(DateTime::default())
+            .unix_permissions(0o644)
+            .large_file(data.len() >= 1 << 31);
+        self.zip.start_file(format!("{name}.npy"), options).map_err(failed)?;
+        self.zip.write_all(&npy_header(kind, count)).map_err(failed)?;
+        self.zip.write_all(data).map_err(failed)
+    }
+}
+
+/// The header of a one-dimensional `.npy` array, padded so that the data begin at a multiple of 64.
+fn npy_header(kind: &str, count: usize) -> Vec<u8> {
+    const BEFORE: usize = 10;
+    let mut about = format!("{{'descr': '{kind}', 'fortran_order': False, 'shape': ({count},), }}");
+    let spaces = (BEFORE + about.len() + 1).next_multiple_of(64) - (BEFORE + about.len() + 1);
+    about.push_str(&" ".repeat(spaces));
+    about.push('\n');
+    let mut out = b"\x93NUMPY\x01\x00".to_vec();
+    // The text is below two hundred bytes whatever the numbers.
+    out.extend((about.len() as u16).to_le_bytes());
+    out.extend(about.as_bytes());
+    out
+}

@@ -1,0 +1,39 @@
+//! The archive: one file that holds one run, for whoever stores, shows, exports or replays results.
+//!
+//! Knows neither the script language nor the command line nor the solver. `FORMAT.md` beside this crate
+//! describes the file to the byte.
+//!
+//! ```no_run
+//! use epiloom::archive::{Archive, RunHeader, Snapshot, Writer};
+//! # fn example(run: &RunHeader, snapshot: &Snapshot) -> Result<(), epiloom::archive::ArchiveError> {
+//! let path = std::path::Path::new("window_and_bsf.epiloom");
+//! let mut writer = Writer::create(path, run)?;
+//! writer.append(snapshot)?;
+//! writer.finish(run)?;
+//! let again = Archive::open(path)?.snapshot(snapshot.name())?;
+//! # Ok(()) }
+//! ```
+
+#[macro_use]
+mod model;
+mod compare;
+mod encoding;
+mod error;
+pub mod export;
+mod layout;
+mod reader;
+mod scan;
+pub mod storage;
+mod writer;
+
+#[cfg(test)]
+mod tests;
+
+pub use compare::{Difference, compare_bits};
+pub use error::{ArchiveError, ArchiveWarning};
+pub use model::{
+    Column, Condition, DataFile, Figure, Input, Label, Layer, Ledger, LedgerLine, MaterialValue, MeshValue,
+    OrderKey, RunHeader, Snapshot, Stack, Status, Table, Value,
+};
+pub use reader::{Archive, Entry};
+pub use writer::{Writer, unfinished_path};

@@ -1,0 +1,9 @@
+//! Tests of the archive.
+
+mod damage;
+mod exports;
+mod format_page;
+mod other_readers;
+mod round_trip;
+mod sample;
+mod writing;

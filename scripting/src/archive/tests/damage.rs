@@ -1,0 +1,308 @@
+//! Flipped, cut, spliced and hostile files through the public reader: damage is reported, and what is
+//! returned is exactly what was written.
+
+use super::sample;
+use crate::archive::encoding::{Index, IndexEntry, sections};
+use crate::archive::layout::{
+    FOOTER_LENGTH, Footer, HEADER_LENGTH, Header, Kind, START_LENGTH, digest, start_bytes,
+};
+use crate::archive::*;
+
+fn finished() -> Vec<u8> {
+    let folder = tempfile::tempdir().unwrap();
+    std::fs::read(sample::write_finished(folder.path())).unwrap()
+}
+
+fn unfinished() -> Vec<u8> {
+    let folder = tempfile::tempdir().unwrap();
+    std::fs::read(sample::write_unfinished(folder.path())).unwrap()
+}
+
+/// Opens the bytes and holds everything that comes out against what was written. Returns the names of the
+/// snapshots that were read, and whether anything at all was reported as amiss.
+fn check(bytes: Vec<u8>, what: &str) -> (Vec<String>, bool) {
+    let written = sample::snapshots();
+    let archive = match Archive::from_bytes(bytes) {
+        Ok(archive) => archive,
+        Err(_) => return (Vec::new(), true),
+    };
+    let mut reported = !archive.warnings().is_empty();
+    match archive.run() {
+        Ok(run) => assert!(*run == sample::run() || reported, "{what}: another run, unreported"),
+        Err(_) => reported = true,
+    }
+    let mut read = Vec::new();
+    for index in 0..archive.entries().len() {
+        match archive.snapshot_at(index) {
+            Ok(snapshot) => {
+                let original = written.iter().find(|each| each.name() == snapshot.name());
+                let original = original.unwrap_or_else(|| panic!("{what}: invented {}", snapshot.name()));
+                assert_eq!(compare_bits(original, &snapshot), [], "{what}");
+                read.push(snapshot.name().to_owned());
+            }
+            Err(_) => reported = true,
+        }
+    }
+    read.sort();
+    read.dedup();
+    (read, reported)
+}
+
+/// Every byte of a finished archive matters, so each flip must be reported; at most one snapshot is lost.
+#[test]
+fn every_flipped_byte_of_a_finished_archive_is_reported() {
+    let bytes = finished();
+    assert_eq!(
+        check(bytes.clone(), "untouched"),
+        (vec!["bands".into(), "dark J-V".into(), "light J-V".into()], false)
+    );
+    for place in 0..bytes.len() {
+        for pattern in [0x01, 0x80, 0xff] {
+            let mut flipped = bytes.clone();
+            flipped[place] ^= pattern;
+            let (read, reported) = check(flipped, &format!("byte {place} ^ {pattern:#x}"));
+            assert!(reported, "byte {place} ^ {pattern:#x} went unnoticed");
+            assert!(place < START_LENGTH || read.len() >= 2, "byte {place}: only {read:?} left");
+        }
+    }
+}
+
+/// The same for the unfinished file of a killed run: there the reader must say `not finished` and more.
+#[test]
+fn every_flipped_byte_of_an_unfinished_archive_is_reported() {
+    let bytes = unfinished();
+    assert_eq!(Archive::from_bytes(bytes.clone()).unwrap().warnings().len(), 1);
+    for place in 0..bytes.len() {
+        for pattern in [0x01, 0x80, 0xff] {
+            let mut flipped = bytes.clone();
+            flipped[place] ^= pattern;
+            let (read, _) = check(flipped.clone(), &format!("byte {place} ^ {pattern:#x}"));
+            assert!(place < START_LENGTH || read.len() >= 2, "byte {place}: only {read:?} left");
+            let damaged = Archive::from_bytes(flipped).map_or(true, |archive| archive.is_damaged());
+            assert!(damaged, "byte {place} ^ {pattern:#x} went unnoticed");
+        }
+    }
+}
+
+/// Where each frame ends, by the lengths in the headers alone.
+fn frame_ends(bytes: &[u8]) -> Vec<usize> {
+    let mut at = START_LENGTH;
+    let mut ends = Vec::new();
+    while let Some(header) = bytes.get(at..at + HEADER_LENGTH) {
+        let Some(header) = Header::from_bytes(header.try_into().unwrap()) else { break };
+        at += header.frame_length().unwrap() as usize;
+        ends.push(at);
+    }
+    ends
+}
+
+/// A file cut anywhere opens to exactly the frames that lie whole before the cut, and says so.
+#[test]
+fn a_file_cut_at_any_length_gives_its_whole_frames_and_a_warning() {
+    for (bytes, before) in [(finished(), 1), (unfinished(), 2)] {
+        let ends = frame_ends(&bytes);
+        for length in 0..bytes.len() {
+            let what = format!("cut at {length}");
+            let (read, reported) = check(bytes[..length].to_vec(), &what);
+            assert!(reported, "{what}");
+            let whole = ends.iter().filter(|end| **end <= length).count();
+            assert_eq!(read.len(), whole.saturating_sub(before).min(3), "{what}");
+            match Archive::from_bytes(bytes[..length].to_vec()) {
+                Ok(archive) => {
+                    let at_end = ends.contains(&length);
+                    let torn = archive
+                        .warnings()
+                        .iter()
+                        .any(|each| matches!(each, ArchiveWarning::TornTail { whole_frames, .. } if *whole_frames == whole));
+                    assert_ne!(at_end, torn, "{what}: {:?}", archive.warnings());
+                }
+                Err(ArchiveError::NoWholeFrame { .. }) => assert_eq!(whole, 0, "{what}"),
+                Err(error) => panic!("{what}: {error}"),
+            }
+        }
+    }
+}
+
+/// A damaged snapshot is refused by its name, from the index and from its label.
+#[test]
+fn a_damaged_frame_is_refused_by_name() {
+    for bytes in [finished(), unfinished()] {
+        let archive = Archive::from_bytes(bytes.clone()).unwrap();
+        let entry = archive.entries().iter().find(|entry| entry.label.name == "light J-V").unwrap();
+        let mut damaged = bytes.clone();
+        damaged[(entry.offset + entry.length) as usize - 3] ^= 4;
+        let archive = Archive::from_bytes(damaged).unwrap();
+        match archive.snapshot("light J-V") {
+            Err(ArchiveError::DamagedSnapshot { name, .. }) => assert_eq!(name, "light J-V"),
+            other => panic!("{other:?}"),
+        }
+        assert!(archive.snapshot("dark J-V").is_ok());
+        assert_eq!(archive.verify().unwrap().len(), 1);
+    }
+}
+
+/// A power cut can leave a tail of zeros or old blocks after the last sync: it is a torn tail.
+#[test]
+fn a_tail_of_zeros_or_rubbish_is_a_torn_tail() {
+    for tail in [vec![0_u8; 5000], b"\xE7frame\r\n".repeat(600)] {
+        let mut bytes = unfinished();
+        bytes.extend(&tail);
+        let archive = Archive::from_bytes(bytes).unwrap();
+        assert_eq!(archive.entries().len(), 3);
+        let torn = ArchiveWarning::TornTail {
+            offset: unfinished().len() as u64,
+            bytes: tail.len() as u64,
+            whole_frames: 5,
+        };
+        assert!(archive.warnings().contains(&torn), "{:?}", archive.warnings());
+    }
+}
+
+/// Frames taken out, doubled, or brought in from another run are seen: each carries its number and its run.
+#[test]
+fn frames_taken_out_doubled_or_foreign_are_seen() {
+    let bytes = unfinished();
+    let ends = frame_ends(&bytes);
+    let without = [&bytes[..ends[2]], &bytes[ends[3]..]].concat();
+    let archive = Archive::from_bytes(without).unwrap();
+    assert_eq!(archive.entries().len(), 2);
+    assert!(archive.warnings().contains(&ArchiveWarning::MissingFrames { count: 1, offset: ends[2] as u64 }));
+
+    let doubled = [&bytes[..], &bytes[ends[3]..]].concat();
+    let archive = Archive::from_bytes(doubled).unwrap();
+    assert_eq!(archive.entries().len(), 3);
+    assert!(archive.is_damaged());
+
+    let other = finished();
+    let foreign = [&bytes[..], &other[frame_ends(&other)[0]..frame_ends(&other)[1]]].concat();
+    let archive = Archive::from_bytes(foreign).unwrap();
+    assert_eq!(archive.entries().len(), 3);
+    assert!(archive.is_damaged());
+}
+
+/// Files of other kinds are foreign, and text is not taken for an archive.
+#[test]
+fn other_files_are_foreign() {
+    for bytes in [b"let x = 1;".to_vec(), b"PK\x03\x04".to_vec(), vec![0; 4096]] {
+        assert!(matches!(Archive::from_bytes(bytes), Err(ArchiveError::Foreign { .. })));
+    }
+    let folder = tempfile::tempdir().unwrap();
+    assert!(Archive::open(folder.path()).is_err());
+    assert!(matches!(
+        Archive::open(&folder.path().join("none.epiloom")),
+        Err(ArchiveError::Io { action: "open", .. })
+    ));
+}
+
+fn resealed_start(version: u32) -> Vec<u8> {
+    let mut bytes = finished();
+    bytes[8..12].copy_from_slice(&version.to_le_bytes());
+    let sum = digest(&bytes[..16]);
+    bytes[16..32].copy_from_slice(&sum);
+    bytes
+}
+
+/// A later container, kind or schema is named with both numbers and not guessed at.
+#[test]
+fn newer_formats_are_refused_with_both_numbers() {
+    match Archive::from_bytes(resealed_start(9)) {
+        Err(ArchiveError::Newer { found: 9, known: 1, .. }) => {}
+        other => panic!("{other:?}"),
+    }
+    let bytes = unfinished();
+    let at = frame_ends(&bytes)[1];
+    let header = Header::from_bytes(bytes[at..at + HEADER_LENGTH].try_into().unwrap()).unwrap();
+    for changed in [Header { schema: 2, ..header.clone() }, Header { kind: 77, ..header }] {
+        let mut newer = bytes.clone();
+        newer[at..at + HEADER_LENGTH].copy_from_slice(&changed.to_bytes());
+        assert!(matches!(Archive::from_bytes(newer), Err(ArchiveError::Newer { .. })));
+    }
+}
+
+/// Lengths that were sealed by an attacker must neither allocate nor overflow: the file is a few kilobytes.
+#[test]
+fn sealed_hostile_lengths_are_refused() {
+    let bytes = unfinished();
+    let at = frame_ends(&bytes)[1];
+    let header = Header::from_bytes(bytes[at..at + HEADER_LENGTH].try_into().unwrap()).unwrap();
+    for big in [1 << 40, u64::MAX / 8, u64::MAX - 7, u64::MAX] {
+        for changed in [
+            Header { payload: big, ..header.clone() },
+            Header { numbers: big, ..header.clone() },
+            Header { payload: big, numbers: big, ..header.clone() },
+            Header { label: u32::MAX, ..header.clone() },
+            Header { ordinal: big, ..header.clone() },
+        ] {
+            let mut hostile = bytes.clone();
+            hostile[at..at + HEADER_LENGTH].copy_from_slice(&changed.to_bytes());
+            let (read, _) = check(hostile.clone(), "hostile header");
+            assert!(read.len() <= 3);
+            assert!(Archive::from_bytes(hostile).map_or(true, |archive| archive.is_damaged()));
+        }
+    }
+}
+
+/// A sealed frame whose payload claims a vector of 2^60 entries, or leaves bytes over, is damaged.
+#[test]
+fn sealed_hostile_payloads_are_refused() {
+    let run = sections(Kind::Run, "run", &sample::run()).unwrap();
+    let id = run.body_digest();
+    let start = [&start_bytes()[..], &run.frame(&run.header(0, id))].concat();
+    let claim = (1_u64 << 60, [0_u8; 32]);
+    let trailing = (sample::run(), 1_u8);
+    let hostile =
+        [sections(Kind::Run, "claim", &claim).unwrap(), sections(Kind::Run, "trailing", &trailing).unwrap()];
+    for made in hostile {
+        let bytes = [&start[..], &made.frame(&made.header(1, id))].concat();
+        let archive = Archive::from_bytes(bytes).unwrap();
+        assert!(archive.is_damaged());
+        assert_eq!(archive.run().unwrap(), &sample::run());
+    }
+}
+
+/// An index that points outside, or to another snapshot than it names, gives an error, never that snapshot.
+#[test]
+fn a_lying_index_gives_errors() {
+    let bytes = finished();
+    let at = bytes.len() - FOOTER_LENGTH;
+    let footer = Footer::from_bytes(bytes[at..].try_into().unwrap()).unwrap();
+    let archive = Archive::from_bytes(bytes.clone()).unwrap();
+    let honest: Vec<IndexEntry> = archive
+        .entries()
+        .iter()
+        .map(|entry| IndexEntry {
+            label: entry.label.clone(),
+            offset: entry.offset,
+            length: entry.length,
+            header_digest: entry.header_digest,
+        })
+        .collect();
+    let run = Header::from_bytes(bytes[START_LENGTH..START_LENGTH + HEADER_LENGTH].try_into().unwrap())
+        .unwrap()
+        .run;
+    let with = |entries: Vec<IndexEntry>| {
+        let made = sections(Kind::Index, "index", &Index { entries: entries.clone() }).unwrap();
+        let header = made.header(4, run);
+        let mut lying = bytes[..footer.index as usize].to_vec();
+        lying.extend(made.frame(&header));
+        let end = Footer {
+            index: footer.index,
+            length: (lying.len() + FOOTER_LENGTH) as u64,
+            snapshots: entries.len() as u64,
+            index_digest: header.own_digest(),
+        };
+        lying.extend(end.to_bytes());
+        lying
+    };
+    assert_eq!(check(with(honest.clone()), "honest").0.len(), 3);
+    let mut swapped = honest.clone();
+    swapped[0].label.name = "dark J-V".to_owned();
+    let archive = Archive::from_bytes(with(swapped)).unwrap();
+    assert!(matches!(archive.snapshot_at(0), Err(ArchiveError::DamagedSnapshot { .. })));
+    for offset in [0, 31, footer.index - 1, u64::MAX - 3, u64::MAX] {
+        let mut outside = honest.clone();
+        outside[1].offset = offset;
+        let (_, reported) = check(with(outside), "outside");
+        assert!(reported, "offset {offset}");
+    }
+}
