@@ -123,7 +123,7 @@ def main():
             out.write(f"    {float(c)!r},\n")
         out.write("];\n")
         out.write(f"/// `ln(F(eta)) - eta` on [{float(START)!r}, {float(end)!r}].\n")
-        out.write("pub(super) static LN_GAMMA: Piecewise = Piecewise {\n")
+        out.write("pub(super) const LN_GAMMA: Piecewise = Piecewise {\n")
         out.write(f"    start: {float(START)!r},\n    inverse_step: {float(1 / STEP)!r},\n    step: {float(STEP)!r},\n")
         out.write("    coefficients: &COEFFICIENTS,\n};\n\n")
         out.write("#[rustfmt::skip]\n")

@@ -22,7 +22,7 @@ pub(super) const SOMMERFELD: [f64; 10] = [
     1262839711277119.0,
 ];
 /// `ln(F(eta)) - eta` on [-36.0, 36.0].
-pub(super) static LN_GAMMA: Piecewise =
+pub(super) const LN_GAMMA: Piecewise =
     Piecewise { start: -36.0, inverse_step: 4.0, step: 0.25, coefficients: &COEFFICIENTS };
 
 #[rustfmt::skip]

@@ -14,6 +14,9 @@ pub struct Piecewise {
     pub coefficients: &'static [[f64; Piecewise::TERMS]],
 }
 
+// The sums below split an odd number of terms into even and odd powers.
+const _: () = assert!(Piecewise::TERMS % 2 == 1);
+
 impl Piecewise {
     /// Coefficients per interval.
     pub const TERMS: usize = 9;
@@ -37,19 +40,34 @@ impl Piecewise {
         (&self.coefficients[cell], x - centre)
     }
 
-    /// Taylor coefficients of orders `0..ORDERS` at `x` (derivatives over factorials), by repeated Horner schemes.
+    /// Derivatives over factorials at `x`, of the value and of as many orders as `ORDERS` says (at most 3 in all).
+    ///
+    /// The even and the odd powers are summed apart, as polynomials in the square of the local variable, by Horner
+    /// schemes that also give their derivatives: half the length of the chain of dependent operations.
     #[inline(always)]
-    fn taylor<const ORDERS: usize>(&self, x: f64) -> [f64; ORDERS] {
+    fn taylor<const ORDERS: usize>(&self, x: f64) -> [f64; 3] {
         let (c, t) = self.locate(x);
-        let mut sums = [0.0; ORDERS];
-        sums[0] = c[Self::TERMS - 1];
-        for k in (0..Self::TERMS - 1).rev() {
+        let u = t * t;
+        let (mut even, mut odd) = ([0.0; 3], [0.0; 3]);
+        even[0] = c[Self::TERMS - 1];
+        odd[0] = c[Self::TERMS - 2];
+        for pair in (0..Self::TERMS / 2).rev() {
             for j in (1..ORDERS).rev() {
-                sums[j] = sums[j] * t + sums[j - 1];
+                even[j] = even[j] * u + even[j - 1];
             }
-            sums[0] = sums[0] * t + c[k];
+            even[0] = even[0] * u + c[2 * pair];
         }
-        sums
+        for pair in (0..Self::TERMS / 2 - 1).rev() {
+            for j in (1..ORDERS).rev() {
+                odd[j] = odd[j] * u + odd[j - 1];
+            }
+            odd[0] = odd[0] * u + c[2 * pair + 1];
+        }
+        // P(t) = E(u) + t O(u) and its derivatives in t.
+        let value = even[0] + t * odd[0];
+        let slope = odd[0] + 2.0 * (t * even[1] + u * odd[1]);
+        let half_curvature = even[1] + 4.0 * u * even[2] + t * (3.0 * odd[1] + 4.0 * u * odd[2]);
+        [value, slope, half_curvature]
     }
 
     /// The derivative of order `order` at `x`; beyond the domain that of the domain's end; NaN for NaN.
@@ -68,7 +86,7 @@ impl Piecewise {
     pub fn evaluate_pair(&self, x: f64, order: usize) -> (f64, f64) {
         match order {
             0 => {
-                let [value, slope] = self.taylor::<2>(x);
+                let [value, slope, _] = self.taylor::<2>(x);
                 (value, slope)
             }
             1 => {
