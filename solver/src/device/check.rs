@@ -2,7 +2,7 @@
 
 use std::collections::BTreeSet;
 
-use crate::materials::{Material, TEMPERATURE_LIMITS};
+use crate::materials::{Material, OpticalConstants, TEMPERATURE_LIMITS};
 use crate::math::Scalar;
 use crate::optics::Reflectance;
 
@@ -20,7 +20,7 @@ pub const HIGHEST_VELOCITY: f64 = 1e12;
 pub const ACCURACY_LIMITS: (f64, f64) = (1e-9, 1e-1);
 /// Most layers in a stack.
 pub const MOST_LAYERS: usize = 1000;
-/// Most points of a table.
+/// Wavelengths of tables, m.
 const WAVELENGTH_LIMITS: (f64, f64) = (1e-9, 1e-3);
 
 struct Checker {
@@ -117,7 +117,25 @@ impl Checker {
                 });
             }
         }
+        if let Some(own) = &layer.material.optical {
+            self.constants(&place, "optical table", own);
+        }
         self.material(layer, temperature);
+    }
+
+    fn constants(&mut self, place: &Place, word: &'static str, constants: &OpticalConstants) {
+        if !self.table(place, word, &constants.wavelength, &[&constants.n, &constants.k]) {
+            return;
+        }
+        for (quantity, column, limits, unit) in [
+            ("wavelength", &constants.wavelength, WAVELENGTH_LIMITS, "m"),
+            ("n", &constants.n, (1e-3, 100.0), ""),
+            ("k", &constants.k, (0.0, 100.0), ""),
+        ] {
+            if let Some(bad) = column.iter().find(|v| **v < limits.0 || **v > limits.1) {
+                self.range(place, quantity, *bad, limits, unit);
+            }
+        }
     }
 
     fn material<P: Scalar>(&mut self, layer: &Layer<P>, temperature: P) {
@@ -182,14 +200,7 @@ impl Checker {
                     } else {
                         self.range(&place, "thickness", film.thickness, (1e-11, 1e-4), "m");
                     }
-                    self.table(&place, "coating", &constants.wavelength, &[&constants.n, &constants.k]);
-                    for (quantity, column, limits) in
-                        [("n", &constants.n, (1e-3, 100.0)), ("k", &constants.k, (0.0, 100.0))]
-                    {
-                        if let Some(bad) = column.iter().find(|v| **v < limits.0 || **v > limits.1) {
-                            self.range(&place, quantity, *bad, limits, "");
-                        }
-                    }
+                    self.constants(&place, "coating", constants);
                 }
             }
         }

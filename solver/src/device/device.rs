@@ -1,11 +1,11 @@
 //! A stack that has passed every check.
 
-use crate::materials::{MaterialBase, Origin, Parameter};
+use crate::materials::{AbsorptionBasis, MaterialBase, Origin, Parameter};
 use crate::math::Scalar;
 
 use super::check::same_substance;
 use super::fault::{Fault, Warning};
-use super::stack::{Layer, Stack};
+use super::stack::{Layer, LayerOptics, Stack};
 
 /// A valid stack: its materials can be evaluated everywhere, its numbers are within their limits.
 #[derive(Clone, Debug)]
@@ -60,6 +60,23 @@ impl<P: Scalar> Device<P> {
                 electron: values.electron_lifetime.value(),
                 hole: values.hole_lifetime.value(),
             });
+        }
+        if layer.optics == LayerOptics::Absorbing {
+            match layer.material.absorption_basis(x) {
+                (AbsorptionBasis::BetweenTables { compositions }, _, _) => {
+                    warnings.push(Warning::BetweenTables {
+                        layer: layer.name.clone(),
+                        material: material.clone(),
+                        compositions,
+                    });
+                }
+                (AbsorptionBasis::Model, _, source_text) => warnings.push(Warning::ModelAbsorption {
+                    layer: layer.name.clone(),
+                    material: material.clone(),
+                    source_text,
+                }),
+                _ => {}
+            }
         }
         for p in &provenance {
             let worth_saying = matches!(p.parameter, Parameter::ElectronMobility | Parameter::HoleMobility);

@@ -210,4 +210,28 @@ pub enum Warning {
         /// The source.
         source_text: &'static str,
     },
+    /// Absorption between two tables.
+    #[error(
+        "layer `{layer}`: the absorption of {material} is taken from the tables at x = {compositions:?}, moved to its gap"
+    )]
+    BetweenTables {
+        /// The layer.
+        layer: String,
+        /// Its material.
+        material: String,
+        /// Compositions of the tables.
+        compositions: Vec<f64>,
+    },
+    /// Absorption from a model for want of a table.
+    #[error(
+        "layer `{layer}`: the absorption of {material} is a stated model, not a measurement: {source_text}"
+    )]
+    ModelAbsorption {
+        /// The layer.
+        layer: String,
+        /// Its material.
+        material: String,
+        /// The model.
+        source_text: String,
+    },
 }

@@ -1,9 +1,11 @@
 //! What a material is to the floors above: where its values come from, and what the script overrides.
 
 use std::collections::BTreeMap;
+use std::sync::Arc;
 
 use crate::math::Scalar;
 
+use super::optical::OpticalConstants;
 use super::parameter::Parameter;
 
 /// Where a material's values come from.
@@ -24,6 +26,8 @@ pub struct Material<P = f64> {
     pub composition: Option<P>,
     /// Values set by the script, SI units; they replace the library's.
     pub overrides: BTreeMap<Parameter, P>,
+    /// The script's own table of optical constants, used as it stands at every temperature instead of the library's.
+    pub optical: Option<Arc<OpticalConstants>>,
 }
 
 /// All electronic values of a material at one place, SI units (energies in J).
@@ -123,10 +127,20 @@ impl<P> Material<P> {
 impl<P: Scalar> Material<P> {
     /// A library material without overrides.
     pub fn library(name: &str, composition: Option<P>) -> Self {
-        Material { base: MaterialBase::Library(name.to_string()), composition, overrides: BTreeMap::new() }
+        Material {
+            base: MaterialBase::Library(name.to_string()),
+            composition,
+            overrides: BTreeMap::new(),
+            optical: None,
+        }
     }
     /// A custom material on its own values.
     pub fn custom(name: &str, values: BTreeMap<Parameter, P>) -> Self {
-        Material { base: MaterialBase::Custom(name.to_string()), composition: None, overrides: values }
+        Material {
+            base: MaterialBase::Custom(name.to_string()),
+            composition: None,
+            overrides: values,
+            optical: None,
+        }
     }
 }

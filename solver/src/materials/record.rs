@@ -114,7 +114,10 @@ impl OpticalModel {
                 "D. E. Aspnes, S. M. Kelso, R. A. Logan and R. Bhat, J. Appl. Phys. 60, 754 (1986): the two nearest compositions, \
                  each shifted to the gap wanted, weighted; analytic edge below"
             }
-            OpticalModel::GaInP => "M. Schubert et al., J. Appl. Phys. 77, 3416 (1995); zero below its gap",
+            OpticalModel::GaInP => {
+                "M. Schubert et al., J. Appl. Phys. 77, 3416 (1995), an ordered sample of gap 1.87 eV, moved to the gap of the layer; an \
+                 Urbach tail of 7 meV below"
+            }
             OpticalModel::AlInP => {
                 "illustrative model: GaInP's table shifted to AlInP's direct gap, with a weak indirect tail below"
             }

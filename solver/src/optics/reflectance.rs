@@ -2,20 +2,7 @@
 
 use std::sync::Arc;
 
-/// Refractive index and extinction coefficient against vacuum wavelength.
-#[derive(Clone, Debug)]
-pub struct OpticalConstants {
-    /// Name of the substance.
-    pub name: String,
-    /// Where the table is from.
-    pub source: String,
-    /// Vacuum wavelengths, m, increasing: `[wavelengths]`.
-    pub wavelength: Vec<f64>,
-    /// Refractive index: `[wavelengths]`.
-    pub n: Vec<f64>,
-    /// Extinction coefficient: `[wavelengths]`.
-    pub k: Vec<f64>,
-}
+pub use crate::materials::OpticalConstants;
 
 /// One film of a coating.
 #[derive(Clone, Debug)]

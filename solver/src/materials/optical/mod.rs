@@ -1,0 +1,231 @@
+//! How strongly a material absorbs, and its refractive index: tables moved to the gap wanted, analytic edges, single numbers.
+
+mod constants;
+mod models;
+mod table;
+#[cfg(test)]
+mod tests;
+
+use std::sync::Arc;
+
+use crate::math::Scalar;
+use crate::quantity::constants::{ELEMENTARY_CHARGE, LIGHT_SPEED, PLANCK};
+
+use super::material::{Material, MaterialBase, MaterialError};
+use super::parameter::Parameter;
+use super::record::{OpticalModel, Origin};
+
+pub use constants::OpticalConstants;
+use table::Table;
+
+/// Photon energy in eV times vacuum wavelength in m.
+pub(crate) const ENERGY_TIMES_WAVELENGTH: f64 = PLANCK * LIGHT_SPEED / ELEMENTARY_CHARGE;
+
+/// An absorption coefficient at one wavelength.
+#[derive(Clone, Copy, Debug, PartialEq)]
+pub struct Absorption<P> {
+    /// The coefficient, m^-1; 0 where it is not known.
+    pub coefficient: P,
+    /// Whether the material's data cover the wavelength.
+    pub covered: bool,
+}
+
+/// A complex refractive index at one wavelength.
+#[derive(Clone, Copy, Debug, PartialEq)]
+pub struct Refraction<P> {
+    /// Refractive index; beyond the table's ends its end value.
+    pub n: P,
+    /// Extinction coefficient.
+    pub k: P,
+    /// Whether the table of refractive indices covers the wavelength.
+    pub covered: bool,
+}
+
+/// What an absorption coefficient rests on.
+#[derive(Clone, Debug, PartialEq)]
+pub enum AbsorptionBasis {
+    /// One number set by the script (or the default 0 of a custom material).
+    Number,
+    /// A table of the script's.
+    OwnTable,
+    /// A published table, with a stated edge where it has none.
+    Table,
+    /// Two tables of neighbouring compositions (one beyond the last), moved to the gap wanted and mixed.
+    BetweenTables {
+        /// Composition of the tables used.
+        compositions: Vec<f64>,
+    },
+    /// A stated model for want of a table.
+    Model,
+}
+
+/// A table moved in energy, with its share.
+#[derive(Clone, Debug)]
+struct Shifted<P> {
+    table: Arc<Table>,
+    /// eV.
+    shift: P,
+    share: P,
+}
+
+/// Absorption growing with the square of the energy above an indirect edge.
+#[derive(Clone, Debug)]
+struct IndirectTail<P> {
+    /// m^-1 eV^-2.
+    strength: f64,
+    /// eV.
+    edge: P,
+}
+
+/// A material's absorption at one place and temperature, ready for any wavelength.
+#[derive(Clone, Debug)]
+pub struct Absorber<P> {
+    number: Option<P>,
+    /// eV.
+    gap: P,
+    tables: Vec<Shifted<P>>,
+    tail: Option<IndirectTail<P>>,
+}
+
+impl<P: Scalar> Absorber<P> {
+    /// The absorption coefficient at a vacuum wavelength, m.
+    ///
+    /// A single number acts at photon energies from the gap up. Outside its table a material is taken as transparent and
+    /// the wavelength as not covered; below an analytic edge it is transparent and covered.
+    pub fn at(&self, wavelength: f64) -> Absorption<P> {
+        self.evaluate(wavelength, &mut [0, 0])
+    }
+
+    /// The same at many vacuum wavelengths, m; fastest where they increase or decrease.
+    pub fn spectrum(&self, wavelengths: &[f64]) -> Vec<Absorption<P>> {
+        let mut hints = [0, 0];
+        wavelengths.iter().map(|&w| self.evaluate(w, &mut hints)).collect()
+    }
+
+    fn evaluate(&self, wavelength: f64, hints: &mut [usize; 2]) -> Absorption<P> {
+        let zero = P::constant(0.0);
+        let energy = ENERGY_TIMES_WAVELENGTH / wavelength;
+        if let Some(number) = self.number {
+            let coefficient = if energy >= self.gap.value() { number } else { zero };
+            return Absorption { coefficient, covered: true };
+        }
+        let covered = self.tables.iter().all(|t| t.table.covers(wavelength));
+        if !covered || self.tables.is_empty() {
+            return Absorption { coefficient: zero, covered: false };
+        }
+        let mut sum = zero;
+        for (shifted, hint) in self.tables.iter().zip(hints) {
+            sum = sum + shifted.table.coefficient(-shifted.shift + energy, hint) * shifted.share;
+        }
+        if let Some(tail) = &self.tail {
+            let above = (-tail.edge + energy).max(zero);
+            sum = sum + above * above * tail.strength;
+        }
+        Absorption { coefficient: sum, covered }
+    }
+
+    /// Refractive index and extinction coefficient at a vacuum wavelength, m; `None` without a table.
+    pub fn refraction(&self, wavelength: f64) -> Option<Refraction<P>> {
+        if self.tables.is_empty() {
+            return None;
+        }
+        let energy = ENERGY_TIMES_WAVELENGTH / wavelength;
+        let mut n = P::constant(0.0);
+        for shifted in &self.tables {
+            n = n + shifted.table.index(-shifted.shift + energy)? * shifted.share;
+        }
+        let k = self.at(wavelength).coefficient * (wavelength / (4.0 * std::f64::consts::PI));
+        let covered = self.tables.iter().all(|t| t.table.index_covers(wavelength));
+        Some(Refraction { n, k, covered })
+    }
+}
+
+impl<P: Scalar> Material<P> {
+    /// The material's absorption at one place: composition there if the layer grades it, temperature in K.
+    ///
+    /// An `absorption` set by the script goes before its table, its table before the library's. Library tables move with
+    /// the gap: with temperature, composition and a `gap` set by the script.
+    ///
+    /// # Errors
+    /// As [`Material::values`].
+    pub fn absorber(&self, x: Option<P>, temperature: P) -> Result<Absorber<P>, MaterialError> {
+        let values = self.values(x, temperature, P::constant(0.0))?;
+        let gap = values.gap * (1.0 / ELEMENTARY_CHARGE);
+        let zero = P::constant(0.0);
+        let mut number = self.overrides.get(&Parameter::Absorption).copied();
+        let (mut tables, mut tail) = (Vec::new(), None);
+        match (&self.optical, &self.base) {
+            (Some(own), _) => {
+                let table = Arc::new(Table::from_constants(own));
+                tables.push(Shifted { table, shift: zero, share: P::constant(1.0) });
+            }
+            (None, MaterialBase::Library(_)) => {
+                let (record, x) = self.record(x)?;
+                let moved = match self.overrides.get(&Parameter::Gap) {
+                    Some(gap) => *gap * (1.0 / ELEMENTARY_CHARGE) - record.bands(x, temperature).gap,
+                    None => zero,
+                };
+                (tables, tail) = models::tables(record, x, temperature, moved);
+            }
+            (None, MaterialBase::Custom(_)) => number = number.or(Some(zero)),
+        }
+        Ok(Absorber { number, gap, tables, tail })
+    }
+
+    /// The absorption coefficient at a vacuum wavelength, m; see [`Material::absorber`], which serves many wavelengths.
+    ///
+    /// # Errors
+    /// As [`Material::values`].
+    pub fn absorption(
+        &self,
+        x: Option<P>,
+        temperature: P,
+        wavelength: f64,
+    ) -> Result<Absorption<P>, MaterialError> {
+        Ok(self.absorber(x, temperature)?.at(wavelength))
+    }
+
+    /// Refractive index and extinction coefficient at a vacuum wavelength, m; `None` for a material without a table.
+    ///
+    /// # Errors
+    /// As [`Material::values`].
+    pub fn refraction(
+        &self,
+        x: Option<P>,
+        temperature: P,
+        wavelength: f64,
+    ) -> Result<Option<Refraction<P>>, MaterialError> {
+        Ok(self.absorber(x, temperature)?.refraction(wavelength))
+    }
+
+    /// What the absorption rests on, with its source for a person.
+    pub fn absorption_basis(&self, x: Option<P>) -> (AbsorptionBasis, Origin, String) {
+        if self.overrides.contains_key(&Parameter::Absorption) {
+            return (AbsorptionBasis::Number, Origin::Script, "set by the script".to_string());
+        }
+        if let Some(own) = &self.optical {
+            return (AbsorptionBasis::OwnTable, Origin::Script, own.source.clone());
+        }
+        match self.record(x) {
+            Ok((record, x)) => {
+                let source = record.optics.source().to_string();
+                match record.optics {
+                    OpticalModel::AlInP | OpticalModel::GaInAs => {
+                        (AbsorptionBasis::Model, Origin::Illustrative, source)
+                    }
+                    OpticalModel::AlGaAs => {
+                        let compositions = models::compositions(x.value());
+                        match compositions.len() {
+                            1 if compositions[0] == x.value() => {
+                                (AbsorptionBasis::Table, Origin::Published, source)
+                            }
+                            _ => (AbsorptionBasis::BetweenTables { compositions }, Origin::Published, source),
+                        }
+                    }
+                    _ => (AbsorptionBasis::Table, Origin::Published, source),
+                }
+            }
+            Err(_) => (AbsorptionBasis::Number, Origin::Script, "not set: transparent".to_string()),
+        }
+    }
+}

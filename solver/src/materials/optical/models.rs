@@ -1,0 +1,172 @@
+//! Which table serves which material, and where its edge lies.
+
+use std::sync::{Arc, OnceLock};
+
+use crate::math::{Num, Scalar};
+
+use super::super::record::{OpticalModel, Record};
+use super::table::{Edge, Table};
+use super::{IndirectTail, OpticalConstants, Shifted};
+
+/// Slope of the Urbach tail of a direct edge, eV. From memory: about 7 meV in GaAs at room temperature.
+const URBACH: f64 = 7e-3;
+/// Absorption at a direct gap of a GaAs-like material, m^-1. From memory: about 8000 cm^-1 in GaAs.
+const AT_GAP: f64 = 8e5;
+
+/// The direct gap of AlGaAs rises faster than linearly above x = 0.45, by this times (x - 0.45)^2, eV.
+/// H. C. Casey and M. B. Panish, Heterostructure Lasers (1978), from memory; it agrees with the onsets of the tables.
+const STEEPER: (f64, f64) = (1.147, 0.45);
+
+/// Strength of AlInP's indirect absorption, m^-1 eV^-2: illustrative, 1000 cm^-1 at 0.32 eV above the edge.
+const INDIRECT: f64 = 1e6;
+
+struct Tables {
+    gaas: Arc<Table>,
+    /// Composition, direct gap of the sample, table.
+    algaas: Vec<(f64, f64, Arc<Table>)>,
+    gainp: Arc<Table>,
+    inp: Arc<Table>,
+    gainas: Arc<Table>,
+    si: Arc<Table>,
+    ge: Arc<Table>,
+}
+
+/// Direct gaps of the samples and of tables at about 300 K, eV.
+const GAAS_GAP: f64 = 1.42248;
+const INP_GAP: f64 = 1.35067;
+const GAINP_GAP: f64 = 1.8699;
+const GAINAS_GAP: f64 = 0.748;
+const SI_GAP: f64 = 1.12452;
+const GE_GAP: f64 = 0.66339;
+
+macro_rules! data {
+    ($file:literal) => {
+        include_str!(concat!("../data/", $file))
+    };
+}
+
+const ALGAAS: [(f64, &str); 8] = [
+    (0.099, data!("algaas_0099_aspnes.csv")),
+    (0.198, data!("algaas_0198_aspnes.csv")),
+    (0.315, data!("algaas_0315_aspnes.csv")),
+    (0.419, data!("algaas_0419_aspnes.csv")),
+    (0.491, data!("algaas_0491_aspnes.csv")),
+    (0.590, data!("algaas_0590_aspnes.csv")),
+    (0.700, data!("algaas_0700_aspnes.csv")),
+    (0.804, data!("algaas_0804_aspnes.csv")),
+];
+
+/// Every data file with the number of rows it holds.
+#[cfg(test)]
+pub(super) const FILES: [(&str, &str); 6] = [
+    ("GaAs", data!("gaas_jellison.csv")),
+    ("InP", data!("inp_aspnes.csv")),
+    ("GaInP", data!("gainp_schubert.csv")),
+    ("InGaAs", data!("ingaas_adachi.csv")),
+    ("Si", data!("si_green.csv")),
+    ("Ge", data!("ge_nunley.csv")),
+];
+#[cfg(test)]
+pub(super) const ALLOYS: [(f64, &str); 8] = ALGAAS;
+
+/// Direct gap of the samples of the AlGaAs tables, eV: the law given with them, D. E. Aspnes et al., J. Appl. Phys. 60, 754
+/// (1986), from memory; it agrees with the onsets of the tables.
+fn sample_gap(x: f64) -> f64 {
+    1.424 + 1.594 * x + x * (1.0 - x) * (0.127 - 1.310 * x)
+}
+
+fn all() -> &'static Tables {
+    static TABLES: OnceLock<Tables> = OnceLock::new();
+    TABLES.get_or_init(|| {
+        let plain =
+            |name: &str, text: &str| Arc::new(Table::from_constants(&OpticalConstants::parse(name, text)));
+        let edged = |name: &str, text: &str, gap: f64, at_gap: f64, join: f64| {
+            let edge = Edge { gap, at_gap, join, urbach: URBACH };
+            Arc::new(Table::with_edge(&OpticalConstants::parse(name, text), edge))
+        };
+        Tables {
+            gaas: edged("GaAs", data!("gaas_jellison.csv"), GAAS_GAP, AT_GAP, 1.484),
+            algaas: ALGAAS
+                .iter()
+                .map(|&(x, text)| {
+                    let gap = sample_gap(x);
+                    (x, gap, edged("AlGaAs", text, gap, AT_GAP, gap + 0.015))
+                })
+                .collect(),
+            gainp: edged("GaInP", data!("gainp_schubert.csv"), GAINP_GAP, 8.17e5, 1.875),
+            inp: edged("InP", data!("inp_aspnes.csv"), INP_GAP, AT_GAP, 1.499),
+            gainas: edged("GaInAs", data!("ingaas_adachi.csv"), GAINAS_GAP, 4.5e5, 0.81),
+            si: plain("Si", data!("si_green.csv")),
+            ge: plain("Ge", data!("ge_nunley.csv")),
+        }
+    })
+}
+
+/// The direct gap that AlGaAs's absorption edge sits at, eV.
+fn optical_gap<P: Num>(record: &Record, x: P, temperature: P) -> P {
+    let above = (x - STEEPER.1).max(P::constant(0.0));
+    record.minima.law[0].valley.energy(x, temperature) + above * above * STEEPER.0
+}
+
+/// Compositions of the AlGaAs tables that serve a composition.
+pub(super) fn compositions(x: f64) -> Vec<f64> {
+    let tables = all();
+    let grid: Vec<f64> = std::iter::once(0.0).chain(tables.algaas.iter().map(|t| t.0)).collect();
+    let above = grid.partition_point(|g| *g < x);
+    match (grid.get(above), above.checked_sub(1).and_then(|i| grid.get(i))) {
+        (Some(&here), _) if here == x => vec![here],
+        (Some(&upper), Some(&lower)) => vec![lower, upper],
+        (_, lower) => lower.copied().into_iter().collect(),
+    }
+}
+
+/// The tables of a material at a composition and temperature, and an indirect tail; `moved` is what the script moved the gap by, eV.
+pub(super) fn tables<P: Scalar>(
+    record: &Record,
+    x: P,
+    temperature: P,
+    moved: P,
+) -> (Vec<Shifted<P>>, Option<IndirectTail<P>>) {
+    let tables = all();
+    let gap = record.bands(x, temperature).gap + moved;
+    let whole = P::constant(1.0);
+    let one = |table: &Arc<Table>, own: f64, gap: P| {
+        vec![Shifted { table: table.clone(), shift: gap - own, share: whole }]
+    };
+    match record.optics {
+        OpticalModel::GaAs => (one(&tables.gaas, GAAS_GAP, gap), None),
+        OpticalModel::InP => (one(&tables.inp, INP_GAP, gap), None),
+        OpticalModel::GaInP => (one(&tables.gainp, GAINP_GAP, gap), None),
+        OpticalModel::GaInAs => (one(&tables.gainas, GAINAS_GAP, gap), None),
+        OpticalModel::Si => (one(&tables.si, SI_GAP, gap), None),
+        OpticalModel::Ge => (one(&tables.ge, GE_GAP, gap), None),
+        OpticalModel::AlInP => {
+            let direct = record.minima.law[0].valley.energy(x, temperature) + moved;
+            (one(&tables.gainp, GAINP_GAP, direct), Some(IndirectTail { strength: INDIRECT, edge: gap }))
+        }
+        OpticalModel::AlGaAs => {
+            let direct = optical_gap(record, x, temperature) + moved;
+            let at = |composition: f64| match tables.algaas.iter().find(|t| t.0 == composition) {
+                Some((_, own, table)) => (table, *own),
+                None => (&tables.gaas, GAAS_GAP),
+            };
+            let used = compositions(x.value());
+            let shares = match used.as_slice() {
+                [lower, upper] => {
+                    let share = (x - *lower) * (1.0 / (upper - lower));
+                    vec![-share + 1.0, share]
+                }
+                _ => vec![whole; used.len()],
+            };
+            let moved_tables = used
+                .iter()
+                .zip(shares)
+                .map(|(&composition, share)| {
+                    let (table, own) = at(composition);
+                    Shifted { table: table.clone(), shift: direct - own, share }
+                })
+                .collect();
+            (moved_tables, None)
+        }
+    }
+}
