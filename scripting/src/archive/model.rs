@@ -75,6 +75,13 @@ record! {
     }
 }
 
+impl DataFile {
+    /// The digest and length of these bytes.
+    pub fn of(bytes: &[u8]) -> Self {
+        DataFile { blake3: blake3::hash(bytes).to_hex().to_string(), length: bytes.len() as u64 }
+    }
+}
+
 /// A setting: a number with its unit, a text, or yes and no.
 #[derive(Clone, Debug, PartialEq, Serialize, Deserialize)]
 pub enum Value {

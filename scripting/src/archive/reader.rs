@@ -179,11 +179,12 @@ impl Archive {
     /// [`ArchiveError::NoWholeFrame`], [`ArchiveError::Io`].
     pub fn open(path: &Path) -> Result<Archive, ArchiveError> {
         let failed = |source| ArchiveError::Io { action: "open", path: path.to_owned(), source };
-        let file = File::open(path).map_err(failed)?;
-        let about = file.metadata().map_err(failed)?;
-        if !about.is_file() {
+        // Looked at before it is opened: opening a pipe would wait for somebody to write to it.
+        if !std::fs::metadata(path).map_err(failed)?.is_file() {
             return Err(ArchiveError::Foreign { path: path.to_owned() });
         }
+        let file = File::open(path).map_err(failed)?;
+        let about = file.metadata().map_err(failed)?;
         Self::from_source(Box::new(FileSource { file: Mutex::new(file), length: about.len() }), path)
     }
 
@@ -195,7 +196,7 @@ impl Archive {
         Self::from_source(Box::new(bytes), Path::new("(in memory)"))
     }
 
-    fn from_source(source: Box<dyn Source>, path: &Path) -> Result<Archive, ArchiveError> {
+    pub(crate) fn from_source(source: Box<dyn Source>, path: &Path) -> Result<Archive, ArchiveError> {
         let bytes = Bytes { source: &*source, path };
         let length = source.length();
         let magic = bytes.take(0, length.min(MAGIC.len() as u64))?;

@@ -66,6 +66,11 @@ impl Writer<'static> {
     /// # Errors
     /// [`ArchiveError::HeldByAnotherRun`] while another run writes there, [`ArchiveError::Io`].
     pub fn create(path: &Path, header: &RunHeader) -> Result<Self, ArchiveError> {
+        if path.is_dir() {
+            // Known now rather than when the run is over.
+            let source = std::io::ErrorKind::IsADirectory.into();
+            return Err(ArchiveError::Io { action: "write", path: path.to_owned(), source });
+        }
         Writer::create_in(&Disk, path, header)
     }
 }
@@ -163,6 +168,7 @@ impl<'a> Writer<'a> {
     /// Where it could not, and after a failed sync, every later call is [`ArchiveError::WriterBroken`]; the
     /// snapshots stored before stay readable in the unfinished file.
     pub fn append(&mut self, snapshot: &Snapshot) -> Result<(), ArchiveError> {
+        self.check()?;
         if self.names.contains(snapshot.name()) {
             return Err(ArchiveError::NameTaken { name: snapshot.name().to_owned() });
         }
@@ -345,7 +351,7 @@ fn claim(
 /// Whether there is more in the file than the description of a run that stored nothing.
 fn holds_anything(file: &mut dyn StoredFile) -> std::io::Result<bool> {
     let length = file.length()?;
-    if length <= START_LENGTH as u64 {
+    if length == 0 {
         return Ok(false);
     }
     // A file of ours that holds no snapshot is small; a large one is kept without looking.

@@ -1,10 +1,15 @@
 //! What is read is what was written.
 
+use std::path::Path;
+use std::sync::Arc;
+use std::sync::atomic::{AtomicU64, Ordering};
+
 use proptest::prelude::*;
 
 use super::sample;
 use crate::archive::encoding::{decode_snapshot, snapshot_sections};
-use crate::archive::layout::{HEADER_LENGTH, Header};
+use crate::archive::layout::{HEADER_LENGTH, Header, MAGIC};
+use crate::archive::reader::Source;
 use crate::archive::*;
 
 /// The snapshots handed to the writer are the source of truth; bits are compared, so there is no tolerance.
@@ -74,6 +79,51 @@ fn comparing_names_the_number_that_moved() {
             "material value gap of GaAs in layer base, source",
         ]
     );
+}
+
+/// Bytes that count how many of them were read.
+#[derive(Debug)]
+struct Counted(Vec<u8>, Arc<AtomicU64>);
+
+impl Source for Counted {
+    fn length(&self) -> u64 {
+        self.0.length()
+    }
+
+    fn read_at(&self, offset: u64, buffer: &mut [u8]) -> std::io::Result<()> {
+        self.1.fetch_add(buffer.len() as u64, Ordering::Relaxed);
+        self.0.read_at(offset, buffer)
+    }
+}
+
+/// The layout's own sizes are the source of truth: opening one snapshot of many reads the start, the run, the
+/// index, the footer and that one frame.
+#[test]
+fn one_snapshot_of_many_is_read_without_the_others() {
+    let folder = tempfile::tempdir().unwrap();
+    let path = folder.path().join("many.epiloom");
+    let mut writer = Writer::create(&path, &sample::run()).unwrap().sync_every(1000);
+    for step in 0..100 {
+        writer.append(&sample::snapshot(&format!("point {step}"), step)).unwrap();
+    }
+    let bytes = std::fs::read(writer.finish(&sample::run()).unwrap()).unwrap();
+    let length = bytes.len() as u64;
+    let read = Arc::new(AtomicU64::new(0));
+    let archive = Archive::from_source(Box::new(Counted(bytes, read.clone())), Path::new("many")).unwrap();
+    let snapshots: u64 = archive.entries().iter().map(|entry| entry.length).sum();
+    let one = archive.snapshot("point 57").map(|_| archive.entries()[57].length).unwrap();
+    // The magic once more, and nothing else twice.
+    let most = length - snapshots + one + MAGIC.len() as u64;
+    assert!(read.load(Ordering::Relaxed) <= most, "{read:?} of {length}, {most} allowed");
+}
+
+/// Kept true by the compiler: runs and readers on several threads share them.
+#[test]
+fn writers_move_between_threads_and_readers_are_shared() {
+    fn moves<T: Send>() {}
+    fn shared<T: Send + Sync>() {}
+    moves::<Writer<'static>>();
+    shared::<Archive>();
 }
 
 fn numbers() -> impl Strategy<Value = f64> {

@@ -46,6 +46,19 @@ fn the_snapshots_of_a_killed_run_are_kept() {
     }
 }
 
+/// A folder in the way is told before anything is solved; somebody else's file is moved, not overwritten.
+#[test]
+fn what_stands_in_the_way_is_neither_overwritten_nor_found_too_late() {
+    let folder = tempfile::tempdir().unwrap();
+    assert!(matches!(Writer::create(folder.path(), &sample::run()), Err(ArchiveError::Io { .. })));
+    let nowhere = folder.path().join("none").join("run.epiloom");
+    assert!(matches!(Writer::create(&nowhere, &sample::run()), Err(ArchiveError::Io { .. })));
+    let path = folder.path().join("run.epiloom");
+    std::fs::write(unfinished_path(&path), "a note").unwrap();
+    let writer = Writer::create(&path, &sample::run()).unwrap();
+    assert_eq!(std::fs::read(writer.set_aside().unwrap()).unwrap(), b"a note");
+}
+
 /// A name is stored once; a ragged table is refused; neither harms what is there.
 #[test]
 fn refused_snapshots_leave_the_archive_as_it_was() {
