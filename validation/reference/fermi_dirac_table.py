@@ -5,7 +5,7 @@ Run from the root of the repository, with mpmath:
     python validation/reference/fermi_dirac_table.py
 
 The tabulated function is g(eta) = ln(F(eta)) - eta, F the Fermi-Dirac integral of order 1/2 normalised so that
-F -> exp(eta) for eta -> -infinity. On each interval the slope g' is interpolated at Chebyshev points and then
+F -> exp(eta) for eta -> -infinity. Half a step to either side of each centre the slope g' is interpolated at Chebyshev points and then
 integrated, so that the slope is as good as the value. Above the table, ln F follows Sommerfeld's expansion
 (A. Sommerfeld, Z. Phys. 47, 1 (1928)), turned here into a series of its logarithm in 1/eta^2.
 
@@ -17,7 +17,7 @@ exponentially because the integrand is analytic in a strip; a few values are com
 from mpmath import mp, mpf
 
 mp.dps = 50
-START, STEP, CELLS, TERMS = mpf(-36), mpf(1) / 4, 288, 9
+START, STEP, CENTRES, TERMS = mpf(-36), mpf(1) / 4, 289, 9
 SERIES_TERMS = 10
 
 
@@ -62,9 +62,9 @@ def log_gamma(eta):
     return mp.log(half) - eta, minus / half - 1
 
 
-def cell_coefficients(index):
-    """Power series about the interval's centre: value at the centre, then the integrated interpolant of g'."""
-    centre, half_width = START + (index + mpf(1) / 2) * STEP, STEP / 2
+def coefficients(index):
+    """Power series about a centre: value at the centre, then the integrated interpolant of g'."""
+    centre, half_width = START + index * STEP, STEP / 2
     n = TERMS - 1
     nodes = [half_width * mp.cos(mp.pi * (2 * i + 1) / (2 * n)) for i in range(n)]
     values = [log_gamma(centre + t)[1] for t in nodes]
@@ -102,7 +102,7 @@ def check_integrals():
 def main():
     check_integrals()
     series = sommerfeld_logarithm()
-    end = START + STEP * CELLS
+    end = START + STEP * (CENTRES - 1)
     worst = mpf(0)
     for eta in (end, end + 1, end + 5, 60, 100):
         log = mp.log(4 / (3 * mp.sqrt(mp.pi))) + mpf(3) / 2 * mp.log(eta)
@@ -127,9 +127,9 @@ def main():
         out.write(f"    start: {float(START)!r},\n    inverse_step: {float(1 / STEP)!r},\n    step: {float(STEP)!r},\n")
         out.write("    coefficients: &COEFFICIENTS,\n};\n\n")
         out.write("#[rustfmt::skip]\n")
-        out.write(f"static COEFFICIENTS: [[f64; Piecewise::TERMS]; {CELLS}] = [\n")
-        for index in range(CELLS):
-            row = ", ".join(repr(float(c)) for c in cell_coefficients(index))
+        out.write(f"static COEFFICIENTS: [[f64; Piecewise::TERMS]; {CENTRES}] = [\n")
+        for index in range(CENTRES):
+            row = ", ".join(repr(float(c)) for c in coefficients(index))
             out.write(f"    [{row}],\n")
         out.write("];\n")
 

@@ -34,10 +34,14 @@ pub fn bernoulli<T: Num>(x: T) -> T {
     // Both arms stay finite: the series' argument is held below 1, the quotient's away from 0 and from overflow.
     let held = T::select(near, x, T::constant(0.0));
     let z = held * held;
-    let mut series = T::constant(SERIES[7]);
-    for k in (0..7).rev() {
-        series = series * z + SERIES[k];
+    // Even and odd powers apart, for a shorter chain of dependent operations.
+    let w = z * z;
+    let (mut even, mut odd) = (T::constant(SERIES[6]), T::constant(SERIES[7]));
+    for k in (0..3).rev() {
+        even = even * w + SERIES[2 * k];
+        odd = odd * w + SERIES[2 * k + 1];
     }
+    let series = even + z * odd;
     let series = z * (z * series + 1.0 / 12.0) + held * -0.5 + 1.0;
     let x = x.min(T::constant(LARGEST));
     let away = T::select(near, T::constant(SERIES_BELOW), x);

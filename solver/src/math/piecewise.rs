@@ -1,16 +1,16 @@
 //! Piecewise polynomials on a uniform grid: the tables behind special functions.
 
-/// A piecewise polynomial: `cells` equal intervals from `start`, each with its own power-series coefficients
-/// about the interval's centre, lowest order first.
+/// A piecewise polynomial: equally spaced centres, each with its own power series, lowest order first, used half a
+/// step to either side. The domain runs from the first centre to the last.
 #[derive(Debug)]
 pub struct Piecewise {
-    /// Left end of the domain.
+    /// The first centre, where the domain starts; a whole number of steps from 0.
     pub start: f64,
-    /// Reciprocal of the width of an interval.
+    /// Reciprocal of the step.
     pub inverse_step: f64,
-    /// Width of an interval.
+    /// Distance of the centres, a power of two.
     pub step: f64,
-    /// Coefficients `[cells]`, of the local variable `x - centre`; at least one interval.
+    /// Coefficients `[centres]`, of the local variable `x - centre`; at least one centre.
     pub coefficients: &'static [[f64; Piecewise::TERMS]],
 }
 
@@ -21,23 +21,21 @@ impl Piecewise {
     /// Coefficients per interval.
     pub const TERMS: usize = 9;
 
-    /// The interval that holds `x`, and `x` relative to its centre; beyond the domain, the nearest end.
+    /// The coefficients at the centre nearest to `x`, and `x` relative to it; beyond the domain, those at its end.
     #[inline(always)]
     fn locate(&self, x: f64) -> (&[f64; Self::TERMS], f64) {
         // 1.5 x 2^52: adding it rounds to an integer, held in the low bits of the sum.
         const ROUND: f64 = 6755399441055744.0;
-        let cells = self.coefficients.len();
-        let end = self.start + self.step * cells as f64;
+        let last = self.coefficients.len() - 1;
+        let end = self.start + self.step * last as f64;
         // The comparisons leave a NaN in place, which then reaches the result.
         let x = if end < x { end } else { x };
         let x = if self.start > x { self.start } else { x };
-        let rounded = ((x - self.start) * self.inverse_step - 0.5) + ROUND;
-        let centre = (rounded - ROUND) * self.step + (self.start + 0.5 * self.step);
-        // A tie at the right end may round to one interval too far.
-        let last = self.start + (cells as f64 - 0.5) * self.step;
-        let centre = if last < centre { last } else { centre };
-        let cell = (rounded.to_bits() as u32 as usize).min(cells - 1);
-        (&self.coefficients[cell], x - centre)
+        let offset = ROUND - self.start * self.inverse_step;
+        let rounded = x * self.inverse_step + offset;
+        let centre = (rounded - offset) * self.step;
+        let index = (rounded.to_bits() as u32 as usize).min(last); // the bound is for a NaN alone
+        (&self.coefficients[index], x - centre)
     }
 
     /// Derivatives over factorials at `x`, of the value and of as many orders as `ORDERS` says (at most 3 in all).
@@ -115,8 +113,8 @@ impl Piecewise {
 mod tests {
     use super::*;
 
-    /// x^8 on three intervals of width 1/2 from -1, expanded about each centre.
-    static POWERS: [[f64; Piecewise::TERMS]; 3] = [expand(-0.75), expand(-0.25), expand(0.25)];
+    /// x^8 about four centres from -1 to 1/2.
+    static POWERS: [[f64; Piecewise::TERMS]; 4] = [expand(-1.0), expand(-0.5), expand(0.0), expand(0.5)];
     static TABLE: Piecewise = Piecewise { start: -1.0, inverse_step: 2.0, step: 0.5, coefficients: &POWERS };
 
     const fn expand(centre: f64) -> [f64; Piecewise::TERMS] {
