@@ -1,5 +1,4 @@
 //! Epiloom: the script language, the archive and the command line.
 
 pub mod archive;
-pub mod command;
 pub mod diagnostics;

@@ -1,7 +1,3 @@
 //! The `epiloom` command.
 
-use std::process::ExitCode;
-
-fn main() -> ExitCode {
-    epiloom::command::run().into()
-}
+fn main() {}

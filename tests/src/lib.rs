@@ -1,3 +1,1 @@
 //! Helpers shared by the end-to-end tests.
-
-pub mod floors;

@@ -1,3 +1,1 @@
 //! End-to-end tests.
-
-mod floors;

@@ -165,6 +165,38 @@ struct Columns<P> {
     values: Vec<P>,
 }
 
+impl<P: Scalar> Columns<P> {
+    /// Appends the elements of consecutive entries from `first` on to the last column, but not its zeros.
+    fn append(&mut self, values: &[P], first: usize) {
+        let zeros = values.iter().fold(0u32, |count, v| count + u32::from(v.value() == 0.0));
+        let entries = (first as u32)..;
+        if zeros == 0 || !plain::<P>() {
+            self.entries.extend(entries.take(values.len()));
+            self.values.extend_from_slice(values);
+        } else {
+            for (entry, &value) in entries.zip(values).filter(|(_, v)| v.value() != 0.0) {
+                self.entries.push(entry);
+                self.values.push(value);
+            }
+        }
+    }
+}
+
+/// Sum in four interleaved parts: a quarter of the chain of dependent additions.
+fn sum_of<P: Scalar>(values: &[P]) -> P {
+    let mut parts = [P::constant(0.0); 4];
+    let mut chunks = values.chunks_exact(4);
+    for chunk in &mut chunks {
+        for (part, &value) in parts.iter_mut().zip(chunk) {
+            *part = *part + value;
+        }
+    }
+    for (part, &value) in parts.iter_mut().zip(chunks.remainder()) {
+        *part = *part + value;
+    }
+    (parts[0] + parts[1]) + (parts[2] + parts[3])
+}
+
 /// The way of the light through the cells, with its working memory.
 struct Pass<P> {
     /// Layers in the order of the light, each with its first entry in that order.
@@ -321,8 +353,8 @@ impl<P: Scalar> Pass<P> {
         let mut total = zero;
         for (&(layer, start), &active) in self.order.iter().zip(&self.active) {
             if active {
-                let cells = layers[layer].half_widths.len();
-                total = self.forward[start..=start + cells].iter().fold(total, |sum, &v| sum + v);
+                sums[layer] = sum_of(&self.forward[start..=start + layers[layer].half_widths.len()]);
+                total = total + sums[layer];
             }
         }
         // What is not absorbed gets through: by difference while that is exact enough, so that photons balance.
@@ -332,14 +364,23 @@ impl<P: Scalar> Pass<P> {
         // 1 - r r' T^2, written so that nothing cancels in a weakly absorbing stack between mirrors.
         let lost = (-loop_reflectance + 1.0) + loop_reflectance * (total * (through + 1.0));
         if lost.value() <= 0.0 {
-            // A cavity without any loss: light that cannot stay cannot have entered.
+            // A cavity without any loss: light that cannot stay cannot have entered. Nothing absorbs: all sums are 0.
             return (zero, entered);
         }
         let forward = entered * lost.recip();
         let backward = forward * through * far;
         let returns = !plain::<P>() || backward.value() > FAINTEST;
+        for sum in sums.iter_mut() {
+            *sum = *sum * forward;
+        }
         if returns {
             self.send(layers, true);
+            for (&(layer, start), &active) in self.order.iter().zip(&self.active) {
+                if active {
+                    let entries = start..=start + layers[layer].half_widths.len();
+                    sums[layer] = sums[layer] + sum_of(&self.backward[entries]) * backward;
+                }
+            }
         }
         let count = self.order.len();
         for position in 0..count {
@@ -348,23 +389,23 @@ impl<P: Scalar> Pass<P> {
                 continue;
             }
             let (layer, start) = self.order[position];
-            let nodes = layers[layer].half_widths.len() + 1;
-            let mut sum = zero;
-            for node in 0..nodes {
-                let at = start + if self.from_rear { nodes - 1 - node } else { node };
-                let mut value = self.forward[at] * forward;
-                if returns {
-                    value = value + self.backward[at] * backward;
+            let range = start..start + layers[layer].half_widths.len() + 1;
+            let values = &mut self.forward[range.clone()];
+            if returns {
+                for (value, &back) in values.iter_mut().zip(&self.backward[range.clone()]) {
+                    *value = *value * forward + back * backward;
                 }
-                if plain::<P>() && value.value() == 0.0 {
-                    continue;
+            } else {
+                for value in values.iter_mut() {
+                    *value = *value * forward;
                 }
-                sum = sum + value;
-                let entry = if self.from_rear { self.entries - 1 - at } else { at };
-                columns.entries.push(entry as u32);
-                columns.values.push(value);
             }
-            sums[layer] = sum;
+            if self.from_rear {
+                values.reverse();
+                columns.append(values, self.entries - range.end);
+            } else {
+                columns.append(values, start);
+            }
         }
         let transmitted = forward * through * (-far + 1.0);
         let escaped = backward * through * (-faces.internal_reflectance + 1.0);

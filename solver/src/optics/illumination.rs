@@ -15,11 +15,11 @@ pub trait LayerMaterials<P> {
     fn scalar_absorption(&self, layer: usize) -> Option<P>;
     /// Band gap at a depth from the layer's front, J.
     fn gap(&self, layer: usize, depth: P) -> P;
-    /// Absorption coefficient at a depth from the layer's front, m, and a vacuum wavelength, m; and whether the
-    /// layer's table covers that wavelength.
-    fn absorption(&self, layer: usize, depth: P, wavelength: f64) -> (P, bool);
-    /// Refractive index at the lit face of the layer.
-    fn index(&self, layer: usize, wavelength: f64) -> Option<Index<P>>;
+    /// Absorption coefficient, m^-1, at a depth from the layer's front, m, and vacuum wavelengths, m; and whether what
+    /// is known of the layer covers each wavelength.
+    fn absorption(&self, layer: usize, depth: P, wavelengths: &[f64]) -> Vec<(P, bool)>;
+    /// Refractive index at the lit face of the layer, at vacuum wavelengths, m.
+    fn index(&self, layer: usize, wavelengths: &[f64]) -> Vec<Option<Index<P>>>;
     /// Whether absorption varies with depth.
     fn graded(&self, layer: usize) -> bool;
 }
@@ -146,14 +146,20 @@ impl<'a, P: Scalar, M: LayerMaterials<P>> LitStack<'a, P, M> {
         let lit_layer = if from_rear { stack.layers.len().saturating_sub(1) } else { 0 };
         let mut entrance = Vec::with_capacity(samples.wavelength.len());
         let mut face_covered = Vec::with_capacity(samples.wavelength.len());
-        for wavelength in &samples.wavelength {
+        let reflectance = &optics.front_reflectance;
+        let outside: Vec<f64> = samples.wavelength.iter().copied().flatten().collect();
+        let indices = if reflectance.needs_index() && !samples.entered {
+            materials.index(lit_layer, &outside)
+        } else {
+            Vec::new()
+        };
+        for (w, wavelength) in samples.wavelength.iter().enumerate() {
             let Some(wavelength) = wavelength.filter(|_| !samples.entered) else {
                 entrance.push((zero, zero));
                 face_covered.push(true);
                 continue;
             };
-            let reflectance = &optics.front_reflectance;
-            let first = if reflectance.needs_index() { materials.index(lit_layer, wavelength) } else { None };
+            let first = indices.get(w).copied().flatten();
             let shares = match reflectance.at(wavelength, first) {
                 Some(shares) => shares,
                 None if reflectance.needs_index() && first.is_none() => {
@@ -181,11 +187,9 @@ impl<'a, P: Scalar, M: LayerMaterials<P>> LitStack<'a, P, M> {
                     return Absorber::Graded;
                 }
                 let above = edge_of[layer].and_then(|edge| samples.above.get(edge));
-                let at = |(w, wavelength): (usize, &Option<f64>)| {
-                    let above = above.and_then(|a| a.get(w)).copied().unwrap_or(true);
-                    coefficient(materials, layer, zero, *wavelength, above)
-                };
-                let (values, covered) = samples.wavelength.iter().enumerate().map(at).unzip();
+                let above = |w: usize| above.and_then(|a| a.get(w)).copied().unwrap_or(true);
+                let (values, covered) =
+                    coefficients(materials, layer, zero, &samples.wavelength, above).into_iter().unzip();
                 Absorber::Uniform(values, covered)
             })
             .collect();
@@ -233,26 +237,18 @@ impl<'a, P: Scalar, M: LayerMaterials<P>> LitStack<'a, P, M> {
     /// Absorption of a graded layer, at the middle of each cell.
     fn by_cell(&self, layer: usize, nodes: &[P]) -> (Absorption<P>, Vec<bool>) {
         let middles: Vec<P> = nodes.windows(2).map(|pair| (pair[0] + pair[1]) * 0.5 - nodes[0]).collect();
-        let scalar = self.materials.scalar_absorption(layer).is_some();
-        let gaps: Vec<f64> = if scalar {
-            middles.iter().map(|&middle| self.materials.gap(layer, middle).value()).collect()
-        } else {
-            vec![0.0; middles.len()]
-        };
-        let mut whole = Vec::with_capacity(self.samples.wavelength.len());
-        let values = self.samples.wavelength.iter().map(|&wavelength| {
-            let mut all = true;
-            let row = middles.iter().zip(&gaps).map(|(&middle, &gap)| {
-                let above = wavelength.is_none_or(|l| photon_energy(l) >= gap);
-                let (value, covered) = coefficient(self.materials, layer, middle, wavelength, above);
-                all &= covered;
-                value
-            });
-            let row: Vec<P> = row.collect();
-            whole.push(all);
-            row
-        });
-        let values = values.collect();
+        let wavelengths = &self.samples.wavelength;
+        let mut whole = vec![true; wavelengths.len()];
+        let mut values: Vec<Vec<P>> = wavelengths.iter().map(|_| Vec::with_capacity(middles.len())).collect();
+        for &middle in &middles {
+            let gap = self.materials.gap(layer, middle).value();
+            let above = |w: usize| wavelengths[w].is_none_or(|l| photon_energy(l) >= gap);
+            let found = coefficients(self.materials, layer, middle, wavelengths, above);
+            for ((row, all), (value, covered)) in values.iter_mut().zip(&mut whole).zip(found) {
+                row.push(value);
+                *all &= covered;
+            }
+        }
         (Absorption::Cells(values), whole)
     }
 
@@ -302,20 +298,23 @@ fn edges<P: Scalar, M: LayerMaterials<P>>(stack: &Stack<P>, materials: &M) -> (V
     (edges, edge_of)
 }
 
-/// Absorption coefficient of a layer at a depth and wavelength: its one number above its gap, or its table; of
-/// photons without energy, its one number or none.
-fn coefficient<P: Scalar, M: LayerMaterials<P>>(
+/// Absorption coefficients of a layer at a depth and wavelengths: its one number where `above` its gap, or its
+/// table; for photons without energy, its one number or none. With each, whether it is known.
+fn coefficients<P: Scalar, M: LayerMaterials<P>>(
     materials: &M,
     layer: usize,
     depth: P,
-    wavelength: Option<f64>,
-    above: bool,
-) -> (P, bool) {
-    match (materials.scalar_absorption(layer), wavelength) {
-        (Some(value), _) if above => (value, true),
-        (Some(_), _) | (None, None) => (P::constant(0.0), true),
-        (None, Some(wavelength)) => materials.absorption(layer, depth, wavelength),
+    wavelengths: &[Option<f64>],
+    above: impl Fn(usize) -> bool,
+) -> Vec<(P, bool)> {
+    let zero = P::constant(0.0);
+    if let Some(value) = materials.scalar_absorption(layer) {
+        return (0..wavelengths.len()).map(|w| (if above(w) { value } else { zero }, true)).collect();
     }
+    let known: Vec<f64> = wavelengths.iter().copied().flatten().collect();
+    let mut found = materials.absorption(layer, depth, &known).into_iter();
+    let at = |l: &Option<f64>| l.and_then(|_| found.next()).unwrap_or((zero, true));
+    wavelengths.iter().map(at).collect()
 }
 
 /// Sums the shares of each wavelength times its flux.

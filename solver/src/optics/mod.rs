@@ -2,6 +2,7 @@
 
 pub mod coating;
 pub mod complex;
+mod device_materials;
 pub mod generation;
 pub mod illumination;
 pub mod light;

@@ -27,11 +27,13 @@ impl<P: Scalar> LayerMaterials<P> for Bench<P> {
         self.gap[layer].0 + depth * self.gap[layer].1
     }
     /// A made-up table: falls linearly from 2e6 per m at 300 nm to zero at 900 nm, known from 350 nm on.
-    fn absorption(&self, _: usize, _: P, wavelength: f64) -> (P, bool) {
-        (P::constant((2e6 * (900e-9 - wavelength) / 600e-9).max(0.0)), wavelength >= 350e-9)
+    fn absorption(&self, _: usize, _: P, wavelengths: &[f64]) -> Vec<(P, bool)> {
+        let at = |&l: &f64| (P::constant((2e6 * (900e-9 - l) / 600e-9).max(0.0)), l >= 350e-9);
+        wavelengths.iter().map(at).collect()
     }
-    fn index(&self, _: usize, _: f64) -> Option<Index<P>> {
-        self.index.map(|(n, k)| Index { n: P::constant(n), k: P::constant(k), covered: true })
+    fn index(&self, _: usize, wavelengths: &[f64]) -> Vec<Option<Index<P>>> {
+        let index = self.index.map(|(n, k)| Index { n: P::constant(n), k: P::constant(k), covered: true });
+        vec![index; wavelengths.len()]
     }
     fn graded(&self, _: usize) -> bool {
         self.graded
