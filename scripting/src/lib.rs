@@ -1,4 +1,5 @@
 //! Epiloom: the script language, the archive and the command line.
 
 pub mod archive;
+pub mod command;
 pub mod diagnostics;

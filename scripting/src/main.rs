@@ -1,3 +1,7 @@
 //! The `epiloom` command.
 
-fn main() {}
+use std::process::ExitCode;
+
+fn main() -> ExitCode {
+    epiloom::command::run().into()
+}

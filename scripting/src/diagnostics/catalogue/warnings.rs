@@ -46,6 +46,10 @@ super::rows! {
         "The run that wrote this file did not end: it was interrupted, killed, or is still going on. The snapshots \
          in it are whole.",
         "epiloom show cell.epiloom.unfinished";
+    DAMAGED = "W403", "part of the archive is damaged",
+        "Bytes of the file are not those that were written. Frames that are whole are shown; those that are not are \
+         named, and no number of them is used.",
+        "epiloom show cell.epiloom";
     OTHER_VERSION = "W402", "the archive was written by another version",
         "Numbers may differ in their last digits between versions of Epiloom; a replay tells.",
         "epiloom replay window_and_bsf.epiloom";

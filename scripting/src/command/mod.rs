@@ -1,0 +1,99 @@
+//! The command line: one file for each verb, two streams, documented exit codes.
+//!
+//! [`run`] is all that `main` calls. Results go to standard output, everything else to standard error.
+
+mod columns;
+mod completions;
+mod exit;
+mod explain;
+mod export;
+mod figure_text;
+mod materials;
+mod output;
+mod report;
+mod show;
+mod trouble;
+
+use clap::{CommandFactory, Parser, Subcommand};
+
+pub use exit::Exit;
+pub use figure_text::figure_text;
+
+use output::Output;
+
+/// What `epiloom` takes.
+#[derive(Parser, Debug)]
+#[command(
+    name = "epiloom",
+    bin_name = "epiloom",
+    version,
+    about = "Scripted drift-diffusion simulation of epitaxial photovoltaic stacks",
+    after_help = exit::help(),
+    max_term_width = 100
+)]
+struct Cli {
+    #[command(subcommand)]
+    verb: Verb,
+}
+
+/// The verbs.
+#[derive(Subcommand, Debug)]
+enum Verb {
+    /// Show what an archive holds, or one snapshot of it
+    Show(show::Show),
+    /// Write a snapshot as CSV, NPZ or JSON
+    Export(export::Export),
+    /// List the built-in materials, or the values of one with ranges and sources
+    Materials(materials::Materials),
+    /// Explain a code such as E210
+    Explain(explain::Explain),
+    /// Print the completion script for a shell
+    Completions(completions::Completions),
+}
+
+/// Reads the command line of this process and does what it says.
+pub fn run() -> Exit {
+    let cli = match Cli::try_parse() {
+        Ok(cli) => cli,
+        Err(message) => {
+            // help and version are results, everything else is a fault of usage; the text goes to its own stream
+            let told = message.print().is_ok();
+            return if message.use_stderr() || !told { Exit::Usage } else { Exit::Done };
+        }
+    };
+    let mut output = Output::new();
+    let exit = match &cli.verb {
+        Verb::Show(verb) => verb.run(&mut output),
+        Verb::Export(verb) => verb.run(&mut output),
+        Verb::Materials(verb) => verb.run(&mut output),
+        Verb::Explain(verb) => verb.run(&mut output),
+        Verb::Completions(verb) => verb.run(Cli::command(), &mut output),
+    };
+    output.end_progress();
+    match output.failure() {
+        Some(failure) if exit == Exit::Done => {
+            output.diagnostic(&failure, None);
+            Exit::File
+        }
+        _ => exit,
+    }
+}
+
+#[cfg(test)]
+mod tests {
+    use super::*;
+
+    /// Source of truth: clap's own consistency check, and the table of exit codes.
+    #[test]
+    fn the_command_line_is_consistent_and_tells_its_exit_codes() {
+        Cli::command().debug_assert();
+        let help = Cli::command().render_long_help().to_string();
+        for (_, code, meaning) in exit::TABLE {
+            assert!(
+                help.contains(&format!("{code:>3}  "))
+                    && help.contains(meaning.split(' ').next().unwrap_or(meaning)),
+                "{code}: {help}"
+            );
+        }
+    }
+}

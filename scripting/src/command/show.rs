@@ -1,0 +1,124 @@
+//! `epiloom show`: what an archive holds.
+
+use std::fmt::Write;
+use std::path::{Path, PathBuf};
+
+use crate::archive::export::{json_listing, json_snapshot};
+use crate::archive::{Archive, ArchiveError, RunHeader, Status};
+
+use super::columns::{Align, columns};
+use super::exit::Exit;
+use super::output::Output;
+use super::report::{snapshot_text, stack_text, value_text, warnings_text};
+use super::trouble::{archive_error, archive_warning};
+
+/// `epiloom show FILE [SNAPSHOT]`.
+#[derive(clap::Args, Debug)]
+pub struct Show {
+    /// The archive
+    pub file: PathBuf,
+    /// The snapshot; without one all are listed
+    pub snapshot: Option<String>,
+    /// Print JSON, with every number of the snapshot
+    #[arg(long)]
+    pub json: bool,
+}
+
+impl Show {
+    /// Shows it.
+    pub fn run(&self, output: &mut Output) -> Exit {
+        let archive = match open(&self.file, output) {
+            Ok(archive) => archive,
+            Err(exit) => return exit,
+        };
+        let text = match (&self.snapshot, self.json) {
+            (None, true) => json_listing(&archive),
+            (None, false) => Ok(listing(&archive, output).into_bytes()),
+            (Some(name), json) => archive.snapshot(name).and_then(|snapshot| {
+                if json {
+                    return json_snapshot(&snapshot);
+                }
+                let stack = stack_text(&snapshot.stack);
+                let warnings = warnings_text(&snapshot.warnings);
+                Ok(format!("{stack}\n{}{warnings}", snapshot_text(&snapshot)).into_bytes())
+            }),
+        };
+        match text {
+            Ok(text) => {
+                output.result(&String::from_utf8_lossy(&text));
+                condition(&archive)
+            }
+            Err(error) => tell(&error, output),
+        }
+    }
+}
+
+/// Opens an archive and says what is amiss in it.
+///
+/// # Errors
+/// How the command ends when it cannot be opened at all.
+pub fn open(path: &Path, output: &mut Output) -> Result<Archive, Exit> {
+    let archive = Archive::open(path).map_err(|error| tell(&error, output))?;
+    for warning in archive.warnings() {
+        output.diagnostic(&archive_warning(warning), None);
+    }
+    Ok(archive)
+}
+
+/// How a command ends that has shown what is whole in an archive.
+pub fn condition(archive: &Archive) -> Exit {
+    if archive.warnings().is_empty() { Exit::Done } else { Exit::Archive }
+}
+
+/// Prints the fault; the way the command ends.
+pub fn tell(error: &ArchiveError, output: &mut Output) -> Exit {
+    let fault = archive_error(error);
+    output.diagnostic(&fault, None);
+    Exit::of(fault.code)
+}
+
+/// The run and the list of snapshots.
+fn listing(archive: &Archive, output: &mut Output) -> String {
+    let mut text = match archive.run() {
+        Ok(run) => run_text(run),
+        // said among the archive's warnings
+        Err(_) => String::new(),
+    };
+    let mut rows = vec![vec!["snapshot".to_string(), "kind".to_string(), String::new()]];
+    for (index, entry) in archive.entries().iter().enumerate() {
+        let status = match (&entry.label.status, archive.snapshot_at(index)) {
+            (_, Err(error)) => {
+                output.diagnostic(&archive_error(&error), None);
+                "damaged".to_string()
+            }
+            (Status::Failed { reason }, _) => format!("failed: {reason}"),
+            (Status::Solved, Ok(_)) => String::new(),
+        };
+        rows.push(vec![entry.label.name.clone(), entry.label.kind.clone(), status]);
+    }
+    text.push_str(&columns(&rows, &[], 0));
+    text
+}
+
+fn run_text(run: &RunHeader) -> String {
+    let mut text = format!("script {}, run by epiloom {}\n", run.script_name, run.program_version);
+    let inputs: Vec<Vec<String>> = run
+        .inputs
+        .iter()
+        .map(|(name, input)| {
+            let origin = if input.overridden {
+                format!("set from outside, {} in the script", value_text(&input.default))
+            } else {
+                String::new()
+            };
+            vec![format!("input {name}"), value_text(&input.used), origin]
+        })
+        .collect();
+    text.push_str(&columns(&inputs, &[Align::Left], 2));
+    for (name, file) in &run.data_files {
+        // writing to a text cannot fail
+        let _ = writeln!(text, "  data file {name}, {} bytes, BLAKE3 {}", file.length, file.blake3);
+    }
+    text.push('\n');
+    text
+}

@@ -1,0 +1,41 @@
+//! Faults and warnings of archives as diagnostics.
+
+use crate::archive::{ArchiveError, ArchiveWarning};
+use crate::diagnostics::{Code, Diagnostic, codes};
+
+/// An archive's fault for a person.
+pub fn archive_error(error: &ArchiveError) -> Diagnostic {
+    let code = match error {
+        ArchiveError::Io { action: "open" | "read", .. } => codes::UNREADABLE,
+        ArchiveError::Foreign { .. } => codes::NOT_AN_ARCHIVE,
+        ArchiveError::Newer { .. } => codes::NEWER_ARCHIVE,
+        ArchiveError::NoWholeFrame { .. } => codes::TORN_ARCHIVE,
+        ArchiveError::DamagedStart { .. }
+        | ArchiveError::DamagedSnapshot { .. }
+        | ArchiveError::DamagedRun => codes::DAMAGED_FRAME,
+        ArchiveError::NoSuchSnapshot { .. } | ArchiveError::NoSuchIndex { .. } => codes::UNKNOWN_SNAPSHOT,
+        ArchiveError::HeldByAnotherRun { .. } => codes::BUSY,
+        ArchiveError::NameTaken { .. } => codes::SNAPSHOT_TWICE,
+        ArchiveError::RaggedTable { .. } | ArchiveError::Encoding { .. } => codes::INTERNAL,
+        _ => codes::UNWRITABLE,
+    };
+    diagnostic(code, error.to_string(), error.help())
+}
+
+/// An archive's warning for a person.
+pub fn archive_warning(warning: &ArchiveWarning) -> Diagnostic {
+    let code = match warning {
+        ArchiveWarning::NotFinished { .. } => codes::UNFINISHED,
+        ArchiveWarning::TornTail { .. } => codes::TORN,
+        _ => codes::DAMAGED,
+    };
+    diagnostic(code, warning.to_string(), None)
+}
+
+fn diagnostic(code: Code, message: String, help: Option<String>) -> Diagnostic {
+    let diagnostic = Diagnostic::new(code, message);
+    match help {
+        Some(help) => diagnostic.help(help),
+        None => diagnostic,
+    }
+}
