@@ -11,10 +11,10 @@ super::rows! {
          affinity and gap there.",
         "cell.at(0.V, dark())";
     ABSENT_FIGURE = "E302", "a figure that does not exist is used",
-        "A figure of merit has no value here, with the reason given, and the script calculates with it. A stack \
-         without a junction has no open-circuit voltage; light without a wavelength gives no efficiency. Compare \
-         with `()` first.",
-        "if jv.voc != () { print(jv.voc); }";
+        "A figure of merit has no value here and the script calculates with it. A stack without a junction has no \
+         open-circuit voltage; light without a wavelength gives no efficiency. `.reason(..)` of the result says why; \
+         compare with `()` first.",
+        "if jv.voc == () { print(jv.reason(\"voc\")); }";
     SINGULAR = "E303", "the equations are singular",
         "A factorisation met a pivot of zero: some unknown is not determined, as in an insulating layer without any \
          carriers. The message names layer and depth.",
