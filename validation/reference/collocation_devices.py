@@ -30,14 +30,14 @@ from problems import layers_of
 N0, L0 = 1e23, 1e-7  # scales: 1/m3, m
 
 
-def finite_volumes(device, lit, refinement, cells=90):
+def finite_volumes(device, lit, refinement, cells=240):
     """The device on a graded mesh, every interval halved `refinement` times."""
     layers = layers_of(device)
     nodes, which, start = [0.0], [], 0.0
     for number, layer in enumerate(layers):
         length = layer["thickness_m"]
         count = cells if length > 1e-7 else cells // 3
-        ratio = 1.1
+        ratio = 1.03
         weights = np.array([ratio ** min(k, count - 1 - k) for k in range(count)])
         edges = start + length * np.concatenate(([0.0], np.cumsum(weights))) / weights.sum()
         for _ in range(refinement):

@@ -6,12 +6,13 @@ cases R1 (Boltzmann, dark) and R3 (Fermi-Dirac, window and back-surface field, l
 derivatives of its own. Writes `discrete_cell.json` with both currents; on so coarse a mesh they are *not* those of the continuous
 problem (which stand beside them), they are what anyone else gets who solves the same equations on the same nodes.
 
-Run: python discrete_cell.py   (four minutes; most of it is the 50-digit part)
+Run: python discrete_cell.py   (five minutes; most of it is the 50-digit part)
 """
 
 import numpy as np
 from scipy.linalg import solve_banded
 
+import discrete_equations
 import problems
 from constants import read, write
 
@@ -293,6 +294,26 @@ class Discrete:
         self.light = saved
         return state
 
+    def split(self, state):
+        """Recombination by layer and channel, and at both contacts, as current densities in A/m2 (None where the velocity is infinite)."""
+        d = self.densities(*state)
+        n, p = d["n"], d["p"]
+        x = -n * p * np.expm1(-d["split"]) * self.q * (self.h / 2)[:, None]
+        denominator = self.tau_p[:, None] * (n + self.ni_at) + self.tau_n[:, None] * (p + self.ni_at)
+        channels = {
+            "shockley_read_hall": np.where(self.srh[:, None], x / denominator, 0.0),
+            "radiative": self.b[:, None] * x,
+            "auger": (self.c_n[:, None] * n + self.c_p[:, None] * p) * x,
+        }
+        which = np.array(self.problem["cell_layer"])
+        result = {l["name"]: {key: float(v[which == k].sum()) for key, v in channels.items()} for k, l in enumerate(self.problem["layers"])}
+        for name, contact, i in (("left contact", self.contacts[0], (0, 0)), ("right contact", self.contacts[1], (-1, 1))):
+            key, density = ("n", n) if contact["holes"] else ("p", p)
+            velocity = contact["velocity"]
+            result[name] = None if velocity is None else float(self.q * velocity * (density[i] - contact[key]))
+        result["generation"] = float(self.q * self.generation.sum())
+        return result
+
     def sweep(self, voltages, largest_step=0.1):
         """(voltage, state, current) for rising voltages, from equilibrium through intermediate steps."""
         state, bias, results = self.equilibrium(), 0.0, []
@@ -315,12 +336,13 @@ CASES = {
     "R3": (((8, 1.25), (40, 1.2), (50, 1.18), (10, 1.25)), [-0.5, 0.0, 0.4, 0.8, 0.95, 1.0, 1.05]),
     "window_n_on_p": (((8, 1.25), (30, 1.2), (50, 1.18)), [0.0, 0.4, 0.85, 0.95, 1.0]),
 }
+STATE_AT = {"R1": 0.9, "R3": 0.8, "window_n_on_p": 0.85}
 
 
 def compute(with_digits=True, cases=tuple(CASES)):
     result = {
         "about": "The discrete equations of README.md solved on fixed coarse meshes; currents in A/m2, forward positive. "
-        "`double` is from discrete_cell.py, `digits` from discrete_equations.py (null where that was not run), `continuous` is the mesh-free value.",
+        "`double` is from discrete_cell.py; `digits` and the slopes are from discrete_equations.py; `continuous` is the mesh-free value.",
         "problems": {},
     }
     for name in cases:
@@ -332,13 +354,15 @@ def compute(with_digits=True, cases=tuple(CASES)):
         else:
             p, continuous = problems.device_file("heterojunction_with_window", counts), {}
         points = []
-        for voltage, state, current in Discrete(p).sweep(voltages):
-            digits = None
+        discrete = Discrete(p)
+        for voltage, state, current in discrete.sweep(voltages):
+            digits = conductance = response = None
             if with_digits:
-                import discrete_equations
-
-                digits = discrete_equations.solve(p, voltage, state)
-            points.append({"voltage_V": voltage, "double": current, "digits": digits, "continuous": continuous.get(voltage)})
+                digits, conductance, response = discrete_equations.solve(p, voltage, state, slopes=True)
+            point = {"voltage_V": voltage, "double": current, "digits": digits, "conductance_S_per_m2": conductance, "response": response}
+            points.append({**point, "continuous": continuous.get(voltage), "split_A_per_m2": discrete.split(state)})
+            if voltage == STATE_AT[name]:
+                p["state"] = {"voltage_V": voltage, **{key: [float(x) for x in discrete.vt * v] for key, v in zip(("psi_V", "phi_n_V", "phi_p_V"), state)}}
         p["points"] = points
         result["problems"][name] = p
     return result

@@ -30,11 +30,15 @@ def trapezoid(bucket, precision):
 
 def ln_gamma(eta, fermi_dirac):
     """ln(F(eta) e^-eta): 0 for Boltzmann statistics."""
-    if not fermi_dirac:
-        return mp.mpf(0)
+    return fermi_dirac_ln_gamma(eta, mp.mp.prec) if fermi_dirac else mp.mpf(0)
+
+
+@lru_cache(maxsize=4096)
+def fermi_dirac_ln_gamma(eta, precision):
+    """Kept for a while, because both sides of a node within a layer, and most steps of a difference quotient, ask for the same value."""
     if eta < -200:
         return -mp.exp(eta) / mp.sqrt(8)
-    step, rule = trapezoid(-4 if eta < -4 else 4 * int(mp.ceil(eta / 4)), mp.mp.prec)
+    step, rule = trapezoid(-4 if eta < -4 else 4 * int(mp.ceil(eta / 4)), precision)
     boltzmann = mp.exp(eta)
     return mp.log(4 * step / mp.sqrt(mp.pi) * mp.fsum(s / (boltzmann + e) for s, e in rule))
 
@@ -192,16 +196,18 @@ class Equations:
                     (upper if which == 0 else lower)[node][r][k] = mp.mpf(0)
         return lower, diagonal, upper
 
-    def newton(self, u, bias):
+    def newton(self, u, bias, jacobian=None):
+        """(state, current, Jacobian used last); with a `jacobian` given, no other is formed."""
+        fresh = jacobian is None
         for iteration in range(20):
             rows, _ = self.residual(u, bias)
-            if iteration < 2:  # the start is good to ten digits or more: two Jacobians are enough
+            if fresh and iteration < 2:  # the start is good to ten digits or more: two Jacobians are enough
                 jacobian = self.jacobian(u, bias)
             step = eliminate(*jacobian, [[-v for v in row] for row in rows])
             largest = max(abs(v) for row in step for v in row)
             u = [[a + b for a, b in zip(x, y)] for x, y in zip(u, step)]
             if largest < mp.mpf(10) ** -(DIGITS + 10):
-                return u, self.residual(u, bias)[1]
+                return u, self.residual(u, bias)[1], jacobian
             if largest > 2:
                 break
         raise ArithmeticError(f"the start was too far away, last step {mp.nstr(largest, 5)}")
@@ -256,12 +262,27 @@ def eliminate(lower, diagonal, upper, right):
     return x
 
 
-def solve(problem, voltage, start, count=20):
-    """The terminal current in A/m2 as a string of `count` digits; `start` is (psi, phi_n, phi_p) in units of kT/q."""
+def solve(problem, voltage, start, slopes=False, count=20):
+    """The terminal current in A/m2 as a string of `count` digits; `start` is (psi, phi_n, phi_p) in units of kT/q.
+
+    With `slopes`: the current, dJ/dV in S/m2, and -dJ/d(photon flux)/q (the response of the lit device to a little more of the same
+    light, None in the dark), from solutions 10^-25 V and 10^-25 of the flux away.
+    """
     with mp.workdps(WORKING_DIGITS):
         equations = Equations(problem)
         u = [[mp.mpf(float(v)) for v in node] for node in zip(*start)]
-        u, current = equations.newton(u, mp.mpf(voltage))
+        bias = mp.mpf(voltage)
+        u, current, jacobian = equations.newton(u, bias)
         worst = equations.check_forms(u)
         assert worst < mp.mpf(10) ** -60, mp.nstr(worst, 5)
-        return mp.nstr(current, count, strip_zeros=False)
+        digits = mp.nstr(current, count, strip_zeros=False)
+        if not slopes:
+            return digits
+        small = mp.mpf(10) ** -25
+        conductance = (equations.newton(u, bias + small, jacobian)[1] - current) / small
+        response = None
+        if problem["photon_flux_per_m2_s"]:
+            equations.generation = [(a * (1 + small), b * (1 + small)) for a, b in equations.generation]
+            brighter = equations.newton(u, bias, jacobian)[1]
+            response = mp.nstr((current - brighter) / small / (equations.q * mp.mpf(problem["photon_flux_per_m2_s"])), count, strip_zeros=False)
+        return digits, mp.nstr(conductance, count, strip_zeros=False), response
