@@ -2,7 +2,7 @@
 //! returned is exactly what was written.
 
 use super::sample;
-use crate::archive::encoding::{Index, IndexEntry, sections};
+use crate::archive::encoding::{Index, IndexEntry, decode_snapshot, sections, snapshot_sections};
 use crate::archive::layout::{
     FOOTER_LENGTH, Footer, HEADER_LENGTH, Header, Kind, START_LENGTH, digest, start_bytes,
 };
@@ -178,6 +178,62 @@ fn frames_taken_out_doubled_or_foreign_are_seen() {
     let archive = Archive::from_bytes(foreign).unwrap();
     assert_eq!(archive.entries().len(), 3);
     assert!(archive.is_damaged());
+}
+
+/// An older description of the run, appended again, must not replace the later one: its number is too low.
+#[test]
+fn a_frame_that_comes_again_does_not_count() {
+    let bytes = unfinished();
+    let again = [&bytes[..], &bytes[START_LENGTH..frame_ends(&bytes)[0]]].concat();
+    let archive = Archive::from_bytes(again).unwrap();
+    assert!(archive.is_damaged());
+    assert_eq!(archive.run().unwrap(), &sample::run());
+}
+
+/// The frame of that header with other bytes for a header, which leaves every other digest valid.
+fn resealed(bytes: &[u8], at: usize, change: impl Fn(Header) -> Header) -> Vec<u8> {
+    let header = Header::from_bytes(bytes[at..at + HEADER_LENGTH].try_into().unwrap()).unwrap();
+    let mut out = bytes.to_vec();
+    out[at..at + HEADER_LENGTH].copy_from_slice(&change(header).to_bytes());
+    out
+}
+
+/// A frame that is whole in itself but of another run, or not the one that the index or the footer means, is
+/// refused: each names the next by its digest.
+#[test]
+fn whole_frames_in_the_wrong_place_are_refused() {
+    let bytes = unfinished();
+    let last = frame_ends(&bytes)[3];
+    let foreign = resealed(&bytes, last, |header| Header { run: [9; 16], ..header });
+    let archive = Archive::from_bytes(foreign).unwrap();
+    assert_eq!(archive.entries().len(), 2);
+    assert!(archive.is_damaged());
+
+    let bytes = finished();
+    let ends = frame_ends(&bytes);
+    let other = resealed(&bytes, ends[1], |header| Header { ordinal: 40, ..header });
+    let archive = Archive::from_bytes(other).unwrap();
+    assert!(matches!(archive.snapshot("bands"), Err(ArchiveError::DamagedSnapshot { .. })));
+    assert!(archive.snapshot("light J-V").is_ok());
+
+    let index = resealed(&bytes, ends[3], |header| Header { ordinal: 40, ..header });
+    let archive = Archive::from_bytes(index).unwrap();
+    assert!(archive.warnings().contains(&ArchiveWarning::DamagedIndex));
+    assert_eq!(archive.verify().unwrap(), []);
+}
+
+/// Numbers that no column claims, or too few for the columns, make no snapshot.
+#[test]
+fn the_number_block_must_fit_the_tables_exactly() {
+    let made = snapshot_sections(&sample::snapshot("light J-V", 0)).unwrap();
+    let header = made.header(0, [0; 16]);
+    let frame = made.frame(&header);
+    let body = &frame[HEADER_LENGTH + header.label_length() as usize..];
+    let (payload, numbers) = body.split_at((header.payload as usize).next_multiple_of(8));
+    let payload = &payload[..header.payload as usize];
+    assert!(decode_snapshot(payload, numbers).is_some());
+    assert!(decode_snapshot(payload, &[numbers, &[0; 8]].concat()).is_none());
+    assert!(decode_snapshot(payload, &numbers[8..]).is_none());
 }
 
 /// Files of other kinds are foreign, and text is not taken for an archive.

@@ -160,6 +160,51 @@ impl StoredFile for FailingFile<'_> {
     }
 }
 
+/// After a write that failed half-way the unfinished file has no half frame in it, and the next one fits.
+#[test]
+fn a_half_written_frame_is_cut_off_again() {
+    for at in 0.. {
+        let disk: &'static Failing = Box::leak(Box::new(Failing { at, ..Failing::default() }));
+        let storage: &'static &'static Failing = Box::leak(Box::new(disk));
+        let folder = tempfile::tempdir().unwrap();
+        let Ok(mut writer) = Writer::create_in(storage, &folder.path().join("run.epiloom"), &sample::run())
+        else {
+            continue;
+        };
+        let begun = disk.calls.load(Ordering::Relaxed);
+        assert!(begun <= at);
+        if begun < at {
+            continue;
+        }
+        // The first call of an append is its write.
+        assert!(matches!(
+            writer.append(&sample::snapshot("one", 0)),
+            Err(ArchiveError::Io { action: "write", .. })
+        ));
+        writer.append(&sample::snapshot("two", 1)).unwrap();
+        writer.append(&sample::snapshot("one", 0)).unwrap();
+        let archive = Archive::open(&writer.abandon().unwrap()).unwrap();
+        assert_eq!(archive.warnings(), [ArchiveWarning::NotFinished { snapshots: 2 }]);
+        break;
+    }
+}
+
+/// What changes on the disk behind the writer's back is not sealed anew as if it were right.
+#[test]
+fn finishing_refuses_what_the_disk_no_longer_holds() {
+    let folder = tempfile::tempdir().unwrap();
+    let path = folder.path().join("run.epiloom");
+    let mut writer = Writer::create(&path, &sample::run()).unwrap();
+    writer.append(&sample::snapshot("one", 0)).unwrap();
+    let mut bytes = std::fs::read(writer.unfinished()).unwrap();
+    let last = bytes.len() - 1;
+    bytes[last] ^= 1;
+    std::fs::write(writer.unfinished(), bytes).unwrap();
+    assert!(matches!(writer.finish(&sample::run()), Err(ArchiveError::DamagedSnapshot { .. })));
+    assert!(!path.exists());
+    assert!(unfinished_path(&path).exists());
+}
+
 /// Whichever call fails: every snapshot whose `append` succeeded can be read afterwards, from the archive or
 /// from the unfinished file, and a file under the final name is always whole.
 #[test]
