@@ -10,11 +10,11 @@ I = -+ q S (n - n0). R = K n p (1 - exp(-(phi_p - phi_n)/Vt)), K = 1 / (tau_p (n
 Nothing here is taken from the finite-volume equations except a first guess of the profiles; the currents are those of the
 continuous problem.
 
-Each point is solved with two tolerances, 1e-6 and 1e-8; the relative difference of their currents is stored as `tolerance_reached`,
-together with the extrapolated finite-volume current of `discrete_cell.Discrete` on three nested meshes, a wholly different
+Each point is solved with two tolerances; the relative difference of their currents is stored as `tolerance_reached`, beside the relative
+difference from the extrapolated finite-volume current of `discrete_cell.Discrete` on three nested meshes, a wholly different
 discretisation of the same device (not used for the value).
 
-Run: python collocation_devices.py [device name]   (several minutes)
+Run: python collocation_devices.py [device name]   (five minutes)
 Reads `devices/*.json`, writes `collocation_devices.json`. Currents in A/m2, forward positive.
 """
 
@@ -179,7 +179,14 @@ def bernoulli_of(levels, first, last):
     return np.where(small, 1 - drop / 2, drop / np.expm1(np.where(small, 1.0, np.clip(drop, -700, 700))))
 
 
+# The second current is the result; its distance from the first is the tolerance reached. With light in the window's device 1e-8 is not attained
+# within 20,000 nodes: rounding in the steep ends of the layers stands in the way.
+TOLERANCES = (1e-6, 1e-8)
+TOLERANCES_WITH_WINDOW_LIT = (1e-5, 1e-6)
+
+
 def device_currents(device, lit, voltages, log):
+    tolerances = TOLERANCES_WITH_WINDOW_LIT if lit and len(device["layers"]) > 2 else TOLERANCES
     meshes = [Discrete(finite_volumes(device, lit, r)) for r in range(3)]
     sweeps = [m.sweep(voltages) for m in meshes]
     results = []
@@ -197,29 +204,28 @@ def device_currents(device, lit, voltages, log):
             g[4:] /= scale
             guess.append(g)
         guess, s = np.concatenate(guess), points
-        currents, tolerances = [], (1e-6, 1e-8)
+        currents = []
         for tolerance in tolerances:
             solution = solve_bvp(
                 lambda s, y: system.slopes(s, y, False), lambda a, b: system.boundary(a, b, voltage), s, guess,
                 fun_jac=lambda s, y: system.slopes(s, y, True), tol=tolerance, bc_tol=1e-11, max_nodes=20000,
             )
             if not solution.success:
-                log(f"{voltage} V at {tolerance}: {solution.message} rms {solution.rms_residuals.max():.1e}")
-                break
+                raise ArithmeticError(f"{voltage} V at {tolerance}: {solution.message}, {solution.rms_residuals.max():.1e} with {len(solution.x)} nodes")
             s, guess = solution.x, solution.y
             total = solution.y[4] + solution.y[5]
             # Forward current leaves the p side, here the rear: it flows to the left.
             currents.append(-scale * total[0])
         row = {
             "voltage_V": voltage,
-            "current_density_A_per_m2": currents[-1],
-            "tolerance_reached": abs(currents[-1] / currents[-2] - 1) if len(currents) > 1 else None,
+            "current_density_A_per_m2": float(f"{currents[1]:.12e}"),
+            "tolerance_reached": float(f"{abs(currents[1] / currents[0] - 1):.1e}"),
             "collocation_nodes": len(s),
-            "collocation_tolerance": tolerances[len(currents) - 1],
-            "finite_volumes": {"nodes": [len(m.x) for m in meshes], "currents": raw, "extrapolated": finite_volume},
-            "relative_difference_of_the_two": finite_volume / currents[-1] - 1,
+            "collocation_tolerance": tolerances[1],
+            "finite_volume_nodes": [len(m.x) for m in meshes],
+            "relative_difference_of_the_two": float(f"{finite_volume / currents[1] - 1:.1e}"),
         }
-        log(f"{voltage} V {currents[-1]:.12e} nodes {len(s)} reached {row['tolerance_reached']:.1e} fv {row['relative_difference_of_the_two']:.1e}")
+        log(str(row))
         results.append(row)
     return results
 
