@@ -245,3 +245,51 @@ fn every_listed_value_has_a_source() {
     let of = own.provenance().into_iter().find(|p| p.parameter == Parameter::ElectronLifetime);
     assert_eq!(of.map(|p| p.origin), Some(Origin::Script));
 }
+
+/// Source: what every value must be: positive and finite over the whole range of temperature, composition and doping allowed.
+#[test]
+fn values_are_sound_over_the_whole_range() {
+    for name in names() {
+        let alloy = Material::<f64>::library(name, None).is_alloy();
+        for step in 0..=(if alloy { 20 } else { 0 }) {
+            let x = alloy.then(|| f64::from(step) / 20.0);
+            for t in [20.0, 77.0, 150.0, 298.15, 500.0, 1000.0] {
+                for doping in [0.0, 1e20, 1e24, 1e28] {
+                    let v = Material::library(name, x).values(None, t, doping).expect(name);
+                    for (parameter, value) in
+                        Parameter::ALL.iter().filter_map(|&p| v.get(p).map(|value| (p.key(), value)))
+                    {
+                        let may_vanish = matches!(parameter, "trap_energy" | "radiative_coefficient");
+                        assert!(
+                            value.is_finite() && (value > 0.0 || may_vanish && value >= 0.0),
+                            "{name} {x:?} {t} K {doping:e}: {parameter} = {value:e}"
+                        );
+                    }
+                    assert!((0.1..3.5).contains(&(v.gap / EV)) && (2.0..6.0).contains(&(v.affinity / EV)));
+                    assert!(
+                        v.electron_mobility > 1e-6 && v.hole_mobility > 1e-6,
+                        "{name} {x:?} {t} {doping:e}"
+                    );
+                }
+            }
+        }
+    }
+}
+
+/// Source: doping can only scatter more: mobilities fall with it at every temperature that their sources cover.
+#[test]
+fn mobilities_fall_with_doping() {
+    for name in names() {
+        let x = Material::<f64>::library(name, None).is_alloy().then_some(0.35);
+        for t in [250.0, 300.0, 400.0] {
+            let at = |decade: i32| {
+                let v = Material::library(name, x).values(None, t, 10f64.powi(decade)).expect(name);
+                (v.electron_mobility, v.hole_mobility)
+            };
+            for decade in 18..26 {
+                let (low, high) = (at(decade), at(decade + 1));
+                assert!(high.0 < low.0 && high.1 < low.1, "{name} at 1e{decade} m^-3, {t} K");
+            }
+        }
+    }
+}

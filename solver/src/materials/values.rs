@@ -80,7 +80,7 @@ impl Record {
     /// Valence-band edge above that of GaAs, eV.
     pub(crate) fn valence_edge<P: Num>(&self, x: P, temperature: P) -> P {
         match self.ladder.law {
-            Ladder::Step(below) => P::constant(-below),
+            Ladder::Step(below) => P::constant(0.0 - below),
             Ladder::ShareOfDirectGap(share) => {
                 let direct = &self.minima.law[0].valley;
                 (direct.energy(P::constant(0.0), temperature) - direct.energy(x, temperature)) * share
@@ -182,7 +182,7 @@ impl<P: Scalar> Material<P> {
     /// values at every temperature.
     ///
     /// An override replaces the library's value. Where `gap` is overridden and `affinity` is not, the valence band stays
-    /// on the ladder and the affinity follows. `nc` and `nv` keep the library's values when masses have no other change.
+    /// on the ladder and the affinity follows; `nc` and `nv` stay what the masses give.
     ///
     /// # Errors
     /// The first fault of [`Material::faults`], a missing composition, or a composition or temperature out of range.

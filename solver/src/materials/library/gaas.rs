@@ -4,14 +4,15 @@ use super::super::law::{Linear, Mobility, Valley};
 use super::super::record::{Ladder, Minimum, OpticalModel, Origin, Record, Sourced};
 use super::cite;
 
-pub(super) static GAAS_DIRECT: Valley = Valley::Varshni { zero: 1.519, alpha: 5.405e-4, beta: 204.0 };
+const GAAS_GAP: Valley = Valley::Varshni { zero: 1.519, alpha: 5.405e-4, beta: 204.0 };
+pub(super) static GAAS_DIRECT: Valley = GAAS_GAP;
 static GAAS_X: Valley = Valley::Varshni { zero: 1.981, alpha: 4.60e-4, beta: 204.0 };
 static GAAS_L: Valley = Valley::Varshni { zero: 1.815, alpha: 6.05e-4, beta: 204.0 };
 static ALAS_DIRECT: Valley = Valley::Varshni { zero: 3.099, alpha: 8.85e-4, beta: 530.0 };
 static ALAS_X: Valley = Valley::Varshni { zero: 2.24, alpha: 7.0e-4, beta: 530.0 };
 static ALAS_L: Valley = Valley::Varshni { zero: 2.46, alpha: 6.05e-4, beta: 204.0 };
 
-static GAAS_ELECTRONS: Mobility = Mobility::CaugheyThomas {
+const ELECTRONS: Mobility = Mobility::CaugheyThomas {
     low: 500.0,
     high: 9400.0,
     reference: 6e16,
@@ -19,7 +20,7 @@ static GAAS_ELECTRONS: Mobility = Mobility::CaugheyThomas {
     lattice: 2.1,
     doping: 3.0,
 };
-static GAAS_HOLES: Mobility = Mobility::CaugheyThomas {
+const HOLES: Mobility = Mobility::CaugheyThomas {
     low: 20.0,
     high: 491.5,
     reference: 1.48e17,
@@ -28,15 +29,15 @@ static GAAS_HOLES: Mobility = Mobility::CaugheyThomas {
     doping: 3.0,
 };
 
+static GAAS_ELECTRONS: Mobility = ELECTRONS;
+static GAAS_HOLES: Mobility = HOLES;
+
 pub(crate) static GAAS: Record = Record {
     name: "GaAs",
     description: "gallium arsenide, the reference of the ladder of valence-band positions",
     composition: None,
     minima: Sourced {
-        law: &[Minimum {
-            valley: Valley::Varshni { zero: 1.519, alpha: 5.405e-4, beta: 204.0 },
-            mass: Linear(0.067, 0.0),
-        }],
+        law: &[Minimum { valley: GAAS_GAP, mass: Linear(0.067, 0.0) }],
         temperature: (20.0, 600.0),
         origin: Origin::SecondHand,
         source: cite::VURGAFTMAN,
@@ -67,27 +68,13 @@ pub(crate) static GAAS: Record = Record {
         source: cite::NSM,
     },
     electron_mobility: Sourced {
-        law: Mobility::CaugheyThomas {
-            low: 500.0,
-            high: 9400.0,
-            reference: 6e16,
-            power: 0.394,
-            lattice: 2.1,
-            doping: 3.0,
-        },
+        law: ELECTRONS,
         temperature: (77.0, 500.0),
         origin: Origin::FromMemory,
         source: cite::SOTOODEH,
     },
     hole_mobility: Sourced {
-        law: Mobility::CaugheyThomas {
-            low: 20.0,
-            high: 491.5,
-            reference: 1.48e17,
-            power: 0.38,
-            lattice: 2.2,
-            doping: 3.0,
-        },
+        law: HOLES,
         temperature: (77.0, 500.0),
         origin: Origin::FromMemory,
         source: cite::SOTOODEH,

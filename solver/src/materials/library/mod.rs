@@ -1,8 +1,8 @@
 //! The built-in materials: one record each. A value without a source is a defect; what is from memory says so.
 
-mod elemental;
+pub(crate) mod elemental;
 pub(crate) mod gaas;
-mod inp;
+pub(crate) mod inp;
 mod phosphides;
 
 use super::record::Record;

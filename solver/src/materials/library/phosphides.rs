@@ -7,6 +7,7 @@ use super::cite;
 static GAP_DIRECT: Valley = Valley::Phonon { zero: 2.886, strength: 0.1081, half: 164.0 };
 static ALP_DIRECT: Valley = Valley::Varshni { zero: 3.63, alpha: 5.771e-4, beta: 372.0 };
 static ALP_X: Valley = Valley::Varshni { zero: 2.52, alpha: 3.18e-4, beta: 588.0 };
+/// InP as the end of an alloy, from the collection that the alloy's bowing is from; the library's InP stands on another set.
 static INP_DIRECT: Valley = Valley::Varshni { zero: 1.4236, alpha: 3.63e-4, beta: 162.0 };
 /// The collection gives a change linear in T (beta = 0).
 static INP_X: Valley = Valley::Varshni { zero: 2.384, alpha: 3.7e-4, beta: 0.0 };

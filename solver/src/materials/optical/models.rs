@@ -4,6 +4,8 @@ use std::sync::{Arc, OnceLock};
 
 use crate::math::{Num, Scalar};
 
+use super::super::law::ROOM;
+use super::super::library;
 use super::super::record::{OpticalModel, Record};
 use super::table::{Edge, Table};
 use super::{IndirectTail, OpticalConstants, Shifted};
@@ -20,24 +22,24 @@ const STEEPER: (f64, f64) = (1.147, 0.45);
 /// Strength of AlInP's indirect absorption, m^-1 eV^-2: illustrative, 1000 cm^-1 at 0.32 eV above the edge.
 const INDIRECT: f64 = 1e6;
 
+/// A table and the gap of its sample at the table's temperature, eV.
+type Sample = (f64, Arc<Table>);
+
 struct Tables {
-    gaas: Arc<Table>,
-    /// Composition, direct gap of the sample, table.
-    algaas: Vec<(f64, f64, Arc<Table>)>,
-    gainp: Arc<Table>,
-    inp: Arc<Table>,
-    gainas: Arc<Table>,
-    si: Arc<Table>,
-    ge: Arc<Table>,
+    gaas: Sample,
+    /// Composition and table.
+    algaas: Vec<(f64, Sample)>,
+    gainp: Sample,
+    inp: Sample,
+    gainas: Sample,
+    si: Sample,
+    ge: Sample,
 }
 
-/// Direct gaps of the samples and of tables at about 300 K, eV.
-const GAAS_GAP: f64 = 1.42248;
-const INP_GAP: f64 = 1.35067;
+/// Gap of the GaInP sample, eV: where its table passes 8000 cm^-1 (an ordered sample).
 const GAINP_GAP: f64 = 1.8699;
+/// Gap of the GaInAs model at x = 0.48, eV: the library's alloy law there.
 const GAINAS_GAP: f64 = 0.748;
-const SI_GAP: f64 = 1.12452;
-const GE_GAP: f64 = 0.66339;
 
 macro_rules! data {
     ($file:literal) => {
@@ -56,7 +58,7 @@ const ALGAAS: [(f64, &str); 8] = [
     (0.804, data!("algaas_0804_aspnes.csv")),
 ];
 
-/// Every data file with the number of rows it holds.
+/// Every data file but those of AlGaAs.
 #[cfg(test)]
 pub(super) const FILES: [(&str, &str); 6] = [
     ("GaAs", data!("gaas_jellison.csv")),
@@ -78,26 +80,29 @@ fn sample_gap(x: f64) -> f64 {
 fn all() -> &'static Tables {
     static TABLES: OnceLock<Tables> = OnceLock::new();
     TABLES.get_or_init(|| {
-        let plain =
-            |name: &str, text: &str| Arc::new(Table::from_constants(&OpticalConstants::parse(name, text)));
+        let plain = |record: &Record, text: &str| {
+            let table = Table::from_constants(&OpticalConstants::parse(record.name, text));
+            (record.bands(0.0, ROOM).gap, Arc::new(table))
+        };
         let edged = |name: &str, text: &str, gap: f64, at_gap: f64, join: f64| {
             let edge = Edge { gap, at_gap, join, urbach: URBACH };
-            Arc::new(Table::with_edge(&OpticalConstants::parse(name, text), edge))
+            (gap, Arc::new(Table::with_edge(&OpticalConstants::parse(name, text), edge)))
         };
+        let gap = |record: &Record| record.bands(0.0, ROOM).gap;
         Tables {
-            gaas: edged("GaAs", data!("gaas_jellison.csv"), GAAS_GAP, AT_GAP, 1.484),
+            gaas: edged("GaAs", data!("gaas_jellison.csv"), gap(&library::gaas::GAAS), AT_GAP, 1.484),
             algaas: ALGAAS
                 .iter()
                 .map(|&(x, text)| {
                     let gap = sample_gap(x);
-                    (x, gap, edged("AlGaAs", text, gap, AT_GAP, gap + 0.015))
+                    (x, edged("AlGaAs", text, gap, AT_GAP, gap + 0.015))
                 })
                 .collect(),
             gainp: edged("GaInP", data!("gainp_schubert.csv"), GAINP_GAP, 8.17e5, 1.875),
-            inp: edged("InP", data!("inp_aspnes.csv"), INP_GAP, AT_GAP, 1.499),
+            inp: edged("InP", data!("inp_aspnes.csv"), gap(&library::inp::INP), AT_GAP, 1.499),
             gainas: edged("GaInAs", data!("ingaas_adachi.csv"), GAINAS_GAP, 4.5e5, 0.81),
-            si: plain("Si", data!("si_green.csv")),
-            ge: plain("Ge", data!("ge_nunley.csv")),
+            si: plain(&library::elemental::SI, data!("si_green.csv")),
+            ge: plain(&library::elemental::GE, data!("ge_nunley.csv")),
         }
     })
 }
@@ -130,26 +135,22 @@ pub(super) fn tables<P: Scalar>(
     let tables = all();
     let gap = record.bands(x, temperature).gap + moved;
     let whole = P::constant(1.0);
-    let one = |table: &Arc<Table>, own: f64, gap: P| {
-        vec![Shifted { table: table.clone(), shift: gap - own, share: whole }]
+    let one = |(own, table): &Sample, gap: P| {
+        vec![Shifted { table: table.clone(), shift: gap - *own, share: whole }]
     };
     match record.optics {
-        OpticalModel::GaAs => (one(&tables.gaas, GAAS_GAP, gap), None),
-        OpticalModel::InP => (one(&tables.inp, INP_GAP, gap), None),
-        OpticalModel::GaInP => (one(&tables.gainp, GAINP_GAP, gap), None),
-        OpticalModel::GaInAs => (one(&tables.gainas, GAINAS_GAP, gap), None),
-        OpticalModel::Si => (one(&tables.si, SI_GAP, gap), None),
-        OpticalModel::Ge => (one(&tables.ge, GE_GAP, gap), None),
+        OpticalModel::GaAs => (one(&tables.gaas, gap), None),
+        OpticalModel::InP => (one(&tables.inp, gap), None),
+        OpticalModel::GaInP => (one(&tables.gainp, gap), None),
+        OpticalModel::GaInAs => (one(&tables.gainas, gap), None),
+        OpticalModel::Si => (one(&tables.si, gap), None),
+        OpticalModel::Ge => (one(&tables.ge, gap), None),
         OpticalModel::AlInP => {
             let direct = record.minima.law[0].valley.energy(x, temperature) + moved;
-            (one(&tables.gainp, GAINP_GAP, direct), Some(IndirectTail { strength: INDIRECT, edge: gap }))
+            (one(&tables.gainp, direct), Some(IndirectTail { strength: INDIRECT, edge: gap }))
         }
         OpticalModel::AlGaAs => {
             let direct = optical_gap(record, x, temperature) + moved;
-            let at = |composition: f64| match tables.algaas.iter().find(|t| t.0 == composition) {
-                Some((_, own, table)) => (table, *own),
-                None => (&tables.gaas, GAAS_GAP),
-            };
             let used = compositions(x.value());
             let shares = match used.as_slice() {
                 [lower, upper] => {
@@ -162,8 +163,9 @@ pub(super) fn tables<P: Scalar>(
                 .iter()
                 .zip(shares)
                 .map(|(&composition, share)| {
-                    let (table, own) = at(composition);
-                    Shifted { table: table.clone(), shift: direct - own, share }
+                    let alloy = tables.algaas.iter().find(|t| t.0 == composition);
+                    let (own, table) = alloy.map_or(&tables.gaas, |t| &t.1);
+                    Shifted { table: table.clone(), shift: direct - *own, share }
                 })
                 .collect();
             (moved_tables, None)
