@@ -4,7 +4,7 @@ Everything of fermi_dirac_points and detailed_balance, every current of discrete
 current of each problem again in 50 digits, one point of each collocation device, the refinement of the discrete equations towards the
 continuous currents of reference_cases.json, and the manufactured solution's own checks.
 
-Run: python check_stored.py [TABLE.csv]   (about two minutes; the table of ASTM G173-03 is looked for in the solver's data if not given)
+Run: python check_stored.py [TABLE.csv]   (a few minutes; the table of ASTM G173-03 is looked for in the solver's data if not given)
 """
 
 import sys
