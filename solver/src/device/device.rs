@@ -39,14 +39,38 @@ impl<P: Scalar> Device<P> {
         for layer in &self.stack.layers {
             self.layer_warnings(layer, &mut warnings);
         }
+        self.temperature_warnings(&mut warnings);
         for pair in self.stack.layers.windows(2) {
             offset_warnings(&pair[0], &pair[1], &mut warnings);
         }
         warnings
     }
 
-    fn layer_warnings(&self, layer: &Layer<P>, warnings: &mut Vec<Warning>) {
+    /// One warning a material, however many layers it has; a value that one of them takes from the library counts.
+    fn temperature_warnings(&self, warnings: &mut Vec<Warning>) {
         let temperature = self.stack.temperature.value();
+        let mut outside: Vec<(&str, Vec<(&'static str, f64, f64)>)> = Vec::new();
+        for layer in &self.stack.layers {
+            for p in layer.material.provenance() {
+                let (low, high) = p.temperature;
+                if temperature >= low && temperature <= high {
+                    continue;
+                }
+                let name = layer.material.name();
+                let entry = (p.parameter.key(), low, high);
+                match outside.iter_mut().find(|o| o.0 == name) {
+                    Some(found) if found.1.contains(&entry) => {}
+                    Some(found) => found.1.push(entry),
+                    None => outside.push((name, vec![entry])),
+                }
+            }
+        }
+        for (material, outside) in outside {
+            warnings.push(Warning::TemperatureRange { material: material.to_string(), temperature, outside });
+        }
+    }
+
+    fn layer_warnings(&self, layer: &Layer<P>, warnings: &mut Vec<Warning>) {
         let material = layer.material.name().to_string();
         let provenance = layer.material.provenance();
         let lifetime = |p: &Parameter| matches!(p, Parameter::ElectronLifetime | Parameter::HoleLifetime);
@@ -86,16 +110,6 @@ impl<P: Scalar> Device<P> {
                     material: material.clone(),
                     parameter: p.parameter.key(),
                     source_text: p.source,
-                });
-            }
-            if temperature < p.temperature.0 || temperature > p.temperature.1 {
-                warnings.push(Warning::TemperatureRange {
-                    layer: layer.name.clone(),
-                    material: material.clone(),
-                    parameter: p.parameter.key(),
-                    temperature,
-                    low: p.temperature.0,
-                    high: p.temperature.1,
                 });
             }
         }

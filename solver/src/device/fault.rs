@@ -175,23 +175,15 @@ pub enum Warning {
         /// The source.
         source_text: &'static str,
     },
-    /// A temperature that a value's source does not cover.
-    #[error(
-        "layer `{layer}`: `{parameter}` of {material} is used at {temperature} K, its source covers {low} to {high} K"
-    )]
+    /// A temperature that the sources of some values do not cover.
+    #[error("{material} at {temperature} K is outside what its sources cover: {}", ranges(outside))]
     TemperatureRange {
-        /// The layer.
-        layer: String,
-        /// Its material.
+        /// The material, once for all its layers.
         material: String,
-        /// The parameter's word in scripts.
-        parameter: &'static str,
         /// Temperature of the stack, K.
         temperature: f64,
-        /// Lowest temperature covered, K.
-        low: f64,
-        /// Highest temperature covered, K.
-        high: f64,
+        /// The parameters' words in scripts, each with the lowest and highest temperature covered, K.
+        outside: Vec<(&'static str, f64, f64)>,
     },
     /// A band offset that rests on a value with no checked publication.
     #[error(
@@ -234,4 +226,19 @@ pub enum Warning {
         /// The model.
         source_text: String,
     },
+}
+
+/// Parameters grouped by the range that their sources cover: "`nc`, `nv` 200 to 500 K; ...".
+fn ranges(outside: &[(&'static str, f64, f64)]) -> String {
+    let mut groups: Vec<(f64, f64, Vec<String>)> = Vec::new();
+    for &(word, low, high) in outside {
+        let word = format!("`{word}`");
+        match groups.iter_mut().find(|g| g.0 == low && g.1 == high) {
+            Some(group) => group.2.push(word),
+            None => groups.push((low, high, vec![word])),
+        }
+    }
+    let one =
+        |(low, high, words): &(f64, f64, Vec<String>)| format!("{} {low} to {high} K", words.join(", "));
+    groups.iter().map(one).collect::<Vec<_>>().join("; ")
 }

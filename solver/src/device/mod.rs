@@ -4,6 +4,7 @@ pub mod check;
 #[allow(clippy::module_inception)] // the floor is named after what it makes
 mod device;
 pub mod fault;
+mod map;
 pub mod profile;
 pub mod stack;
 

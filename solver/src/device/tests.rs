@@ -2,6 +2,7 @@
 
 use super::*;
 use crate::materials::{Material, Parameter};
+use crate::math::Dual;
 use crate::optics::Reflectance;
 
 fn layer(name: &str, material: Material, thickness: f64) -> Layer {
@@ -66,17 +67,60 @@ fn a_good_stack_is_a_device_that_warns_of_illustrative_lifetimes() {
     assert_eq!(device.stack().layers.len(), 2);
 }
 
-/// Source: the temperature ranges of the library: none is left at room temperature, and 150 K leaves some.
+/// Source: the temperature ranges of the library: none is left at room temperature, at 150 K the mobilities of AlInP are, once
+/// for all its layers.
 #[test]
 fn temperatures_outside_a_source_are_warned_of() {
-    let count = |temperature: f64| {
+    let of = |temperature: f64| {
         let mut stack = good();
+        stack.layers.push(layer("second window", Material::library("AlInP", None), 3e-8));
+        stack.layers.push(layer("third window", Material::library("AlInP", None), 3e-8));
+        stack.interfaces = vec![None; 3];
         stack.temperature = temperature;
         let warnings = Device::new(stack).expect("valid").warnings();
-        warnings.iter().filter(|w| matches!(w, Warning::TemperatureRange { .. })).count()
+        let about = |w: &Warning| matches!(w, Warning::TemperatureRange { .. });
+        warnings.into_iter().filter(about).collect::<Vec<_>>()
     };
-    assert_eq!(count(298.15), 0);
-    assert!(count(150.0) > 0);
+    assert!(of(298.15).is_empty());
+    let cold = of(150.0);
+    let alinp: Vec<String> = cold.iter().map(Warning::to_string).filter(|w| w.starts_with("AlInP")).collect();
+    assert_eq!(alinp.len(), 1, "{cold:?}");
+    assert!(alinp[0].contains("`electron_mobility`, `hole_mobility` 200 to 400 K"), "{alinp:?}");
+}
+
+/// Source: the rules on absorption and offsets: what is mixed between tables, modelled or from memory is said, once a layer.
+#[test]
+fn mixed_and_modelled_absorption_and_remembered_offsets_are_warned_of() {
+    let mut stack = good();
+    stack.layers.push(layer("cap", Material::library("AlInP", None), 3e-8));
+    stack.layers.push(layer("wafer", Material::library("Ge", None), 1e-4));
+    stack.interfaces = vec![None; 3];
+    let warnings = Device::new(stack.clone()).expect("valid").warnings();
+    let has = |f: &dyn Fn(&Warning) -> bool| warnings.iter().filter(|w| f(w)).count();
+    assert_eq!(has(&|w| matches!(w, Warning::BetweenTables { layer, .. } if layer == "window")), 1);
+    assert_eq!(has(&|w| matches!(w, Warning::ModelAbsorption { layer, .. } if layer == "cap")), 1);
+    assert_eq!(has(&|w| matches!(w, Warning::Offset { material, .. } if material == "Ge")), 1);
+    for layer in &mut stack.layers {
+        layer.optics = LayerOptics::Inert;
+    }
+    let quiet = Device::new(stack).expect("valid").warnings();
+    assert!(
+        !quiet.iter().any(|w| matches!(w, Warning::BetweenTables { .. } | Warning::ModelAbsorption { .. }))
+    );
+}
+
+/// Source: identity: a stack turned into duals and back has the same numbers, and a derivative sits where it was put.
+#[test]
+fn stacks_turn_into_other_numbers() {
+    let mut stack = good();
+    stack.layers[0].donors = Profile::Linear { front: 1e23, rear: 2e23 };
+    stack.layers[1].acceptors = Profile::Table { depths: vec![0.0, 1e-7], values: vec![1e20, 2e20] };
+    stack.layers[1].material.overrides.insert(Parameter::ElectronLifetime, 1e-8);
+    stack.circuit.shunt_resistance = Some(1.0);
+    let mut dual: Stack<Dual<f64, 1>> = stack.map(Dual::fixed);
+    dual.layers[0].thickness = Dual::variable(3e-8, 0);
+    let back = Device::new(dual).expect("valid").into_stack().map(|v| v.re);
+    assert_eq!(format!("{stack:?}"), format!("{back:?}"));
 }
 
 /// Source: the list of limits; every planted fault must be found, all in one go, each with its place.

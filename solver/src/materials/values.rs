@@ -9,7 +9,8 @@ use super::material::{Material, MaterialBase, MaterialError, Values};
 use super::parameter::{Kind, Parameter};
 use super::record::{Ladder, Record};
 
-/// Electron affinity of GaAs, eV, at every temperature: the anchor between the ladder and the vacuum level. From memory.
+/// Electron affinity of GaAs, eV, at every temperature: the anchor between the ladder and the vacuum level.
+/// The NSM archive of semiconductor parameters (Ioffe Institute).
 pub(crate) const GAAS_AFFINITY: f64 = 4.07;
 
 /// Temperatures, K, within which anything is computed at all.

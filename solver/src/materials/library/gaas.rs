@@ -58,8 +58,9 @@ pub(crate) static GAAS: Record = Record {
     ladder: Sourced {
         law: Ladder::Step(0.0),
         temperature: (20.0, 1000.0),
-        origin: Origin::FromMemory,
-        source: "reference of the ladder; affinity 4.07 eV at every temperature, from memory",
+        origin: Origin::SecondHand,
+        source: "reference of the ladder; affinity 4.07 eV at every temperature, the NSM archive of semiconductor parameters (Ioffe \
+            Institute)",
     },
     permittivity: Sourced {
         law: Linear(12.90, 0.0),
