@@ -1,4 +1,8 @@
 //! Floor 2: the parameter library. Values with their validity ranges and sources, for library and custom materials alike.
+//!
+//! To add a material: write its record in `library/` (each law with its range, origin and source), list it in
+//! `library::ALL`, give it an `OpticalModel` with its source and, where it has a table, put the file with its citation into
+//! `data/` and its edge into `optical/models.rs`. The tests of this floor go over every record of the list.
 
 mod law;
 mod library;
