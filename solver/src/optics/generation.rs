@@ -68,9 +68,55 @@ pub struct Faces<P> {
 #[derive(Clone, Debug)]
 pub struct GenerationOperator<P> {
     matrix: CsMatI<P, u32, usize>,
+    destinations: Destinations<P>,
+}
+
+/// Where light of each wavelength goes, as shares of what falls on the stack.
+#[derive(Clone, Debug)]
+pub struct Destinations<P> {
     shares: Vec<Shares<P>>,
     absorbed: Vec<P>,
     layers: usize,
+}
+
+impl<P> Destinations<P> {
+    /// Shares of the light that no layer absorbs: `[wavelengths]`.
+    pub fn shares(&self) -> &[Shares<P>] {
+        &self.shares
+    }
+    /// Share absorbed in each layer at a wavelength: `[layers]`; empty beyond the last wavelength.
+    pub fn absorbed(&self, wavelength: usize) -> &[P] {
+        self.absorbed.get(wavelength * self.layers..(wavelength + 1) * self.layers).unwrap_or(&[])
+    }
+}
+
+/// Follows light of each wavelength through the layers and gives the photons absorbed in consecutive entries to
+/// `absorb`, as (wavelength, first entry, photons absorbed in it and the following per photon falling on the stack).
+///
+/// Every entry comes at most once for a wavelength, in increasing order; those that do not come absorb nothing.
+pub fn follow<P: Scalar>(
+    layers: &[OpticalLayer<P>],
+    faces: &Faces<P>,
+    mut absorb: impl FnMut(usize, usize, &[P]),
+) -> Destinations<P> {
+    let mut pass = Pass::new(layers, faces.from_rear);
+    let mut shares = Vec::with_capacity(faces.entrance.len());
+    let mut absorbed = vec![P::constant(0.0); faces.entrance.len() * layers.len()];
+    for (w, &(reflected, coating)) in faces.entrance.iter().enumerate() {
+        let lit = -faces.shading + 1.0;
+        let entered = lit * (-(reflected + coating) + 1.0);
+        let sums = &mut absorbed[w * layers.len()..(w + 1) * layers.len()];
+        let (transmitted, escaped) =
+            pass.column(layers, faces, w, entered, sums, |first, values| absorb(w, first, values));
+        shares.push(Shares {
+            shaded: faces.shading,
+            reflected: lit * reflected,
+            coating: lit * coating,
+            transmitted,
+            escaped,
+        });
+    }
+    Destinations { shares, absorbed, layers: layers.len() }
 }
 
 /// Light weaker than this share of what fell on the stack is followed no further.
@@ -81,35 +127,23 @@ impl<P: Scalar> GenerationOperator<P> {
     ///
     /// A layer whose absorption lacks a wavelength or a cell is transparent there.
     pub fn new(layers: &[OpticalLayer<P>], faces: &Faces<P>) -> Self {
-        let mut pass = Pass::new(layers, faces.from_rear);
+        let entries: usize = layers.iter().map(|layer| layer.half_widths.len() + 1).sum();
         let wavelengths = faces.entrance.len();
         let mut columns = Columns {
-            starts: Vec::with_capacity(wavelengths + 1),
-            entries: Vec::with_capacity(wavelengths * pass.entries),
-            values: Vec::with_capacity(wavelengths * pass.entries),
+            starts: vec![0; wavelengths + 1],
+            entries: Vec::with_capacity(wavelengths * entries),
+            values: Vec::with_capacity(wavelengths * entries),
         };
-        columns.starts.push(0);
-        let mut shares = Vec::with_capacity(wavelengths);
-        let mut absorbed = vec![P::constant(0.0); wavelengths * layers.len()];
-        for (w, &(reflected, coating)) in faces.entrance.iter().enumerate() {
-            let lit = -faces.shading + 1.0;
-            let entered = lit * (-(reflected + coating) + 1.0);
-            let sums = &mut absorbed[w * layers.len()..(w + 1) * layers.len()];
-            let (transmitted, escaped) = pass.column(layers, faces, w, entered, sums, &mut columns);
-            columns.starts.push(columns.values.len());
-            shares.push(Shares {
-                shaded: faces.shading,
-                reflected: lit * reflected,
-                coating: lit * coating,
-                transmitted,
-                escaped,
-            });
+        let destinations = follow(layers, faces, |w, first, values| columns.append(w, first, values));
+        // A wavelength that nothing absorbs ends where the one before it ended.
+        for w in 0..wavelengths {
+            columns.starts[w + 1] = columns.starts[w + 1].max(columns.starts[w]);
         }
-        let shape = (pass.entries, wavelengths);
-        let matrix = CsMatI::try_new_csc(shape, columns.starts, columns.entries, columns.values)
-            // Cannot fail: starts and entries increase by construction. The empty matrix keeps the shape.
-            .unwrap_or_else(|_| CsMatI::zero((wavelengths, pass.entries)).transpose_into());
-        GenerationOperator { matrix, shares, absorbed, layers: layers.len() }
+        let matrix =
+            CsMatI::try_new_csc((entries, wavelengths), columns.starts, columns.entries, columns.values)
+                // Cannot fail: starts and entries increase by construction. The empty matrix keeps the shape.
+                .unwrap_or_else(|_| CsMatI::zero((wavelengths, entries)).transpose_into());
+        GenerationOperator { matrix, destinations }
     }
 
     /// The matrix: entries by wavelengths, photons absorbed per photon falling on the stack.
@@ -118,11 +152,11 @@ impl<P: Scalar> GenerationOperator<P> {
     }
     /// Shares of the light that no layer absorbs: `[wavelengths]`.
     pub fn shares(&self) -> &[Shares<P>] {
-        &self.shares
+        self.destinations.shares()
     }
     /// Share absorbed in each layer at a wavelength: `[layers]`; empty beyond the last wavelength.
     pub fn absorbed(&self, wavelength: usize) -> &[P] {
-        self.absorbed.get(wavelength * self.layers..(wavelength + 1) * self.layers).unwrap_or(&[])
+        self.destinations.absorbed(wavelength)
     }
 
     /// Sum over wavelengths of the operator times one number each: with the photon flux of each wavelength,
@@ -166,8 +200,8 @@ struct Columns<P> {
 }
 
 impl<P: Scalar> Columns<P> {
-    /// Appends the elements of consecutive entries from `first` on to the last column, but not its zeros.
-    fn append(&mut self, values: &[P], first: usize) {
+    /// Appends the elements of consecutive entries from `first` on to the column of a wavelength, but not its zeros.
+    fn append(&mut self, wavelength: usize, first: usize, values: &[P]) {
         let zeros = values.iter().fold(0u32, |count, v| count + u32::from(v.value() == 0.0));
         let entries = (first as u32)..;
         if zeros == 0 || !plain::<P>() {
@@ -179,6 +213,7 @@ impl<P: Scalar> Columns<P> {
                 self.values.push(value);
             }
         }
+        self.starts[wavelength + 1] = self.values.len();
     }
 }
 
@@ -337,7 +372,8 @@ impl<P: Scalar> Pass<P> {
         flux
     }
 
-    /// One wavelength: writes its column and the sums per layer; returns the shares transmitted and escaped.
+    /// One wavelength: gives its column to `absorb` and fills the sums per layer; returns the shares transmitted and
+    /// escaped.
     fn column(
         &mut self,
         layers: &[OpticalLayer<P>],
@@ -345,7 +381,7 @@ impl<P: Scalar> Pass<P> {
         w: usize,
         entered: P,
         sums: &mut [P],
-        columns: &mut Columns<P>,
+        mut absorb: impl FnMut(usize, &[P]),
     ) -> (P, P) {
         let zero = P::constant(0.0);
         self.halves(layers, w);
@@ -402,9 +438,9 @@ impl<P: Scalar> Pass<P> {
             }
             if self.from_rear {
                 values.reverse();
-                columns.append(values, self.entries - range.end);
+                absorb(self.entries - range.end, values);
             } else {
-                columns.append(values, start);
+                absorb(start, values);
             }
         }
         let transmitted = forward * through * (-far + 1.0);

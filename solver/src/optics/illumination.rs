@@ -5,7 +5,7 @@ use crate::math::Scalar;
 use crate::quantity::constants::photon_energy;
 
 use super::coating::Index;
-use super::generation::{Absorption, Faces, GenerationOperator, OpticalLayer};
+use super::generation::{Absorption, Destinations, Faces, GenerationOperator, OpticalLayer, follow};
 use super::light::Light;
 use super::samples::Samples;
 
@@ -43,6 +43,16 @@ pub enum OpticsError {
     EmptyTable {
         /// Vacuum wavelength, m.
         wavelength: f64,
+    },
+    /// A number of the light that makes no sense.
+    #[error("{what} of the light must be {range}, found {value}")]
+    Light {
+        /// What it is, with its unit.
+        what: &'static str,
+        /// What it may be.
+        range: &'static str,
+        /// The value.
+        value: f64,
     },
     /// The nodes do not fit the stack.
     #[error("{layers} layers need as many lists of at least 2 nodes, got {lists}")]
@@ -123,7 +133,11 @@ enum Absorber<P> {
 
 impl<'a, P: Scalar, M: LayerMaterials<P>> LitStack<'a, P, M> {
     /// Prepares a light: evaluates absorption, reflectance and coating at its wavelengths.
+    ///
+    /// # Errors
+    /// For a light that is negative or not finite, and where the lit face has no reflectance.
     pub fn new(stack: &'a Stack<P>, materials: &'a M, light: &Light) -> Result<Self, OpticsError> {
+        check(light)?;
         let (edges, edge_of) = edges(stack, materials);
         Self::with_samples(stack, materials, Samples::new(light, &edges), &edge_of)
     }
@@ -213,6 +227,12 @@ impl<'a, P: Scalar, M: LayerMaterials<P>> LitStack<'a, P, M> {
     /// included: `[layers][nodes]`. With it, whether each layer's table covers each wavelength:
     /// `[layers][wavelengths]`.
     pub fn operator(&self, nodes: &[Vec<P>]) -> Result<(GenerationOperator<P>, Vec<Vec<bool>>), OpticsError> {
+        let (layers, covered) = self.layers(nodes)?;
+        Ok((GenerationOperator::new(&layers, &self.faces), covered))
+    }
+
+    /// The layers on a mesh as the light sees them, and whether each layer's table covers each wavelength.
+    fn layers(&self, nodes: &[Vec<P>]) -> Result<(Vec<OpticalLayer<P>>, Vec<Vec<bool>>), OpticsError> {
         if nodes.len() != self.stack.layers.len() || nodes.iter().any(|n| n.len() < 2) {
             return Err(OpticsError::Nodes { layers: self.stack.layers.len(), lists: nodes.len() });
         }
@@ -231,7 +251,7 @@ impl<'a, P: Scalar, M: LayerMaterials<P>> LitStack<'a, P, M> {
                 OpticalLayer { half_widths, absorption }
             })
             .collect();
-        Ok((GenerationOperator::new(&layers, &self.faces), covered))
+        Ok((layers, covered))
     }
 
     /// Absorption of a graded layer, at the middle of each cell.
@@ -255,24 +275,57 @@ impl<'a, P: Scalar, M: LayerMaterials<P>> LitStack<'a, P, M> {
     /// What the light does on a mesh: positions of each layer's nodes, m from the stack's front, both ends
     /// included: `[layers][nodes]`.
     pub fn illuminate(&self, nodes: &[Vec<P>]) -> Result<Illumination<P>, OpticsError> {
-        let (operator, covered) = self.operator(nodes)?;
+        let (layers, covered) = self.layers(nodes)?;
         let samples = &self.samples;
         let zero = P::constant(0.0);
+        // The operator applied to the light, without storing it: the same sums in the same order.
+        let entries = nodes.iter().map(Vec::len).sum();
+        let mut generation = vec![zero; entries];
+        let mut photon_energy = vec![zero; entries];
+        let destinations = follow(&layers, &self.faces, |w, first, values| {
+            let (flux, energy) = (samples.flux[w], samples.energy[w]);
+            let sums = generation[first..].iter_mut().zip(&mut photon_energy[first..]);
+            for ((pairs, joules), &value) in sums.zip(values) {
+                *pairs = *pairs + value * flux;
+                *joules = *joules + value * energy;
+            }
+        });
         let has_energy = samples.input_power.is_some();
         let missing = |covered: &[bool]| {
             let terms = covered.iter().zip(&samples.energy).filter(|(covered, _)| !**covered);
             terms.fold(zero, |sum, (_, &energy)| sum + energy)
         };
         Ok(Illumination {
-            generation: operator.apply(&samples.flux),
-            photon_energy: has_energy.then(|| operator.apply(&samples.energy)),
-            photons: account(&operator, &samples.flux, self.stack.layers.len()),
-            energy: has_energy.then(|| account(&operator, &samples.energy, self.stack.layers.len())),
+            generation,
+            photon_energy: has_energy.then_some(photon_energy),
+            photons: account(&destinations, &samples.flux, self.stack.layers.len()),
+            energy: has_energy.then(|| account(&destinations, &samples.energy, self.stack.layers.len())),
             uncovered: covered.iter().map(|c| missing(c)).collect(),
             uncovered_reflectance: missing(&self.face_covered),
             input_power: samples.input_power,
             flux_enters: samples.entered,
         })
+    }
+}
+
+/// Refuses light that is negative or not finite.
+fn check(light: &Light) -> Result<(), OpticsError> {
+    let amount = |what, value: f64| {
+        let sound = value >= 0.0 && value.is_finite();
+        if sound { Ok(()) } else { Err(OpticsError::Light { what, range: "finite and not negative", value }) }
+    };
+    match light {
+        Light::Dark => Ok(()),
+        Light::Spectrum { suns, .. } => amount("concentration in suns", *suns),
+        Light::Monochromatic { photon_flux, wavelength } => {
+            amount("photon flux, m^-2 s^-1,", *photon_flux)?;
+            match *wavelength {
+                Some(value) if !(value > 0.0 && value.is_finite()) => {
+                    Err(OpticsError::Light { what: "wavelength, m,", range: "positive and finite", value })
+                }
+                _ => Ok(()),
+            }
+        }
     }
 }
 
@@ -318,7 +371,7 @@ fn coefficients<P: Scalar, M: LayerMaterials<P>>(
 }
 
 /// Sums the shares of each wavelength times its flux.
-fn account<P: Scalar>(operator: &GenerationOperator<P>, flux: &[P], layers: usize) -> PhotonAccount<P> {
+fn account<P: Scalar>(destinations: &Destinations<P>, flux: &[P], layers: usize) -> PhotonAccount<P> {
     let zero = P::constant(0.0);
     let mut sum = PhotonAccount {
         incident: zero,
@@ -329,14 +382,14 @@ fn account<P: Scalar>(operator: &GenerationOperator<P>, flux: &[P], layers: usiz
         transmitted: zero,
         escaped: zero,
     };
-    for (w, (&flux, shares)) in flux.iter().zip(operator.shares()).enumerate() {
+    for (w, (&flux, shares)) in flux.iter().zip(destinations.shares()).enumerate() {
         sum.incident = sum.incident + flux;
         sum.shaded = sum.shaded + flux * shares.shaded;
         sum.reflected = sum.reflected + flux * shares.reflected;
         sum.coating = sum.coating + flux * shares.coating;
         sum.transmitted = sum.transmitted + flux * shares.transmitted;
         sum.escaped = sum.escaped + flux * shares.escaped;
-        for (total, &share) in sum.absorbed.iter_mut().zip(operator.absorbed(w)) {
+        for (total, &share) in sum.absorbed.iter_mut().zip(destinations.absorbed(w)) {
             *total = *total + flux * share;
         }
     }

@@ -11,7 +11,7 @@ pub mod samples;
 pub mod spectra;
 
 pub use coating::{FaceShares, Index};
-pub use generation::{Absorption, Faces, GenerationOperator, OpticalLayer, Shares};
+pub use generation::{Absorption, Destinations, Faces, GenerationOperator, OpticalLayer, Shares};
 pub use illumination::{Illumination, LayerMaterials, LitStack, OpticsError, PhotonAccount};
 pub use light::{Light, Spectrum};
 pub use reflectance::{Film, OpticalConstants, Reflectance};

@@ -254,9 +254,12 @@ impl Spectrum {
         Ok(Spectrum { name, source, wavelength, irradiance })
     }
 
+    /// Etendue of a hemisphere per receiving area, sr.
+    pub const HEMISPHERE: f64 = std::f64::consts::PI;
+
     /// Light of a black body.
     ///
-    /// `etendue` is the etendue per receiving area, sr: pi for a hemisphere of black surroundings (a surface at
+    /// `etendue` is the etendue per receiving area, sr: [`Spectrum::HEMISPHERE`], pi, for black surroundings (a surface at
     /// the body's own temperature would receive sigma T^4), 6.8e-5 for a disc the size of the sun, seen
     /// head-on from the Earth. `irradiance`, W/m2, scales the whole to that integral instead. Spectral
     /// irradiance `2 h c^2 / wavelength^5 / (exp(h c / (wavelength k T)) - 1)` times the etendue, M. Planck, Ann.

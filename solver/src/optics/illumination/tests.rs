@@ -294,3 +294,34 @@ fn derivatives_flow_through_the_whole_chain() {
         assert!((value.d[0] / slope - 1.0).abs() < 1e-6, "{i}: {} {slope}", value.d[0]);
     }
 }
+
+/// Truth: two ways to the same sums, through the stored matrix and without it, to the bit; rear mirror and light
+/// from the rear included.
+#[test]
+fn illumination_is_the_operator_applied_to_the_light() {
+    let d = [0.3e-6, 1.1e-6];
+    let bench =
+        Bench { scalar: vec![None, Some(7e5)], gap: vec![(1.6 * EV, 0.0); 2], index: None, graded: false };
+    for lit_from in [Side::Front, Side::Rear] {
+        let stack = stack(&d, StackOptics { lit_from, rear_reflectance: 0.8, ..bare() });
+        let light = sun(1.0);
+        let lit = LitStack::new(&stack, &bench, &light).expect("sound");
+        let result = lit.illuminate(&nodes(&d, 30)).expect("sound");
+        let (operator, _) = lit.operator(&nodes(&d, 30)).expect("sound");
+        assert_eq!(result.generation, operator.apply(lit.photon_flux()));
+        assert!(operator.matrix().outer_iterator().any(|c| c.data().is_empty()), "infrared passes");
+    }
+}
+
+/// Truth: light is neither negative nor without number.
+#[test]
+fn light_that_makes_no_sense_is_refused() {
+    let stack = stack(&[1e-6], bare());
+    let bench = Bench { scalar: vec![None], gap: vec![(EV, 0.0)], index: None, graded: false };
+    let mono = |photon_flux, wavelength| Light::Monochromatic { photon_flux, wavelength };
+    let bad = [sun(-1.0), sun(f64::NAN), mono(-1.0, None), mono(f64::INFINITY, None), mono(1.0, Some(0.0))];
+    for light in bad {
+        let fault = LitStack::new(&stack, &bench, &light).err().expect("refused");
+        assert!(matches!(fault, OpticsError::Light { .. }), "{fault}");
+    }
+}
