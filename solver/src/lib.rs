@@ -11,7 +11,12 @@
 
 pub mod analysis;
 pub mod device;
+pub mod discretise;
+pub mod linear;
 pub mod materials;
 pub mod math;
+pub mod mesh;
 pub mod optics;
+pub mod physics;
 pub mod quantity;
+pub mod solve;

@@ -20,3 +20,15 @@ pub struct Absent {
 
 /// A figure, or the reason why there is none.
 pub type Outcome = Result<Figure, Absent>;
+
+impl Figure {
+    /// A figure from its values on nested meshes, coarsest first.
+    pub fn from_levels(levels: Vec<f64>) -> Figure {
+        let e = crate::solve::extrapolation::extrapolate(&levels);
+        Figure { value: e.value, error: e.error, levels }
+    }
+    /// The order of accuracy that the last three meshes show; NaN where they are fewer or their differences vanish.
+    pub fn observed_order(&self) -> f64 {
+        crate::solve::extrapolation::extrapolate(&self.levels).order
+    }
+}

@@ -1,16 +1,30 @@
 //! The account of photons, carriers and free energy of a solution.
+//!
+//! Free energy after R. Brendel et al., Appl. Phys. Lett. 93, 173503 (2008) (from memory), in discrete form: generation
+//! times splitting equals delivered power plus recombination times splitting plus the transport losses of electrons and
+//! holes, each of which is >= 0.
+
+use crate::device::Device;
+use crate::discretise::residual::interface_recombination;
+use crate::discretise::{Carrier, Majority, Terminal, scales};
+use crate::math::sum::CompensatedSum;
+use crate::optics::{Illumination, PhotonAccount};
+use crate::quantity::constants::ELEMENTARY_CHARGE;
+use crate::solve::{Point, Problem};
+
+use super::profiles::{Local, locals};
 
 /// Which account a line belongs to.
 #[derive(Clone, Copy, Debug, PartialEq, Eq, PartialOrd, Ord)]
 pub enum LedgerPart {
     /// Photons, as a current density q times photons, A/m^2.
     Photons,
+    /// Photon energy, W/m^2.
+    PhotonEnergy,
     /// Carriers: generation, recombination, extraction, A/m^2.
     Carriers,
     /// Free energy, W/m^2.
     FreeEnergy,
-    /// Photon energy, W/m^2.
-    PhotonEnergy,
 }
 
 /// One line.
@@ -22,7 +36,7 @@ pub struct LedgerLine {
     pub place: String,
     /// What it is ("absorbed", "Shockley-Read-Hall", "electron transport", ...).
     pub channel: String,
-    /// A/m^2 or W/m^2; sources positive, sinks positive, told apart by `source`.
+    /// A/m^2 or W/m^2. What comes in and where it goes are both positive, told apart by `source`.
     pub value: f64,
     /// True for what comes in, false for where it goes.
     pub source: bool,
@@ -35,14 +49,248 @@ pub struct Ledger {
     pub lines: Vec<LedgerLine>,
     /// Photons in minus photons accounted for, over photons in.
     pub photon_closure: f64,
-    /// Difference of the terminal current and the independently evaluated edge current, A/m^2.
+    /// Terminal current minus the independently evaluated current of the best-conditioned edge, A/m^2.
     pub carrier_closure: f64,
-    /// What the difference may be by the rounding of that edge, A/m^2, plus 1e-9 of the current.
+    /// What that difference may be: 1e-9 of the current plus the rounding of that edge and of the sum, A/m^2.
     pub carrier_bound: f64,
-    /// Whether the check says anything: false where rounding dominates or the current had to be taken from the edges.
+    /// Whether the comparison says anything; false where rounding dominates it ("not independently checked").
     pub carrier_checked: bool,
     /// Free energy in minus out, W/m^2.
     pub energy_closure: f64,
     /// Bound on it: 1e-12 of the sum of absolute terms plus computed rounding, W/m^2.
     pub energy_bound: f64,
+}
+
+impl Ledger {
+    /// The lines of one account.
+    pub fn part(&self, part: LedgerPart) -> impl Iterator<Item = &LedgerLine> {
+        self.lines.iter().filter(move |l| l.part == part)
+    }
+    fn add(&mut self, part: LedgerPart, place: &str, channel: &str, value: f64, source: bool) {
+        self.lines.push(LedgerLine {
+            part,
+            place: place.to_string(),
+            channel: channel.to_string(),
+            value,
+            source,
+        });
+    }
+}
+
+const CHANNELS: [&str; 3] = ["Shockley-Read-Hall", "radiative", "Auger"];
+
+fn photon_lines(
+    ledger: &mut Ledger,
+    device: &Device,
+    part: LedgerPart,
+    account: &PhotonAccount<f64>,
+    unit: f64,
+) {
+    ledger.add(part, "", "incident", account.incident * unit, true);
+    ledger.add(part, "", "shaded by the grid", account.shaded * unit, false);
+    ledger.add(part, "", "reflected", account.reflected * unit, false);
+    ledger.add(part, "", "absorbed in the coating", account.coating * unit, false);
+    for (layer, absorbed) in device.stack().layers.iter().zip(&account.absorbed) {
+        ledger.add(part, &layer.name, "absorbed", absorbed * unit, false);
+    }
+    ledger.add(part, "", "escaped at the lit face", account.escaped * unit, false);
+    ledger.add(part, "", "transmitted", account.transmitted * unit, false);
+}
+
+/// Minority particle flux into a contact and the splitting there: the surface law, or the reaction of a pinned row.
+fn contact_recombination(problem: &Problem, which: usize, local: &Local) -> (f64, f64) {
+    let c = &problem.coefficients;
+    let system = problem.system();
+    let contact = &c.contacts[which];
+    let node = if which == 0 { 0 } else { c.nodes() - 1 };
+    if contact.recombining().is_some() {
+        return (system.surface[which].0, local.splitting);
+    }
+    let minority = match contact.majority {
+        Majority::Electron => Carrier::Hole,
+        _ => Carrier::Electron,
+    };
+    let edge = if which == 0 { 0 } else { c.nodes() - 2 };
+    // Leaving along the flux at the front for electrons and at the rear for holes, else against it; the half-cell's
+    // own recombination is not the contact's.
+    let along = (minority == Carrier::Electron) == (which == 0);
+    let flux =
+        if minority == Carrier::Electron { system.electron_flux[edge] } else { system.hole_flux[edge] };
+    ((if along { flux } else { -flux }) - system.net[node], 0.0)
+}
+
+/// Rounding of the current of one edge: a few units in the last place of every unknown that enters it.
+fn edge_rounding(problem: &Problem, point: &Point, k: usize) -> f64 {
+    let c = &problem.coefficients;
+    let system = problem.system();
+    let last = c.nodes() - 1;
+    let coupling = if k + 1 == last { system.ends[1].1 } else { system.jacobian.lower[k + 1] };
+    let other = if k == 0 { system.ends[0].1 } else { system.jacobian.upper[k] };
+    let mut sum = 0.0;
+    for row in 1..3 {
+        for column in 0..3 {
+            sum += coupling[(row, column)].abs() * point.state.nodes[k][column].abs();
+            sum += other[(row, column)].abs() * point.state.nodes[k + 1][column].abs();
+        }
+    }
+    4.0 * f64::EPSILON * sum
+}
+
+/// The account of a solved point. The problem must have been assembled at its state.
+pub(crate) fn ledger(
+    device: &Device,
+    illumination: &Illumination<f64>,
+    problem: &Problem,
+    point: &Point,
+) -> Ledger {
+    let c = &problem.coefficients;
+    let stack = device.stack();
+    let system = problem.system();
+    let terminal = Terminal::new(c, system);
+    let locals = locals(problem, point);
+    let mut ledger = Ledger::default();
+    let light = point.state.light;
+    let current = scales::CURRENT;
+    let power = scales::CURRENT * c.thermal_voltage;
+
+    photon_lines(&mut ledger, device, LedgerPart::Photons, &illumination.photons, ELEMENTARY_CHARGE);
+    let incident = illumination.photons.incident;
+    ledger.photon_closure = if incident > 0.0 { illumination.photons.closure() / incident } else { 0.0 };
+    if let Some(energy) = &illumination.energy {
+        photon_lines(&mut ledger, device, LedgerPart::PhotonEnergy, energy, 1.0);
+    }
+
+    // Sums over entries, by layer.
+    let layers = c.layers();
+    let mut generated = vec![0.0; layers];
+    let mut recombined = vec![[0.0; 3]; layers];
+    let mut generated_energy = vec![0.0; layers];
+    let mut recombined_energy = vec![[0.0; 3]; layers];
+    let mut gap_energy = vec![0.0; layers];
+    for ((e, layer, _), local) in c.places().zip(&locals) {
+        let entry = &c.entries[e];
+        let g = problem.generation[e] * light;
+        generated[layer] += g;
+        generated_energy[layer] += g * local.splitting;
+        gap_energy[layer] += g * (entry.affinity_and_gap - entry.affinity);
+        for channel in 0..3 {
+            let r = local.rates[channel] * entry.volume;
+            recombined[layer][channel] += r;
+            recombined_energy[layer][channel] += r * local.splitting;
+        }
+    }
+    let interfaces: Vec<(usize, f64, f64)> = c
+        .interfaces
+        .iter()
+        .enumerate()
+        .filter_map(|(l, i)| i.as_ref().map(|i| (l, i)))
+        .map(|(l, i)| {
+            let local = &locals[i.entry];
+            let rate = interface_recombination::<f64, f64>(i, &local.side, local.splitting);
+            (l, rate, rate * local.splitting)
+        })
+        .collect();
+    let surfaces = [
+        contact_recombination(problem, 0, &locals[0]),
+        contact_recombination(problem, 1, &locals[locals.len() - 1]),
+    ];
+
+    // Carriers.
+    let part = LedgerPart::Carriers;
+    for (layer, g) in stack.layers.iter().zip(&generated) {
+        ledger.add(part, &layer.name, "generation", g * current, true);
+    }
+    for (layer, rates) in stack.layers.iter().zip(&recombined) {
+        for (channel, r) in CHANNELS.iter().zip(rates) {
+            ledger.add(part, &layer.name, channel, r * current, false);
+        }
+    }
+    let between = |l: usize| format!("{} / {}", stack.layers[l].name, stack.layers[l + 1].name);
+    for (l, rate, _) in &interfaces {
+        ledger.add(part, &between(*l), "interface recombination", rate * current, false);
+    }
+    for (name, (rate, _)) in ["front contact", "rear contact"].into_iter().zip(&surfaces) {
+        ledger.add(part, name, "surface recombination", rate * current, false);
+    }
+    let delivered = if terminal.from_rows { -terminal.current } else { 0.0 };
+    ledger.add(part, "", "extracted", delivered * current, false);
+
+    // Free energy.
+    let part = LedgerPart::FreeEnergy;
+    let mut balance = CompensatedSum::<f64>::new();
+    let sources: f64 = generated_energy.iter().sum();
+    for (layer, g) in stack.layers.iter().zip(&generated_energy) {
+        ledger.add(part, &layer.name, "free energy generated", g * power, true);
+        balance.add(*g);
+    }
+    for (layer, rates) in stack.layers.iter().zip(&recombined_energy) {
+        for (channel, r) in CHANNELS.iter().zip(rates) {
+            ledger.add(part, &layer.name, channel, r * power, false);
+            balance.add(-r);
+        }
+    }
+    for (l, _, energy) in &interfaces {
+        ledger.add(part, &between(*l), "interface recombination", energy * power, false);
+        balance.add(-energy);
+    }
+    for (name, (rate, splitting)) in ["front contact", "rear contact"].into_iter().zip(&surfaces) {
+        ledger.add(part, name, "surface recombination", rate * splitting * power, false);
+        balance.add(-(rate * splitting));
+    }
+    for layer in 0..layers {
+        let (mut electrons, mut holes) = (0.0, 0.0);
+        for e in c.first[layer]..c.first[layer + 1] - 1 {
+            let k = e - layer;
+            let (a, b) = (&point.state.nodes[k], &point.state.nodes[k + 1]);
+            electrons -= system.electron_flux[k] * (b[1] - a[1]);
+            holes -= system.hole_flux[k] * (b[2] - a[2]);
+        }
+        let name = &stack.layers[layer].name;
+        ledger.add(part, name, "electron transport", electrons * power, false);
+        ledger.add(part, name, "hole transport", holes * power, false);
+        balance.add(-electrons);
+        balance.add(-holes);
+    }
+    let junction_voltage = point.state.voltage / c.thermal_voltage;
+    let device_power = -terminal.current * junction_voltage;
+    balance.add(-device_power);
+    let device_power = device_power * power;
+    let shunt = problem.shunt_conductance * point.state.voltage * point.state.voltage;
+    let series = problem.series_resistance * point.current * point.current;
+    if problem.shunt_conductance > 0.0 {
+        ledger.add(part, "", "shunt resistance", shunt, false);
+    }
+    if problem.series_resistance > 0.0 {
+        ledger.add(part, "", "series resistance", series, false);
+    }
+    ledger.add(part, "", "delivered to the terminals", device_power - shunt - series, false);
+    ledger.energy_closure = balance.value() * power;
+    // Every splitting holds the rounding of two levels; every flux that of its edge.
+    let largest = locals.iter().map(|l| l.phi_n.abs().max(l.phi_p.abs())).fold(1.0, f64::max);
+    let turnover: f64 =
+        generated.iter().sum::<f64>() + recombined.iter().flatten().map(|r| r.abs()).sum::<f64>();
+    let rounding = 8.0 * f64::EPSILON * largest * (turnover + terminal.magnitude);
+    ledger.energy_bound = (1e-12 * balance.magnitude() + rounding) * power;
+
+    // The photon side of it.
+    if let Some(absorbed) = &illumination.photon_energy {
+        let part = LedgerPart::PhotonEnergy;
+        let absorbed: f64 = absorbed.iter().sum::<f64>() * light;
+        let gaps = gap_energy.iter().sum::<f64>() * power;
+        ledger.add(part, "", "of it above the gap, to heat", absorbed - gaps, false);
+        ledger.add(part, "", "of it gap less splitting", gaps - sources * power, false);
+        ledger.add(part, "", "of it free energy generated", sources * power, false);
+    }
+
+    // The current of the best-conditioned edge, evaluated from the carriers there and nothing else.
+    let best =
+        (0..c.cells.len()).map(|k| (k, edge_rounding(problem, point, k))).min_by(|a, b| a.1.total_cmp(&b.1));
+    if let Some((k, rounding)) = best {
+        let edge = -c.polarity * (system.electron_flux[k] + system.hole_flux[k]);
+        let own = 16.0 * f64::EPSILON * terminal.magnitude;
+        ledger.carrier_closure = (terminal.current - edge) * current;
+        ledger.carrier_bound = (1e-9 * terminal.current.abs() + rounding + own) * current;
+        ledger.carrier_checked = terminal.from_rows && rounding < 1e-3 * terminal.magnitude;
+    }
+    ledger
 }

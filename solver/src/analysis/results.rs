@@ -1,5 +1,7 @@
 //! What the analyses return. SI units throughout.
 
+use crate::solve::Work as WorkCounts;
+
 use super::figure::{Figure, Outcome};
 use super::ledger::Ledger;
 
@@ -12,17 +14,20 @@ pub struct Warning {
     pub message: String,
 }
 
-/// Work done, pinned by tests.
-#[derive(Clone, Copy, Debug, Default, PartialEq, Eq)]
-pub struct WorkCounts {
-    /// Newton iterations (assemblies of residual and Jacobian).
-    pub newton_iterations: usize,
-    /// Factorisations.
-    pub factorisations: usize,
-    /// Right-hand sides solved, forward and transposed.
-    pub solves: usize,
-    /// Bias or light steps that had to be taken back.
-    pub rejected_steps: usize,
+impl Warning {
+    /// A device's warning.
+    pub fn of_device(warning: &crate::device::Warning) -> Warning {
+        use crate::device::Warning as Of;
+        let code = match warning {
+            Of::IllustrativeLifetime { .. } => "W201",
+            Of::IllustrativeValue { .. } => "W202",
+            Of::TemperatureRange { .. } => "W203",
+            Of::Offset { .. } => "W204",
+            Of::BetweenTables { .. } => "W205",
+            Of::ModelAbsorption { .. } => "W206",
+        };
+        Warning { code, message: warning.to_string() }
+    }
 }
 
 /// One point of a current-voltage curve, on the finest mesh.

@@ -4,14 +4,16 @@ pub mod check;
 #[allow(clippy::module_inception)] // the floor is named after what it makes
 mod device;
 pub mod fault;
+mod local;
 mod map;
 pub mod profile;
 pub mod stack;
 
+pub use crate::physics::Statistics;
 pub use device::Device;
 pub use fault::{Fault, Place, TableProblem, Warning};
 pub use profile::Profile;
-pub use stack::{Circuit, Contact, Interface, Layer, LayerOptics, Side, Stack, StackOptics, Statistics};
+pub use stack::{Circuit, Contact, Interface, Layer, LayerOptics, Side, Stack, StackOptics};
 
 #[cfg(test)]
 mod tests;

@@ -2,17 +2,9 @@
 
 use crate::materials::Material;
 use crate::optics::Reflectance;
+use crate::physics::Statistics;
 
 use super::profile::Profile;
-
-/// Carrier statistics.
-#[derive(Clone, Copy, Debug, PartialEq, Eq)]
-pub enum Statistics {
-    /// Fermi-Dirac, parabolic bands.
-    FermiDirac,
-    /// Boltzmann.
-    Boltzmann,
-}
 
 /// A face of the stack.
 #[derive(Clone, Copy, Debug, PartialEq, Eq)]

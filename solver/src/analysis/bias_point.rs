@@ -1,0 +1,92 @@
+//! One bias point: profiles, ledger, collection, extrapolated figures.
+
+use crate::device::Device;
+use crate::optics::Light;
+use crate::solve::Point;
+
+use super::collection::collection_probability;
+use super::figure::Figure;
+use super::ladder::{AnalysisError, Ladder, MOST, check_voltage};
+use super::ledger::{Ledger, LedgerPart, ledger};
+use super::profiles::{barriers, profiles, sheet_resistance};
+use super::results::BiasPoint;
+
+/// The solution under `light` at a terminal voltage, V.
+pub fn bias_point(device: &Device, light: &Light, voltage: f64) -> Result<BiasPoint, AnalysisError> {
+    check_voltage(voltage)?;
+    let mut ladder = Ladder::new(device, light)?;
+    let mut points = vec![ladder.coarse(voltage)?];
+    let mut ledgers = vec![account(&mut ladder, 0, &points[0])];
+    loop {
+        let rung = points.len();
+        let drive = ladder.rungs[rung].problem.drive(voltage);
+        let point = ladder.finer(rung, &points[rung - 1], drive)?;
+        ledgers.push(account(&mut ladder, rung, &point));
+        points.push(point);
+        if points.len() >= MOST || points.len() > 2 && accurate(device.stack().accuracy, &points, &ledgers) {
+            break;
+        }
+        ladder.refine()?;
+    }
+    Ok(collect(&mut ladder, voltage, points, ledgers))
+}
+
+/// Whether the current and the carrier lines are as accurate as asked: the current (or where it is nothing beside the
+/// turnover, a thousandth of that) to the accuracy, each line that matters (1e-9 of the turnover) to a hundred times it.
+fn accurate(accuracy: f64, points: &[Point], ledgers: &[Ledger]) -> bool {
+    let lines: Vec<Vec<f64>> =
+        ledgers.iter().map(|l| l.part(LedgerPart::Carriers).map(|l| l.value).collect()).collect();
+    let finest = &lines[lines.len() - 1];
+    let turnover = finest.iter().fold(0.0, |a: f64, b| a.max(b.abs()));
+    let current = Figure::from_levels(points.iter().map(|p| p.current).collect());
+    current.error <= accuracy * current.value.abs().max(1e-3 * turnover)
+        && (0..finest.len()).all(|k| {
+            let line = Figure::from_levels(lines.iter().map(|m| m[k]).collect());
+            line.value.abs() < 1e-9 * turnover || line.error <= 100.0 * accuracy * line.value.abs()
+        })
+}
+
+/// The dark equilibrium.
+pub fn equilibrium(device: &Device) -> Result<BiasPoint, AnalysisError> {
+    bias_point(device, &Light::Dark, 0.0)
+}
+
+fn account(ladder: &mut Ladder, rung: usize, point: &Point) -> Ledger {
+    let device = ladder.device;
+    let rung = &mut ladder.rungs[rung];
+    rung.problem.assemble(&point.state);
+    ledger(device, &rung.illumination, &rung.problem, point)
+}
+
+fn collect(ladder: &mut Ladder, voltage: f64, points: Vec<Point>, mut ledgers: Vec<Ledger>) -> BiasPoint {
+    let carrier =
+        |ledger: &Ledger| -> Vec<f64> { ledger.part(LedgerPart::Carriers).map(|l| l.value).collect() };
+    let by_mesh: Vec<Vec<f64>> = ledgers.iter().map(carrier).collect();
+    let lines = by_mesh[0].len();
+    let carrier_figures =
+        (0..lines).map(|k| Figure::from_levels(by_mesh.iter().map(|m| m[k]).collect())).collect();
+    let current_density = Figure::from_levels(points.iter().map(|p| p.current).collect());
+    let finest = points.len() - 1;
+    let point = &points[finest];
+    let problem = &mut ladder.rungs[finest].problem;
+    let collection = collection_probability(problem, point).unwrap_or_default();
+    let profiles = profiles(problem, point, &collection);
+    let sheet_resistance = sheet_resistance(problem, &profiles);
+    let barriers = barriers(problem);
+    let warnings = ladder.warnings();
+    BiasPoint {
+        voltage,
+        junction_voltage: point.state.voltage,
+        current_density,
+        own_current_density: point.current,
+        conductance: point.conductance,
+        profiles,
+        ledger: ledgers.swap_remove(finest),
+        carrier_figures,
+        sheet_resistance,
+        barriers,
+        nodes: ladder.nodes(),
+        counts: ladder.work(),
+        warnings,
+    }
+}

@@ -1,0 +1,403 @@
+//! Current-voltage curves and their figures of merit, each solved for.
+
+use crate::device::Device;
+use crate::optics::Light;
+use crate::solve::continuation::hermite;
+use crate::solve::extrapolation::extrapolate;
+use crate::solve::{Drive, Point};
+
+use super::figure::{Absent, Figure, Outcome};
+use super::ladder::{AnalysisError, LARGEST_VOLTAGE, Ladder, MOST, check_voltage};
+use super::results::{CurrentVoltage, JvPoint, Voltages};
+
+/// Step of the scan that brackets open circuit and maximum power, V.
+const SCAN: f64 = 0.05;
+/// Step of automatic curves, V.
+const AUTOMATIC: f64 = 0.02;
+/// The maximum-power voltage is solved to this step, V; the power errs by its square.
+const POWER_STEP: f64 = 1e-9;
+
+/// The solved points of one mesh.
+#[derive(Default)]
+struct Curve {
+    points: Vec<Point>,
+    short: Option<Point>,
+    open: Option<Point>,
+    power: Option<Point>,
+}
+
+/// A current-voltage curve under `light`, at terminal voltages given or automatic.
+///
+/// Jsc, Voc and maximum power are solved for on every mesh (Voc as a bordered system, maximum power as the root of
+/// `J + V dJ/dV` by a guarded secant); curve points hold the finest mesh's values and their extrapolation.
+pub fn current_voltage(
+    device: &Device,
+    light: &Light,
+    voltages: &Voltages,
+) -> Result<CurrentVoltage, AnalysisError> {
+    if let Voltages::Given(list) = voltages {
+        for &v in list {
+            check_voltage(v)?;
+        }
+    }
+    let mut ladder = Ladder::new(device, light)?;
+    let lit = ladder.rungs[0].problem.is_lit();
+    let junction = ladder.rungs[0].problem.coefficients.junction;
+
+    let mut stopped = None;
+    let (mut asked, mut curve) = coarse_curve(&mut ladder, voltages, lit && junction, &mut stopped)?;
+    let mut curves: Vec<Curve> = Vec::new();
+    let mut rung = 1;
+    loop {
+        let finer = finer_curve(&mut ladder, rung, &curve, &mut stopped)?;
+        curves.push(std::mem::replace(&mut curve, finer));
+        // Points beyond the first failure of any mesh are left out.
+        let solved = curve.points.len();
+        asked.truncate(solved);
+        let worst = worst_error(&curves, &curve);
+        rung += 1;
+        if rung >= MOST || worst <= device.stack().accuracy {
+            break;
+        }
+        ladder.refine()?;
+    }
+    curves.push(curve);
+
+    Ok(collect(&ladder, curves, asked, lit, junction, stopped))
+}
+
+/// Solves on the coarsest mesh by continuation: the scan, the figures and the points.
+fn coarse_curve(
+    ladder: &mut Ladder,
+    voltages: &Voltages,
+    photovoltaic: bool,
+    stopped: &mut Option<String>,
+) -> Result<(Vec<f64>, Curve), AnalysisError> {
+    let tolerances = ladder.tolerances;
+    let start = ladder.coarse(0.0)?;
+    let mut curve = Curve { short: photovoltaic.then(|| start.clone()), ..Curve::default() };
+    if photovoltaic && start.current < 0.0 {
+        let mut scan = vec![start.clone()];
+        let problem = &mut ladder.rungs[0].problem;
+        let limit = (problem.built_in_voltage() + 1.0).clamp(1.0, LARGEST_VOLTAGE);
+        while let Some(last) = scan.last() {
+            if last.current > 0.0 || last.voltage > limit {
+                break;
+            }
+            let before = scan.len().checked_sub(2).map(|k| &scan[k]);
+            match problem.advance(before, last, SCAN * scan.len() as f64, &tolerances) {
+                Ok(point) => scan.push(point),
+                Err(_) => break,
+            }
+        }
+        let crossing = scan.windows(2).position(|w| w[0].current <= 0.0 && w[1].current > 0.0);
+        if let Some(k) = crossing {
+            let (a, b) = (&scan[k], &scan[k + 1]);
+            let share = a.current / (a.current - b.current);
+            // The current rises like an exponential: start nearer the far end than the chord says.
+            let guess = hermite(a, b, a.state.voltage + (b.state.voltage - a.state.voltage) * share.max(0.5));
+            let open = problem
+                .newton(&guess, Drive::Current(0.0), &tolerances)
+                .or_else(|_| problem.newton(&b.state, Drive::Current(0.0), &tolerances));
+            curve.open = open.ok();
+            curve.power = best_power(ladder, &scan[..=k + 1]);
+        }
+    }
+    let asked = match voltages {
+        Voltages::Given(list) => list.clone(),
+        Voltages::Automatic => automatic(ladder, &curve, photovoltaic),
+    };
+    // Outwards from zero, so that each point starts next to a solved one; then back into the order asked for.
+    let mut order: Vec<usize> = (0..asked.len()).collect();
+    order.sort_by(|&a, &b| {
+        (asked[a] < 0.0)
+            .cmp(&(asked[b] < 0.0))
+            .then(asked[a].abs().total_cmp(&asked[b].abs()))
+            .then(a.cmp(&b))
+    });
+    let mut solved: Vec<Option<Point>> = vec![None; asked.len()];
+    for negative in [false, true] {
+        let (mut before, mut here): (Option<Point>, Point) = (None, start.clone());
+        for &k in order.iter().filter(|&&k| (asked[k] < 0.0) == negative) {
+            if asked[k] != here.voltage {
+                match ladder.rungs[0].problem.advance(before.as_ref(), &here, asked[k], &tolerances) {
+                    Ok(point) => before = Some(std::mem::replace(&mut here, point)),
+                    Err(error) => {
+                        stopped.get_or_insert(ladder.located(0, error).to_string());
+                        break;
+                    }
+                }
+            }
+            solved[k] = Some(here.clone());
+        }
+    }
+    let mut kept = Vec::new();
+    for (voltage, point) in asked.iter().zip(solved) {
+        if let Some(point) = point {
+            kept.push(*voltage);
+            curve.points.push(point);
+        }
+    }
+    Ok((kept, curve))
+}
+
+/// The voltages of an automatic curve.
+fn automatic(ladder: &Ladder, curve: &Curve, photovoltaic: bool) -> Vec<f64> {
+    let built_in = ladder.rungs[0].problem.built_in_voltage();
+    let steps = |from: f64, to: f64| {
+        let (a, b) = ((from / AUTOMATIC).round() as i64, (to / AUTOMATIC).ceil() as i64);
+        // Divided, so that 0.3 V is the number nearest to 0.3.
+        (a..=b).map(|k| k as f64 / (1.0 / AUTOMATIC).round()).collect()
+    };
+    match (&curve.open, photovoltaic) {
+        (Some(open), true) if open.voltage > 0.0 => steps(0.0, open.voltage + 2.0 * AUTOMATIC),
+        (_, true) => steps(0.0, built_in.clamp(0.1, LARGEST_VOLTAGE)),
+        _ if ladder.rungs[0].problem.coefficients.junction => {
+            steps(-0.5, built_in.clamp(0.1, LARGEST_VOLTAGE))
+        }
+        _ => steps(-0.5, 0.5),
+    }
+}
+
+/// The point of maximum power from a scan that passes it: the best interval of the whole scan, then the exact root.
+fn best_power(ladder: &mut Ladder, scan: &[Point]) -> Option<Point> {
+    let k = (0..scan.len()).max_by(|&a, &b| power(&scan[a]).total_cmp(&power(&scan[b])))?;
+    let (low, high) = (k.saturating_sub(1), (k + 1).min(scan.len() - 1));
+    // Keep the two neighbours between which the slope of the power changes sign.
+    let (a, b) = if power_slope(&scan[k]) < 0.0 { (k, high) } else { (low, k) };
+    if a == b {
+        return None;
+    }
+    maximum_power(ladder, 0, scan[a].clone(), scan[b].clone())
+}
+
+fn power(p: &Point) -> f64 {
+    -p.current * p.voltage
+}
+
+/// `J + V dJ/dV`: minus the slope of the delivered power.
+fn power_slope(p: &Point) -> f64 {
+    p.current + p.voltage * p.conductance
+}
+
+/// The root of [`power_slope`] between two points of a mesh where it changes sign: Newton steps with the curvature of an
+/// exponential through the last two points, kept inside the bracket.
+fn maximum_power(ladder: &mut Ladder, rung: usize, mut a: Point, mut b: Point) -> Option<Point> {
+    if power_slope(&a) > 0.0 || power_slope(&b) < 0.0 {
+        return None;
+    }
+    let tolerances = ladder.tolerances;
+    let mut here = if power_slope(&a).abs() < power_slope(&b).abs() { a.clone() } else { b.clone() };
+    let mut other = if here.voltage == a.voltage { b.clone() } else { a.clone() };
+    for _ in 0..60 {
+        let step = power_step(&here, &other);
+        let mut next = here.voltage + step;
+        if step.abs() <= POWER_STEP {
+            return Some(here);
+        }
+        let (low, high) = (a.voltage.min(b.voltage), a.voltage.max(b.voltage));
+        if !(next > low && next < high) {
+            next = 0.5 * (low + high);
+        }
+        let problem = &mut ladder.rungs[rung].problem;
+        let share = (next - a.voltage) / (b.voltage - a.voltage);
+        let guess = hermite(&a, &b, a.state.voltage + share * (b.state.voltage - a.state.voltage));
+        let drive = problem.drive(next);
+        let point = problem.newton(&guess, drive, &tolerances).ok()?;
+        if power_slope(&point) < 0.0 {
+            a = point.clone();
+        } else {
+            b = point.clone();
+        }
+        other = std::mem::replace(&mut here, point);
+    }
+    None
+}
+
+/// Newton step on the power's slope: `J'' = J' ln(J'_1/J'_2)/(V_1 - V_2)` from two points.
+fn power_step(here: &Point, other: &Point) -> f64 {
+    let distance = here.voltage - other.voltage;
+    let ratio = here.conductance / other.conductance;
+    let rate =
+        if ratio > 0.0 && distance != 0.0 { crate::math::elementary::ln(ratio) / distance } else { 0.0 };
+    let slope = 2.0 * here.conductance + here.voltage * here.conductance * rate;
+    -power_slope(here) / slope
+}
+
+/// Solves on a finer mesh, each point from the coarser mesh's and its neighbour's correction.
+fn finer_curve(
+    ladder: &mut Ladder,
+    rung: usize,
+    coarse: &Curve,
+    stopped: &mut Option<String>,
+) -> Result<Curve, AnalysisError> {
+    let mut curve = Curve::default();
+    let drive_of = |ladder: &Ladder, p: &Point| ladder.rungs[rung].problem.drive(p.voltage);
+    if let Some(p) = &coarse.short {
+        let drive = drive_of(ladder, p);
+        curve.short = Some(ladder.finer(rung, p, drive)?);
+    }
+    if let Some(p) = &coarse.open {
+        curve.open = Some(ladder.finer(rung, p, Drive::Current(0.0))?);
+    }
+    if let Some(p) = &coarse.power {
+        curve.power = finer_power(ladder, rung, p)?;
+    }
+    let mut previous: Option<(&Point, Point)> = None;
+    for p in &coarse.points {
+        let mut guess = ladder.prolonged(rung, p);
+        if let Some((coarse_before, fine_before)) = &previous {
+            let base = ladder.prolonged(rung, coarse_before);
+            for ((x, f), b) in guess.nodes.iter_mut().zip(&fine_before.state.nodes).zip(&base.nodes) {
+                for k in 0..3 {
+                    x[k] += f[k] - b[k];
+                }
+            }
+        }
+        let drive = drive_of(ladder, p);
+        match ladder.solve_from(rung, &guess, drive, p.voltage) {
+            Ok(point) => {
+                curve.points.push(point.clone());
+                previous = Some((p, point));
+            }
+            Err(error) => {
+                stopped.get_or_insert(error.to_string());
+                break;
+            }
+        }
+    }
+    Ok(curve)
+}
+
+/// Maximum power on a finer mesh, from the coarser mesh's point.
+fn finer_power(ladder: &mut Ladder, rung: usize, coarse: &Point) -> Result<Option<Point>, AnalysisError> {
+    let drive = ladder.rungs[rung].problem.drive(coarse.voltage);
+    let mut here = ladder.finer(rung, coarse, drive)?;
+    // A second point a little way off gives the curvature.
+    let tolerances = ladder.tolerances;
+    let aim = coarse.voltage * 0.995;
+    let mut other = match ladder.rungs[rung].problem.advance(None, &here, aim, &tolerances) {
+        Ok(point) => point,
+        Err(_) => return Ok(None),
+    };
+    for _ in 0..20 {
+        let step = power_step(&here, &other);
+        if !step.is_finite() {
+            return Ok(None);
+        }
+        if step.abs() <= POWER_STEP {
+            return Ok(Some(here));
+        }
+        let aim = here.voltage + step.clamp(-SCAN, SCAN);
+        match ladder.rungs[rung].problem.advance(Some(&other), &here, aim, &tolerances) {
+            Ok(point) => other = std::mem::replace(&mut here, point),
+            Err(_) => return Ok(None),
+        }
+    }
+    Ok(None)
+}
+
+fn levels(curves: &[Curve], read: impl Fn(&Curve) -> Option<f64>) -> Vec<f64> {
+    curves.iter().filter_map(read).collect()
+}
+
+/// The largest relative error of the figures, or of the points where there are none.
+fn worst_error(done: &[Curve], last: &Curve) -> f64 {
+    let read = |f: &dyn Fn(&Curve) -> Option<f64>| -> Option<f64> {
+        let list: Vec<f64> = done.iter().chain(std::iter::once(last)).filter_map(f).collect();
+        (list.len() == done.len() + 1).then(|| {
+            let e = extrapolate(&list);
+            e.error / e.value.abs()
+        })
+    };
+    let figures = [
+        read(&|c| c.short.as_ref().map(|p| p.current)),
+        read(&|c| c.open.as_ref().map(|p| p.voltage)),
+        read(&|c| c.power.as_ref().map(power)),
+    ];
+    let worst = figures.iter().flatten().fold(f64::NAN, |a: f64, b| a.max(*b));
+    if !worst.is_nan() {
+        return worst;
+    }
+    let scale = last.points.iter().map(|p| p.current.abs()).fold(0.0, f64::max);
+    (0..last.points.len())
+        .filter_map(|k| read(&|c| c.points.get(k).map(|p| p.current)).map(|e| (e, last.points[k].current)))
+        // A point that is nothing beside the curve (zero bias in the dark) asks for no finer mesh.
+        .filter(|(_, current)| current.abs() > 1e-30 * scale)
+        .map(|(error, _)| 0.1 * error)
+        .fold(0.0, f64::max)
+}
+
+fn collect(
+    ladder: &Ladder,
+    curves: Vec<Curve>,
+    asked: Vec<f64>,
+    lit: bool,
+    junction: bool,
+    stopped: Option<String>,
+) -> CurrentVoltage {
+    let finest = &curves[curves.len() - 1];
+    let count = curves.iter().map(|c| c.points.len()).min().unwrap_or(0);
+    let points = (0..count)
+        .map(|k| {
+            let p = &finest.points[k];
+            JvPoint {
+                voltage: asked[k],
+                junction_voltage: p.state.voltage,
+                current_density: p.current,
+                conductance: p.conductance,
+                extrapolated: Figure::from_levels(levels(&curves, |c| c.points.get(k).map(|p| p.current))),
+            }
+        })
+        .collect();
+    let reason = |text: &str| Absent { reason: text.to_string() };
+    let why_none = if !junction {
+        Some("the outermost layers make no junction")
+    } else if !lit {
+        Some("no light is absorbed")
+    } else if finest.short.as_ref().is_some_and(|p| p.current >= 0.0) {
+        Some("the photocurrent does not flow against the forward diode current")
+    } else {
+        None
+    };
+    let figure = |what: &str, read: &dyn Fn(&Curve) -> Option<f64>| -> Outcome {
+        if let Some(text) = why_none {
+            return Err(reason(text));
+        }
+        let list = levels(&curves, read);
+        if list.len() == curves.len() {
+            Ok(Figure::from_levels(list))
+        } else {
+            Err(reason(&format!("{what} was not reached within the voltages that could be solved")))
+        }
+    };
+    let jsc = figure("short circuit", &|c| c.short.as_ref().map(|p| -p.current));
+    let voc = figure("open circuit", &|c| c.open.as_ref().map(|p| p.voltage));
+    let max_power = figure("maximum power", &|c| c.power.as_ref().map(power));
+    let mpp_voltage = figure("maximum power", &|c| c.power.as_ref().map(|p| p.voltage));
+    let mpp_current = figure("maximum power", &|c| c.power.as_ref().map(|p| -p.current));
+    let fill_factor = figure("maximum power", &|c| {
+        Some(power(c.power.as_ref()?) / (-c.short.as_ref()?.current * c.open.as_ref()?.voltage))
+    });
+    let input_power = ladder.rungs[0].illumination.input_power;
+    let efficiency = match input_power {
+        Some(input) => figure("maximum power", &|c| Some(power(c.power.as_ref()?) / input)),
+        None => Err(reason(why_none.unwrap_or("the light has no wavelength, so its photons have no energy"))),
+    };
+    let warnings = ladder.warnings();
+    CurrentVoltage {
+        points,
+        jsc,
+        voc,
+        max_power,
+        mpp_voltage,
+        mpp_current,
+        fill_factor,
+        efficiency,
+        input_power,
+        nodes: ladder.nodes(),
+        counts: ladder.work(),
+        warnings,
+        stopped,
+    }
+}

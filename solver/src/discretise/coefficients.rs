@@ -1,0 +1,282 @@
+//! The coefficients of the discrete equations: a device on a mesh.
+
+use crate::device::{Device, Stack};
+use crate::materials::Values;
+use crate::math::{Over, Scalar};
+use crate::mesh::Mesh;
+use crate::physics::Statistics;
+use crate::physics::shockley_read_hall::Level;
+use crate::quantity::constants::{BOLTZMANN, ELEMENTARY_CHARGE, VACUUM_PERMITTIVITY};
+
+use super::contact::{Carrier, ContactLaw, Majority};
+use super::scales;
+
+/// One side of a node: the material there and the half control volumes that belong to it.
+#[derive(Clone, Copy, Debug)]
+pub struct Entry<P> {
+    /// Control volume per area.
+    pub volume: P,
+    /// Electron affinity over kT.
+    pub affinity: P,
+    /// Affinity plus gap over kT.
+    pub affinity_and_gap: P,
+    /// ln Nc.
+    pub ln_conduction: P,
+    /// ln Nv.
+    pub ln_valence: P,
+    /// Donors minus acceptors.
+    pub doping: P,
+    /// The Shockley-Read-Hall level.
+    pub level: Level<P>,
+    /// Radiative coefficient.
+    pub radiative: P,
+    /// Auger coefficient C_n.
+    pub electron_auger: P,
+    /// Auger coefficient C_p.
+    pub hole_auger: P,
+}
+
+impl<P: Scalar> Entry<P> {
+    /// The real parts.
+    pub fn plain(&self) -> Entry<f64> {
+        Entry {
+            volume: self.volume.value(),
+            affinity: self.affinity.value(),
+            affinity_and_gap: self.affinity_and_gap.value(),
+            ln_conduction: self.ln_conduction.value(),
+            ln_valence: self.ln_valence.value(),
+            doping: self.doping.value(),
+            level: Level {
+                electron_rate: self.level.electron_rate.value(),
+                hole_rate: self.level.hole_rate.value(),
+                n1: self.level.n1.value(),
+                p1: self.level.p1.value(),
+            },
+            radiative: self.radiative.value(),
+            electron_auger: self.electron_auger.value(),
+            hole_auger: self.hole_auger.value(),
+        }
+    }
+}
+
+/// A cell between two nodes.
+#[derive(Clone, Copy, Debug)]
+pub struct Cell<P> {
+    /// Permittivity over width: displacement per potential difference.
+    pub displacement: P,
+    /// Diffusion coefficient of electrons over width.
+    pub electron: P,
+    /// Diffusion coefficient of holes over width.
+    pub hole: P,
+    /// Width.
+    pub width: P,
+}
+
+/// Recombination at an interface: a level with velocities in place of rates, and the entry whose carriers it sees.
+#[derive(Clone, Copy, Debug)]
+pub struct InterfaceRecombination<P> {
+    /// The level.
+    pub level: Level<P>,
+    /// The entry on the side of the smaller gap.
+    pub entry: usize,
+}
+
+/// A device on a mesh: all that the residual needs but the state, the bias and the generation.
+#[derive(Clone, Debug)]
+pub struct Coefficients<P> {
+    /// Carrier statistics.
+    pub statistics: Statistics,
+    /// Thermal voltage kT/q, V.
+    pub thermal_voltage: P,
+    /// Sides of nodes, front first: `[entries]`. Layer `l` holds entries `first[l]..first[l + 1]`; an entry `e` of
+    /// layer `l` belongs to node `e - l`.
+    pub entries: Vec<Entry<P>>,
+    /// First entry of each layer, and the number of entries: `[layers + 1]`.
+    pub first: Vec<usize>,
+    /// Cells; cell `i` lies between nodes `i` and `i + 1`: `[nodes - 1]`.
+    pub cells: Vec<Cell<P>>,
+    /// Depth of each entry, m: `[entries]`.
+    pub depths: Vec<P>,
+    /// Recombination at the rear end of each layer: `[layers - 1]`.
+    pub interfaces: Vec<Option<InterfaceRecombination<P>>>,
+    /// Contacts: front and rear.
+    pub contacts: [ContactLaw<P>; 2],
+    /// +1 where the rear contact is the positive terminal (p side), -1 where the front one is.
+    pub polarity: f64,
+    /// Whether the outermost dopings make a junction.
+    pub junction: bool,
+    /// How much of the rear contact's level (0 or 1) is the reference of the electrons' and of the holes' stored
+    /// quasi-Fermi potential: each refers to the contact where it is the majority, so that it is stored as zero there.
+    pub reference: [f64; 2],
+}
+
+/// Values at one place, in the scaled form of an entry (volume left at zero).
+fn entry<P: Scalar>(v: &Values<P>, doping: P, thermal_energy: P) -> Entry<P> {
+    let per_kt = thermal_energy.recip();
+    let gap = v.gap * per_kt;
+    let affinity = v.affinity * per_kt;
+    let ln_conduction = (v.conduction_density * (1.0 / scales::DENSITY)).ln();
+    let ln_valence = (v.valence_density * (1.0 / scales::DENSITY)).ln();
+    let ln_intrinsic = (ln_conduction + ln_valence - gap) * 0.5;
+    let trap = v.trap_energy * per_kt;
+    Entry {
+        volume: P::constant(0.0),
+        affinity,
+        affinity_and_gap: affinity + gap,
+        ln_conduction,
+        ln_valence,
+        doping: doping * (1.0 / scales::DENSITY),
+        level: Level {
+            electron_rate: v.electron_lifetime.recip() * scales::TIME,
+            hole_rate: v.hole_lifetime.recip() * scales::TIME,
+            n1: (ln_intrinsic + trap).exp(),
+            p1: (ln_intrinsic - trap).exp(),
+        },
+        radiative: v.radiative_coefficient * (scales::DENSITY * scales::TIME),
+        electron_auger: v.electron_auger * (scales::DENSITY * scales::DENSITY * scales::TIME),
+        hole_auger: v.hole_auger * (scales::DENSITY * scales::DENSITY * scales::TIME),
+    }
+}
+
+impl<P: Scalar + Over<P>> Coefficients<P> {
+    /// The coefficients of a device on a mesh.
+    pub fn new(device: &Device<P>, mesh: &Mesh) -> Self {
+        let stack: &Stack<P> = device.stack();
+        let thermal_energy = stack.temperature * BOLTZMANN;
+        let thermal_voltage = thermal_energy * (1.0 / ELEMENTARY_CHARGE);
+        let displacement_scale = thermal_voltage
+            * (VACUUM_PERMITTIVITY / (ELEMENTARY_CHARGE * scales::DENSITY * scales::LENGTH * scales::LENGTH));
+        let diffusion_scale = thermal_voltage * (scales::TIME / (scales::LENGTH * scales::LENGTH));
+        let mut entries = Vec::with_capacity(mesh.entries());
+        let mut depths = Vec::with_capacity(mesh.entries());
+        let mut cells: Vec<Cell<P>> = Vec::with_capacity(mesh.nodes() - 1);
+        let mut first = vec![0];
+        let mut gaps = Vec::new();
+        let mut front = P::constant(0.0);
+        for (index, layer) in stack.layers.iter().enumerate() {
+            let fractions = &mesh.layers[index].fractions;
+            let place = |fraction: f64| {
+                let z = layer.thickness * fraction;
+                let donors = layer.donors.at(z, layer.thickness);
+                let acceptors = layer.acceptors.at(z, layer.thickness);
+                (device.values(index, z), donors - acceptors)
+            };
+            let uniform =
+                layer.composition.is_none() && layer.donors.is_constant() && layer.acceptors.is_constant();
+            let shared = uniform.then(|| place(0.0));
+            let at = |fraction: f64| shared.unwrap_or_else(|| place(fraction));
+            let base = entries.len();
+            let mut previous: Option<(f64, usize)> = None;
+            for &fraction in fractions {
+                let (values, doping) = at(fraction);
+                entries.push(entry(&values, doping, thermal_energy));
+                depths.push(front + layer.thickness * fraction);
+                let here = entries.len() - 1;
+                if let Some((before, e)) = previous {
+                    let width = layer.thickness * ((fraction - before) * (1.0 / scales::LENGTH));
+                    let (middle, _) = at(0.5 * (fraction + before));
+                    let per_width = width.recip();
+                    cells.push(Cell {
+                        displacement: middle.permittivity * displacement_scale * per_width,
+                        electron: middle.electron_mobility * diffusion_scale * per_width,
+                        hole: middle.hole_mobility * diffusion_scale * per_width,
+                        width,
+                    });
+                    let half = width * 0.5;
+                    entries[e].volume = entries[e].volume + half;
+                    entries[here].volume = entries[here].volume + half;
+                }
+                previous = Some((fraction, here));
+            }
+            let gap = |e: usize| (entries[e].affinity_and_gap - entries[e].affinity).value();
+            gaps.push((gap(base), gap(entries.len() - 1)));
+            first.push(entries.len());
+            front = front + layer.thickness;
+        }
+        let velocity_scale = scales::TIME / scales::LENGTH;
+        let interfaces = stack
+            .interfaces
+            .iter()
+            .enumerate()
+            .map(|(l, interface)| {
+                interface.as_ref().and_then(|i| {
+                    let (s_n, s_p) = (i.electron_recombination_velocity, i.hole_recombination_velocity);
+                    if s_n.value() == 0.0 || s_p.value() == 0.0 {
+                        return None;
+                    }
+                    // The side of the smaller gap; the rear one where they are equal.
+                    let entry = if gaps[l].1 < gaps[l + 1].0 { first[l + 1] - 1 } else { first[l + 1] };
+                    let e: &Entry<P> = &entries[entry];
+                    let intrinsic =
+                        ((e.ln_conduction + e.ln_valence - (e.affinity_and_gap - e.affinity)) * 0.5).exp();
+                    Some(InterfaceRecombination {
+                        level: Level {
+                            electron_rate: s_n * velocity_scale,
+                            hole_rate: s_p * velocity_scale,
+                            n1: intrinsic,
+                            p1: intrinsic,
+                        },
+                        entry,
+                    })
+                })
+            })
+            .collect();
+        let law = |e: usize, velocity: Option<P>| {
+            ContactLaw::new(stack.statistics, &entries[e], velocity.map(|v| v * velocity_scale))
+        };
+        let contacts = [
+            law(0, stack.front.recombination_velocity),
+            law(entries.len() - 1, stack.rear.recombination_velocity),
+        ];
+        let (polarity, junction) = match (contacts[0].majority, contacts[1].majority) {
+            (Majority::Electron, Majority::Hole) => (1.0, true),
+            (Majority::Hole, Majority::Electron) => (-1.0, true),
+            _ => (-1.0, false),
+        };
+        let reference = match (contacts[0].majority, contacts[1].majority) {
+            (Majority::Hole, _) | (_, Majority::Electron) => [1.0, 0.0],
+            _ => [0.0, 1.0],
+        };
+        Coefficients {
+            statistics: stack.statistics,
+            thermal_voltage,
+            entries,
+            first,
+            cells,
+            depths,
+            interfaces,
+            contacts,
+            polarity,
+            junction,
+            reference,
+        }
+    }
+
+    /// Number of nodes.
+    pub fn nodes(&self) -> usize {
+        self.cells.len() + 1
+    }
+    /// Number of layers.
+    pub fn layers(&self) -> usize {
+        self.first.len() - 1
+    }
+    /// The layer and node of each entry, in order.
+    pub fn places(&self) -> impl Iterator<Item = (usize, usize, usize)> + '_ {
+        (0..self.layers()).flat_map(move |l| (self.first[l]..self.first[l + 1]).map(move |e| (e, l, e - l)))
+    }
+    /// The carrier whose flux into the front contact, and the one whose flux into the rear contact, sum with the net
+    /// recombination to the terminal current: minority carriers at both. `None` where both ends pin the same one.
+    pub fn terminal_pair(&self) -> Option<(Carrier, Carrier)> {
+        match (self.contacts[0].majority, self.contacts[1].majority) {
+            (Majority::Hole, Majority::Electron | Majority::Both) | (Majority::Both, Majority::Electron) => {
+                Some((Carrier::Electron, Carrier::Hole))
+            }
+            (Majority::Electron, Majority::Hole | Majority::Both) | (Majority::Both, Majority::Hole) => {
+                Some((Carrier::Hole, Carrier::Electron))
+            }
+            (Majority::Electron, Majority::Electron)
+            | (Majority::Hole, Majority::Hole)
+            | (Majority::Both, Majority::Both) => None,
+        }
+    }
+}

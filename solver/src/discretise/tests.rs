@@ -1,0 +1,155 @@
+//! The assembled Jacobian against dual numbers of the plain residual.
+
+use crate::analysis::tests::{r1, r3};
+use crate::device::{Contact, Device, Interface};
+use crate::linear::Triple;
+use crate::math::Dual;
+use crate::mesh::{Grading, Mesh};
+
+use super::residual::residual;
+use super::*;
+
+/// A state away from equilibrium everywhere, on both sides of a flat level.
+fn disturbed(c: &Coefficients<f64>, scale: f64) -> Vec<[f64; 3]> {
+    let (a, b) = (c.contacts[0].potential, c.contacts[1].potential);
+    let n = c.nodes();
+    (0..n)
+        .map(|i| {
+            let t = i as f64 / (n - 1) as f64;
+            let wave = |k: f64| crate::math::elementary::sin(17.0 * k * t + k) * scale;
+            [a + (b - a) * t + wave(1.0), wave(2.0), wave(3.0)]
+        })
+        .collect()
+}
+
+fn coefficients(stack: crate::device::Stack) -> Coefficients<f64> {
+    let device = Device::new(stack).unwrap();
+    let grading = Grading { spacing: 20e-9, growth: 0.6, most_cells: 100 };
+    Coefficients::new(&device, &Mesh::new(&device, &grading, 0))
+}
+
+/// Truth: dual numbers over the plain statement of the equations, along every unknown and the bias; 1e-12 of the sum of
+/// absolute contributions to the row.
+#[test]
+fn jacobian_is_the_derivative_of_the_plain_residual() {
+    let mut with_interface = r3();
+    with_interface.interfaces[1] =
+        Some(Interface { electron_recombination_velocity: 1e3, hole_recombination_velocity: 30.0 });
+    with_interface.rear = Contact { recombination_velocity: None };
+    let mut resistor = r1();
+    resistor.layers[0].donors = resistor.layers[1].donors.clone();
+    resistor.layers[0].acceptors = resistor.layers[1].acceptors.clone();
+    for (name, stack) in [("R1", r1()), ("R3", r3()), ("interface", with_interface), ("resistor", resistor)] {
+        let c = coefficients(stack);
+        let n = c.nodes();
+        let generation: Vec<f64> = (0..c.entries.len()).map(|e| 1e-7 * (1.0 + e as f64)).collect();
+        for scale in [0.0, 0.3, 3.0] {
+            let state = disturbed(&c, scale);
+            let rear = 1.7;
+            let mut system = System::new(n);
+            system.assemble(&c, &state, rear, &generation, 1.0);
+            let by_level = system.by_rear_level(&c);
+            let magnitude = |i: usize, row: usize| {
+                let mut sum = 0.0;
+                for block in
+                    [&system.jacobian.lower[i], &system.jacobian.diagonal[i], &system.jacobian.upper[i]]
+                {
+                    for column in 0..3 {
+                        sum += block[(row, column)].abs();
+                    }
+                }
+                sum
+            };
+            // One unknown at a time at every third node, and the bias: enough to touch each block, cheap enough to run.
+            for which in 0..9 + 1 {
+                type D = Dual<f64, 1>;
+                let (phase, unknown) = (which / 3, which % 3);
+                let duals: Vec<[D; 3]> = state
+                    .iter()
+                    .enumerate()
+                    .map(|(i, x)| {
+                        std::array::from_fn(|k| {
+                            let mut d = D::fixed(x[k]);
+                            if which < 9 && i % 3 == phase && k == unknown {
+                                d.d[0] = 1.0;
+                            }
+                            d
+                        })
+                    })
+                    .collect();
+                let level = if which == 9 { D::variable(rear, 0) } else { D::fixed(rear) };
+                let pairs: Vec<D> = generation.iter().map(|g| D::fixed(*g)).collect();
+                let rows = residual(&c, &duals, level, &pairs);
+                for i in 0..n {
+                    for row in 0..3 {
+                        let value = rows[i][row];
+                        let got = if which == 9 {
+                            by_level[i][row]
+                        } else {
+                            let j = &system.jacobian;
+                            [(i.wrapping_sub(1), &j.lower[i]), (i, &j.diagonal[i]), (i + 1, &j.upper[i])]
+                                .iter()
+                                .filter(|(k, _)| *k < n && k % 3 == phase)
+                                .map(|(_, block)| block[(row, unknown)])
+                                .sum()
+                        };
+                        let scale = magnitude(i, row);
+                        assert!(
+                            (value.d[0] - got).abs() <= 1e-12 * scale,
+                            "{name} node {i} row {row} direction {which}: dual {:e}, assembled {got:e}, row {scale:e}",
+                            value.d[0]
+                        );
+                        let residual: f64 = system.residual[i][row];
+                        assert!(
+                            (value.re - residual).abs() <= 1e-13 * (scale * 100.0).max(residual.abs()),
+                            "{name} node {i} row {row}: {:e} {residual:e}",
+                            value.re
+                        );
+                    }
+                }
+            }
+        }
+    }
+}
+
+/// Truth: the terminal current is a function of state and bias; its gradient against central differences of itself,
+/// 1e-6 of the largest entry (what differences can resolve).
+#[test]
+fn terminal_gradient_against_differences() {
+    let mut blocked = r3();
+    blocked.front = Contact { recombination_velocity: None };
+    for (name, stack) in [("R1", r1()), ("R3", r3()), ("blocked", blocked)] {
+        let c = coefficients(stack);
+        let n = c.nodes();
+        let generation = vec![0.0; c.entries.len()];
+        let state = disturbed(&c, 0.3);
+        let value = |state: &[[f64; 3]], rear: f64| {
+            let mut system = System::new(n);
+            system.assemble(&c, state, rear, &generation, 1.0);
+            Terminal::new(&c, &system)
+        };
+        let at = value(&state, 1.7);
+        let largest = at.gradient.iter().map(Triple::amax).fold(0.0, f64::max);
+        let h = 1e-5;
+        for i in [0, 1, n / 2, n - 2, n - 1] {
+            for k in 0..3 {
+                let mut up = state.clone();
+                up[i][k] += h;
+                let mut down = state.clone();
+                down[i][k] -= h;
+                let slope = (value(&up, 1.7).current - value(&down, 1.7).current) / (2.0 * h);
+                // The surface laws hold the contact's potential at its own value.
+                if (i == 0 || i == n - 1) && k == 0 {
+                    continue;
+                }
+                assert!(
+                    (slope - at.gradient[i][k]).abs() <= 1e-6 * largest,
+                    "{name} node {i} unknown {k}: {slope:e} {:e}, largest {largest:e}",
+                    at.gradient[i][k]
+                );
+            }
+        }
+        let slope = (value(&state, 1.7 + h).current - value(&state, 1.7 - h).current) / (2.0 * h);
+        assert!((slope - at.by_rear_level).abs() <= 1e-6 * largest.max(slope.abs()), "{name} bias");
+    }
+}

@@ -1,0 +1,212 @@
+//! Reaching a light and a bias from equilibrium: predictors, step halving with rollback, light ramps.
+
+use super::newton::{Drive, Point, Stalled, Tolerances};
+use super::problem::{Problem, State};
+
+/// A solution that could not be reached.
+#[derive(Clone, Debug, thiserror::Error)]
+#[error(
+    "no solution at {voltage} V: the {equation} did not converge at node {node} (last update {update:.3e} kT/q), {stage}"
+)]
+pub struct SolveError {
+    /// Terminal voltage aimed at, V (NaN for open circuit).
+    pub voltage: f64,
+    /// Which equation moved most.
+    pub equation: &'static str,
+    /// The node where.
+    pub node: usize,
+    /// The size of its last update, kT/q.
+    pub update: f64,
+    /// What was being done.
+    pub stage: &'static str,
+    /// The last good state.
+    pub last_good: Option<Box<Point>>,
+}
+
+impl SolveError {
+    fn new(stalled: &Stalled, voltage: f64, stage: &'static str, last_good: Option<&Point>) -> Self {
+        SolveError {
+            voltage,
+            equation: ["Poisson equation", "electron continuity equation", "hole continuity equation"]
+                [stalled.unknown],
+            node: stalled.node,
+            update: stalled.update,
+            stage,
+            last_good: last_good.map(|p| Box::new(p.clone())),
+        }
+    }
+}
+
+/// Smallest bias step before giving up, V.
+const SMALLEST_STEP: f64 = 1e-5;
+/// Largest bias step tried at once, V.
+const LARGEST_STEP: f64 = 0.4;
+/// Smallest factor by which a light ramp may rise before giving up.
+const SMALLEST_RISE: f64 = 1.05;
+
+impl Problem {
+    /// The dark equilibrium: Poisson's equation with flat levels (the continuity rows vanish exactly).
+    pub fn equilibrium(&mut self, tolerances: &Tolerances) -> Result<Point, SolveError> {
+        let start = self.neutral_state();
+        let patient = Tolerances { most_iterations: 400, ..*tolerances };
+        self.newton(&start, Drive::Device(0.0), &patient)
+            .map_err(|stalled| SolveError::new(&stalled, 0.0, "at dark equilibrium", None))
+    }
+
+    /// From the dark equilibrium to the problem's light at zero terminal voltage: at once, or by a ramp of the light.
+    pub fn short_circuit(&mut self, tolerances: &Tolerances) -> Result<Point, SolveError> {
+        let dark = self.equilibrium(tolerances)?;
+        if !self.is_lit() {
+            return Ok(dark);
+        }
+        let mut lit = dark.state.clone();
+        lit.light = 1.0;
+        if let Ok(point) = self.newton(&lit, Drive::Terminal(0.0), tolerances) {
+            return Ok(point);
+        }
+        self.work.rejected_steps += 1;
+        let mut good = dark;
+        let mut light = 1e-8;
+        let mut rise = 1e3;
+        loop {
+            let mut state = good.state.clone();
+            state.light = light;
+            match self.newton(&state, Drive::Terminal(0.0), tolerances) {
+                Ok(point) if light >= 1.0 => return Ok(point),
+                Ok(point) => {
+                    good = point;
+                    light = (light * rise).min(1.0);
+                }
+                Err(stalled) => {
+                    self.work.rejected_steps += 1;
+                    rise = rise.sqrt();
+                    if rise < SMALLEST_RISE {
+                        return Err(SolveError::new(&stalled, 0.0, "raising the light", Some(&good)));
+                    }
+                    light = if good.state.light > 0.0 {
+                        (good.state.light * rise).min(1.0)
+                    } else {
+                        light * 1e-3
+                    };
+                    if light < 1e-30 {
+                        return Err(SolveError::new(&stalled, 0.0, "raising the light", Some(&good)));
+                    }
+                }
+            }
+        }
+    }
+
+    /// From a solved point to another terminal voltage: a predictor from the last points, steps halved where they fail.
+    /// `earlier` is a solved point before `from`, or none.
+    pub fn advance(
+        &mut self,
+        earlier: Option<&Point>,
+        from: &Point,
+        target: f64,
+        tolerances: &Tolerances,
+    ) -> Result<Point, SolveError> {
+        let mut before = earlier.cloned();
+        let mut here = from.clone();
+        let mut step = (target - here.voltage).clamp(-LARGEST_STEP, LARGEST_STEP);
+        loop {
+            let remaining = target - here.voltage;
+            let mut aim = here.voltage + step;
+            if step.abs() >= remaining.abs() * (1.0 - 1e-12) {
+                aim = target;
+            }
+            let guess = self.predict(before.as_ref(), &here, aim);
+            match self.newton(&guess, self.drive(aim), tolerances) {
+                Ok(point) if aim == target => return Ok(point),
+                Ok(point) => {
+                    before = Some(std::mem::replace(&mut here, point));
+                    step *= 2.0;
+                    step = step.clamp(-LARGEST_STEP, LARGEST_STEP);
+                }
+                Err(stalled) => {
+                    self.work.rejected_steps += 1;
+                    step *= 0.5;
+                    before = None;
+                    if step.abs() < SMALLEST_STEP {
+                        return Err(SolveError::new(&stalled, aim, "stepping the bias", Some(&here)));
+                    }
+                }
+            }
+        }
+    }
+
+    /// The drive of a terminal voltage: plain where there is no series resistance.
+    pub fn drive(&self, terminal_voltage: f64) -> Drive {
+        if self.series_resistance == 0.0 {
+            Drive::Device(terminal_voltage)
+        } else {
+            Drive::Terminal(terminal_voltage)
+        }
+    }
+
+    /// A guess at a terminal voltage: the cubic through two points and their tangents, or one tangent.
+    pub fn predict(&self, before: Option<&Point>, here: &Point, voltage: f64) -> State {
+        // Work in the voltage across the device, with the slope of the terminal voltage against it.
+        let per_device =
+            |p: &Point| 1.0 + self.series_resistance * (p.device_conductance + self.shunt_conductance);
+        let slope = per_device(here);
+        let target = here.state.voltage + (voltage - here.voltage) / slope;
+        match before {
+            Some(old)
+                if old.state.light == here.state.light
+                    && usable(old.state.voltage, here.state.voltage, target) =>
+            {
+                hermite(old, here, target)
+            }
+            _ => {
+                let step = target - here.state.voltage;
+                let mut state = here.state.clone();
+                for (x, t) in state.nodes.iter_mut().zip(&here.tangent) {
+                    for k in 0..3 {
+                        x[k] += t[k] * step;
+                    }
+                }
+                state.voltage = target;
+                state
+            }
+        }
+    }
+}
+
+/// A cubic extrapolates well up to about twice the interval that it was made from.
+fn usable(old: f64, here: f64, target: f64) -> bool {
+    let interval = here - old;
+    interval != 0.0 && {
+        let reach = (target - here) / interval;
+        (-1.0..=2.0).contains(&reach)
+    }
+}
+
+/// The cubic Hermite polynomial through two solved points and their tangents, at a voltage across the device.
+pub fn hermite(a: &Point, b: &Point, voltage: f64) -> State {
+    let h = b.state.voltage - a.state.voltage;
+    let s = (voltage - a.state.voltage) / h;
+    let (s2, s3) = (s * s, s * s * s);
+    let (w_a, w_b) = (2.0 * s3 - 3.0 * s2 + 1.0, -2.0 * s3 + 3.0 * s2);
+    let (t_a, t_b) = ((s3 - 2.0 * s2 + s) * h, (s3 - s2) * h);
+    let nodes = (0..a.state.nodes.len())
+        .map(|i| {
+            let (x, y) = (&a.state.nodes[i], &b.state.nodes[i]);
+            let (u, v) = (&a.tangent[i], &b.tangent[i]);
+            std::array::from_fn(|k| w_a * x[k] + w_b * y[k] + t_a * u[k] + t_b * v[k])
+        })
+        .collect();
+    State { nodes, voltage, light: b.state.light }
+}
+
+impl Problem {
+    /// From a solved point to a drive nearby (open circuit from a point close to it).
+    pub fn finish(
+        &mut self,
+        from: &Point,
+        drive: Drive,
+        tolerances: &Tolerances,
+    ) -> Result<Point, SolveError> {
+        self.newton(&from.state, drive, tolerances)
+            .map_err(|stalled| SolveError::new(&stalled, from.voltage, "solving for the current", Some(from)))
+    }
+}

@@ -1,0 +1,11 @@
+//! Floor 9: from discrete equations to solved states: equilibrium, Newton's method, damping, continuation, error estimates.
+
+pub mod continuation;
+pub mod damping;
+pub mod extrapolation;
+pub mod newton;
+pub mod problem;
+
+pub use continuation::SolveError;
+pub use newton::{Drive, Point, Tolerances};
+pub use problem::{Problem, State, Work};

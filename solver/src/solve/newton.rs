@@ -1,0 +1,178 @@
+//! Newton's method on the whole system, bordered by the circuit.
+
+use crate::discretise::{Terminal, scales};
+use crate::linear::Triple;
+
+use super::damping::damped;
+use super::problem::{Problem, State};
+
+/// What fixes the bias.
+#[derive(Clone, Copy, Debug, PartialEq)]
+pub enum Drive {
+    /// The voltage across the device, V.
+    Device(f64),
+    /// The terminal voltage, V, behind the series resistance and the shunt.
+    Terminal(f64),
+    /// The terminal current density, A/m^2, forward positive (0: open circuit).
+    Current(f64),
+}
+
+/// Stopping rules.
+#[derive(Clone, Copy, Debug, PartialEq)]
+pub struct Tolerances {
+    /// Largest last update of any unknown, in kT/q. The iteration converges quadratically: an update of 1e-4 leaves an
+    /// error of about 1e-8, and every point gets one more iteration after it, whose own update is applied too.
+    pub update: f64,
+    /// Most iterations before a step is called failed.
+    pub most_iterations: usize,
+}
+
+impl Default for Tolerances {
+    fn default() -> Self {
+        Tolerances { update: 1e-4, most_iterations: 60 }
+    }
+}
+
+/// A solved point with its first derivatives.
+#[derive(Clone, Debug)]
+pub struct Point {
+    /// The state.
+    pub state: State,
+    /// Current density of the device (without its shunt), forward positive, A/m^2.
+    pub device_current: f64,
+    /// Its derivative with respect to the voltage across the device, S/m^2.
+    pub device_conductance: f64,
+    /// Derivative of the node unknowns with respect to the voltage across the device, per V: `[nodes]`.
+    pub tangent: Vec<Triple>,
+    /// Terminal voltage, V.
+    pub voltage: f64,
+    /// Terminal current density, forward positive, A/m^2.
+    pub current: f64,
+    /// Slope of the terminal characteristic, S/m^2.
+    pub conductance: f64,
+    /// Largest update of the last iteration, kT/q.
+    pub last_update: f64,
+}
+
+/// Why an iteration stopped without a solution.
+#[derive(Clone, Debug, PartialEq)]
+pub struct Stalled {
+    /// Node of the largest last update.
+    pub node: usize,
+    /// Which unknown: 0 potential, 1 electrons, 2 holes.
+    pub unknown: usize,
+    /// That update, kT/q.
+    pub update: f64,
+}
+
+fn largest(update: &[Triple]) -> Stalled {
+    let mut worst = Stalled { node: 0, unknown: 0, update: 0.0 };
+    for (node, u) in update.iter().enumerate() {
+        for unknown in 0..3 {
+            let size = u[unknown].abs();
+            if size > worst.update || size.is_nan() {
+                worst = Stalled { node, unknown, update: size };
+            }
+        }
+    }
+    worst
+}
+
+impl Problem {
+    /// Iterates from `start` to the drive's solution.
+    pub fn newton(&mut self, start: &State, drive: Drive, tolerances: &Tolerances) -> Result<Point, Stalled> {
+        let mut state = start.clone();
+        if let Drive::Device(voltage) = drive {
+            state.voltage = voltage;
+        }
+        let per_volt = self.coefficients.polarity / self.coefficients.thermal_voltage;
+        let mut polishing = false;
+        let mut worst = Stalled { node: 0, unknown: 0, update: f64::INFINITY };
+        for _ in 0..tolerances.most_iterations {
+            self.assemble(&state);
+            let factored = self.system.jacobian.factor(&mut self.factors);
+            self.work.factorisations += 1;
+            if let Err(singular) = factored {
+                return Err(Stalled { node: singular.node, unknown: 0, update: f64::NAN });
+            }
+            let mut update: Vec<Triple> = self.system.residual.iter().map(|r| -r).collect();
+            self.solve(&mut update);
+            let bordered = !matches!(drive, Drive::Device(_));
+            let mut border = None;
+            let mut voltage_step = 0.0;
+            if bordered || polishing {
+                let terminal = Terminal::new(&self.coefficients, &self.system);
+                let mut tangent: Vec<Triple> = self.system.by_rear_level(&self.coefficients);
+                for t in &mut tangent {
+                    *t *= -per_volt;
+                }
+                self.solve(&mut tangent);
+                let along =
+                    |x: &[Triple]| -> f64 { terminal.gradient.iter().zip(x).map(|(g, x)| g.dot(x)).sum() };
+                let conductance = scales::CURRENT * (along(&tangent) + terminal.by_rear_level * per_volt);
+                let current = scales::CURRENT * (terminal.current + along(&update));
+                let shunt = self.shunt_conductance;
+                voltage_step = match drive {
+                    Drive::Device(_) => 0.0,
+                    Drive::Terminal(target) => {
+                        let r = self.series_resistance;
+                        let g = state.voltage + r * (current + shunt * state.voltage) - target;
+                        -g / (1.0 + r * (conductance + shunt))
+                    }
+                    Drive::Current(target) => {
+                        let slope = conductance + shunt;
+                        let g = current + shunt * state.voltage - target;
+                        let limit = 4.0 * self.coefficients.thermal_voltage;
+                        // Far from the solution the slope says little; step at most a few kT/q.
+                        if slope > 0.0 { (-g / slope).clamp(-limit, limit) } else { limit.copysign(-g) }
+                    }
+                };
+                for (u, t) in update.iter_mut().zip(&tangent) {
+                    *u += t * voltage_step;
+                }
+                border = Some((tangent, current + conductance * voltage_step, conductance));
+            }
+            worst = largest(&update);
+            let relative_voltage = (voltage_step * per_volt).abs();
+            let size = worst.update.max(relative_voltage);
+            if !size.is_finite() {
+                return Err(worst);
+            }
+            self.apply(&mut state, &update);
+            state.voltage += voltage_step;
+            if size <= tolerances.update {
+                if let (true, Some((tangent, device_current, device_conductance))) = (polishing, border) {
+                    let slope = device_conductance + self.shunt_conductance;
+                    let current = device_current + self.shunt_conductance * state.voltage;
+                    return Ok(Point {
+                        device_current,
+                        device_conductance,
+                        tangent,
+                        voltage: state.voltage + self.series_resistance * current,
+                        current,
+                        conductance: slope / (1.0 + self.series_resistance * slope),
+                        last_update: size,
+                        state,
+                    });
+                }
+                polishing = true;
+            } else {
+                polishing = false;
+            }
+        }
+        Err(worst)
+    }
+
+    /// Applies an update, damped in the logarithm of the densities.
+    fn apply(&self, state: &mut State, update: &[Triple]) {
+        for (x, u) in state.nodes.iter_mut().zip(update) {
+            let potential = damped(u[0]);
+            // The change of ln n is that of (psi - phi_n), of ln p that of (phi_p - psi), up to the statistics' slope.
+            let electrons = damped(u[0] - u[1]);
+            let holes = damped(u[2] - u[0]);
+            x[0] += potential;
+            x[1] += potential - electrons;
+            x[2] += potential + holes;
+        }
+    }
+}

@@ -1,0 +1,155 @@
+//! A device on a mesh under given light, ready to be solved at any bias.
+
+use crate::discretise::contact::neutral_potential;
+use crate::discretise::{Coefficients, System, scales};
+use crate::linear::{Factors, Triple};
+
+/// Work done, pinned by tests.
+#[derive(Clone, Copy, Debug, Default, PartialEq, Eq)]
+pub struct Work {
+    /// Newton iterations: assemblies of residual and Jacobian.
+    pub newton_iterations: usize,
+    /// Factorisations.
+    pub factorisations: usize,
+    /// Right-hand sides solved, forward and transposed.
+    pub solves: usize,
+    /// Bias or light steps that had to be taken back.
+    pub rejected_steps: usize,
+}
+
+impl std::ops::AddAssign for Work {
+    fn add_assign(&mut self, other: Work) {
+        self.newton_iterations += other.newton_iterations;
+        self.factorisations += other.factorisations;
+        self.solves += other.solves;
+        self.rejected_steps += other.rejected_steps;
+    }
+}
+
+/// The state of a device: node unknowns, the voltage across it and the share of the light that is on.
+#[derive(Clone, Debug, PartialEq)]
+pub struct State {
+    /// Potential and the two stored quasi-Fermi potentials at each node, kT/q: `[nodes]`.
+    pub nodes: Vec<[f64; 3]>,
+    /// Voltage across the device (inside its series resistance), V.
+    pub voltage: f64,
+    /// Share of the problem's light, 0 to 1.
+    pub light: f64,
+}
+
+/// A device on a mesh under given light.
+#[derive(Clone, Debug)]
+pub struct Problem {
+    /// The discrete equations' coefficients.
+    pub coefficients: Coefficients<f64>,
+    /// Pairs generated per area in each entry's volume, scaled: `[entries]`.
+    pub generation: Vec<f64>,
+    /// Series resistance outside, ohm m^2.
+    pub series_resistance: f64,
+    /// Shunt conductance across the device, S/m^2.
+    pub shunt_conductance: f64,
+    /// Work done so far.
+    pub work: Work,
+    pub(super) system: System,
+    pub(super) factors: Factors,
+}
+
+impl Problem {
+    /// A problem from coefficients and the generation rate per area in each entry's volume (pairs m^-2 s^-1: `[entries]`).
+    pub fn new(
+        coefficients: Coefficients<f64>,
+        generation: &[f64],
+        series_resistance: f64,
+        shunt_conductance: f64,
+    ) -> Problem {
+        let nodes = coefficients.nodes();
+        Problem {
+            generation: generation.iter().map(|g| g / scales::FLUX).collect(),
+            coefficients,
+            series_resistance,
+            shunt_conductance,
+            work: Work::default(),
+            system: System::new(nodes),
+            factors: Factors::default(),
+        }
+    }
+
+    /// Whether any light is absorbed.
+    pub fn is_lit(&self) -> bool {
+        self.generation.iter().any(|g| *g != 0.0)
+    }
+
+    /// The rear contact's level, kT/q, at a voltage across the device.
+    pub fn rear_level(&self, voltage: f64) -> f64 {
+        self.coefficients.polarity * voltage / self.coefficients.thermal_voltage
+    }
+
+    /// Local neutrality everywhere at zero bias in the dark: where the equilibrium solution starts.
+    pub fn neutral_state(&self) -> State {
+        let c = &self.coefficients;
+        let mut nodes = vec![[0.0; 3]; c.nodes()];
+        let mut known: Option<(usize, f64, f64)> = None;
+        for (e, layer, i) in c.places() {
+            let entry = &c.entries[e];
+            // Uniform layers share their neutral potential.
+            let potential = match known {
+                Some((l, doping, potential))
+                    if l == layer
+                        && doping == entry.doping
+                        && c.entries[e - 1].affinity == entry.affinity =>
+                {
+                    potential
+                }
+                _ => neutral_potential(c.statistics, entry),
+            };
+            known = Some((layer, entry.doping, potential));
+            // At an interface: midway between the two sides.
+            nodes[i][0] =
+                if layer > 0 && e == c.first[layer] { 0.5 * (nodes[i][0] + potential) } else { potential };
+        }
+        nodes[0][0] = c.contacts[0].potential;
+        let last = nodes.len() - 1;
+        nodes[last][0] = c.contacts[1].potential;
+        State { nodes, voltage: 0.0, light: 0.0 }
+    }
+
+    /// The built-in voltage: difference of the contacts' equilibrium potentials, V, positive for a junction.
+    pub fn built_in_voltage(&self) -> f64 {
+        let c = &self.coefficients;
+        // Towards the n side the equilibrium potential is higher.
+        (c.contacts[0].potential - c.contacts[1].potential) * c.polarity * c.thermal_voltage
+    }
+
+    /// Assembles the equations at a state.
+    pub fn assemble(&mut self, state: &State) -> &System {
+        let rear = self.rear_level(state.voltage);
+        self.system.assemble(&self.coefficients, &state.nodes, rear, &self.generation, state.light);
+        self.work.newton_iterations += 1;
+        &self.system
+    }
+
+    /// The assembled equations of the last call.
+    pub fn system(&self) -> &System {
+        &self.system
+    }
+
+    /// Solves with the last factors.
+    pub fn solve(&mut self, rhs: &mut [Triple]) {
+        self.factors.solve(rhs);
+        self.work.solves += 1;
+    }
+
+    /// Solves the transposed system with the last factors.
+    pub fn solve_transposed(&mut self, rhs: &mut [Triple]) {
+        self.factors.solve_transposed(rhs);
+        self.work.solves += 1;
+    }
+}
+
+impl Problem {
+    /// Factors the Jacobian of the last assembly.
+    pub fn refactor(&mut self) -> Result<(), crate::linear::Singular> {
+        self.work.factorisations += 1;
+        self.system.jacobian.factor(&mut self.factors)
+    }
+}
