@@ -3,3 +3,4 @@
 pub mod archive;
 pub mod command;
 pub mod diagnostics;
+pub mod language;

@@ -1,0 +1,172 @@
+//! The script language: from a script's text to snapshots, printed lines and diagnostics, for whoever runs one.
+//!
+//! [`run`] is the whole seam: it takes a [`Script`] and [`RunOptions`], tells a [`Sink`] what happens, in the order
+//! of the script, and returns a [`RunOutcome`]. No panic leaves it.
+
+use std::sync::mpsc::channel;
+
+use crate::diagnostics::{Diagnostic, codes};
+
+mod device_value;
+mod dimension;
+mod display;
+mod engine;
+mod fault;
+mod files;
+mod light_value;
+mod lower;
+mod quantity;
+mod reference;
+mod report;
+mod result_value;
+mod sandbox;
+mod session;
+mod snapshot;
+mod spans;
+mod topics;
+mod units;
+mod value;
+mod vocabulary;
+
+pub use dimension::Dimension;
+pub use quantity::Quantity;
+pub use reference::reference;
+pub use session::{DataFile, InputRecord, InputValue, Limits, RunOptions, RunOutcome, Script, Sink};
+pub use units::{UNITS, Unit, unit};
+
+use session::{Event, Session};
+
+/// Stack of the script's thread: deep expressions and calls reach their limits long before its end.
+const STACK: usize = 256 << 20;
+
+/// Runs a script, or checks it, telling `sink` what happens in the order of the script.
+///
+/// The script runs in a thread of its own, so that a fault of the program itself ends as a diagnostic (E900) with
+/// what was stored kept. Ctrl-C is told by raising [`RunOptions::interrupt`]. A check evaluates the script with
+/// analyses that solve nothing: their figures are quantities of known dimension and unknown value, comparisons with
+/// them do not hold, prints are suppressed, and evaluation goes on after a fault with the next statement.
+pub fn run(script: &Script, options: RunOptions, sink: &mut dyn Sink) -> RunOutcome {
+    let (sender, receiver) = channel();
+    let session = Session::new(script, options, sender);
+    let mut outcome = RunOutcome::default();
+    std::thread::scope(|scope| {
+        let shared = std::sync::Arc::clone(&session);
+        let builder = std::thread::Builder::new().name("script".to_string()).stack_size(STACK);
+        let spawned = builder.spawn_scoped(scope, move || {
+            let _last_word = LastWord(&shared);
+            evaluate(&shared)
+        });
+        let thread = match spawned {
+            Ok(thread) => thread,
+            Err(error) => {
+                outcome.errors.push(internal(&format!("no thread could be started: {error}")));
+                return;
+            }
+        };
+        listen(&receiver, sink);
+        outcome.errors = match thread.join() {
+            Ok(errors) => errors,
+            Err(panic) => vec![internal(panic_words(&*panic))],
+        };
+    });
+    let mut state = session.state();
+    let mut errors = std::mem::take(&mut state.faults);
+    errors.append(&mut outcome.errors);
+    errors.sort_by_key(|d| d.span());
+    outcome.errors = errors;
+    outcome.warnings = std::mem::take(&mut state.warnings);
+    outcome.interrupted = outcome.errors.iter().any(|e| e.code == codes::INTERRUPTED);
+    outcome.stored = session.stored.load(std::sync::atomic::Ordering::Relaxed) as usize;
+    outcome
+}
+
+/// Reads and runs the script of a session.
+fn evaluate(session: &std::sync::Arc<Session>) -> Vec<Diagnostic> {
+    let mut engine = engine::build(session);
+    let ast = match engine::compile(&mut engine, &session.source.text) {
+        Ok(ast) => ast,
+        Err(error) => return vec![report::parse_diagnostic(session, &error)],
+    };
+    let redefined = engine::redefined(&session.source.text, &ast);
+    if !redefined.is_empty() {
+        return redefined;
+    }
+    match engine::run(&engine, &ast, session) {
+        Ok(()) => unknown_inputs(session),
+        Err(error) => report::diagnostics(session, &error),
+    }
+}
+
+/// What `--set` names without the script declaring it.
+fn unknown_inputs(session: &Session) -> Vec<Diagnostic> {
+    let state = session.state();
+    let known: Vec<&str> = state.inputs.keys().map(String::as_str).collect();
+    session
+        .options
+        .set
+        .iter()
+        .filter(|(name, _)| !state.inputs.contains_key(name))
+        .map(|(name, _)| {
+            let fault = fault::Fault::new(
+                codes::UNKNOWN_INPUT,
+                format!("--set {name}: the script has no input `{name}`"),
+            );
+            let fault = if known.is_empty() {
+                fault.help(format!("declare it: let {name} = input(\"{name}\", ..);"))
+            } else {
+                let all = known.iter().map(|k| format!("`{k}`")).collect::<Vec<_>>().join(", ");
+                fault.candidates(name, known.iter().copied()).note(format!("the inputs of the script: {all}"))
+            };
+            session.diagnostic(&fault, rhai::Position::NONE)
+        })
+        .collect()
+}
+
+/// Tells the listener, when it is dropped (by a panic too), that nothing more will come.
+struct LastWord<'a>(&'a Session);
+
+impl Drop for LastWord<'_> {
+    fn drop(&mut self) {
+        self.0.tell(Event::Done);
+    }
+}
+
+/// Hands events to the sink until the script's thread is done.
+fn listen(events: &std::sync::mpsc::Receiver<Event>, sink: &mut dyn Sink) {
+    while let Ok(event) = events.recv() {
+        match event {
+            Event::Done => return,
+            event => hand_over(event, sink),
+        }
+    }
+}
+
+fn hand_over(event: Event, sink: &mut dyn Sink) {
+    match event {
+        Event::Print(line) => sink.print(&line),
+        Event::Input(input) => sink.input(&input),
+        Event::DataFile(file) => sink.data_file(&file),
+        Event::Warning(warning) => sink.warning(&warning),
+        Event::Working(what) => sink.working(&what),
+        Event::Done => {}
+        Event::Snapshot(snapshot, reply) => {
+            let _ = reply.send(sink.snapshot(*snapshot));
+        }
+    }
+}
+
+fn internal(message: &str) -> Diagnostic {
+    Diagnostic::new(codes::INTERNAL, format!("a fault of the program itself: {message}"))
+        .help("please report it with the script; what was stored before is kept")
+}
+
+fn panic_words(panic: &(dyn std::any::Any + Send)) -> &str {
+    panic
+        .downcast_ref::<&str>()
+        .copied()
+        .or_else(|| panic.downcast_ref::<String>().map(String::as_str))
+        .unwrap_or("no message")
+}
+
+#[cfg(test)]
+mod tests;

@@ -1,0 +1,287 @@
+//! One run of one script: its limits, its inputs, what it has stored and warned of, and the line to whoever runs it.
+
+use std::collections::BTreeMap;
+use std::path::PathBuf;
+use std::sync::atomic::{AtomicBool, AtomicU64, Ordering};
+use std::sync::mpsc::{Sender, channel};
+use std::sync::{Arc, Mutex, MutexGuard};
+
+use rhai::Position;
+
+use crate::archive::Snapshot;
+use crate::diagnostics::{Diagnostic, SourceText, codes};
+
+use super::fault::{Fault, Place};
+use super::files::Files;
+use super::quantity::Quantity;
+use super::spans::locate;
+
+/// What a script may use up.
+#[derive(Clone, Debug)]
+pub struct Limits {
+    /// Operations of the script; solving does not count.
+    pub operations: u64,
+    /// Depth of nested calls.
+    pub call_depth: usize,
+    /// Bytes of one text.
+    pub text: usize,
+    /// Entries of one array, those of the arrays in it included.
+    pub array: usize,
+    /// Entries of one map, those of the maps in it included.
+    pub map: usize,
+    /// Variables alive at once.
+    pub variables: usize,
+    /// Bytes of memory of the process above what it used at the start, where the system tells (Linux).
+    pub memory: u64,
+    /// Points of one curve or spectral response.
+    pub points: usize,
+    /// Bytes of one data file.
+    pub file: u64,
+}
+
+impl Default for Limits {
+    fn default() -> Self {
+        Limits {
+            operations: 200_000_000,
+            call_depth: 64,
+            text: 1 << 20,
+            array: 200_000,
+            map: 20_000,
+            variables: 2_000,
+            memory: 2 << 30,
+            points: 20_000,
+            file: 64 << 20,
+        }
+    }
+}
+
+/// How a script is run.
+#[derive(Clone, Debug, Default)]
+pub struct RunOptions {
+    /// Overrides of inputs: name and value as typed, `("bsf_thickness", "50nm")`.
+    pub set: Vec<(String, String)>,
+    /// Folders outside the script's own that data files may be read from.
+    pub allow_read: Vec<PathBuf>,
+    /// Look for faults and solve nothing.
+    pub check_only: bool,
+    /// What the script may use up.
+    pub limits: Limits,
+    /// Threads for what can be done in parallel; `None` takes all. No result depends on it.
+    pub threads: Option<usize>,
+    /// Raised from outside to stop the run (Ctrl-C).
+    pub interrupt: Arc<AtomicBool>,
+}
+
+/// A script to run.
+#[derive(Clone, Debug, Default)]
+pub struct Script {
+    /// Its file name, as shown to a person.
+    pub name: String,
+    /// Its text.
+    pub text: String,
+    /// The folder it lies in, from which its data files are read; without one no file can be read.
+    pub folder: Option<PathBuf>,
+    /// Data files by the name the script gives them, instead of the folder's own: for a replay from an archive.
+    pub files: BTreeMap<String, Vec<u8>>,
+}
+
+/// An input that a script declared.
+#[derive(Clone, Debug)]
+pub struct InputRecord {
+    /// Its name.
+    pub name: String,
+    /// The value that the script gives.
+    pub default: InputValue,
+    /// The value that this run uses.
+    pub used: InputValue,
+    /// Whether the value was set from outside.
+    pub overridden: bool,
+}
+
+/// The value of an input.
+#[derive(Clone, Debug)]
+pub enum InputValue {
+    /// A quantity or a plain number.
+    Quantity(Quantity),
+    /// A text.
+    Text(String),
+    /// Yes or no.
+    Flag(bool),
+}
+
+/// A data file that a script read.
+#[derive(Clone, Debug)]
+pub struct DataFile {
+    /// The name that the script gives it, relative to its folder, with forward slashes.
+    pub name: String,
+    /// Its bytes.
+    pub bytes: Arc<Vec<u8>>,
+}
+
+/// Who listens to a run: the command line, a test, a replay. Calls come in the order of the script.
+pub trait Sink {
+    /// The script printed a line.
+    fn print(&mut self, line: &str);
+    /// The script declared an input.
+    fn input(&mut self, input: &InputRecord);
+    /// The script read a data file for the first time.
+    fn data_file(&mut self, file: &DataFile);
+    /// Something a person should know; the run goes on.
+    fn warning(&mut self, warning: &Diagnostic);
+    /// An analysis begins ("jv of `Larch Bay 12`"), for a progress display.
+    fn working(&mut self, what: &str);
+    /// The script stored a result. An error stops the script with this message.
+    fn snapshot(&mut self, snapshot: Snapshot) -> Result<(), String>;
+}
+
+/// What came of a run.
+#[derive(Clone, Debug, Default)]
+pub struct RunOutcome {
+    /// Errors, in the order of the script; empty when it ran to its end.
+    pub errors: Vec<Diagnostic>,
+    /// Warnings, all of which the sink has seen already.
+    pub warnings: Vec<Diagnostic>,
+    /// Whether the run was stopped from outside.
+    pub interrupted: bool,
+    /// How many snapshots were stored.
+    pub stored: usize,
+}
+
+/// A message from the script's thread to the sink.
+pub(super) enum Event {
+    Print(String),
+    Input(InputRecord),
+    DataFile(DataFile),
+    Warning(Diagnostic),
+    Working(String),
+    Snapshot(Box<Snapshot>, Sender<Result<(), String>>),
+    Done,
+}
+
+/// What changes while a script runs.
+#[derive(Default)]
+pub(super) struct State {
+    pub inputs: BTreeMap<String, InputRecord>,
+    pub snapshots: BTreeMap<String, Position>,
+    pub faults: Vec<Diagnostic>,
+    pub warnings: Vec<Diagnostic>,
+    pub step: u64,
+}
+
+/// One run of one script, as its functions see it.
+pub struct Session {
+    /// The script.
+    pub(super) source: SourceText,
+    /// How it is run.
+    pub(super) options: RunOptions,
+    /// Its data files.
+    pub(super) files: Files,
+    /// What is read from memory use at the start, in bytes.
+    pub(super) memory_at_start: Option<u64>,
+    /// Raised once the script's last line is done, so that its variables may be dropped quietly.
+    pub(super) finished: AtomicBool,
+    /// Raised when a change was dropped with its value: the fault is kept, the script is to stop.
+    pub(super) lost_edit: AtomicBool,
+    pub(super) stored: AtomicU64,
+    events: Sender<Event>,
+    state: Mutex<State>,
+}
+
+impl Session {
+    /// A session of this script that reports to `events`.
+    pub(super) fn new(script: &Script, options: RunOptions, events: Sender<Event>) -> Arc<Self> {
+        Arc::new(Session {
+            source: SourceText::new(script.name.clone(), script.text.clone()),
+            files: Files::new(script, &options),
+            options,
+            memory_at_start: super::sandbox::memory_in_use(),
+            finished: AtomicBool::new(false),
+            lost_edit: AtomicBool::new(false),
+            stored: AtomicU64::new(0),
+            events,
+            state: Mutex::new(State::default()),
+        })
+    }
+
+    /// Whether nothing is to be solved.
+    pub(super) fn checking(&self) -> bool {
+        self.options.check_only
+    }
+
+    /// What changes while the script runs. A panic while it was held leaves it readable: it only ever grows.
+    pub(super) fn state(&self) -> MutexGuard<'_, State> {
+        self.state.lock().unwrap_or_else(|poisoned| poisoned.into_inner())
+    }
+
+    /// Tells the sink. A sink that has gone away has no use for it.
+    pub(super) fn tell(&self, event: Event) {
+        let _ = self.events.send(event);
+    }
+
+    /// The script printed a line; while checking nothing is printed, since figures are not known.
+    pub(super) fn print(&self, line: &str) {
+        if !self.checking() {
+            self.tell(Event::Print(line.to_string()));
+        }
+    }
+
+    /// A warning, told once for each place and message.
+    pub(super) fn warn(&self, fault: Fault, position: Position) {
+        let warning = self.diagnostic(&fault, position);
+        let mut state = self.state();
+        if !state.warnings.contains(&warning) {
+            state.warnings.push(warning.clone());
+            drop(state);
+            self.tell(Event::Warning(warning));
+        }
+    }
+
+    /// Keeps an error without stopping, while checking.
+    pub(super) fn keep(&self, fault: &Fault, position: Position) {
+        let diagnostic = self.diagnostic(fault, position);
+        let mut state = self.state();
+        if !state.faults.contains(&diagnostic) {
+            state.faults.push(diagnostic);
+        }
+    }
+
+    /// Hands a snapshot to the sink and waits until it is safe there.
+    pub(super) fn store(&self, snapshot: Snapshot) -> Result<(), Fault> {
+        let (reply, answer) = channel();
+        self.tell(Event::Snapshot(Box::new(snapshot), reply));
+        match answer.recv() {
+            Ok(Ok(())) => {
+                self.stored.fetch_add(1, Ordering::Relaxed);
+                Ok(())
+            }
+            Ok(Err(message)) => Err(Fault::new(codes::UNWRITABLE, message)),
+            Err(_) => Err(Fault::new(codes::INTERNAL, "the snapshot was not taken")),
+        }
+    }
+
+    /// Whether the run is to stop.
+    pub(super) fn interrupted(&self) -> bool {
+        self.options.interrupt.load(Ordering::Relaxed)
+    }
+
+    /// A fault at a position of the script as a diagnostic with spans.
+    pub(super) fn diagnostic(&self, fault: &Fault, position: Position) -> Diagnostic {
+        diagnostic(&self.source, fault, position)
+    }
+}
+
+/// A fault at a position of a script as a diagnostic with spans.
+pub(super) fn diagnostic(source: &SourceText, fault: &Fault, position: Position) -> Diagnostic {
+    let mut diagnostic = Diagnostic::new(fault.code, fault.message.clone());
+    let line = position.line().or(match fault.place {
+        Place::Elsewhere(line, ..) => Some(line),
+        _ => None,
+    });
+    if let Some(line) = line {
+        let span = locate(&source.text, line, position.position().unwrap_or(0), &fault.place);
+        diagnostic = diagnostic.label(span, fault.label.clone());
+    }
+    diagnostic.notes.clone_from(&fault.notes);
+    diagnostic.help.clone_from(&fault.help);
+    diagnostic
+}

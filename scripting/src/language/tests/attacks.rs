@@ -1,0 +1,95 @@
+//! Planted attacks: each hole that the engine has by itself, and a script that tries it.
+
+use std::sync::Arc;
+use std::sync::atomic::{AtomicBool, Ordering};
+use std::time::{Duration, Instant};
+
+use super::*;
+
+fn small() -> RunOptions {
+    let limits =
+        Limits { operations: 2_000_000, text: 100_000, array: 10_000, map: 1_000, ..Limits::default() };
+    RunOptions { limits, ..RunOptions::default() }
+}
+
+fn stopped(text: &str) {
+    let start = Instant::now();
+    expect_diagnostics(text, small());
+    assert!(start.elapsed() < Duration::from_secs(20), "{text} ran too long");
+}
+
+/// Source of truth: the limits given; a loop without end must stop, inside `try` too.
+#[test]
+fn loops_without_end_stop() {
+    stopped("loop { } // ~ E500");
+    stopped("let x = 0; while true { try { x += 1; } catch { } } // ~ E500");
+    stopped("fn f(n) { f(n + 1) }\nf(0); // ~ E501");
+}
+
+/// Source of truth: the limits given; nothing grows past them.
+#[test]
+fn values_without_end_stop() {
+    stopped("let a = [0]; loop { a += a; } // ~ E502");
+    stopped("let t = \"x\"; loop { t += t; } // ~ E502");
+    stopped("let t = \"\"; t.pad(1000000000, \"x\"); // ~ E502");
+    stopped("let a = []; a.pad(1000000000, 0); // ~ E502");
+    stopped("let a = []; loop { a = [a, a]; } // ~ E502");
+    stopped("let b = blob(1000000000, 0); // ~ E502");
+}
+
+/// Source of truth: memory of many values each below its own limit is bounded as well.
+#[test]
+#[cfg(target_os = "linux")]
+fn memory_is_bounded() {
+    let mut options = small();
+    options.limits.memory = 64 << 20;
+    options.limits.array = 100_000;
+    options.limits.operations = 100_000_000;
+    // entries set by their key are not counted by the engine
+    expect_diagnostics(
+        "let map = #{}; for i in range(0, 100000000) { map[`k${i}`] = i; } // ~ E502",
+        options.clone(),
+    );
+    // closures hide what they capture from the size of the array they stand in
+    expect_diagnostics(
+        "let keep = []; for i in range(0, 10000) { let big = []; big.pad(20000, i); keep.push(|| big); } // ~ E502",
+        options,
+    );
+}
+
+/// Source of truth: CRATES.md's list of holes; each name closed in every form.
+#[test]
+fn closed_functions_are_closed() {
+    stopped("eval(\"1 + 1\"); // ~ E117");
+    stopped("sleep(10000); // ~ E117");
+    stopped("sleep(10000.0); // ~ E117");
+    stopped("let f = Fn(\"sleep\"); f.call(10000); // ~ E117");
+    stopped("timestamp(); // ~ E117");
+    stopped("import \"other\" as other; // ~ E117");
+    stopped("import \"../other\" as other; // ~ E117");
+    stopped("let f = Fn(\"eval\"); f.call(\"1\"); // ~ E117");
+}
+
+/// Source of truth: the flag raised from another thread ends an endless loop within a second or so.
+#[test]
+fn an_interrupt_stops_a_loop() {
+    let interrupt = Arc::new(AtomicBool::new(false));
+    let raised = Arc::clone(&interrupt);
+    let raiser = std::thread::spawn(move || {
+        std::thread::sleep(Duration::from_millis(100));
+        raised.store(true, Ordering::Relaxed);
+    });
+    let options = RunOptions { interrupt, ..RunOptions::default() };
+    let (outcome, _) = run_with("loop { }", options);
+    assert!(outcome.interrupted);
+    raiser.join().unwrap();
+}
+
+/// Source of truth: expressions nested beyond the limit are refused before they exhaust the stack.
+#[test]
+fn deep_nesting_is_refused() {
+    let deep = format!("let x = {}1{}; // ~ E501", "(".repeat(500), ")".repeat(500));
+    expect_diagnostics(&deep, small());
+    let brackets = format!("let x = {}{}; // ~ E501", "[".repeat(5000), "]".repeat(5000));
+    expect_diagnostics(&brackets, small());
+}

@@ -1,0 +1,101 @@
+//! Inputs, `--set` and data files.
+
+use super::*;
+use std::path::Path;
+
+fn set(text: &str, name: &str, value: &str) -> (RunOutcome, Recorder) {
+    let options = RunOptions { set: vec![(name.to_string(), value.to_string())], ..RunOptions::default() };
+    run_with(text, options)
+}
+
+/// Source of truth: the rules of `--set`.
+#[test]
+fn inputs_are_overridden_by_name() {
+    let text = "let t = input(\"t\", 80.nm); let n = input(\"n\", 3); let kind = input(\"kind\", \"a\"); print(`${t} ${n} ${kind}`);";
+    let (outcome, recorder) = set(text, "t", "50nm");
+    assert!(outcome.errors.is_empty(), "{}", shown(text, &outcome.errors));
+    assert_eq!(recorder.lines, ["50 nm 3 a"]);
+    assert!(recorder.inputs[0].overridden && !recorder.inputs[1].overridden);
+    let code = |value: &str| set(text, "t", value).0.errors.first().map(|e| e.code.as_str());
+    assert_eq!(code("50"), Some("E112"));
+    assert_eq!(code("50V"), Some("E112"));
+    assert_eq!(code("50nmm"), Some("E112"));
+    assert_eq!(code("thin"), Some("E112"));
+    let (outcome, _) = set(text, "tt", "50nm");
+    let unknown = &outcome.errors[0];
+    assert_eq!(unknown.code, codes::UNKNOWN_INPUT);
+    assert!(unknown.help.as_deref().is_some_and(|h| h.contains('t')), "{unknown:?}");
+    fails("let a = input(\"a\", 1);\nlet b = input(\"a\", 2); // ~ E110");
+    fails("let a = input(\"a\", [1]); // ~ E107");
+}
+
+fn in_folder(folder: &Path, text: &str, allow: &[&Path]) -> (RunOutcome, Recorder) {
+    let mut recorder = Recorder::default();
+    let script = Script { folder: Some(folder.to_path_buf()), ..script(text) };
+    let options =
+        RunOptions { allow_read: allow.iter().map(|p| p.to_path_buf()).collect(), ..RunOptions::default() };
+    let outcome = run(&script, options, &mut recorder);
+    (outcome, recorder)
+}
+
+/// Source of truth: the rule of folders; each attack tries a way out of the script's folder.
+#[test]
+fn files_are_read_from_the_scripts_folder_alone() {
+    let root = tempfile::tempdir().expect("a folder");
+    let (inside, outside) = (root.path().join("inside"), root.path().join("outside"));
+    std::fs::create_dir_all(inside.join("data")).expect("a folder");
+    std::fs::create_dir_all(&outside).expect("a folder");
+    std::fs::write(inside.join("data/p.csv"), "depth_nm,density_per_cm3\n0,2e18\n40,5e17\n").expect("a file");
+    std::fs::write(outside.join("secret.csv"), "a,b\n1,2\n").expect("a file");
+    let (outcome, recorder) = in_folder(
+        &inside,
+        "let p = read_csv(\"data/p.csv\"); print(p[1].density); let d = donors(graded(p)); read_csv(\"data/p.csv\");",
+        &[],
+    );
+    assert!(outcome.errors.is_empty(), "{:?}", outcome.errors);
+    assert_eq!(recorder.lines, ["5e17 cm^-3"]);
+    assert_eq!(recorder.files.len(), 1, "a file is told once");
+    let absolute = format!("read_csv(\"{}\");", outside.join("secret.csv").display());
+    let mut attacks = vec![
+        "read_csv(\"../outside/secret.csv\");".to_string(),
+        absolute,
+        "read_csv(\"data/../../outside/secret.csv\");".to_string(),
+    ];
+    #[cfg(unix)]
+    {
+        std::os::unix::fs::symlink(outside.join("secret.csv"), inside.join("link.csv")).expect("a link");
+        std::os::unix::fs::symlink(&outside, inside.join("folder")).expect("a link");
+        attacks.push("read_csv(\"link.csv\");".to_string());
+        attacks.push("read_csv(\"folder/secret.csv\");".to_string());
+    }
+    for attack in &attacks {
+        let (outcome, _) = in_folder(&inside, attack, &[]);
+        assert_eq!(outcome.errors.first().map(|e| e.code), Some(codes::OUTSIDE), "{attack}");
+        let (outcome, _) = in_folder(&inside, attack, &[&outside]);
+        assert!(outcome.errors.is_empty(), "{attack}: {:?}", outcome.errors);
+    }
+    let (outcome, _) = in_folder(&inside, "read_csv(\"../nowhere.csv\");", &[]);
+    assert_eq!(outcome.errors[0].code, codes::OUTSIDE, "whether a file outside exists is not told");
+    let (outcome, _) = in_folder(&inside, "read_csv(\"nowhere.csv\");", &[]);
+    assert_eq!(outcome.errors[0].code, codes::UNREADABLE);
+    let (outcome, _) = in_folder(&inside, "read_csv(\"data\");", &[]);
+    assert_eq!(outcome.errors[0].code, codes::UNREADABLE);
+    std::fs::write(inside.join("torn.csv"), "a,b\n1,x\n").expect("a file");
+    let (outcome, _) = in_folder(&inside, "read_csv(\"torn.csv\");", &[]);
+    assert_eq!(outcome.errors[0].code, codes::DATA_FILE);
+    fails("read_csv(\"x.csv\"); // ~ E401");
+}
+
+/// Source of truth: a replay runs from the archived bytes without the folder.
+#[test]
+fn archived_files_stand_in_for_the_folder() {
+    let mut given = script("print(read_csv(\"p.csv\")[0].voltage);");
+    given.files.insert("p.csv".to_string(), b"voltage_V\n0.5\n".to_vec());
+    let mut recorder = Recorder::default();
+    let outcome = run(&given, RunOptions::default(), &mut recorder);
+    assert!(outcome.errors.is_empty(), "{:?}", outcome.errors);
+    assert_eq!(recorder.lines, ["0.5 V"]);
+    given.text = "read_csv(\"q.csv\");".to_string();
+    let outcome = run(&given, RunOptions::default(), &mut Recorder::default());
+    assert_eq!(outcome.errors[0].code, codes::REPLAY_INPUT);
+}

@@ -1,0 +1,42 @@
+//! The vocabulary as a table: every example runs, the reference page is its copy, every diagnostic has a test script.
+
+use super::*;
+use crate::language::vocabulary::{entries, topics};
+
+/// Source of truth: a manual whose examples do not run is wrong; each is checked, and those that solve nothing are run.
+#[test]
+fn every_example_is_a_valid_script() {
+    for entry in entries() {
+        let solves =
+            [".jv(", ".at(", ".eqe(", ".equilibrium("].iter().any(|word| entry.example.contains(word));
+        let options = RunOptions { check_only: solves, ..RunOptions::default() };
+        let (outcome, _) = run_with(entry.example, options);
+        assert!(outcome.errors.is_empty(), "{}:\n{}", entry.name, shown(entry.example, &outcome.errors));
+    }
+}
+
+/// Source of truth: the copy beside the crate is what `epiloom reference` prints; EPILOOM_WRITE_REFERENCE=1 writes it anew.
+#[test]
+fn the_reference_page_is_in_step() {
+    let path = std::path::Path::new(env!("CARGO_MANIFEST_DIR")).join("REFERENCE.md");
+    if std::env::var_os("EPILOOM_WRITE_REFERENCE").is_some() {
+        std::fs::write(&path, reference()).expect("the reference page can be written");
+    }
+    let copy = std::fs::read_to_string(&path).expect("the copy is there");
+    assert!(
+        copy == reference(),
+        "write it anew: EPILOOM_WRITE_REFERENCE=1 cargo test -p epiloom the_reference_page"
+    );
+}
+
+/// Source of truth: a table that drives registration needs complete rows.
+#[test]
+fn every_row_is_complete() {
+    for topic in topics() {
+        assert!(!topic.title.is_empty() && topic.intro.ends_with('.'), "{}", topic.title);
+        for entry in topic.entries {
+            assert!(!entry.forms.is_empty() && entry.doc.ends_with('.'), "{}", entry.name);
+            assert!(entry.forms.iter().any(|form| form.contains(entry.name)), "{}", entry.name);
+        }
+    }
+}

@@ -1,0 +1,311 @@
+//! Materials: from the library, or on a script's own numbers.
+
+use epiloom_solver::materials::{Kind, Material, MaterialBase, MaterialError, Parameter, names};
+use rhai::Dynamic;
+
+use crate::diagnostics::codes;
+use crate::language::device_value::{ConstantsValue, MaterialValue, ProfileValue};
+use crate::language::dimension::Dimension;
+use crate::language::fault::{Fault, Faults, Place};
+use crate::language::lower;
+use crate::language::quantity::Quantity;
+use crate::language::value::{Options, quantity, quantity_or_infinite, take, text};
+use crate::language::vocabulary::{OptionRow, function, getter, topic};
+
+topic! {
+    "Materials",
+    "A material of the library holds its values with their sources (`epiloom materials` prints them); any of them can be \
+     overridden by an option. A custom material stands on its own numbers alone, which hold at every temperature.";
+
+    Function "material" {
+        forms: ["material(\"name\")", "material(\"name\", #{ options })"],
+        doc: "A material of the library. An alloy takes its composition `x`, a number or a `graded(..)` profile. Every other \
+              option replaces a value of the library. Lifetimes have no citable default: set them.",
+        options: OPTIONS,
+        example: "let gaas = material(\"GaAs\", #{ electron_lifetime: 20.ns, hole_lifetime: 20.ns });\nlet wide = material(\"AlGaAs\", #{ x: 0.80 });",
+        register: |engine, session| {
+            engine.register_type_with_name::<MaterialValue>("material");
+            function(engine, session, "material", 1..=2, |_, arguments| {
+                let name = text(arguments[0], "the name of a material").map_err(|f| f.at(Place::Argument(0)))?;
+                let base = MaterialBase::Library(name);
+                build(base, "material", arguments.get(1).map(|a| &**a))
+            });
+        },
+    }
+    Function "custom_material" {
+        forms: ["custom_material(\"name\", #{ options })"],
+        doc: "A material on its own numbers. `gap`, `affinity`, `permittivity`, `nc`, `nv` and both mobilities must be given; \
+              a lifetime that is left out is infinite, a coefficient of recombination or an absorption that is left out is zero.",
+        options: OPTIONS,
+        example: "let test = custom_material(\"test\", #{ gap: 1.424.eV, affinity: 4.07.eV, permittivity: 12.9, nc: 4.7e17.per_cm3,\n    nv: 9e18.per_cm3, electron_mobility: 3000.cm2_per_Vs, hole_mobility: 200.cm2_per_Vs, electron_lifetime: 1.ns,\n    hole_lifetime: 10.ns, absorption: 1e4.per_cm });",
+        register: |engine, session| {
+            function(engine, session, "custom_material", 2..=2, |_, arguments| {
+                let name = text(arguments[0], "the name of a material").map_err(|f| f.at(Place::Argument(0)))?;
+                build(MaterialBase::Custom(name), "custom_material", Some(&*arguments[1]))
+            });
+        },
+    }
+    Property "name" of "material" {
+        forms: ["material.name"],
+        doc: "Its name.",
+        example: "print(material(\"GaAs\").name);",
+        register: |engine, session| {
+            getter::<MaterialValue>(engine, session, "name", |_, arguments| {
+                let name = arguments[0].read_lock::<MaterialValue>().map(|m| m.material.name().to_string());
+                Ok(name.unwrap_or_default().into())
+            });
+        },
+    }
+}
+
+/// Options of materials, in the order of the solver's parameter table, after the composition.
+const OPTIONS: &[OptionRow] = &[
+    OptionRow { key: "x", takes: "a number from 0 to 1, or `graded(..)`", doc: "Composition of an alloy." },
+    OptionRow { key: "gap", takes: "an energy", doc: "Band gap (the lowest one)." },
+    OptionRow {
+        key: "affinity",
+        takes: "an energy",
+        doc: "Electron affinity: vacuum level minus conduction-band edge.",
+    },
+    OptionRow { key: "permittivity", takes: "a number", doc: "Static relative permittivity." },
+    OptionRow { key: "nc", takes: "a density", doc: "Effective density of states of the conduction band." },
+    OptionRow { key: "nv", takes: "a density", doc: "Effective density of states of the valence band." },
+    OptionRow { key: "electron_mobility", takes: "a mobility", doc: "Low-field mobility of electrons." },
+    OptionRow { key: "hole_mobility", takes: "a mobility", doc: "Low-field mobility of holes." },
+    OptionRow {
+        key: "electron_lifetime",
+        takes: "a time",
+        doc: "Shockley-Read-Hall lifetime of electrons; infinite switches the channel off.",
+    },
+    OptionRow {
+        key: "hole_lifetime",
+        takes: "a time",
+        doc: "Shockley-Read-Hall lifetime of holes; infinite switches the channel off.",
+    },
+    OptionRow {
+        key: "trap_energy",
+        takes: "an energy",
+        doc: "Energy of the recombination level, counted upwards from the intrinsic level.",
+    },
+    OptionRow {
+        key: "trap_below_conduction_band",
+        takes: "an energy",
+        doc: "Energy of the recombination level below the conduction-band edge, instead of `trap_energy`.",
+    },
+    OptionRow {
+        key: "trap_above_valence_band",
+        takes: "an energy",
+        doc: "Energy of the recombination level above the valence-band edge, instead of `trap_energy`.",
+    },
+    OptionRow {
+        key: "radiative_coefficient",
+        takes: "a radiative coefficient",
+        doc: "Coefficient B of radiative (band-to-band) recombination.",
+    },
+    OptionRow {
+        key: "electron_auger",
+        takes: "an Auger coefficient",
+        doc: "Auger coefficient C_n (the energy goes to an electron).",
+    },
+    OptionRow {
+        key: "hole_auger",
+        takes: "an Auger coefficient",
+        doc: "Auger coefficient C_p (the energy goes to a hole).",
+    },
+    OptionRow {
+        key: "optical_constants",
+        takes: "`optical_constants(\"file.csv\")`",
+        doc: "A table used as it stands at every temperature instead of the library's.",
+    },
+    OptionRow {
+        key: "absorption",
+        takes: "an absorption coefficient",
+        doc: "One absorption coefficient; under a spectrum it acts at photon energies above the gap.",
+    },
+];
+
+/// The dimension of a kind of parameter.
+pub fn dimension(kind: Kind) -> Dimension {
+    match kind {
+        Kind::Energy => Dimension::ENERGY,
+        Kind::Number => Dimension::NONE,
+        Kind::Density => Dimension::DENSITY,
+        Kind::Mobility => Dimension::MOBILITY,
+        Kind::Time => Dimension::TIME,
+        Kind::RadiativeCoefficient => Dimension::RADIATIVE,
+        Kind::AugerCoefficient => Dimension::AUGER,
+        Kind::InverseLength => Dimension::INVERSE_LENGTH,
+    }
+}
+
+/// Keys of the options of a material.
+pub fn keys() -> impl Iterator<Item = &'static str> + Clone {
+    ["x", "optical_constants"].into_iter().chain(Parameter::ALL.iter().map(|p| p.key()))
+}
+
+/// The value of a parameter out of an option or a property.
+pub fn parameter_value(parameter: Parameter, value: &Dynamic, of: &str) -> Result<Quantity, Fault> {
+    let what = format!("`{}` of {of}", parameter.key());
+    match parameter.kind() {
+        Kind::Time => quantity_or_infinite(value, &what, Dimension::TIME),
+        kind => quantity(value, &what, dimension(kind)),
+    }
+}
+
+/// A composition: a number or a profile.
+pub fn composition(value: &Dynamic, of: &str) -> Result<(Option<Quantity>, Option<ProfileValue>), Fault> {
+    match value.read_lock::<ProfileValue>() {
+        Some(profile) => Ok((None, Some(profile.clone()))),
+        None => Ok((Some(quantity(value, &format!("the composition `x` of {of}"), Dimension::NONE)?), None)),
+    }
+}
+
+fn build(base: MaterialBase, function: &str, options: Option<&Dynamic>) -> Result<Dynamic, Faults> {
+    let mut material =
+        Material { base, composition: None, overrides: std::collections::BTreeMap::new(), optical: None };
+    let of = format!("material `{}`", material.name());
+    let mut faults = Vec::new();
+    let mut graded = None;
+    if let Some(options) = options {
+        let options = Options::new(options, &format!("`{function}`"), keys()).map_err(Faults)?;
+        for (key, value) in options.iter() {
+            let at = |fault: Fault| fault.at(Place::Option(key.to_string()));
+            if key == "x" {
+                match composition(value, &of) {
+                    Ok((number, profile)) => {
+                        material.composition = number;
+                        graded = profile.map(|p| p.0);
+                    }
+                    Err(fault) => faults.push(at(fault)),
+                }
+            } else if key == "optical_constants" {
+                match take::<ConstantsValue>(
+                    value,
+                    "`optical_constants`",
+                    "`optical_constants(\"file.csv\")`",
+                ) {
+                    Ok(constants) => material.optical = Some(constants.0),
+                    Err(fault) => faults.push(at(fault)),
+                }
+            } else if let Some(parameter) = Parameter::from_key(key) {
+                match parameter_value(parameter, value, &of) {
+                    Ok(value) => {
+                        material.overrides.insert(parameter, value);
+                    }
+                    Err(fault) => faults.push(at(fault)),
+                }
+            }
+        }
+    }
+    if faults.is_empty() {
+        faults = faults_of(&material, graded.is_some());
+    }
+    if faults.is_empty() {
+        Ok(Dynamic::from(MaterialValue { material, graded }))
+    } else {
+        Err(Faults(faults))
+    }
+}
+
+/// Everything that is wrong with a material by itself.
+pub fn faults_of(material: &Material<Quantity>, graded: bool) -> Vec<Fault> {
+    let unknown = std::cell::Cell::new(false);
+    let plain = lower::material(material, &|q: &Quantity| {
+        unknown.set(unknown.get() || q.unknown);
+        q.value
+    });
+    if unknown.get() {
+        return Vec::new();
+    }
+    let mut faults: Vec<Fault> = plain.faults().iter().map(material_fault).collect();
+    if faults.is_empty() && plain.is_alloy() && plain.composition.is_none() && !graded {
+        faults.push(material_fault(&MaterialError::NoComposition { name: material.name().to_string() }));
+    }
+    faults
+}
+
+/// A fault of a material in the words of scripts.
+pub fn material_fault(error: &MaterialError) -> Fault {
+    match error {
+        MaterialError::Unknown { name } => {
+            let known: Vec<&str> = names().collect();
+            Fault::new(codes::UNKNOWN_MATERIAL, format!("the library has no material `{name}`"))
+                .candidates(name, known.iter().copied())
+                .at(Place::Argument(0))
+        }
+        MaterialError::NoComposition { name } => {
+            Fault::new(codes::COMPOSITION, format!("`{name}` is an alloy and needs its composition `x`"))
+                .help(format!("material(\"{name}\", #{{ x: 0.30 }})"))
+        }
+        MaterialError::UnexpectedComposition { name } => {
+            Fault::new(codes::COMPOSITION, format!("`{name}` is no alloy and takes no composition `x`"))
+                .help("leave `x` out")
+                .at(Place::Key("x".to_string()))
+        }
+        MaterialError::OutOfRange { material, parameter, value, low, high } => {
+            let kind = Parameter::from_key(parameter).map(|p| dimension(p.kind()));
+            let dimension = match parameter.as_str() {
+                "temperature" => Dimension::TEMPERATURE,
+                _ => kind.unwrap_or(Dimension::NONE),
+            };
+            let shown = |v: f64| Quantity::si(v, dimension).to_string();
+            let code = match parameter.as_str() {
+                "x" => codes::COMPOSITION,
+                "temperature" => codes::TEMPERATURE,
+                _ => codes::MATERIAL_VALUE,
+            };
+            Fault::new(
+                code,
+                format!(
+                    "`{parameter}` of material `{material}` must be {}",
+                    range(&shown(*low), *low, &shown(*high), *high)
+                ),
+            )
+            .label(format!("this is {}", shown(*value)))
+            .at(Place::Option(parameter.clone()))
+        }
+        MaterialError::Missing { material, parameter } => {
+            let wants = Parameter::from_key(parameter).map_or(Dimension::NONE, |p| dimension(p.kind()));
+            Fault::new(
+                codes::MATERIAL_INCOMPLETE,
+                format!("custom material `{material}` needs `{parameter}`, {}", wants.family()),
+            )
+        }
+        MaterialError::TrapTwice { material } => Fault::new(
+            codes::MATERIAL_VALUE,
+            format!("material `{material}` has more than one energy of the recombination level"),
+        )
+        .help("give one of trap_energy, trap_below_conduction_band, trap_above_valence_band"),
+        other => Fault::new(codes::MATERIAL_VALUE, other.to_string()),
+    }
+}
+
+/// "between 0 and 1", "at least 0", "at most 10 eV".
+pub fn range(low_shown: &str, low: f64, high_shown: &str, high: f64) -> String {
+    match (low > -1e300, high < 1e300) {
+        (true, true) => format!("between {low_shown} and {high_shown}"),
+        (true, false) => format!("at least {low_shown}"),
+        (false, true) => format!("at most {high_shown}"),
+        (false, false) => "a finite number".to_string(),
+    }
+}
+
+#[cfg(test)]
+mod tests {
+    use super::*;
+
+    /// Source of truth: the solver's own parameter table; the rows that people read must be the same, in order.
+    #[test]
+    fn the_option_rows_are_the_parameter_table() {
+        let of_solver = || OPTIONS[1..].iter().filter(|o| o.key != "optical_constants");
+        let rows: Vec<(&str, &str)> = of_solver().map(|o| (o.key, o.doc)).collect();
+        let table: Vec<(&str, &str)> = Parameter::ALL.iter().map(|p| (p.key(), p.description())).collect();
+        assert_eq!(rows, table);
+        for (row, parameter) in of_solver().zip(Parameter::ALL) {
+            assert_eq!(
+                row.takes,
+                dimension(parameter.kind()).family_name().replace("a plain number", "a number")
+            );
+        }
+    }
+}

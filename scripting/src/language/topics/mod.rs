@@ -1,0 +1,34 @@
+//! The topics of the vocabulary, one file each.
+
+use super::vocabulary::Topic;
+
+mod files;
+mod functions;
+mod layers;
+mod light;
+mod materials;
+mod numbers;
+mod results;
+mod stacks;
+
+/// All topics, in the order of the reference page.
+pub(super) static ALL: &[&Topic] = &[
+    &files::TOPIC,
+    &numbers::TOPIC,
+    &functions::TOPIC,
+    &materials::TOPIC,
+    &layers::TOPIC,
+    &stacks::TOPIC,
+    &light::TOPIC,
+    &results::TOPIC,
+];
+
+/// Replaces what the engine's own library would compute with the platform's functions.
+pub(super) fn register_platform_replacements(engine: &mut rhai::Engine) {
+    functions::replace_platform_functions(engine);
+}
+
+pub(super) use layers::optics_word;
+pub(super) use materials::dimension as parameter_dimension;
+pub(super) use results::{account, income};
+pub(super) use stacks::{side_word, statistics_word};

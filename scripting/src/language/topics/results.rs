@@ -1,0 +1,777 @@
+//! What is asked of a stack and what comes back: curves, bias points, spectral responses, stored results.
+
+use std::sync::Arc;
+
+use epiloom_solver::analysis::{self, AnalysisError, BiasPoint, LedgerPart, SpectralResponse, Voltages};
+use epiloom_solver::device::{Device, Fault as DeviceFault, Place as DevicePlace};
+use rhai::{Array, Dynamic, Map};
+
+use crate::diagnostics::{Code, codes};
+use crate::language::device_value::StackValue;
+use crate::language::dimension::Dimension;
+use crate::language::fault::{Fault, Faults, Place};
+use crate::language::light_value::LightValue;
+use crate::language::quantity::Quantity;
+use crate::language::result_value::{
+    CurveValue, FIGURES, ResponseValue, Solved, StateValue, figure, outcome,
+};
+use crate::language::session::Event;
+use crate::language::value::{Options, Unknown, array, give, quantity, take, text};
+use crate::language::vocabulary::{
+    Answer, Call, OptionRow, function, getter, index_getter, method, topic, unknown_property,
+};
+use crate::language::{lower, snapshot};
+
+use super::light::light;
+use super::materials::{material_fault, range};
+use super::stacks;
+
+topic! {
+    "Solving and storing",
+    "Every figure of merit is solved for, carries its numerical error, and is `()` where it does not exist, with the reason in \
+     `.reason(\"name\")`. Nothing is in the archive but what `store` puts there.";
+
+    Method "jv" of "stack" {
+        forms: ["cell.jv(light)", "cell.jv(light, from, to, step)", "cell.jv(light, [voltage, ..])"],
+        doc: "The current-voltage curve under a light. Without voltages the device chooses them: from 0 V past open circuit in \
+              the light, from -0.5 V to about the built-in voltage in the dark. A range stops at its last whole step.",
+        example: "let gaas = material(\"GaAs\", #{ electron_lifetime: 20.ns, hole_lifetime: 20.ns });\nlet cell = stack(\"diode\", [layer(\"emitter\", gaas, 100.nm, donors(2e18.per_cm3)), layer(\"base\", gaas, 2.um, acceptors(1e17.per_cm3))]);\nlet jv = cell.jv(spectrum(\"AM1.5G\"), [0.V, 0.5.V]);\nprint(jv.jsc);",
+        register: |engine, session| {
+            engine.register_type_with_name::<CurveValue>("J-V curve");
+            method::<StackValue>(engine, session, "jv", 1..=4, jv);
+        },
+    }
+    Method "at" of "stack" {
+        forms: ["cell.at(voltage, light)"],
+        doc: "The bias point at a terminal voltage under a light: profiles against depth, current, ledger.",
+        example: "let gaas = material(\"GaAs\", #{ electron_lifetime: 20.ns, hole_lifetime: 20.ns });\nlet cell = stack(\"diode\", [layer(\"emitter\", gaas, 100.nm, donors(2e18.per_cm3)), layer(\"base\", gaas, 2.um, acceptors(1e17.per_cm3))]);\nlet point = cell.at(0.5.V, dark());\nprint(point.current_density);",
+        register: |engine, session| {
+            engine.register_type_with_name::<StateValue>("bias point");
+            method::<StackValue>(engine, session, "at", 2..=2, |call, arguments| {
+                let stack = stacks::of(arguments[0])?;
+                let voltage = quantity(arguments[1], "the voltage", Dimension::VOLTAGE).map_err(|f| f.at(Place::Argument(0)))?;
+                let light = light(arguments[2], 1)?;
+                let solved = solve(call, &stack, light, voltage.unknown, "bias point", |device, light| analysis::bias_point(device, light, voltage.value))?;
+                finish_state(call, &stack, solved)
+            });
+        },
+    }
+    Method "equilibrium" of "stack" {
+        forms: ["cell.equilibrium()"],
+        doc: "The stack in the dark without bias: band diagram, built-in field, sheet resistances, barriers.",
+        example: "let gaas = material(\"GaAs\", #{ electron_lifetime: 20.ns, hole_lifetime: 20.ns });\nlet cell = stack(\"diode\", [layer(\"emitter\", gaas, 100.nm, donors(2e18.per_cm3)), layer(\"base\", gaas, 2.um, acceptors(1e17.per_cm3))]);\nlet bands = cell.equilibrium();\nprint(bands.sheet_resistance[\"emitter\"]);",
+        register: |engine, session| {
+            method::<StackValue>(engine, session, "equilibrium", 0..=0, |call, arguments| {
+                let stack = stacks::of(arguments[0])?;
+                let solved = solve(call, &stack, LightValue::Dark, false, "equilibrium", |device, _| analysis::equilibrium(device))?;
+                finish_state(call, &stack, solved)
+            });
+        },
+    }
+    Method "eqe" of "stack" {
+        forms: ["cell.eqe(from, to, step)", "cell.eqe([wavelength, ..])", "cell.eqe(from, to, step, #{ options })"],
+        doc: "Spectral response at wavelengths: external quantum efficiency per photon on the total area, internal quantum \
+              efficiency, reflectance, and the share absorbed in each layer. At short circuit without bias light unless told otherwise.",
+        options: &[
+            OptionRow { key: "voltage", takes: "a voltage", doc: "Terminal voltage." },
+            OptionRow { key: "bias_light", takes: "a light", doc: "Light that shines besides the probe." },
+        ],
+        example: "let gaas = material(\"GaAs\", #{ electron_lifetime: 20.ns, hole_lifetime: 20.ns });\nlet cell = stack(\"diode\", [layer(\"emitter\", gaas, 100.nm, donors(2e18.per_cm3)), layer(\"base\", gaas, 2.um, acceptors(1e17.per_cm3))]);\nlet response = cell.eqe(400.nm, 900.nm, 100.nm);\nprint(response.points[0].eqe);",
+        register: |engine, session| {
+            engine.register_type_with_name::<ResponseValue>("spectral response");
+            method::<StackValue>(engine, session, "eqe", 1..=4, eqe);
+        },
+    }
+    Property "jsc" of "J-V curve" {
+        forms: ["jv.jsc", "jv.voc", "jv.ff", "jv.efficiency", "jv.max_power"],
+        doc: "Figures of merit, quantities with their numerical error: short-circuit current density (positive), open-circuit voltage, \
+              fill factor, efficiency (shares, printed in percent), maximum power. `()` where one does not exist.",
+        example: "let gaas = material(\"GaAs\", #{ electron_lifetime: 20.ns, hole_lifetime: 20.ns });\nlet cell = stack(\"diode\", [layer(\"emitter\", gaas, 100.nm, donors(2e18.per_cm3)), layer(\"base\", gaas, 2.um, acceptors(1e17.per_cm3))]);\nlet jv = cell.jv(spectrum(\"AM1.5G\"));\nprint(`${jv.jsc} ${jv.voc} ${jv.ff} ${jv.efficiency} ${jv.max_power}`);",
+        register: |engine, session| {
+            // each word is its own property, so that the body need not know which was asked for
+            getter::<CurveValue>(engine, session, "jsc", |_, a| Ok(named(a[0], "jsc")?));
+            getter::<CurveValue>(engine, session, "voc", |_, a| Ok(named(a[0], "voc")?));
+            getter::<CurveValue>(engine, session, "ff", |_, a| Ok(named(a[0], "ff")?));
+            getter::<CurveValue>(engine, session, "efficiency", |_, a| Ok(named(a[0], "efficiency")?));
+            getter::<CurveValue>(engine, session, "max_power", |_, a| Ok(named(a[0], "max_power")?));
+            index_getter::<CurveValue>(engine, session, |_, arguments| {
+                let name = text(arguments[1], "a property")?;
+                let known = ["jsc", "voc", "ff", "efficiency", "max_power", "mpp", "points", "stopped"];
+                Err(unknown_property("J-V curve", &name).candidates(&name, known).into())
+            });
+        },
+    }
+    Property "mpp" of "J-V curve" {
+        forms: ["jv.mpp.voltage", "jv.mpp.current_density", "jv.mpp.power"],
+        doc: "The maximum power point: terminal voltage, current density delivered (positive) and power.",
+        example: "let gaas = material(\"GaAs\", #{ electron_lifetime: 20.ns, hole_lifetime: 20.ns });\nlet cell = stack(\"diode\", [layer(\"emitter\", gaas, 100.nm, donors(2e18.per_cm3)), layer(\"base\", gaas, 2.um, acceptors(1e17.per_cm3))]);\nprint(cell.jv(spectrum(\"AM1.5G\")).mpp.voltage);",
+        register: |engine, session| {
+            getter::<CurveValue>(engine, session, "mpp", |_, arguments| {
+                let mut map = Map::new();
+                map.insert("voltage".into(), named(arguments[0], "mpp_voltage")?);
+                map.insert("current_density".into(), named(arguments[0], "mpp_current_density")?);
+                map.insert("power".into(), named(arguments[0], "max_power")?);
+                Ok(map.into())
+            });
+        },
+    }
+    Property "points" of "J-V curve" {
+        forms: ["jv.points"],
+        doc: "Its points, maps with `voltage`, `current_density` (negative for photocurrent; the finest mesh's own value), \
+              `extrapolated` (the current density extrapolated over the meshes, with its error), `junction_voltage` and `conductance` (dJ/dV).",
+        example: "let gaas = material(\"GaAs\", #{ electron_lifetime: 20.ns, hole_lifetime: 20.ns });\nlet cell = stack(\"diode\", [layer(\"emitter\", gaas, 100.nm, donors(2e18.per_cm3)), layer(\"base\", gaas, 2.um, acceptors(1e17.per_cm3))]);\nfor p in cell.jv(dark(), [0.3.V, 0.6.V]).points { print(`${p.voltage}  ${p.current_density}`); }",
+        register: |engine, session| {
+            getter::<CurveValue>(engine, session, "points", |_, arguments| {
+                let curve: CurveValue = take(arguments[0], "the curve", "a J-V curve")?;
+                Ok(match &curve.0.result {
+                    None => Dynamic::from(Unknown),
+                    Some(result) => result.points.iter().map(point).collect::<Array>().into(),
+                })
+            });
+        },
+    }
+    Property "stopped" of "J-V curve" {
+        forms: ["jv.stopped"],
+        doc: "Why the curve stopped before its last voltage; `()` for a whole curve.",
+        example: "let gaas = material(\"GaAs\", #{ electron_lifetime: 20.ns, hole_lifetime: 20.ns });\nlet cell = stack(\"diode\", [layer(\"emitter\", gaas, 100.nm, donors(2e18.per_cm3)), layer(\"base\", gaas, 2.um, acceptors(1e17.per_cm3))]);\nif cell.jv(dark(), [0.V, 0.5.V]).stopped != () { print(\"cut short\"); }",
+        register: |engine, session| {
+            getter::<CurveValue>(engine, session, "stopped", |_, arguments| {
+                let curve: CurveValue = take(arguments[0], "the curve", "a J-V curve")?;
+                let stopped = curve.0.result.as_ref().and_then(|r| r.stopped.clone());
+                Ok(stopped.map_or(Dynamic::UNIT, Dynamic::from))
+            });
+        },
+    }
+    Method "reason" of "J-V curve" {
+        forms: ["jv.reason(\"voc\")"],
+        doc: "Why a figure of merit does not exist; `()` if it does.",
+        example: "let gaas = material(\"GaAs\", #{ electron_lifetime: 20.ns, hole_lifetime: 20.ns });\nlet bar = stack(\"bar\", [layer(\"bar\", gaas, 1.um, donors(1e17.per_cm3))]);\nprint(bar.jv(dark(), [0.V, 0.1.V]).reason(\"voc\"));",
+        register: |engine, session| {
+            method::<CurveValue>(engine, session, "reason", 1..=1, |_, arguments| {
+                let curve: CurveValue = take(arguments[0], "the curve", "a J-V curve")?;
+                let name = text(arguments[1], "the name of a figure of merit").map_err(|f| f.at(Place::Argument(0)))?;
+                let Some(row) = FIGURES.iter().find(|row| row.0 == name || (name == "mpp" && row.0 == "mpp_voltage")) else {
+                    let known: Vec<&str> = FIGURES.iter().map(|row| row.0).collect();
+                    return Err(Fault::new(codes::WRONG_CHOICE, format!("no figure of merit is called \"{name}\""))
+                        .candidates(&name, known.iter().copied())
+                        .at(Place::Argument(0))
+                        .into());
+                };
+                let reason = curve.0.result.as_ref().and_then(|r| row.3(r).as_ref().err().map(|absent| absent.reason.clone()));
+                Ok(reason.map_or(Dynamic::UNIT, Dynamic::from))
+            });
+        },
+    }
+    Property "voltage" of "bias point" {
+        forms: ["point.voltage", "point.junction_voltage", "point.current_density", "point.conductance"],
+        doc: "Terminal voltage; voltage inside the series resistance; terminal current density, positive for forward diode \
+              current, extrapolated with its error; dJ/dV.",
+        example: "let gaas = material(\"GaAs\", #{ electron_lifetime: 20.ns, hole_lifetime: 20.ns });\nlet cell = stack(\"diode\", [layer(\"emitter\", gaas, 100.nm, donors(2e18.per_cm3)), layer(\"base\", gaas, 2.um, acceptors(1e17.per_cm3))]);\nlet point = cell.at(0.5.V, dark());\nprint(`${point.voltage} ${point.junction_voltage} ${point.current_density} ${point.conductance}`);",
+        register: |engine, session| {
+            getter::<StateValue>(engine, session, "voltage", |_, a| of_state(a[0], Dimension::VOLTAGE, |s| Quantity::si(s.voltage, Dimension::VOLTAGE)));
+            getter::<StateValue>(engine, session, "junction_voltage", |_, a| of_state(a[0], Dimension::VOLTAGE, |s| Quantity::si(s.junction_voltage, Dimension::VOLTAGE)));
+            getter::<StateValue>(engine, session, "current_density", |_, a| {
+                of_state(a[0], Dimension::CURRENT_DENSITY, |s| figure(&s.current_density, Dimension::CURRENT_DENSITY, "mA_per_cm2"))
+            });
+            getter::<StateValue>(engine, session, "conductance", |_, a| of_state(a[0], Dimension::AREA_CONDUCTANCE, |s| Quantity::si(s.conductance, Dimension::AREA_CONDUCTANCE)));
+            index_getter::<StateValue>(engine, session, |_, arguments| {
+                let name = text(arguments[1], "a property")?;
+                let known = ["voltage", "junction_voltage", "current_density", "conductance", "profiles", "ledger", "sheet_resistance", "barriers"];
+                Err(unknown_property("bias point", &name).candidates(&name, known).into())
+            });
+        },
+    }
+    Property "profiles" of "bias point" {
+        forms: ["point.profiles"],
+        doc: "A map of arrays against depth, the finest mesh's own values: `depth`, `layer`, `potential`, `conduction_band`, \
+              `valence_band`, `electron_level`, `hole_level`, `electrons`, `holes`, `field`, `electron_current`, `hole_current`, \
+              `shockley_read_hall`, `radiative`, `auger`, `generation`, `collection`. An interface stands twice, once with each side's material.",
+        example: "let gaas = material(\"GaAs\", #{ electron_lifetime: 20.ns, hole_lifetime: 20.ns });\nlet cell = stack(\"diode\", [layer(\"emitter\", gaas, 100.nm, donors(2e18.per_cm3)), layer(\"base\", gaas, 2.um, acceptors(1e17.per_cm3))]);\nlet p = cell.equilibrium().profiles;\nprint(`${p.depth[0]} ${p.electrons[0]}`);",
+        register: |engine, session| {
+            getter::<StateValue>(engine, session, "profiles", |_, arguments| {
+                let state: StateValue = take(arguments[0], "the bias point", "a bias point")?;
+                Ok(state.0.result.as_ref().map_or(Dynamic::from(Unknown), |s| profiles(&state.0, s).into()))
+            });
+        },
+    }
+    Property "ledger" of "bias point" {
+        forms: ["point.ledger"],
+        doc: "The account of photons, carriers and energy: an array of maps with `account` (\"photons\", \"carriers\", \"free energy\", \
+              \"photon energy\"), `place` (a layer, contact or interface; empty for the whole), `channel`, `value` (a current density \
+              or a power per area), `share` (of what came in) and `source` (true for what comes in).",
+        example: "let gaas = material(\"GaAs\", #{ electron_lifetime: 20.ns, hole_lifetime: 20.ns });\nlet cell = stack(\"diode\", [layer(\"emitter\", gaas, 100.nm, donors(2e18.per_cm3)), layer(\"base\", gaas, 2.um, acceptors(1e17.per_cm3))]);\nfor line in cell.at(0.9.V, dark()).ledger { print(`${line.place} ${line.channel} ${line.value}`); }",
+        register: |engine, session| {
+            getter::<StateValue>(engine, session, "ledger", |_, arguments| {
+                let state: StateValue = take(arguments[0], "the bias point", "a bias point")?;
+                Ok(state.0.result.as_ref().map_or(Dynamic::from(Unknown), |s| ledger(s).into()))
+            });
+        },
+    }
+    Method "total" of "bias point" {
+        forms: ["point.total(\"carriers\", \"Auger\")"],
+        doc: "Sum over all places of one channel of an account of the ledger.",
+        example: "let gaas = material(\"GaAs\", #{ electron_lifetime: 20.ns, hole_lifetime: 20.ns });\nlet cell = stack(\"diode\", [layer(\"emitter\", gaas, 100.nm, donors(2e18.per_cm3)), layer(\"base\", gaas, 2.um, acceptors(1e17.per_cm3))]);\nlet point = cell.at(0.9.V, dark());\nprint(point.total(\"carriers\", \"Auger\") / point.total(\"carriers\", \"radiative\"));",
+        register: |engine, session| {
+            method::<StateValue>(engine, session, "total", 2..=2, total);
+        },
+    }
+    Property "sheet_resistance" of "bias point" {
+        forms: ["point.sheet_resistance[\"layer\"]"],
+        doc: "Sheet resistance of each layer by its majority carriers at this bias, a map by layer.",
+        example: "let gaas = material(\"GaAs\", #{ electron_lifetime: 20.ns, hole_lifetime: 20.ns });\nlet cell = stack(\"diode\", [layer(\"emitter\", gaas, 100.nm, donors(2e18.per_cm3)), layer(\"base\", gaas, 2.um, acceptors(1e17.per_cm3))]);\nprint(cell.equilibrium().sheet_resistance[\"base\"]);",
+        register: |engine, session| {
+            getter::<StateValue>(engine, session, "sheet_resistance", |_, arguments| {
+                let state: StateValue = take(arguments[0], "the bias point", "a bias point")?;
+                let Some(result) = &state.0.result else { return Ok(Dynamic::from(Unknown)) };
+                let mut map = Map::new();
+                for (layer, value) in state.0.stack.layers.iter().zip(&result.sheet_resistance) {
+                    map.insert(layer.name.as_str().into(), give(Quantity::si(*value, Dimension::RESISTANCE)));
+                }
+                Ok(map.into())
+            });
+        },
+    }
+    Property "barriers" of "bias point" {
+        forms: ["point.barriers"],
+        doc: "The steps of the band edges at each interface: an array of maps with `front`, `rear` (the two layers), `electrons` and `holes`, \
+              energies that the carrier must climb on its way to the rear.",
+        example: "let gaas = material(\"GaAs\", #{ electron_lifetime: 20.ns, hole_lifetime: 20.ns });\nlet cell = stack(\"diode\", [layer(\"emitter\", gaas, 100.nm, donors(2e18.per_cm3)), layer(\"base\", gaas, 2.um, acceptors(1e17.per_cm3))]);\nprint(cell.equilibrium().barriers[0].electrons);",
+        register: |engine, session| {
+            getter::<StateValue>(engine, session, "barriers", |_, arguments| {
+                let state: StateValue = take(arguments[0], "the bias point", "a bias point")?;
+                let Some(result) = &state.0.result else { return Ok(Dynamic::from(Unknown)) };
+                let pairs = state.0.stack.layers.windows(2).zip(&result.barriers);
+                Ok(pairs
+                    .map(|(pair, (electrons, holes))| {
+                        let mut map = Map::new();
+                        map.insert("front".into(), pair[0].name.clone().into());
+                        map.insert("rear".into(), pair[1].name.clone().into());
+                        map.insert("electrons".into(), give(Quantity::si(*electrons, Dimension::ENERGY)));
+                        map.insert("holes".into(), give(Quantity::si(*holes, Dimension::ENERGY)));
+                        Dynamic::from(map)
+                    })
+                    .collect::<Array>()
+                    .into())
+            });
+        },
+    }
+    Property "points" of "spectral response" {
+        forms: ["response.points"],
+        doc: "Its points, maps with `wavelength`, `eqe` (with its error), `iqe` and `reflectance`.",
+        example: "let gaas = material(\"GaAs\", #{ electron_lifetime: 20.ns, hole_lifetime: 20.ns });\nlet cell = stack(\"diode\", [layer(\"emitter\", gaas, 100.nm, donors(2e18.per_cm3)), layer(\"base\", gaas, 2.um, acceptors(1e17.per_cm3))]);\nfor p in cell.eqe([500.nm, 700.nm]).points { print(`${p.wavelength} ${p.eqe} ${p.iqe}`); }",
+        register: |engine, session| {
+            getter::<ResponseValue>(engine, session, "points", |_, arguments| {
+                let response: ResponseValue = take(arguments[0], "the response", "a spectral response")?;
+                Ok(response.0.result.as_ref().map_or(Dynamic::from(Unknown), |r| response_points(r).into()))
+            });
+            index_getter::<ResponseValue>(engine, session, |_, arguments| {
+                Err(unknown_property("spectral response", &text(arguments[1], "a property")?).into())
+            });
+        },
+    }
+    Function "store" {
+        forms: ["store(\"name\", result)"],
+        doc: "Stores a result in the archive, with all it stands on: a curve, a bias point, a spectral response, a map of figures \
+              (`#{ efficiency: jv.efficiency }`) or a table (an array of such maps). Each name once.",
+        example: "let gaas = material(\"GaAs\", #{ electron_lifetime: 20.ns, hole_lifetime: 20.ns });\nlet cell = stack(\"diode\", [layer(\"emitter\", gaas, 100.nm, donors(2e18.per_cm3)), layer(\"base\", gaas, 2.um, acceptors(1e17.per_cm3))]);\nstore(\"dark J-V\", cell.jv(dark(), 0.V, 0.8.V, 0.2.V));",
+        register: |engine, session| {
+            function(engine, session, "store", 2..=2, store);
+        },
+    }
+}
+
+/// A figure of merit of a curve by its word.
+fn named(value: &Dynamic, name: &str) -> Result<Dynamic, Fault> {
+    let curve: CurveValue = take(value, "the curve", "a J-V curve")?;
+    let Some((_, dimension, unit, of)) = FIGURES.iter().find(|row| row.0 == name) else {
+        return Ok(Dynamic::UNIT);
+    };
+    Ok(outcome(curve.0.result.as_ref().map(of), *dimension, unit))
+}
+
+fn of_state(value: &Dynamic, dimension: Dimension, f: fn(&BiasPoint) -> Quantity) -> Answer {
+    let state: StateValue = take(value, "the bias point", "a bias point")?;
+    Ok(give(state.0.result.as_ref().map_or_else(|| Quantity::unsolved(dimension), f)))
+}
+
+/// Checks the stack, solves unless checking, tells warnings.
+fn solve<T>(
+    call: &Call,
+    stack: &StackValue,
+    light: LightValue,
+    unknown: bool,
+    what: &str,
+    analysis: impl FnOnce(&Device, &epiloom_solver::optics::Light) -> Result<T, AnalysisError>,
+) -> Result<Solved<T>, Faults> {
+    let plain = (!unknown).then(|| lower::plain(&stack.stack)).flatten();
+    let (Some(plain), Some(plain_light)) = (plain, light.plain()) else {
+        return Ok(Solved { result: None, device: None, stack: Arc::clone(&stack.stack), light });
+    };
+    let device = Device::new(plain)
+        .map_err(|faults| Faults(faults.iter().map(|fault| device_fault(fault, stack)).collect()))?;
+    if call.session.checking() {
+        for warning in device.warnings() {
+            warn(call, stack, &analysis::Warning::of_device(&warning));
+        }
+        return Ok(Solved { result: None, device: Some(device), stack: Arc::clone(&stack.stack), light });
+    }
+    call.session.tell(Event::Working(format!("{what} of `{}`", stack.stack.name)));
+    let result = analysis(&device, &plain_light).map_err(|error| analysis_fault(&error))?;
+    Ok(Solved { result: Some(result), device: Some(device), stack: Arc::clone(&stack.stack), light })
+}
+
+/// A warning of the solver, at the layer it is about or at the analysis.
+fn warn(call: &Call, stack: &StackValue, warning: &analysis::Warning) {
+    let code = Code::find(warning.code).unwrap_or(codes::ACCURACY_NOT_REACHED);
+    let mut fault = Fault::new(code, warning.message.clone());
+    let layer = warning.message.split('`').skip(1).step_by(2).find_map(|name| stack.places.get(name));
+    match layer {
+        Some((line, column)) => {
+            fault = fault.at(Place::Elsewhere(*line, *column, Box::new(Place::Argument(0))));
+            call.session.warn(fault, rhai::Position::NONE);
+        }
+        None => call.session.warn(fault, call.position),
+    }
+}
+
+fn jv(call: &Call, arguments: &mut [&mut Dynamic]) -> Answer {
+    let stack = stacks::of(arguments[0])?;
+    let light = light(arguments[1], 0)?;
+    let mut unknown = false;
+    let voltages = match arguments.len() {
+        2 => Voltages::Automatic,
+        3 => {
+            let list = array(arguments[2], "the voltages").map_err(|f| f.at(Place::Argument(1)))?;
+            let mut given = Vec::new();
+            for entry in &list {
+                let voltage = quantity(entry, "a voltage of the list", Dimension::VOLTAGE)
+                    .map_err(|f| f.at(Place::Argument(1)))?;
+                unknown |= voltage.unknown;
+                given.push(voltage.value);
+            }
+            if given.is_empty() {
+                return Err(Fault::new(codes::VOLTAGES, "the list of voltages is empty")
+                    .at(Place::Argument(1))
+                    .into());
+            }
+            Voltages::Given(given)
+        }
+        5 => {
+            let (given, not_known) = steps(call, &arguments[2..5], 1, Dimension::VOLTAGE, codes::VOLTAGES)?;
+            unknown |= not_known;
+            Voltages::Given(given)
+        }
+        _ => {
+            return Err(Fault::new(codes::WRONG_ARGUMENTS, "`jv` is called in a form it does not have")
+                .help("its forms: cell.jv(light); cell.jv(light, from, to, step); cell.jv(light, [voltage, ..])")
+                .into());
+        }
+    };
+    let count = if let Voltages::Given(list) = &voltages { list.len() } else { 0 };
+    too_many(call, count, codes::VOLTAGES)?;
+    let solved = solve(call, &stack, light, unknown, "J-V curve", |device, light| {
+        analysis::current_voltage(device, light, &voltages)
+    })?;
+    if let Some(result) = &solved.result {
+        result.warnings.iter().for_each(|w| warn(call, &stack, w));
+        if let Some(reason) = &result.stopped {
+            call.session.warn(
+                Fault::new(codes::CURVE_STOPPED, format!("the curve stopped early: {reason}")),
+                call.position,
+            );
+        }
+    }
+    Ok(Dynamic::from(CurveValue(Arc::new(solved))))
+}
+
+fn eqe(call: &Call, arguments: &mut [&mut Dynamic]) -> Answer {
+    let stack = stacks::of(arguments[0])?;
+    let ranged = arguments.len() >= 4;
+    let (wavelengths, mut unknown) = if ranged {
+        steps(call, &arguments[1..4], 0, Dimension::LENGTH, codes::WAVELENGTHS)?
+    } else {
+        let list = array(arguments[1], "the wavelengths").map_err(|f| f.at(Place::Argument(0)))?;
+        let mut given = Vec::new();
+        let mut unknown = false;
+        for entry in &list {
+            let wavelength = quantity(entry, "a wavelength of the list", Dimension::LENGTH)
+                .map_err(|f| f.at(Place::Argument(0)))?;
+            unknown |= wavelength.unknown;
+            given.push(wavelength.value);
+        }
+        (given, unknown)
+    };
+    if let Some(bad) = wavelengths.iter().find(|w| **w <= 0.0) {
+        return Err(Fault::new(codes::WAVELENGTHS, "a wavelength must be positive")
+            .label(format!("this is {}", Quantity::si(*bad, Dimension::LENGTH)))
+            .at(Place::Argument(0))
+            .into());
+    }
+    if wavelengths.is_empty() {
+        return Err(Fault::new(codes::WAVELENGTHS, "the list of wavelengths is empty")
+            .at(Place::Argument(0))
+            .into());
+    }
+    too_many(call, wavelengths.len(), codes::WAVELENGTHS)?;
+    let options = match (ranged, arguments.len()) {
+        (true, 5) => Some(&*arguments[4]),
+        (false, 3) => Some(&*arguments[2]),
+        _ => None,
+    };
+    let options = match options {
+        Some(map) => Options::new(map, "`eqe`", ["voltage", "bias_light"]).map_err(Faults)?,
+        None => Options::none(),
+    };
+    let voltage = options
+        .quantity("voltage", "`voltage`", Dimension::VOLTAGE)?
+        .unwrap_or_else(|| Quantity::si(0.0, Dimension::VOLTAGE));
+    unknown |= voltage.unknown;
+    let bias = match options.get("bias_light") {
+        Some(value) => take(value, "`bias_light`", "a light")
+            .map_err(|f| f.at(Place::Option("bias_light".to_string())))?,
+        None => LightValue::Dark,
+    };
+    let solved = solve(call, &stack, bias, unknown, "spectral response", |device, light| {
+        analysis::spectral_response(device, &wavelengths, voltage.value, light)
+    })?;
+    if let Some(result) = &solved.result {
+        result.warnings.iter().for_each(|w| warn(call, &stack, w));
+    }
+    Ok(Dynamic::from(ResponseValue(Arc::new(solved))))
+}
+
+fn finish_state(call: &Call, stack: &StackValue, solved: Solved<BiasPoint>) -> Answer {
+    if let Some(result) = &solved.result {
+        result.warnings.iter().for_each(|w| warn(call, stack, w));
+    }
+    Ok(Dynamic::from(StateValue(Arc::new(solved))))
+}
+
+/// The values from, from + step, .. up to the last whole step, and whether they are not known.
+fn steps(
+    call: &Call,
+    arguments: &[&mut Dynamic],
+    first: usize,
+    dimension: Dimension,
+    code: Code,
+) -> Result<(Vec<f64>, bool), Fault> {
+    let words = ["the first value", "the last value", "the step"];
+    let mut given = Vec::new();
+    for (index, value) in arguments.iter().enumerate() {
+        given.push(
+            quantity(value, words[index], dimension).map_err(|f| f.at(Place::Argument(first + index)))?,
+        );
+    }
+    let (from, to, step) = (given[0].value, given[1].value, given[2].value);
+    if given.iter().any(|q| q.unknown) {
+        return Ok((vec![from], true));
+    }
+    let count = (to - from) / step;
+    if step == 0.0 || count.is_nan() || count < 0.0 {
+        return Err(Fault::new(
+            code,
+            format!("steps of {} do not lead from {} to {}", given[2], given[0], given[1]),
+        )
+        .label(format!("this is {}", given[2]))
+        .at(Place::Argument(first + 2)));
+    }
+    // a whole number of steps may miss its last value by rounding
+    let whole = (count + 1e-9).floor();
+    if whole >= call.session.options.limits.points as f64 {
+        return Err(too_many_points(call, whole));
+    }
+    let whole_steps = whole as usize;
+    let hits_end = (count - whole).abs() <= 1e-9;
+    Ok((
+        (0..=whole_steps)
+            .map(|k| if k == whole_steps && hits_end { to } else { from + step * k as f64 })
+            .collect(),
+        false,
+    ))
+}
+
+fn too_many(call: &Call, count: usize, _: Code) -> Result<(), Fault> {
+    if count > call.session.options.limits.points { Err(too_many_points(call, count as f64)) } else { Ok(()) }
+}
+
+fn too_many_points(call: &Call, count: f64) -> Fault {
+    Fault::new(
+        codes::TOO_LARGE,
+        format!("{count:.0} points are more than the {} allowed", call.session.options.limits.points),
+    )
+}
+
+fn point(point: &analysis::JvPoint) -> Dynamic {
+    let mut map = Map::new();
+    let current = |v: f64| Quantity::si(v, Dimension::CURRENT_DENSITY);
+    map.insert("voltage".into(), give(Quantity::si(point.voltage, Dimension::VOLTAGE)));
+    map.insert("junction_voltage".into(), give(Quantity::si(point.junction_voltage, Dimension::VOLTAGE)));
+    map.insert("current_density".into(), give(current(point.current_density)));
+    map.insert(
+        "extrapolated".into(),
+        give(figure(&point.extrapolated, Dimension::CURRENT_DENSITY, "mA_per_cm2")),
+    );
+    map.insert("conductance".into(), give(Quantity::si(point.conductance, Dimension::AREA_CONDUCTANCE)));
+    Dynamic::from(map)
+}
+
+fn response_points(response: &SpectralResponse) -> Array {
+    (0..response.wavelength.len())
+        .map(|i| {
+            let mut map = Map::new();
+            map.insert("wavelength".into(), give(Quantity::si(response.wavelength[i], Dimension::LENGTH)));
+            map.insert(
+                "eqe".into(),
+                give(Quantity::number(response.external[i]).with_error(response.error[i])),
+            );
+            map.insert("iqe".into(), give(Quantity::number(response.internal[i])));
+            map.insert("reflectance".into(), give(Quantity::number(response.reflectance[i])));
+            Dynamic::from(map)
+        })
+        .collect()
+}
+
+fn profiles(solved: &Solved<BiasPoint>, state: &BiasPoint) -> Map {
+    let mut map = Map::new();
+    for (name, values, dimension, _) in snapshot::profile_columns(&state.profiles) {
+        let column: Array = values.iter().map(|v| give(Quantity::si(*v, dimension))).collect();
+        map.insert(name.into(), column.into());
+    }
+    let names = state
+        .profiles
+        .layer
+        .iter()
+        .map(|i| solved.stack.layers.get(*i).map_or(Dynamic::UNIT, |l| l.name.clone().into()));
+    map.insert("layer".into(), names.collect::<Array>().into());
+    map
+}
+
+/// The word for an account of the ledger.
+pub fn account(part: LedgerPart) -> &'static str {
+    match part {
+        LedgerPart::Photons => "photons",
+        LedgerPart::Carriers => "carriers",
+        LedgerPart::FreeEnergy => "free energy",
+        LedgerPart::PhotonEnergy => "photon energy",
+    }
+}
+
+/// The dimension of the values of an account.
+pub fn account_dimension(part: LedgerPart) -> Dimension {
+    match part {
+        LedgerPart::Photons | LedgerPart::Carriers => Dimension::CURRENT_DENSITY,
+        LedgerPart::FreeEnergy | LedgerPart::PhotonEnergy => Dimension::POWER_DENSITY,
+    }
+}
+
+/// What came in, by account: the sum that shares are of.
+pub fn income(state: &BiasPoint, part: LedgerPart) -> f64 {
+    state.ledger.lines.iter().filter(|l| l.part == part && l.source).map(|l| l.value).sum()
+}
+
+fn ledger(state: &BiasPoint) -> Array {
+    state
+        .ledger
+        .lines
+        .iter()
+        .map(|line| {
+            let mut map = Map::new();
+            map.insert("account".into(), account(line.part).into());
+            map.insert("place".into(), line.place.clone().into());
+            map.insert("channel".into(), line.channel.clone().into());
+            map.insert("value".into(), give(Quantity::si(line.value, account_dimension(line.part))));
+            let income = income(state, line.part);
+            let share = if income == 0.0 {
+                Dynamic::UNIT
+            } else {
+                give(Quantity::number(line.value / income).shown_in("percent"))
+            };
+            map.insert("share".into(), share);
+            map.insert("source".into(), line.source.into());
+            Dynamic::from(map)
+        })
+        .collect()
+}
+
+fn total(_: &Call, arguments: &mut [&mut Dynamic]) -> Answer {
+    let state: StateValue = take(arguments[0], "the bias point", "a bias point")?;
+    let wanted = text(arguments[1], "the account").map_err(|f| f.at(Place::Argument(0)))?;
+    let channel = text(arguments[2], "the channel").map_err(|f| f.at(Place::Argument(1)))?;
+    let parts = [LedgerPart::Photons, LedgerPart::Carriers, LedgerPart::FreeEnergy, LedgerPart::PhotonEnergy];
+    let Some(part) = parts.into_iter().find(|part| account(*part) == wanted) else {
+        return Err(Fault::new(codes::WRONG_CHOICE, format!("the ledger has no account \"{wanted}\""))
+            .candidates(&wanted, parts.map(account))
+            .at(Place::Argument(0))
+            .into());
+    };
+    let Some(result) = &state.0.result else {
+        return Ok(give(Quantity::unsolved(account_dimension(part))));
+    };
+    let mut known: Vec<&str> =
+        result.ledger.lines.iter().filter(|l| l.part == part).map(|l| l.channel.as_str()).collect();
+    known.dedup();
+    if !known.contains(&channel.as_str()) {
+        return Err(Fault::new(
+            codes::WRONG_CHOICE,
+            format!("the account of {wanted} has no channel \"{channel}\""),
+        )
+        .candidates(&channel, known.iter().copied())
+        .at(Place::Argument(1))
+        .into());
+    }
+    let sum: f64 =
+        result.ledger.lines.iter().filter(|l| l.part == part && l.channel == channel).map(|l| l.value).sum();
+    let figures: Vec<_> = result
+        .ledger
+        .lines
+        .iter()
+        .filter(|l| l.part == LedgerPart::Carriers)
+        .zip(&result.carrier_figures)
+        .filter(|(l, _)| part == LedgerPart::Carriers && l.channel == channel)
+        .map(|(_, f)| f)
+        .collect();
+    if figures.is_empty() {
+        return Ok(give(Quantity::si(sum, account_dimension(part))));
+    }
+    // carriers are extrapolated line by line, so their sum has an error
+    let value = figures.iter().map(|f| f.value).sum();
+    let error = figures.iter().map(|f| f.error).sum();
+    Ok(give(Quantity::si(value, account_dimension(part)).with_error(error)))
+}
+
+fn store(call: &Call, arguments: &mut [&mut Dynamic]) -> Answer {
+    let name = text(arguments[0], "the name of a snapshot").map_err(|f| f.at(Place::Argument(0)))?;
+    let session = call.session;
+    if name.trim().is_empty() {
+        return Err(Fault::new(codes::WRONG_CHOICE, "a snapshot needs a name").at(Place::Argument(0)).into());
+    }
+    let step = {
+        let mut state = session.state();
+        if state.snapshots.insert(name.clone(), call.position).is_some() {
+            return Err(Fault::new(codes::SNAPSHOT_TWICE, format!("two snapshots are called `{name}`"))
+                .help("put what changes into the name: store(`window ${t}`, ..)")
+                .at(Place::Argument(0))
+                .into());
+        }
+        state.step += 1;
+        state.step - 1
+    };
+    let built = if let Some(curve) = arguments[1].read_lock::<CurveValue>() {
+        curve.0.result.as_ref().map(|result| snapshot::curve(&name, step, &curve.0, result))
+    } else if let Some(state) = arguments[1].read_lock::<StateValue>() {
+        state.0.result.as_ref().map(|result| snapshot::state(&name, step, &state.0, result))
+    } else if let Some(response) = arguments[1].read_lock::<ResponseValue>() {
+        response.0.result.as_ref().map(|result| snapshot::response(&name, step, &response.0, result))
+    } else if arguments[1].is_array() || arguments[1].is_map() {
+        let built = snapshot::figures(&name, step, arguments[1]).map_err(|f| f.at(Place::Argument(1)))?;
+        (!session.checking()).then_some(built)
+    } else {
+        take::<CurveValue>(arguments[1], "what is stored", "a result (`cell.jv(..)`, `cell.at(..)`, `cell.eqe(..)`), a map of figures or an array of such maps")
+            .map_err(|f| f.at(Place::Argument(1)))?;
+        None
+    };
+    if let Some(built) = built {
+        session.store(built)?;
+    }
+    Ok(Dynamic::UNIT)
+}
+
+/// What stops an analysis, in the words of scripts.
+fn analysis_fault(error: &AnalysisError) -> Fault {
+    match error {
+        AnalysisError::NotConverged { voltage, last_good_voltage, .. } => {
+            let fault = Fault::new(codes::NOT_CONVERGED, error.to_string());
+            match last_good_voltage {
+                Some(good) => fault.note(format!("solved up to {good:.4} V; {voltage:.4} V was aimed at")),
+                None => fault.help("check lifetimes, mobilities and dopings for a slip in a power of ten"),
+            }
+        }
+        AnalysisError::BadRequest { .. } => Fault::new(codes::VOLTAGES, error.to_string()),
+        other => Fault::new(codes::STACK, other.to_string()),
+    }
+}
+
+/// A fault of the whole device, at the layer it is about, in the words and units of scripts.
+fn device_fault(fault: &DeviceFault, stack: &StackValue) -> Fault {
+    let layer_at = |name: &str, inner: Place| match stack.places.get(name) {
+        Some((line, column)) => Place::Elsewhere(*line, *column, Box::new(inner)),
+        None => Place::Call,
+    };
+    match fault {
+        DeviceFault::NoLayers => {
+            Fault::new(codes::NO_LAYERS, format!("stack `{}` has no layers", stack.stack.name))
+        }
+        DeviceFault::DuplicateLayer { layer } => {
+            Fault::new(codes::LAYER_NAME_TWICE, format!("two layers are called `{layer}`"))
+                .at(layer_at(layer, Place::Argument(0)))
+        }
+        DeviceFault::ZeroThickness { layer } => Fault::new(
+            codes::THICKNESS_NOT_POSITIVE,
+            format!("thickness of layer `{layer}` must be positive"),
+        )
+        .label("this is 0 nm")
+        .help("leave the layer out of the stack when it is not there")
+        .at(layer_at(layer, Place::Argument(2))),
+        DeviceFault::OutOfRange { place, quantity, value, low, high, .. } => {
+            let (code, dimension) = limits_of(quantity);
+            let shown = |v: f64| Quantity::si(v, dimension).to_string();
+            let words = quantity.replace('_', " ");
+            let at = match place {
+                DevicePlace::Layer(name) => {
+                    let inner = match *quantity {
+                        "thickness" => Place::Argument(2),
+                        "donors" | "acceptors" => Place::Argument(3),
+                        key => Place::Option(key.to_string()),
+                    };
+                    layer_at(name, inner)
+                }
+                DevicePlace::Interface(front, _) => layer_at(front, Place::Argument(0)),
+                _ => Place::Call,
+            };
+            Fault::new(
+                code,
+                format!("{words} of {place} must be {}", range(&shown(*low), *low, &shown(*high), *high)),
+            )
+            .label(format!("this is {}", shown(*value)))
+            .at(at)
+        }
+        DeviceFault::Material { layer, error } => {
+            let fault = material_fault(error);
+            let inner = match &fault.place {
+                Place::Option(key) => Place::Option(key.clone()),
+                _ => Place::Argument(1),
+            };
+            let mut fault = fault.at(layer_at(layer, inner));
+            fault.message = format!("layer `{layer}`: {}", fault.message);
+            fault
+        }
+        DeviceFault::GradedCompound { layer, material } => Fault::new(
+            codes::COMPOSITION,
+            format!("layer `{layer}` grades the composition of `{material}`, which is no alloy"),
+        )
+        .at(layer_at(layer, Place::Option("x".to_string()))),
+        DeviceFault::Table { place, .. } => {
+            let at = match place {
+                DevicePlace::Layer(name) => layer_at(name, Place::Argument(3)),
+                _ => Place::Call,
+            };
+            Fault::new(codes::PROFILE, fault.to_string()).at(at)
+        }
+        other => Fault::new(codes::STACK, other.to_string()),
+    }
+}
+
+/// The code and dimension of a quantity that a device refuses.
+fn limits_of(quantity: &str) -> (Code, Dimension) {
+    match quantity {
+        "thickness" => (codes::THICKNESS_NOT_POSITIVE, Dimension::LENGTH),
+        "donors" | "acceptors" => (codes::DOPING_NEGATIVE, Dimension::DENSITY),
+        "temperature" => (codes::TEMPERATURE, Dimension::TEMPERATURE),
+        "series_resistance" | "shunt_resistance" => (codes::RESISTANCE, Dimension::AREA_RESISTANCE),
+        "accuracy" => (codes::ACCURACY, Dimension::NONE),
+        "x" | "composition" => (codes::COMPOSITION, Dimension::NONE),
+        q if q.ends_with("velocity") => (codes::VELOCITY, Dimension::VELOCITY),
+        q if q.ends_with("reflectance") || q.ends_with("shading") => (codes::SHARE, Dimension::NONE),
+        _ => (codes::STACK, Dimension::NONE),
+    }
+}
