@@ -3,4 +3,5 @@
 pub mod archive;
 pub mod command;
 pub mod diagnostics;
+pub mod figure_text;
 pub mod language;

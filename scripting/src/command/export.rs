@@ -16,6 +16,7 @@ CSV writes one file for each table: the first at PATH, the others beside it with
 NPZ is a zip of numpy arrays, one for each column. JSON holds everything. A file at PATH is replaced.")]
 pub struct Export {
     /// The archive
+    #[arg(value_hint = clap::ValueHint::FilePath)]
     pub file: PathBuf,
     /// The snapshot
     pub snapshot: String,

@@ -7,8 +7,8 @@ use crate::diagnostics::{Diagnostic, codes, suggest};
 
 use super::columns::{Align, columns, wrapped};
 use super::exit::Exit;
-use super::figure_text::{significant, unit_symbol};
 use super::output::Output;
+use crate::figure_text::{significant, unit_symbol};
 
 /// `epiloom materials [NAME]`.
 #[derive(clap::Args, Debug)]

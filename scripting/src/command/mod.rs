@@ -2,22 +2,30 @@
 //!
 //! [`run`] is all that `main` calls. Results go to standard output, everything else to standard error.
 
+mod check;
 mod columns;
 mod completions;
 mod exit;
 mod explain;
 mod export;
-mod figure_text;
+mod inputs;
 mod materials;
 mod output;
+mod recorder;
+mod reference;
+mod replay;
 mod report;
+mod script;
 mod show;
 mod trouble;
+
+// the verb of the same name
+#[path = "run.rs"]
+mod run_script;
 
 use clap::{CommandFactory, Parser, Subcommand};
 
 pub use exit::Exit;
-pub use figure_text::figure_text;
 
 use output::Output;
 
@@ -39,14 +47,22 @@ struct Cli {
 /// The verbs.
 #[derive(Subcommand, Debug)]
 enum Verb {
+    /// Run a script: solve what it asks for and store the results in an archive
+    Run(run_script::Run),
+    /// Look for all faults of a script and solve nothing
+    Check(check::Check),
     /// Show what an archive holds, or one snapshot of it
     Show(show::Show),
     /// Write a snapshot as CSV, NPZ or JSON
     Export(export::Export),
+    /// Run an archived script again and compare every number, bit by bit
+    Replay(replay::Replay),
     /// List the built-in materials, or the values of one with ranges and sources
     Materials(materials::Materials),
     /// Explain a code such as E210
     Explain(explain::Explain),
+    /// Print the reference page of the script language
+    Reference(reference::Reference),
     /// Print the completion script for a shell
     Completions(completions::Completions),
 }
@@ -63,10 +79,14 @@ pub fn run() -> Exit {
     };
     let mut output = Output::new();
     let exit = match &cli.verb {
+        Verb::Run(verb) => verb.run(&mut output),
+        Verb::Check(verb) => verb.run(&mut output),
         Verb::Show(verb) => verb.run(&mut output),
         Verb::Export(verb) => verb.run(&mut output),
+        Verb::Replay(verb) => verb.run(&mut output),
         Verb::Materials(verb) => verb.run(&mut output),
         Verb::Explain(verb) => verb.run(&mut output),
+        Verb::Reference(verb) => verb.run(&mut output),
         Verb::Completions(verb) => verb.run(Cli::command(), &mut output),
     };
     output.end_progress();

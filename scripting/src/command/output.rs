@@ -5,7 +5,7 @@ use std::time::Duration;
 
 use indicatif::{ProgressBar, ProgressStyle};
 
-use crate::diagnostics::{Diagnostic, Look, SourceText, codes, render};
+use crate::diagnostics::{Diagnostic, Look, SourceText, codes, render, visible};
 
 /// Both streams of a command.
 #[derive(Debug)]
@@ -15,7 +15,6 @@ pub struct Output {
     failed: Option<io::Error>,
 }
 
-#[allow(dead_code, reason = "the verbs that run scripts use the rest")]
 impl Output {
     /// The streams of this process; colours only on a terminal and unless `NO_COLOR` is set.
     pub fn new() -> Self {
@@ -60,10 +59,13 @@ impl Output {
     }
 
     /// Prints a result. A reader that has gone away (`| head`) is no fault and stops nothing.
+    ///
+    /// Control characters are written out, never sent to the terminal: names may come from a foreign archive.
     pub fn result(&mut self, text: &str) {
         if self.failed.is_some() {
             return;
         }
+        let text = visible(text);
         let written = self.progress.suspend(|| {
             let mut out = io::stdout().lock();
             out.write_all(text.as_bytes()).and_then(|()| out.flush())
@@ -83,7 +85,8 @@ impl Output {
     pub fn diagnostic(&mut self, diagnostic: &Diagnostic, source: Option<&SourceText>) {
         let text = render(diagnostic, source, self.look);
         self.progress.suspend(|| {
-            let _ = writeln!(io::stderr().lock(), "{}", text.trim_end_matches('\n'));
+            // a blank line sets messages apart
+            let _ = writeln!(io::stderr().lock(), "{text}");
         });
     }
 

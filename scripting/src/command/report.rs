@@ -4,8 +4,11 @@ use std::fmt::Write;
 
 use crate::archive::{Condition, Figure, Ledger, Snapshot, Stack, Status, Table, Value};
 
-use super::columns::{Align, columns};
-use super::figure_text::{figure_text, percent, significant, unit_symbol};
+use super::columns::{Align, columns, wrapped};
+use crate::figure_text::{figure_text, percent, significant, unit_symbol};
+
+/// Letters of a line that long texts are broken at.
+const LINE: usize = 110;
 
 /// Significant digits of ledger lines and settings.
 const DIGITS: usize = 6;
@@ -38,7 +41,10 @@ pub fn snapshot_text(snapshot: &Snapshot) -> String {
         // writing to a text cannot fail, here and below
         let _ = writeln!(text, "  failed: {reason}\n  what follows is the last good state");
     }
-    text.push_str(&settings_text(&snapshot.conditions));
+    // what is said of the stack is not said again
+    let news: Vec<Condition> =
+        snapshot.conditions.iter().filter(|each| !snapshot.stack.settings.contains(each)).cloned().collect();
+    text.push_str(&settings_text(&news));
     let rows: Vec<Vec<String>> = snapshot
         .figures
         .iter()
@@ -90,9 +96,16 @@ pub fn figure_title(name: &str) -> String {
 }
 
 fn settings_text(settings: &[Condition]) -> String {
-    let rows: Vec<Vec<String>> =
-        settings.iter().map(|each| vec![each.name.replace('_', " "), value_text(&each.value)]).collect();
-    columns(&rows, &[], 2)
+    let name_of = |each: &Condition| each.name.replace('_', " ");
+    let width = settings.iter().map(|each| name_of(each).chars().count()).max().unwrap_or(0);
+    let mut text = String::new();
+    for each in settings {
+        // a long value, such as a source, goes on below itself
+        let value = wrapped(&value_text(&each.value), LINE, width + 4);
+        // writing to a text cannot fail
+        let _ = writeln!(text, "  {:width$}  {}", name_of(each), value.trim());
+    }
+    text
 }
 
 fn condition_text(condition: &Condition) -> String {

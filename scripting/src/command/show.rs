@@ -16,6 +16,7 @@ use super::trouble::{archive_error, archive_warning};
 #[derive(clap::Args, Debug)]
 pub struct Show {
     /// The archive
+    #[arg(value_hint = clap::ValueHint::FilePath)]
     pub file: PathBuf,
     /// The snapshot; without one all are listed
     pub snapshot: Option<String>,
@@ -31,9 +32,12 @@ impl Show {
             Ok(archive) => archive,
             Err(exit) => return exit,
         };
+        let mut all_whole = true;
         let text = match (&self.snapshot, self.json) {
-            (None, true) => json_listing(&archive),
-            (None, false) => Ok(listing(&archive, output).into_bytes()),
+            (None, json) => {
+                all_whole = tell_damaged(&archive, output);
+                if json { json_listing(&archive) } else { Ok(listing(&archive).into_bytes()) }
+            }
             (Some(name), json) => archive.snapshot(name).and_then(|snapshot| {
                 if json {
                     return json_snapshot(&snapshot);
@@ -46,11 +50,23 @@ impl Show {
         match text {
             Ok(text) => {
                 output.result(&String::from_utf8_lossy(&text));
-                condition(&archive)
+                if all_whole { condition(&archive) } else { Exit::Archive }
             }
             Err(error) => tell(&error, output),
         }
     }
+}
+
+/// Reads every snapshot, names the damaged ones, and says whether all are whole.
+fn tell_damaged(archive: &Archive, output: &mut Output) -> bool {
+    let mut all_whole = true;
+    for index in 0..archive.entries().len() {
+        if let Err(error) = archive.snapshot_at(index) {
+            tell(&error, output);
+            all_whole = false;
+        }
+    }
+    all_whole
 }
 
 /// Opens an archive and says what is amiss in it.
@@ -78,7 +94,7 @@ pub fn tell(error: &ArchiveError, output: &mut Output) -> Exit {
 }
 
 /// The run and the list of snapshots.
-fn listing(archive: &Archive, output: &mut Output) -> String {
+fn listing(archive: &Archive) -> String {
     let mut text = match archive.run() {
         Ok(run) => run_text(run),
         // said among the archive's warnings
@@ -87,10 +103,7 @@ fn listing(archive: &Archive, output: &mut Output) -> String {
     let mut rows = vec![vec!["snapshot".to_string(), "kind".to_string(), String::new()]];
     for (index, entry) in archive.entries().iter().enumerate() {
         let status = match (&entry.label.status, archive.snapshot_at(index)) {
-            (_, Err(error)) => {
-                output.diagnostic(&archive_error(&error), None);
-                "damaged".to_string()
-            }
+            (_, Err(_)) => "damaged".to_string(),
             (Status::Failed { reason }, _) => format!("failed: {reason}"),
             (Status::Solved, Ok(_)) => String::new(),
         };

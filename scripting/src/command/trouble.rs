@@ -22,6 +22,14 @@ pub fn archive_error(error: &ArchiveError) -> Diagnostic {
     diagnostic(code, error.to_string(), error.help())
 }
 
+/// A fault of writing an archive for a person.
+pub fn writing_error(error: &ArchiveError) -> Diagnostic {
+    match error {
+        ArchiveError::Io { .. } => diagnostic(codes::UNWRITABLE, error.to_string(), error.help()),
+        _ => archive_error(error),
+    }
+}
+
 /// An archive's warning for a person.
 pub fn archive_warning(warning: &ArchiveWarning) -> Diagnostic {
     let code = match warning {

@@ -8,7 +8,7 @@ mod suggest;
 use std::fmt;
 
 pub use catalogue::{Code, Entry, codes, entries, explain};
-pub use render::{Look, render};
+pub use render::{Look, render, visible};
 pub use source::{SourceText, Span};
 pub use suggest::{near, suggest};
 

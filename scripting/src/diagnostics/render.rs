@@ -58,11 +58,15 @@ pub fn render(diagnostic: &Diagnostic, source: Option<&SourceText>, look: Look) 
     drawn
 }
 
-/// `text` with control characters other than line feeds written out.
-pub(super) fn visible(text: &str) -> String {
+/// `text` with control characters other than line feeds and tabs written out, `\u{1b}` for an escape.
+pub fn visible(text: &str) -> String {
     let mut shown = String::with_capacity(text.len());
     for c in text.chars() {
-        if c.is_control() && c != '\n' { shown.extend(c.escape_default()) } else { shown.push(c) }
+        if c.is_control() && c != '\n' && c != '\t' {
+            shown.extend(c.escape_default())
+        } else {
+            shown.push(c)
+        }
     }
     shown
 }

@@ -37,7 +37,7 @@ impl fmt::Display for Quantity {
         let number = match self.error {
             Some(error) if unit.is_some() || !self.is_number() => {
                 let name = unit.map_or(symbol.as_str(), |u| u.name);
-                return f.write_str(&crate::command::figure_text(value, Some(convert(error)), name));
+                return f.write_str(&crate::figure_text::figure_text(value, Some(convert(error)), name));
             }
             _ if unit.is_none() && self.is_number() => plain(value),
             _ => significant(value, DIGITS),

@@ -19,6 +19,14 @@ super::rows! {
          material on the ladder of valence-band edges is from memory, second-hand or illustrative. Set `affinity` to \
          choose another.",
         "material(\"GaInP\", #{ affinity: 3.95.eV })";
+    BETWEEN_TABLES = "W205", "absorption taken between two compositions",
+        "No absorption table exists for this composition of the alloy; the tables of the two nearest are moved to its \
+         gap and weighted. Give `absorption`, or choose a composition that has a table, to do without.",
+        "material(\"AlGaAs\", #{ x: 0.315 })";
+    MODEL_ABSORPTION = "W206", "absorption from a model instead of a measurement",
+        "No measured absorption table of this material was found that can be used near its gap, so a stated model \
+         stands in for it. What the layer absorbs is plausible and no more.",
+        "epiloom materials AlInP";
     OUTSIDE_TABLE = "W301", "light outside an absorption table",
         "Part of the light lies at wavelengths for which the material's absorption is not known. It is counted in \
          W/m2 and not absorbed, never extrapolated.",

@@ -49,7 +49,10 @@ pub fn significant(value: f64, digits: usize) -> String {
 /// A share of one in percent with two decimals, " 97.31 %"; tiny shares keep two digits.
 pub fn percent(share: f64) -> String {
     let value = 100.0 * share;
-    if value != 0.0 && value.abs() < 0.005 { format!("{value:.1e} %") } else { format!("{value:.2} %") }
+    if value == 0.0 {
+        return "0 %".to_string();
+    }
+    if value.abs() < 0.005 { format!("{value:.1e} %") } else { format!("{value:.2} %") }
 }
 
 /// The symbol of a unit spelled as in scripts: `mA_per_cm2` is mA/cm2, `per_cm3` is cm^-3, `cm2_per_Vs` is cm2/Vs.
@@ -183,7 +186,9 @@ mod tests {
         assert_eq!(unit_symbol("per_cm3"), "cm^-3");
         assert_eq!(unit_symbol("per_cm2_s"), "cm^-2 s^-1");
         assert_eq!(unit_symbol("cm2_per_Vs"), "cm2/Vs");
-        assert_eq!(unit_symbol("nm"), "nm");
+        for unit in crate::language::UNITS {
+            assert_eq!(unit_symbol(unit.name), unit.symbol);
+        }
         assert_eq!(percent(0.97312), "97.31 %");
         assert_eq!(percent(1.2e-7), "1.2e-5 %");
     }
