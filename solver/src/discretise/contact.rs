@@ -62,7 +62,8 @@ pub fn neutral_potential(statistics: Statistics, entry: &Entry<f64>) -> f64 {
     };
     for _ in 0..200 {
         let s = sloped_side(statistics, entry, psi, 0.0, 0.0);
-        let charge = s.values.p - s.values.n + entry.doping;
+        let (n, p) = (Num::exp(s.ln_n), Num::exp(s.ln_p));
+        let charge = p - n + entry.doping;
         if charge > 0.0 {
             low = psi;
         } else if charge < 0.0 {
@@ -70,7 +71,7 @@ pub fn neutral_potential(statistics: Statistics, entry: &Entry<f64>) -> f64 {
         } else {
             return psi;
         }
-        let slope = s.values.p * s.hole_slope + s.values.n * s.electron_slope;
+        let slope = p * s.hole_slope + n * s.electron_slope;
         let newton = psi + charge / slope;
         // A step too small to move off a bound is the root, not a step out of the bracket.
         let next = if newton >= low && newton <= high { newton } else { 0.5 * (low + high) };
@@ -88,7 +89,7 @@ pub fn neutral_potential_of<P: Scalar + crate::math::Over<P>>(statistics: Statis
     let root = neutral_potential(statistics, &plain);
     let at = side::<P, P>(statistics, entry, P::constant(root), P::constant(0.0), P::constant(0.0));
     let sloped = sloped_side(statistics, &plain, root, 0.0, 0.0);
-    let slope = sloped.values.p * sloped.hole_slope + sloped.values.n * sloped.electron_slope;
+    let slope = at.p.value() * sloped.hole_slope + at.n.value() * sloped.electron_slope;
     P::constant(root) + (at.p - at.n + entry.doping) * (1.0 / slope)
 }
 

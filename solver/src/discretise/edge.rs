@@ -1,7 +1,7 @@
 //! The flux between two nodes.
 
-use crate::math::Num;
 use crate::math::bernoulli::{bernoulli, bernoulli_with_slope};
+use crate::math::{Num, slices};
 
 /// The exponentially fitted particle flux over one cell, per unit of D/h, in the sense of the electron current.
 ///
@@ -36,20 +36,69 @@ pub struct SlopedFlux {
     pub rise: f64,
 }
 
-/// [`fitted_flux`] for plain numbers with its partial derivatives.
-#[inline(always)]
-pub fn sloped_fitted_flux(near: f64, far: f64, step: f64, rise: f64) -> SlopedFlux {
-    let falling = rise < 0.0;
-    let (exponent, argument, density) = if falling { (rise, step, far) } else { (-rise, -step, near) };
-    let (b, slope) = bernoulli_with_slope(argument);
-    let e = Num::exp_m1(exponent);
-    let magnitude = density * (b * e);
-    let value = if falling { -magnitude } else { magnitude };
-    SlopedFlux {
-        value,
-        ln_near: if falling { 0.0 } else { value },
-        ln_far: if falling { value } else { 0.0 },
-        step: -(density * slope * e),
-        rise: -(density * b * (e + 1.0)),
+/// The exponentials of many [`fitted_flux`]es, evaluated together.
+#[derive(Clone, Debug, Default)]
+pub struct FittedEdges {
+    /// Arguments of the Bernoulli function.
+    argument: Vec<f64>,
+    /// expm1 of it (held below overflow).
+    argument_exp_m1: Vec<f64>,
+    /// expm1(-|rise|).
+    decay: Vec<f64>,
+    /// Whether the level falls from near to far.
+    falling: Vec<bool>,
+}
+
+/// Below this size of its argument the Bernoulli function is taken from its series, above from its quotient.
+const SERIES_BELOW: f64 = 1.0;
+/// Above this argument the quotient's exponential is held.
+const LARGEST: f64 = 700.0;
+
+impl FittedEdges {
+    /// Forgets all edges.
+    pub fn clear(&mut self) {
+        self.argument.clear();
+        self.argument_exp_m1.clear();
+        self.decay.clear();
+        self.falling.clear();
+    }
+    /// Adds an edge with the given step of the effective level and rise of the quasi-Fermi potential.
+    #[inline(always)]
+    pub fn push(&mut self, step: f64, rise: f64) {
+        let falling = rise < 0.0;
+        let argument = if falling { step } else { -step };
+        let argument = if argument > LARGEST { LARGEST } else { argument };
+        self.argument.push(argument);
+        self.argument_exp_m1.push(argument);
+        self.decay.push(-rise.abs());
+        self.falling.push(falling);
+    }
+    /// Evaluates the exponentials of all edges added.
+    pub fn evaluate(&mut self) {
+        slices::exp_m1(&mut self.argument_exp_m1);
+        slices::exp_m1(&mut self.decay);
+    }
+    /// The flux of edge `index` with its partial derivatives.
+    #[inline(always)]
+    pub fn flux(&self, index: usize, near: f64, far: f64) -> SlopedFlux {
+        let (x, falling, e) = (self.argument[index], self.falling[index], self.decay[index]);
+        let density = if falling { far } else { near };
+        let (b, slope) = if x.abs() < SERIES_BELOW {
+            bernoulli_with_slope(x)
+        } else {
+            let m = self.argument_exp_m1[index];
+            let r = 1.0 / m;
+            let b = x * r;
+            (b, r * (1.0 - b * (m + 1.0)))
+        };
+        let magnitude = density * (b * e);
+        let value = if falling { -magnitude } else { magnitude };
+        SlopedFlux {
+            value,
+            ln_near: if falling { 0.0 } else { value },
+            ln_far: if falling { value } else { 0.0 },
+            step: -(density * slope * e),
+            rise: -(density * b * (e + 1.0)),
+        }
     }
 }

@@ -18,7 +18,7 @@ pub type Node<T> = [T; 3];
 #[inline(always)]
 pub fn recombination<T: Over<P>, P: Num>(entry: &Entry<P>, at: &Side<T>, splitting: T) -> [T; 3] {
     let carriers = Carriers { n: at.n, p: at.p };
-    let (x, _) = driving_term(at.ln_n, at.ln_p, splitting);
+    let x = driving_term(carriers, at.ln_n, at.ln_p, splitting);
     [
         shockley_read_hall::kernel(carriers, &entry.level) * x,
         radiative::kernel::<T, P>(entry.radiative) * x,
@@ -33,8 +33,9 @@ pub fn interface_recombination<T: Over<P>, P: Num>(
     at: &Side<T>,
     splitting: T,
 ) -> T {
-    let (x, _) = driving_term(at.ln_n, at.ln_p, splitting);
-    shockley_read_hall::kernel(Carriers { n: at.n, p: at.p }, &interface.level) * x
+    let carriers = Carriers { n: at.n, p: at.p };
+    shockley_read_hall::kernel(carriers, &interface.level)
+        * driving_term(carriers, at.ln_n, at.ln_p, splitting)
 }
 
 /// The residual of every node at a state, with the rear contact's level at `rear` (kT/q) and the pairs generated per

@@ -44,18 +44,25 @@ pub fn side<T: Over<P>, P: Num>(
     Side { electron_level, hole_level, ln_n, ln_p, n: ln_n.exp(), p: ln_p.exp() }
 }
 
-/// A side with the slopes `d ln n / d eta_n` and `d ln p / d eta_p`: all its partial derivatives follow from these two.
+/// Effective levels and logarithms of the densities of a side, with the slopes `d ln n / d eta_n` and `d ln p / d eta_p`
+/// from which all their partial derivatives follow.
 #[derive(Clone, Copy, Debug)]
 pub struct SlopedSide {
-    /// The values.
-    pub values: Side<f64>,
+    /// W_n.
+    pub electron_level: f64,
+    /// W_p.
+    pub hole_level: f64,
+    /// ln n.
+    pub ln_n: f64,
+    /// ln p.
+    pub ln_p: f64,
     /// d ln n / d eta_n.
     pub electron_slope: f64,
     /// d ln p / d eta_p.
     pub hole_slope: f64,
 }
 
-/// [`side`] for plain numbers, with its slopes.
+/// [`side`] for plain numbers, up to the exponentials, with its slopes.
 #[inline(always)]
 pub fn sloped_side(
     statistics: Statistics,
@@ -70,8 +77,12 @@ pub fn sloped_side(
     let (hole_excess, hole_slope) = ln_occupancy_excess_with_slope(statistics, hole_edge + phi_p);
     let electron_level = electron_edge + entry.ln_conduction + electron_excess;
     let hole_level = hole_edge + entry.ln_valence + hole_excess;
-    let ln_n = electron_level - phi_n;
-    let ln_p = hole_level + phi_p;
-    let values = Side { electron_level, hole_level, ln_n, ln_p, n: Num::exp(ln_n), p: Num::exp(ln_p) };
-    SlopedSide { values, electron_slope: 1.0 + electron_slope, hole_slope: 1.0 + hole_slope }
+    SlopedSide {
+        electron_level,
+        hole_level,
+        ln_n: electron_level - phi_n,
+        ln_p: hole_level + phi_p,
+        electron_slope: 1.0 + electron_slope,
+        hole_slope: 1.0 + hole_slope,
+    }
 }

@@ -63,6 +63,53 @@ fn invert(m: &Block) -> Option<Block> {
     ))
 }
 
+/// Whether a coupling has the pattern of continuous levels: each carrier's row sees its own level and the potential, the
+/// potential's row the potential alone. (An interface law fills its couplings.)
+#[inline(always)]
+fn is_sparse(u: &Block) -> bool {
+    u.m12 == 0.0 && u.m13 == 0.0 && u.m23 == 0.0 && u.m32 == 0.0
+}
+
+/// `a u` for a coupling `u`.
+#[inline(always)]
+fn times_coupling(a: &Block, u: &Block) -> Block {
+    if is_sparse(u) {
+        Block::new(
+            a.m11 * u.m11 + a.m12 * u.m21 + a.m13 * u.m31,
+            a.m12 * u.m22,
+            a.m13 * u.m33,
+            a.m21 * u.m11 + a.m22 * u.m21 + a.m23 * u.m31,
+            a.m22 * u.m22,
+            a.m23 * u.m33,
+            a.m31 * u.m11 + a.m32 * u.m21 + a.m33 * u.m31,
+            a.m32 * u.m22,
+            a.m33 * u.m33,
+        )
+    } else {
+        a * u
+    }
+}
+
+/// `d - l e` for a coupling `l`.
+#[inline(always)]
+fn less_coupling_times(d: &Block, l: &Block, e: &Block) -> Block {
+    if is_sparse(l) {
+        Block::new(
+            d.m11 - l.m11 * e.m11,
+            d.m12 - l.m11 * e.m12,
+            d.m13 - l.m11 * e.m13,
+            d.m21 - (l.m21 * e.m11 + l.m22 * e.m21),
+            d.m22 - (l.m21 * e.m12 + l.m22 * e.m22),
+            d.m23 - (l.m21 * e.m13 + l.m22 * e.m23),
+            d.m31 - (l.m31 * e.m11 + l.m33 * e.m31),
+            d.m32 - (l.m31 * e.m12 + l.m33 * e.m32),
+            d.m33 - (l.m31 * e.m13 + l.m33 * e.m33),
+        )
+    } else {
+        d - l * e
+    }
+}
+
 impl BlockTridiagonal {
     /// A zero matrix of `nodes` block rows.
     pub fn zeros(nodes: usize) -> Self {
@@ -149,22 +196,22 @@ impl BlockTridiagonal {
             if left < twist {
                 let mut pivot = self.diagonal[left];
                 if left > 0 {
-                    pivot -= self.lower[left] * f.eliminated[left - 1];
+                    pivot = less_coupling_times(&pivot, &self.lower[left], &f.eliminated[left - 1]);
                 }
                 let inverse = invert(&pivot).ok_or(Singular { node: left })?;
                 f.inverse[left] = inverse;
-                f.eliminated[left] = inverse * self.upper[left];
+                f.eliminated[left] = times_coupling(&inverse, &self.upper[left]);
                 f.coupling[left] = self.lower[left];
                 left += 1;
             }
             if right > twist {
                 let mut pivot = self.diagonal[right];
                 if right + 1 < n {
-                    pivot -= self.upper[right] * f.eliminated[right + 1];
+                    pivot = less_coupling_times(&pivot, &self.upper[right], &f.eliminated[right + 1]);
                 }
                 let inverse = invert(&pivot).ok_or(Singular { node: right })?;
                 f.inverse[right] = inverse;
-                f.eliminated[right] = inverse * self.lower[right];
+                f.eliminated[right] = times_coupling(&inverse, &self.lower[right]);
                 f.coupling[right] = self.upper[right];
                 right -= 1;
             }

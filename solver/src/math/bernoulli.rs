@@ -30,10 +30,24 @@ const SERIES: [f64; 8] = [
 #[inline(always)]
 pub fn bernoulli<T: Num>(x: T) -> T {
     let size = x.abs();
-    let near = size.less(T::constant(SERIES_BELOW));
-    // Both arms stay finite: the series' argument is held below 1, the quotient's away from 0 and from overflow.
-    let held = T::select(near, x, T::constant(0.0));
-    let z = held * held;
+    let below = T::constant(SERIES_BELOW);
+    let near = size.less(below);
+    // Each arm alone where every lane takes it; otherwise both, kept finite: the series' argument is held below 1, the
+    // quotient's away from 0 and from overflow.
+    if !T::any(near) {
+        return quotient(x);
+    }
+    if !T::any(below.less(size)) {
+        return series(x);
+    }
+    let zero = T::constant(0.0);
+    T::select(near, series(T::select(near, x, zero)), quotient(T::select(near, below, x)))
+}
+
+/// The power series about 0.
+#[inline(always)]
+fn series<T: Num>(x: T) -> T {
+    let z = x * x;
     // Even and odd powers apart, for a shorter chain of dependent operations.
     let w = z * z;
     let (mut even, mut odd) = (T::constant(SERIES[6]), T::constant(SERIES[7]));
@@ -41,12 +55,14 @@ pub fn bernoulli<T: Num>(x: T) -> T {
         even = even * w + SERIES[2 * k];
         odd = odd * w + SERIES[2 * k + 1];
     }
-    let series = even + z * odd;
-    let series = z * (z * series + 1.0 / 12.0) + held * -0.5 + 1.0;
+    z * (z * (even + z * odd) + 1.0 / 12.0) + x * -0.5 + 1.0
+}
+
+/// `x / (e^x - 1)`, held above [`LARGEST`].
+#[inline(always)]
+fn quotient<T: Num>(x: T) -> T {
     let x = x.min(T::constant(LARGEST));
-    let away = T::select(near, T::constant(SERIES_BELOW), x);
-    let quotient = x * away.exp_m1().recip();
-    T::select(near, series, quotient)
+    x * x.exp_m1().recip()
 }
 
 /// `B(x)` and `B(-x) = B(x) + x`, each without loss of digits.

@@ -11,6 +11,7 @@ mod real;
 #[cfg(test)]
 #[allow(clippy::approx_constant, reason = "values of functions, some at simple arguments")]
 mod reference_points;
+pub mod slices;
 pub mod sum;
 
 pub use bernoulli::{bernoulli, bernoulli_pair, bernoulli_with_slope};

@@ -21,15 +21,18 @@ pub enum Drive {
 #[derive(Clone, Copy, Debug, PartialEq)]
 pub struct Tolerances {
     /// Largest last update of any unknown, in kT/q. The iteration converges quadratically: an update of 1e-4 leaves an
-    /// error of about 1e-8, and every point gets one more iteration after it, whose own update is applied too.
+    /// error of about 1e-8.
     pub update: f64,
     /// Most iterations before a step is called failed.
     pub most_iterations: usize,
+    /// Whether a point gets one more iteration after the update has become that small. Without it the state errs by the
+    /// square of the last update, the current (corrected by its gradient) likewise, and slopes by the update itself.
+    pub polish: bool,
 }
 
 impl Default for Tolerances {
     fn default() -> Self {
-        Tolerances { update: 1e-4, most_iterations: 60 }
+        Tolerances { update: 1e-4, most_iterations: 60, polish: true }
     }
 }
 
@@ -100,7 +103,8 @@ impl Problem {
             let bordered = !matches!(drive, Drive::Device(_));
             let mut border = None;
             let mut voltage_step = 0.0;
-            if bordered || polishing {
+            let last = polishing || !tolerances.polish && largest(&update).update <= tolerances.update;
+            if bordered || last {
                 let terminal = Terminal::new(&self.coefficients, &self.system);
                 let mut tangent: Vec<Triple> = self.system.by_rear_level(&self.coefficients);
                 for t in &mut tangent {
@@ -141,7 +145,7 @@ impl Problem {
             self.apply(&mut state, &update);
             state.voltage += voltage_step;
             if size <= tolerances.update {
-                if let (true, Some((tangent, device_current, device_conductance))) = (polishing, border) {
+                if let (true, Some((tangent, device_current, device_conductance))) = (last, border) {
                     let slope = device_conductance + self.shunt_conductance;
                     let current = device_current + self.shunt_conductance * state.voltage;
                     return Ok(Point {
