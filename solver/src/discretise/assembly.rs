@@ -153,9 +153,8 @@ impl System {
     fn sources(&mut self, c: &Coefficients<f64>, scratch: &Scratch, generation: &[f64], light: f64) {
         for layer in 0..c.layers() {
             let (first, end) = (c.first[layer], c.first[layer + 1]);
-            for e in first..end {
+            for (e, entry) in c.entries.iter().enumerate().take(end).skip(first) {
                 let i = e - layer;
-                let entry = &c.entries[e];
                 let (n, p) = (scratch.n[e], scratch.p[e]);
                 let (electron_slope, hole_slope) = (scratch.electron_slope[e], scratch.hole_slope[e]);
                 let (slope_n, slope_p) = (n * electron_slope, p * hole_slope);
