@@ -120,7 +120,7 @@ fn contact_recombination(problem: &Problem, which: usize, local: &Local) -> (f64
 }
 
 /// Rounding of the current of one edge: a few units in the last place of every unknown that enters it.
-fn edge_rounding(problem: &Problem, point: &Point, k: usize) -> f64 {
+pub(super) fn edge_rounding(problem: &Problem, point: &Point, k: usize) -> f64 {
     let c = &problem.coefficients;
     let system = problem.system();
     let last = c.nodes() - 1;

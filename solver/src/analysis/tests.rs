@@ -301,7 +301,8 @@ fn dark_equilibrium_is_exact() {
     }
 }
 
-/// Truth: at 80 K and -5 V every number is finite, and the current is not above zero.
+/// Truth: at 80 K and -5 V every number is finite, and the current is not above zero, in the dark and under light (from
+/// dark to light, minority densities rise by a hundred decades there).
 #[test]
 fn cold_and_reversed_is_finite() {
     for statistics in [Statistics::FermiDirac, Statistics::Boltzmann] {
@@ -309,9 +310,14 @@ fn cold_and_reversed_is_finite() {
         stack.temperature = 80.0;
         stack.statistics = statistics;
         let device = Device::new(stack).unwrap();
-        let point = bias_point(&device, &Light::Dark, -5.0).unwrap();
-        assert!(point.own_current_density.is_finite() && point.own_current_density <= 0.0);
-        assert!(point.profiles.potential.iter().chain(&point.profiles.electron_level).all(|x| x.is_finite()));
+        for light in [Light::Dark, r3_light()] {
+            let point = bias_point(&device, &light, -5.0).unwrap();
+            assert!(point.own_current_density.is_finite() && point.own_current_density <= 0.0);
+            let p = &point.profiles;
+            for column in [&p.potential, &p.electron_level, &p.hole_level, &p.field, &p.electron_current] {
+                assert!(column.iter().all(|x| x.is_finite()));
+            }
+        }
     }
 }
 

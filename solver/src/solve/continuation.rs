@@ -38,7 +38,11 @@ impl SolveError {
 }
 
 /// Smallest bias step before giving up, V.
-const SMALLEST_STEP: f64 = 1e-5;
+const SMALLEST_STEP: f64 = 1e-3;
+/// Iterations spent on one advance before giving up.
+const MOST_ITERATIONS: usize = 5_000;
+/// Below this step, V, a failing step is tried through time.
+const RELAXED_STEP: f64 = 0.03;
 /// Largest bias step tried at once, V.
 const LARGEST_STEP: f64 = 0.4;
 /// Smallest factor by which a light ramp may rise before giving up.
@@ -62,6 +66,10 @@ impl Problem {
         let mut lit = dark.state.clone();
         lit.light = 1.0;
         if let Ok(point) = self.newton(&lit, Drive::Terminal(0.0), tolerances) {
+            return Ok(point);
+        }
+        self.work.rejected_steps += 1;
+        if let Ok(point) = self.relax(&lit, Drive::Terminal(0.0), tolerances) {
             return Ok(point);
         }
         self.work.rejected_steps += 1;
@@ -105,6 +113,7 @@ impl Problem {
         target: f64,
         tolerances: &Tolerances,
     ) -> Result<Point, SolveError> {
+        let begun = self.work.newton_iterations;
         let mut before = earlier.cloned();
         let mut here = from.clone();
         let mut step = (target - here.voltage).clamp(-LARGEST_STEP, LARGEST_STEP);
@@ -126,7 +135,19 @@ impl Problem {
                     self.work.rejected_steps += 1;
                     step *= 0.5;
                     before = None;
-                    if step.abs() < SMALLEST_STEP {
+                    if step.abs() < RELAXED_STEP {
+                        // Newton's method loses its way here: go on through time.
+                        let aim = here.voltage + step;
+                        let guess = self.predict(None, &here, aim);
+                        if let Ok(point) = self.relax(&guess, self.drive(aim), tolerances) {
+                            here = point;
+                            step *= 4.0;
+                            continue;
+                        }
+                        self.work.rejected_steps += 1;
+                    }
+                    let spent = self.work.newton_iterations - begun;
+                    if step.abs() < SMALLEST_STEP || spent > MOST_ITERATIONS {
                         return Err(SolveError::new(&stalled, aim, "stepping the bias", Some(&here)));
                     }
                 }

@@ -5,6 +5,7 @@ pub mod damping;
 pub mod extrapolation;
 pub mod newton;
 pub mod problem;
+mod relaxation;
 
 pub use continuation::SolveError;
 pub use newton::{Drive, Point, Tolerances};

@@ -5,6 +5,7 @@ use crate::linear::Triple;
 
 use super::damping::damped;
 use super::problem::{Problem, State};
+use super::relaxation::TimeStep;
 
 /// What fixes the bias.
 #[derive(Clone, Copy, Debug, PartialEq)]
@@ -84,6 +85,17 @@ fn largest(update: &[Triple]) -> Stalled {
 impl Problem {
     /// Iterates from `start` to the drive's solution.
     pub fn newton(&mut self, start: &State, drive: Drive, tolerances: &Tolerances) -> Result<Point, Stalled> {
+        self.newton_with(start, drive, tolerances, None)
+    }
+
+    /// [`Problem::newton`] of the steady equations, or of one implicit step in time.
+    pub(super) fn newton_with(
+        &mut self,
+        start: &State,
+        drive: Drive,
+        tolerances: &Tolerances,
+        step: Option<&TimeStep>,
+    ) -> Result<Point, Stalled> {
         let mut state = start.clone();
         if let Drive::Device(voltage) = drive {
             state.voltage = voltage;
@@ -93,6 +105,9 @@ impl Problem {
         let mut worst = Stalled { node: 0, unknown: 0, update: f64::INFINITY };
         for _ in 0..tolerances.most_iterations {
             self.assemble(&state);
+            if let Some(step) = step {
+                self.add_storage(&state, step);
+            }
             let factored = self.system.jacobian.factor(&mut self.factors);
             self.work.factorisations += 1;
             if let Err(singular) = factored {
