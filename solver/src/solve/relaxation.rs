@@ -5,6 +5,7 @@
 //! a step, whatever the light or the bias does, because each step is short against the change that is left.
 
 use crate::discretise::side::sloped_side;
+use crate::math::Num;
 
 use super::newton::{Drive, Point, Stalled, Tolerances};
 use super::problem::{Problem, State};
@@ -43,7 +44,7 @@ impl Problem {
                 u_n + rear * c.reference[0],
                 u_p + rear * c.reference[1],
             );
-            let (n, p) = (s.values.n * entry.volume, s.values.p * entry.volume);
+            let (n, p) = (Num::exp(s.ln_n) * entry.volume, Num::exp(s.ln_p) * entry.volume);
             sums[i][0][0] += n;
             sums[i][0][1] += n * s.electron_slope;
             sums[i][1][0] += p;
@@ -82,7 +83,7 @@ impl Problem {
         drive: Drive,
         tolerances: &Tolerances,
     ) -> Result<Point, Stalled> {
-        let within = Tolerances { update: 1e-2, most_iterations: 30 };
+        let within = Tolerances { update: 1e-2, most_iterations: 30, polish: false };
         let mut state = start.clone();
         if let Drive::Device(voltage) = drive {
             state.voltage = voltage;
