@@ -29,3 +29,38 @@ pub fn assembled(matrix: &BlockTridiagonal) -> CsMat<f64> {
     }
     triplets.to_csr()
 }
+
+#[cfg(test)]
+mod tests {
+    use super::super::{Block, Factors, Triple};
+    use super::*;
+
+    /// Truth: the general sparse matrix, multiplied by sprs, gives back the right-hand side that the chain's factors solved
+    /// for; 1e-12 of the largest term. And it stores the chain's pattern: no entry beyond nearest neighbours.
+    #[test]
+    fn assembled_matrix_confirms_the_chain() {
+        let n = 12;
+        let mut chain = BlockTridiagonal::zeros(n);
+        for i in 0..n {
+            let t = i as f64;
+            chain.diagonal[i] = Block::new(4.0, 0.3, -0.2, 0.1 * t, 5.0, 0.4, -0.3, 0.2, 6.0 + t);
+            chain.lower[i] = Block::new(-1.0, 0.0, 0.0, 0.2, -1.5, 0.0, 0.1, 0.0, -1.0);
+            chain.upper[i] = Block::new(-1.0, 0.0, 0.0, 0.5, -1.0, 0.0, -0.4, 0.0, -2.0);
+        }
+        let rhs: Vec<Triple> = (0..n).map(|i| Triple::new(1.0, i as f64, -2.0)).collect();
+        let mut factors = Factors::default();
+        chain.factor(&mut factors).unwrap();
+        let mut x = rhs.clone();
+        factors.solve(&mut x);
+        let flat: Vec<f64> = x.iter().flat_map(|v| [v.x, v.y, v.z]).collect();
+        let matrix = assembled(&chain);
+        for (row, vector) in matrix.outer_iterator().enumerate() {
+            let mut sum = 0.0;
+            for (column, value) in vector.iter() {
+                assert!((row / 3).abs_diff(column / 3) <= 1, "row {row} couples to column {column}");
+                sum += value * flat[column];
+            }
+            assert!((sum - rhs[row / 3][row % 3]).abs() <= 1e-12 * 20.0, "row {row}");
+        }
+    }
+}
