@@ -59,7 +59,7 @@ pub fn percent(share: f64) -> String {
 pub fn unit_symbol(unit: &str) -> String {
     match unit {
         "percent" => return "%".to_string(),
-        "ohm_cm2" | "ohm_m2" => return unit.replacen('_', " ", 1),
+        "ohm_cm" | "ohm_cm2" | "ohm_m2" => return unit.replacen('_', " ", 1),
         _ => {}
     }
     if let Some(below) = unit.strip_prefix("per_") {

@@ -34,10 +34,13 @@ pub use reference::reference;
 pub use session::{DataFile, InputRecord, InputValue, Limits, RunOptions, RunOutcome, Script, Sink};
 pub use units::{UNITS, Unit, unit};
 
+use fault::Fault;
 use session::{Event, Session};
 
-/// Stack of the script's thread: deep expressions and calls reach their limits long before its end.
-const STACK: usize = 256 << 20;
+/// Stack of the script's thread, bytes, the first that the system grants. Only what is used takes memory. Values nested
+/// as deeply as the limit on memory allows (closures that capture closures) are dropped level by level: the first
+/// size holds them, the others are for systems that do not reserve so much.
+const STACKS: [usize; 3] = [2 << 30, 512 << 20, 64 << 20];
 
 /// Runs a script, or checks it, telling `sink` what happens in the order of the script.
 ///
@@ -51,11 +54,20 @@ pub fn run(script: &Script, options: RunOptions, sink: &mut dyn Sink) -> RunOutc
     let mut outcome = RunOutcome::default();
     std::thread::scope(|scope| {
         let shared = std::sync::Arc::clone(&session);
-        let builder = std::thread::Builder::new().name("script".to_string()).stack_size(STACK);
-        let spawned = builder.spawn_scoped(scope, move || {
-            let _last_word = LastWord(&shared);
-            evaluate(&shared)
-        });
+        let spawn = |stack: usize| {
+            let shared = std::sync::Arc::clone(&shared);
+            let builder = std::thread::Builder::new().name("script".to_string()).stack_size(stack);
+            builder.spawn_scoped(scope, move || {
+                let _last_word = LastWord(&shared);
+                evaluate(&shared)
+            })
+        };
+        let mut spawned = spawn(STACKS[0]);
+        for stack in &STACKS[1..] {
+            if spawned.is_err() {
+                spawned = spawn(*stack);
+            }
+        }
         let thread = match spawned {
             Ok(thread) => thread,
             Err(error) => {
@@ -91,26 +103,35 @@ fn evaluate(session: &std::sync::Arc<Session>) -> Vec<Diagnostic> {
     if !redefined.is_empty() {
         return redefined;
     }
+    // a slip in a name is told before hours of solving, where the name stands nowhere in the script
+    let strange = unknown_inputs(session, |name| session.source.text.contains(name));
+    if !strange.is_empty() {
+        return strange;
+    }
     match engine::run(&engine, &ast, session) {
-        Ok(()) => unknown_inputs(session),
+        Ok(()) => unknown_inputs(session, |name| session.state().inputs.contains_key(name)),
         Err(error) => report::diagnostics(session, &error),
     }
 }
 
-/// What `--set` names without the script declaring it.
-fn unknown_inputs(session: &Session) -> Vec<Diagnostic> {
-    let state = session.state();
-    let known: Vec<&str> = state.inputs.keys().map(String::as_str).collect();
+/// What `--set` names without the script having it.
+fn unknown_inputs(session: &Session, has: impl Fn(&str) -> bool) -> Vec<Diagnostic> {
+    let text = &session.source.text;
+    let mut known: Vec<&str> = text
+        .split("input(\"")
+        .skip(1)
+        .filter_map(|rest| rest.split('"').next())
+        .filter(|name| !name.is_empty() && name.len() < 100)
+        .collect();
+    known.dedup();
     session
         .options
         .set
         .iter()
-        .filter(|(name, _)| !state.inputs.contains_key(name))
+        .filter(|(name, _)| !has(name))
         .map(|(name, _)| {
-            let fault = fault::Fault::new(
-                codes::UNKNOWN_INPUT,
-                format!("--set {name}: the script has no input `{name}`"),
-            );
+            let fault =
+                Fault::new(codes::UNKNOWN_INPUT, format!("--set {name}: the script has no input `{name}`"));
             let fault = if known.is_empty() {
                 fault.help(format!("declare it: let {name} = input(\"{name}\", ..);"))
             } else {

@@ -45,10 +45,10 @@ impl Default for Limits {
             operations: 200_000_000,
             call_depth: 64,
             text: 1 << 20,
-            array: 200_000,
+            array: 100_000,
             map: 20_000,
             variables: 2_000,
-            memory: 2 << 30,
+            memory: 1 << 30,
             points: 20_000,
             file: 64 << 20,
         }

@@ -16,7 +16,9 @@ mod values;
 pub use library::names;
 pub use listing::{Listing, Provenance, library, listing};
 pub use material::{Material, MaterialBase, MaterialError, Values};
-pub use optical::{Absorber, Absorption, AbsorptionBasis, OpticalConstants, Refraction};
+pub use optical::{
+    Absorber, Absorption, AbsorptionBasis, OpticalConstants, Refraction, film_constants, film_names,
+};
 pub use parameter::{Kind, Parameter};
 pub use record::Origin;
 pub use values::{REQUIRED, TEMPERATURE_LIMITS};

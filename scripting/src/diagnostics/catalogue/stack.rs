@@ -73,10 +73,6 @@ super::rows! {
         "The relative accuracy asked for is above zero and at most 0.01; very small values cost many nodes and are \
          refused below what rounding allows.",
         "cell.accuracy = 1e-6;";
-    ABSORPTION_MISSING = "E230", "a layer's absorption is unknown",
-        "Light falls on a layer whose material has neither an absorption table nor a coefficient. Give \
-         `absorption`, or declare the layer optically inert.",
-        "layer(\"window\", wide, 30.nm, donors(2e18.per_cm3), #{ optics: \"inert\" })";
     STACK = "E240", "a stack that cannot be solved as described",
         "Something else about the stack contradicts itself; the message says what, where, and the range allowed.",
         "epiloom check cell.rhai        // lists all faults at once, solving nothing";

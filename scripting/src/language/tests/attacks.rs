@@ -81,7 +81,7 @@ fn an_interrupt_stops_a_loop() {
     });
     let options = RunOptions { interrupt, ..RunOptions::default() };
     let (outcome, _) = run_with("loop { }", options);
-    assert!(outcome.interrupted);
+    assert!(outcome.interrupted && outcome.errors[0].code == codes::INTERRUPTED); // E503
     raiser.join().unwrap();
 }
 
@@ -92,4 +92,25 @@ fn deep_nesting_is_refused() {
     expect_diagnostics(&deep, small());
     let brackets = format!("let x = {}{}; // ~ E501", "[".repeat(5000), "]".repeat(5000));
     expect_diagnostics(&brackets, small());
+}
+
+/// Source of truth: values nested without end must not exhaust the stack when they are dropped; the limit on memory is what
+/// bounds closures, and the stack of the script's thread is twice that limit.
+#[test]
+fn values_nested_without_end_stop() {
+    let mut options = small();
+    options.limits.array = 1_000;
+    expect_diagnostics("let a = []; loop { a = [a]; } // ~ E502", options.clone());
+    expect_diagnostics("let a = #{}; loop { a = #{ a: a }; } // ~ E502", options.clone());
+    options.limits.memory = 128 << 20;
+    options.limits.operations = 100_000_000;
+    expect_diagnostics("let f = 1; loop { let g = f; f = || g; } // ~ E502", options);
+}
+
+/// Source of truth: a panic inside a function of the program ends as a diagnostic, with what was stored kept.
+#[test]
+fn a_panic_is_a_diagnostic() {
+    let (outcome, recorder) = run_text("store(\"a\", #{ x: 1 });\npanic_for_a_test();");
+    assert_eq!(outcome.errors.iter().map(|e| e.code.as_str()).collect::<Vec<_>>(), ["E900"]);
+    assert_eq!((outcome.stored, recorder.snapshots.len()), (1, 1));
 }

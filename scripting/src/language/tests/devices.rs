@@ -124,6 +124,7 @@ fn lights_are_checked_at_their_place() {
     fails("monochromatic(#{ photon_flux: 0.per_cm2_s }); // ~ E225");
     fails("let n = dark(); n.suns = 3; // ~ E225");
     fails("film(0.5, 30.nm); // ~ E225");
+    fails("film(\"MgF\", 30.nm); // ~ E122");
     fails("coating([3]); // ~ E107");
     let lines = printed(
         "let sun = spectrum(\"AM1.5G\"); print(sun.irradiance); sun.suns = 100; print(sun.suns); print(spectrum(\"AM0\").irradiance.to(\"W_per_m2\") > 1366);",
@@ -154,6 +155,9 @@ fn a_check_finds_all_faults_of_a_device() {
     check(&with_cell(
         "let sun = spectrum(\"AM1.5G\");\nlet jv = cell.jv(sun);\nif jv.voc > 1.V { print(jv.points[0].voltage); }\nlet p = cell.at(jv.mpp.voltage, sun);\n\
          print(p.ledger[0].value);\nstore(\"x\", jv);\nlet e = cell.eqe(300.nm, 900.nm, 5.nm); print(e.points[3].eqe);\nlet wrong = jv.voc + 1.nm; // ~ E201",
+    ));
+    check(&with_cell(
+        "cell.rear_reflectance = 1;\ncell.front_internal_reflectance = 1;\nlet jv = cell.jv(dark()); // ~ E240",
     ));
     check(&with_cell(
         "let a = cell.jv(dark(), 0.V, 1.V, -0.1.V); // ~ E228\nlet b = cell.eqe(900.nm, 300.nm, 5.nm); // ~ E227\nlet c = cell.jv(dark(), []); // ~ E228",

@@ -23,7 +23,7 @@ fn inputs_are_overridden_by_name() {
     assert_eq!(code("thin"), Some("E112"));
     let (outcome, _) = set(text, "tt", "50nm");
     let unknown = &outcome.errors[0];
-    assert_eq!(unknown.code, codes::UNKNOWN_INPUT);
+    assert_eq!(unknown.code, codes::UNKNOWN_INPUT); // E111
     assert!(unknown.help.as_deref().is_some_and(|h| h.contains('t')), "{unknown:?}");
     fails("let a = input(\"a\", 1);\nlet b = input(\"a\", 2); // ~ E110");
     fails("let a = input(\"a\", [1]); // ~ E107");
@@ -77,12 +77,12 @@ fn files_are_read_from_the_scripts_folder_alone() {
     let (outcome, _) = in_folder(&inside, "read_csv(\"../nowhere.csv\");", &[]);
     assert_eq!(outcome.errors[0].code, codes::OUTSIDE, "whether a file outside exists is not told");
     let (outcome, _) = in_folder(&inside, "read_csv(\"nowhere.csv\");", &[]);
-    assert_eq!(outcome.errors[0].code, codes::UNREADABLE);
+    assert_eq!(outcome.errors[0].code, codes::UNREADABLE); // E400
     let (outcome, _) = in_folder(&inside, "read_csv(\"data\");", &[]);
     assert_eq!(outcome.errors[0].code, codes::UNREADABLE);
     std::fs::write(inside.join("torn.csv"), "a,b\n1,x\n").expect("a file");
     let (outcome, _) = in_folder(&inside, "read_csv(\"torn.csv\");", &[]);
-    assert_eq!(outcome.errors[0].code, codes::DATA_FILE);
+    assert_eq!(outcome.errors[0].code, codes::DATA_FILE); // E402
     fails("read_csv(\"x.csv\"); // ~ E401");
 }
 
@@ -97,5 +97,5 @@ fn archived_files_stand_in_for_the_folder() {
     assert_eq!(recorder.lines, ["0.5 V"]);
     given.text = "read_csv(\"q.csv\");".to_string();
     let outcome = run(&given, RunOptions::default(), &mut Recorder::default());
-    assert_eq!(outcome.errors[0].code, codes::REPLAY_INPUT);
+    assert_eq!(outcome.errors[0].code, codes::REPLAY_INPUT); // E421
 }

@@ -131,3 +131,69 @@ fn a_second_run_gives_the_same_snapshots() {
     assert_eq!(first.snapshots.len(), 1);
     assert_eq!(first.snapshots, second.snapshots);
 }
+
+/// Source of truth: a closure works on its own copy of what it captures, whatever way a user writes it.
+#[test]
+fn closures_may_capture_stacks() {
+    let lines = printed(
+        r#"
+        let gaas = material("GaAs", #{ electron_lifetime: 20.ns, hole_lifetime: 20.ns });
+        let cell = stack("d", [layer("n", gaas, 100.nm, donors(1e18.per_cm3)), layer("p", gaas, 1.um, acceptors(1e17.per_cm3))]);
+        let currents = [0.2.V, 0.4.V].map(|v| cell.at(v, dark()).current_density);
+        print(currents[1] > currents[0]);
+        let thinner = |t| { let c = cell; c["p"].thickness = t; c };
+        print(thinner.call(500.nm)["p"].thickness);
+        print(cell["p"].thickness);
+        "#,
+    );
+    assert_eq!(lines, ["true", "500 nm", "1 um"]);
+}
+
+/// Source of truth: what the catalogue says of each warning; each stands at the layer or the analysis it is about.
+#[test]
+fn warnings_stand_where_they_belong() {
+    let checked = RunOptions { check_only: true, ..RunOptions::default() };
+    let text = r#"let life = #{ electron_lifetime: 1.ns, hole_lifetime: 1.ns };
+let cell = stack("d", [
+    layer("window", material("AlInP"), 20.nm, donors(1e18.per_cm3), life), // ~ W202 W202 W206
+    layer("n", material("AlGaAs", #{ x: 0.33 }), 100.nm, donors(1e18.per_cm3), life), // ~ W204 W205
+    layer("p", material("Si"), 1.um, acceptors(1e17.per_cm3), life),
+]);
+let jv = cell.jv(dark());"#;
+    expect_diagnostics(text, checked.clone());
+    let cold = r#"let gaas = material("GaAs", #{ electron_lifetime: 1.ns, hole_lifetime: 1.ns });
+let cell = stack("d", [
+    layer("n", gaas, 100.nm, donors(1e18.per_cm3)),
+]);
+cell.temperature = 25.K;
+let jv = cell.jv(dark()); // ~ W203"#;
+    expect_diagnostics(cold, checked);
+    let lit = r#"let gaas = material("GaAs", #{ electron_lifetime: 1.ns, hole_lifetime: 1.ns });
+let cell = stack("d", [
+    layer("n", gaas, 100.nm, donors(1e18.per_cm3)), // ~ W303
+    layer("p", gaas, 1.um, acceptors(1e17.per_cm3)), // ~ W303
+]);
+cell.front_reflectance = [[400.nm, 0.1], [900.nm, 0.1]];
+let jv = cell.jv(spectrum("AM1.5G"), [0.V]); // ~ W302
+let response = cell.eqe([200.nm, 600.nm]);"#;
+    expect_diagnostics(lit, RunOptions::default());
+}
+
+/// Source of truth: a sink that cannot keep a snapshot stops the script with its own words.
+#[test]
+fn a_snapshot_that_is_not_kept_stops_the_script() {
+    struct Full;
+    impl Sink for Full {
+        fn print(&mut self, _: &str) {}
+        fn input(&mut self, _: &InputRecord) {}
+        fn data_file(&mut self, _: &DataFile) {}
+        fn warning(&mut self, _: &Diagnostic) {}
+        fn working(&mut self, _: &str) {}
+        fn snapshot(&mut self, _: Snapshot) -> Result<(), String> {
+            Err("the disk is full".to_string())
+        }
+    }
+    let outcome = run(&script("store(\"a\", #{ x: 1 });\nprint(1);"), RunOptions::default(), &mut Full);
+    assert_eq!(outcome.errors[0].code, codes::UNWRITABLE); // E403
+    assert_eq!((outcome.errors[0].message.as_str(), outcome.stored), ("the disk is full", 0));
+}

@@ -2,6 +2,7 @@
 
 use std::sync::Arc;
 
+use epiloom_solver::materials::{film_constants, film_names};
 use epiloom_solver::optics::{Film, OpticalConstants, Reflectance, Spectrum, SpectrumError};
 use rhai::Dynamic;
 
@@ -176,14 +177,24 @@ topic! {
         },
     }
     Function "film" {
-        forms: ["film(optical_constants(..), thickness)", "film(index, thickness)"],
-        doc: "A film of a coating: its optical constants, or one refractive index without absorption, and its thickness.",
-        example: "let outer = film(1.38, 100.nm);",
+        forms: ["film(\"MgF2\", thickness)", "film(optical_constants(..), thickness)", "film(index, thickness)"],
+        doc: "A film of a coating: a substance, and its thickness. Al2O3, MgF2, Si3N4, SiO2, TiO2 and ZnS are built in, with the \
+              citation of their tables; any other comes from a file, or is one refractive index without absorption.",
+        example: "let outer = film(\"MgF2\", 100.nm);\nlet inner = film(2.3, 55.nm);",
         register: |engine, session| {
             engine.register_type_with_name::<FilmValue>("film");
             function(engine, session, "film", 2..=2, |_, arguments| {
                 let constants = if let Some(constants) = arguments[0].read_lock::<ConstantsValue>() {
                     Arc::clone(&constants.0)
+                } else if arguments[0].is_string() {
+                    let name = text(arguments[0], "the substance of a film")?;
+                    let known: Vec<&str> = film_names().collect();
+                    Arc::new(film_constants(&name).ok_or_else(|| {
+                        Fault::new(codes::WRONG_CHOICE, format!("no optical constants of `{name}` are built in"))
+                            .candidates(&name, known.iter().copied())
+                            .note("optical_constants(\"file.csv\") reads a table of your own")
+                            .at(Place::Argument(0))
+                    })?)
                 } else if crate::language::value::any_quantity(arguments[0]).is_some() {
                     let index = quantity(arguments[0], "the refractive index of a film", Dimension::NONE).map_err(|f| f.at(Place::Argument(0)))?;
                     if index.value < 1.0 {
@@ -216,7 +227,7 @@ topic! {
     Function "coating" {
         forms: ["coating([film(..), ..])"],
         doc: "Coherent films on the first semiconductor, outermost first, at normal incidence: a value for `cell.front_reflectance`.",
-        example: "let two = coating([film(1.38, 100.nm), film(2.3, 55.nm)]);",
+        example: "let two = coating([film(\"MgF2\", 100.nm), film(\"ZnS\", 55.nm)]);",
         register: |engine, session| {
             engine.register_type_with_name::<CoatingValue>("coating");
             function(engine, session, "coating", 1..=1, |_, arguments| {

@@ -679,8 +679,15 @@ fn store(call: &Call, arguments: &mut [&mut Dynamic]) -> Answer {
 /// What stops an analysis, in the words of scripts.
 fn analysis_fault(error: &AnalysisError) -> Fault {
     match error {
-        AnalysisError::NotConverged { voltage, last_good_voltage, .. } => {
-            let fault = Fault::new(codes::NOT_CONVERGED, error.to_string());
+        AnalysisError::NotConverged { voltage, last_good_voltage, stage, update, .. } => {
+            let code = if update.is_nan() {
+                codes::SINGULAR
+            } else if stage.contains("equilibrium") {
+                codes::NO_EQUILIBRIUM
+            } else {
+                codes::NOT_CONVERGED
+            };
+            let fault = Fault::new(code, error.to_string());
             match last_good_voltage {
                 Some(good) => fault.note(format!("solved up to {good:.4} V; {voltage:.4} V was aimed at")),
                 None => fault.help("check lifetimes, mobilities and dopings for a slip in a power of ten"),
@@ -773,5 +780,31 @@ fn limits_of(quantity: &str) -> (Code, Dimension) {
         q if q.ends_with("velocity") => (codes::VELOCITY, Dimension::VELOCITY),
         q if q.ends_with("reflectance") || q.ends_with("shading") => (codes::SHARE, Dimension::NONE),
         _ => (codes::STACK, Dimension::NONE),
+    }
+}
+
+#[cfg(test)]
+mod tests {
+    use super::*;
+
+    /// Source of truth: the catalogue's three ways of not getting a solution.
+    #[test]
+    fn a_failed_solution_names_its_kind() {
+        let failed = |stage: &'static str, update: f64, last_good_voltage: Option<f64>| {
+            analysis_fault(&AnalysisError::NotConverged {
+                equation: "electron continuity",
+                layer: "base".to_string(),
+                depth_nm: 12.0,
+                stage,
+                voltage: 1.2,
+                update,
+                last_good_voltage,
+            })
+        };
+        let fault = failed("at bias", 3.0, Some(1.1)); // ~ E300
+        assert_eq!(fault.code, codes::NOT_CONVERGED);
+        assert!(fault.message.contains("`base`") && fault.notes[0].contains("1.1000 V"), "{fault:?}");
+        assert_eq!(failed("at dark equilibrium", 3.0, None).code, codes::NO_EQUILIBRIUM); // ~ E301
+        assert_eq!(failed("at bias", f64::NAN, None).code, codes::SINGULAR); // ~ E303
     }
 }

@@ -1,6 +1,7 @@
 //! How strongly a material absorbs, and its refractive index: tables moved to the gap wanted, analytic edges, single numbers.
 
 mod constants;
+mod films;
 mod models;
 mod table;
 #[cfg(test)]
@@ -16,6 +17,7 @@ use super::parameter::Parameter;
 use super::record::{OpticalModel, Origin};
 
 pub use constants::OpticalConstants;
+pub use films::{film_constants, film_names};
 use table::Table;
 
 /// Photon energy in eV times vacuum wavelength in m.
