@@ -70,6 +70,16 @@ fn is_sparse(u: &Block) -> bool {
     u.m12 == 0.0 && u.m13 == 0.0 && u.m23 == 0.0 && u.m32 == 0.0
 }
 
+/// `l x` for a coupling `l`.
+#[inline(always)]
+fn times(l: &Block, x: &Triple) -> Triple {
+    if is_sparse(l) {
+        Triple::new(l.m11 * x.x, l.m21 * x.x + l.m22 * x.y, l.m31 * x.x + l.m33 * x.z)
+    } else {
+        l * x
+    }
+}
+
 /// `a u` for a coupling `u`.
 #[inline(always)]
 fn times_coupling(a: &Block, u: &Block) -> Block {
@@ -238,35 +248,48 @@ impl Factors {
         for (value, scale) in b.iter_mut().zip(&self.scales) {
             value.component_mul_assign(scale);
         }
-        for i in 0..twist {
-            let mut y = b[i];
-            if i > 0 {
-                y -= self.coupling[i] * b[i - 1];
+        // The two chains are independent; interleaving them hides the latency of each.
+        let (mut left, mut right) = (0, n - 1);
+        let (mut from_left, mut from_right) = (Triple::zeros(), Triple::zeros());
+        while left < twist || right > twist {
+            if left < twist {
+                let y = if left > 0 { b[left] - times(&self.coupling[left], &from_left) } else { b[left] };
+                from_left = self.inverse[left] * y;
+                b[left] = from_left;
+                left += 1;
             }
-            b[i] = self.inverse[i] * y;
-        }
-        for i in (twist + 1..n).rev() {
-            let mut y = b[i];
-            if i + 1 < n {
-                y -= self.coupling[i] * b[i + 1];
+            if right > twist {
+                let y = if right + 1 < n {
+                    b[right] - times(&self.coupling[right], &from_right)
+                } else {
+                    b[right]
+                };
+                from_right = self.inverse[right] * y;
+                b[right] = from_right;
+                right -= 1;
             }
-            b[i] = self.inverse[i] * y;
         }
         let mut y = b[twist];
         if twist > 0 {
-            y -= self.coupling[twist] * b[twist - 1];
+            y -= times(&self.coupling[twist], &b[twist - 1]);
         }
         if twist + 1 < n {
-            y -= self.twist_upper * b[twist + 1];
+            y -= times(&self.twist_upper, &b[twist + 1]);
         }
         b[twist] = self.inverse[twist] * y;
-        for i in (0..twist).rev() {
-            let next = b[i + 1];
-            b[i] -= self.eliminated[i] * next;
-        }
-        for i in twist + 1..n {
-            let previous = b[i - 1];
-            b[i] -= self.eliminated[i] * previous;
+        let (mut left, mut right) = (twist, twist + 1);
+        let (mut from_left, mut from_right) = (b[twist], b[twist]);
+        while left > 0 || right < n {
+            if left > 0 {
+                left -= 1;
+                from_left = b[left] - self.eliminated[left] * from_left;
+                b[left] = from_left;
+            }
+            if right < n {
+                from_right = b[right] - self.eliminated[right] * from_right;
+                b[right] = from_right;
+                right += 1;
+            }
         }
     }
 
