@@ -153,3 +153,62 @@ fn terminal_gradient_against_differences() {
         assert!((slope - at.by_rear_level).abs() <= 1e-6 * largest.max(slope.abs()), "{name} bias");
     }
 }
+
+/// Truth: the whole chain layers, mesh, coefficients, residual run on dual numbers gives the derivative of the residual by a
+/// parameter; against differences of two step sizes extrapolated (Richardson), 1e-7 of the row's largest derivative
+/// plus the rounding of the row over the step.
+#[test]
+fn parameter_derivatives_flow_through_the_whole_chain() {
+    use crate::device::{Profile, Stack};
+    use crate::materials::Parameter;
+    type D = Dual<f64, 1>;
+    let stack = r3();
+    let grading = Grading { spacing: 20e-9, growth: 0.6, most_cells: 100 };
+    let mesh = Mesh::new(&Device::new(stack.clone()).unwrap(), &grading, 0);
+    let state = disturbed(&Coefficients::new(&Device::new(stack.clone()).unwrap(), &mesh), 0.3);
+    let plain = |change: &dyn Fn(&mut Stack)| {
+        let mut changed = stack.clone();
+        change(&mut changed);
+        let c = Coefficients::new(&Device::new(changed).unwrap(), &mesh);
+        residual(&c, &state, 1.7, &vec![0.0; c.entries.len()])
+    };
+    let set = |which: usize, factor: f64| {
+        move |s: &mut Stack| match which {
+            0 => s.layers[2].thickness *= factor,
+            1 => s.layers[2].donors = Profile::Constant(2e23 * factor),
+            2 => s.temperature *= factor,
+            _ => *s.layers[2].material.overrides.entry(Parameter::HoleLifetime).or_insert(0.0) *= factor,
+        }
+    };
+    for which in 0..4 {
+        let mut dual = stack.map(D::fixed);
+        let relative = |d: &mut D| d.d[0] = d.re;
+        match which {
+            0 => relative(&mut dual.layers[2].thickness),
+            1 => dual.layers[2].donors = Profile::Constant(Dual { re: 2e23, d: [2e23] }),
+            2 => relative(&mut dual.temperature),
+            _ => relative(dual.layers[2].material.overrides.get_mut(&Parameter::HoleLifetime).unwrap()),
+        }
+        let c = Coefficients::new(&Device::new(dual).unwrap(), &mesh);
+        let fixed: Vec<[D; 3]> = state.iter().map(|x| x.map(D::fixed)).collect();
+        let rows = residual(&c, &fixed, D::fixed(1.7), &vec![D::fixed(0.0); c.entries.len()]);
+        let difference = |h: f64| {
+            let (up, down) = (plain(&set(which, 1.0 + h)), plain(&set(which, 1.0 - h)));
+            move |i: usize, row: usize| (up[i][row] - down[i][row]) / (2.0 * h)
+        };
+        let (coarse, fine) = (difference(2e-4), difference(1e-4));
+        for row in 0..3 {
+            let largest = rows.iter().map(|r| r[row].d[0].abs()).fold(0.0, f64::max);
+            let rounding =
+                10.0 * f64::EPSILON * rows.iter().map(|r| r[row].re.abs()).fold(0.0, f64::max) / 1e-4;
+            for (i, r) in rows.iter().enumerate() {
+                let extrapolated = (4.0 * fine(i, row) - coarse(i, row)) / 3.0;
+                assert!(
+                    (extrapolated - r[row].d[0]).abs() <= 1e-7 * largest + rounding,
+                    "parameter {which} node {i} row {row}: {:e} {extrapolated:e} of {largest:e}",
+                    r[row].d[0]
+                );
+            }
+        }
+    }
+}
