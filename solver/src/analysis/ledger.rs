@@ -106,9 +106,17 @@ fn contact_recombination(problem: &Problem, which: usize, local: &Local) -> (f64
     if contact.recombining().is_some() {
         return (system.surface[which].0, local.splitting);
     }
-    let minority = match contact.majority {
-        Majority::Electron => Carrier::Hole,
-        _ => Carrier::Electron,
+    let minority = match (contact.majority, c.terminal_pair()) {
+        (Majority::Electron, _) => Carrier::Hole,
+        (Majority::Hole, _) | (Majority::Both, None) => Carrier::Electron,
+        // A contact that pins both takes part with the carrier that the terminal current is summed with.
+        (Majority::Both, Some((front, rear))) => {
+            if which == 0 {
+                front
+            } else {
+                rear
+            }
+        }
     };
     let edge = if which == 0 { 0 } else { c.nodes() - 2 };
     // Leaving along the flux at the front for electrons and at the rear for holes, else against it; the half-cell's
@@ -212,7 +220,8 @@ pub(crate) fn ledger(
     for (name, (rate, _)) in ["front contact", "rear contact"].into_iter().zip(&surfaces) {
         ledger.add(part, name, "surface recombination", rate * current, false);
     }
-    let delivered = if terminal.from_rows { -terminal.current } else { 0.0 };
+    // Pairs that part to the two contacts; where both ends pin the same carrier, current takes none.
+    let delivered = if terminal.from_rows { -terminal.sense * terminal.current } else { 0.0 };
     ledger.add(part, "", "extracted", delivered * current, false);
 
     // Free energy.

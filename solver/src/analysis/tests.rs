@@ -1,5 +1,7 @@
 //! Reference devices and invariants.
 
+mod odd_ends;
+
 use std::collections::BTreeMap;
 
 use crate::device::{Contact, Device, Layer, LayerOptics, Profile, Stack, Statistics};

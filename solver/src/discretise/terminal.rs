@@ -19,6 +19,9 @@ pub struct Terminal {
     pub by_generation: Vec<f64>,
     /// Sum of the absolute terms.
     pub magnitude: f64,
+    /// The current over the sum of recombination less generation and the minority fluxes into the contacts: +1 for a
+    /// junction, +1 or -1 otherwise; 0 where that sum is not the current.
+    pub sense: f64,
     /// False where the current had to be taken from the edges themselves (both ends pin the same carrier).
     pub from_rows: bool,
 }
@@ -96,6 +99,7 @@ impl Terminal {
             by_rear_level: sign * by_level,
             by_generation,
             magnitude,
+            sense: sign,
             from_rows: true,
         }
     }
@@ -110,12 +114,13 @@ impl Terminal {
         // Resistance of an edge: what its flux loses per unit of level, read from the Jacobian's coupling.
         let row = if electrons { 1 } else { 2 };
         let conductance = |k: usize| {
-            let value = if k + 1 < n - 1 {
-                system.jacobian.upper[k][(row, row)]
-            } else {
-                system.ends[1].1[(row, row)]
+            // At the ends the contact laws have replaced the row that is read here.
+            let coupling = match k {
+                0 => &system.ends[0].1,
+                _ if k + 2 == n => &system.ends[1].1,
+                _ => &system.jacobian.upper[k],
             };
-            value.abs().max(f64::MIN_POSITIVE)
+            coupling[(row, row)].abs().max(f64::MIN_POSITIVE)
         };
         let total: f64 = (0..n - 1).map(|k| 1.0 / conductance(k)).sum();
         let sign = -c.polarity;
@@ -141,6 +146,7 @@ impl Terminal {
             by_rear_level,
             by_generation: vec![0.0; n],
             magnitude,
+            sense: 0.0,
             from_rows: false,
         }
     }
