@@ -57,10 +57,11 @@ pub fn percent(share: f64) -> String {
 
 /// The symbol of a unit spelled as in scripts: `mA_per_cm2` is mA/cm2, `per_cm3` is cm^-3, `cm2_per_Vs` is cm2/Vs.
 pub fn unit_symbol(unit: &str) -> String {
-    match unit {
-        "percent" => return "%".to_string(),
-        "ohm_cm" | "ohm_cm2" | "ohm_m2" => return unit.replacen('_', " ", 1),
-        _ => {}
+    if unit == "percent" {
+        return "%".to_string();
+    }
+    if let Some(times) = unit.strip_prefix("ohm_") {
+        return format!("ohm {times}");
     }
     if let Some(below) = unit.strip_prefix("per_") {
         let power = |part: &str| match part.strip_suffix(|c: char| c.is_ascii_digit()) {

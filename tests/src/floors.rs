@@ -1,5 +1,6 @@
 //! The import direction of modules, read from the source text: which floors a file names, and whether it may.
 
+use std::collections::BTreeSet;
 use std::path::{Path, PathBuf};
 
 /// Where a module may be named although it stands higher, and why.
@@ -39,11 +40,24 @@ pub struct Named {
     pub in_tests: bool,
 }
 
-/// All Rust files below a folder, in order, each with its module path below the crate's root.
+/// One file of Rust.
+#[derive(Clone, Debug)]
+pub struct Source {
+    /// Where it is.
+    pub path: PathBuf,
+    /// Its module path below the crate's root.
+    pub module: Vec<String>,
+    /// Its text.
+    pub text: String,
+    /// Whether it is compiled for tests only: a module behind `#[cfg(test)]`, or below one.
+    pub test_only: bool,
+}
+
+/// All Rust files below a folder, in order.
 ///
 /// # Panics
 /// Where the folder cannot be read: then there is nothing to test.
-pub fn sources(root: &Path) -> Vec<(PathBuf, Vec<String>, String)> {
+pub fn sources(root: &Path) -> Vec<Source> {
     let mut found = Vec::new();
     let mut folders = vec![root.to_path_buf()];
     while let Some(folder) = folders.pop() {
@@ -59,12 +73,25 @@ pub fn sources(root: &Path) -> Vec<(PathBuf, Vec<String>, String)> {
                     module.pop();
                 }
                 let text = std::fs::read_to_string(&path).expect("source files are text");
-                found.push((path, module, text));
+                found.push(Source { path, module, text, test_only: false });
             }
         }
     }
-    found.sort();
+    found.sort_by(|a, b| a.path.cmp(&b.path));
+    let behind_test: BTreeSet<Vec<String>> = found.iter().flat_map(test_modules).collect();
+    for source in &mut found {
+        source.test_only = (1..=source.module.len()).any(|n| behind_test.contains(&source.module[..n]));
+    }
     found
+}
+
+/// The modules that a file declares behind `#[cfg(test)]`.
+fn test_modules(source: &Source) -> Vec<Vec<String>> {
+    let words = tokens(&source.text);
+    let marker = ["#", "[", "cfg", "(", "test", ")", "]", "mod"];
+    let marked =
+        words.windows(marker.len() + 1).filter(|w| w.iter().zip(marker).all(|(word, m)| word.0 == m));
+    marked.map(|w| source.module.iter().cloned().chain([w[marker.len()].0.clone()]).collect()).collect()
 }
 
 /// What a file may not name, given the floors from the highest down.

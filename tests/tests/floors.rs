@@ -2,7 +2,7 @@
 
 use std::path::{Path, PathBuf};
 
-use epiloom_tests::floors::{Exception, Violation, named_paths, sources, tokens, violations};
+use epiloom_tests::floors::{Exception, Source, Violation, named_paths, sources, tokens, violations};
 
 /// The floors of the solver, from the top down.
 const FLOORS: &[&str] = &[
@@ -43,8 +43,10 @@ fn the_solver_imports_downwards_only() {
     let files = sources(&root);
     assert!(files.len() > 40, "the solver's sources were found");
     let mut found = Vec::new();
-    for (path, module, text) in &files {
-        found.extend(violations(&path.display().to_string(), module, text, FLOORS, EXCEPTIONS));
+    assert!(files.iter().any(|source| source.test_only), "modules of tests were told apart");
+    for source in files.iter().filter(|source| !source.test_only) {
+        let file = source.path.display().to_string();
+        found.extend(violations(&file, &source.module, &source.text, FLOORS, EXCEPTIONS));
     }
     let list: Vec<String> =
         found.iter().map(|v| format!("{}:{}: {}: {}", v.file, v.line, v.path, v.why)).collect();
@@ -105,7 +107,10 @@ fn the_archive_stands_alone() {
     let forbidden_modules = ["language", "command", "diagnostics", "picture"];
     let root = workspace().join("scripting/src");
     let mut seen = 0;
-    for (path, module, text) in sources(&root) {
+    for Source { path, module, text, test_only } in sources(&root) {
+        if test_only {
+            continue;
+        }
         let own = module.first().map(String::as_str).unwrap_or_default();
         let named = named_paths(&module, &text);
         let names = |other: &str| named.iter().any(|n| n.parts.first().is_some_and(|p| p == other));
@@ -153,8 +158,8 @@ fn the_solver_does_no_input_or_output() {
         "stdout",
         "stderr",
     ];
-    for (path, module, text) in sources(&workspace().join("solver/src")) {
-        if module.iter().any(|part| part == "tests") {
+    for Source { path, text, test_only, .. } in sources(&workspace().join("solver/src")) {
+        if test_only {
             continue;
         }
         // the tests of a file stand at its end

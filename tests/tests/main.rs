@@ -1,6 +1,7 @@
 //! End-to-end tests.
 
 mod archives;
+mod catalogue;
 mod floors;
 mod runs;
 mod scenarios;

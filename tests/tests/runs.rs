@@ -232,3 +232,102 @@ fn a_closed_standard_output_stops_nothing() {
     assert_eq!(ran.code, 0, "{}", ran.err);
     assert!(bench.path("small.epiloom").is_file());
 }
+
+/// A script that stores one result and then goes on for long.
+#[cfg(unix)]
+const LONG: &str =
+    "store(\"first\", cell.jv(lamp, [0.V]));\nlet n = 0;\nloop { n += 1; if n > 150000000 { break; } }";
+
+/// Starts that script and waits until its first result is stored.
+#[cfg(unix)]
+fn started(bench: &Bench) -> std::process::Child {
+    let mut command = bench.command(&["run", "small.rhai"]);
+    let mut child = command
+        .stdout(std::process::Stdio::null())
+        .stderr(std::process::Stdio::null())
+        .spawn()
+        .expect("starts");
+    for _ in 0..600 {
+        if bench.run(&["show", "small.epiloom.unfinished"]).out.contains("first") {
+            return child;
+        }
+        std::thread::sleep(std::time::Duration::from_millis(50));
+    }
+    child.kill().expect("it was going on");
+    child.wait().expect("it ends");
+    panic!("nothing was stored in half a minute");
+}
+
+/// Source of truth: the promise that nothing stored is lost, not even to a kill: read back; the next run moves it aside.
+#[cfg(unix)]
+#[test]
+fn a_killed_run_keeps_what_is_stored_and_the_next_one_moves_it_aside() {
+    let bench = small(LONG);
+    let mut child = started(&bench);
+    child.kill().expect("it was going on");
+    child.wait().expect("it ends");
+    let shown = bench.ends(3, &["show", "small.epiloom.unfinished"]);
+    assert!(shown.out.contains("first"), "{}", shown.out);
+    bench.write("small.rhai", &format!("{SMALL_CELL}store(\"other\", cell.jv(lamp, [0.V]));"));
+    let next = bench.ends(0, &["run", "small.rhai"]);
+    assert!(next.err.contains("small.epiloom.unfinished-1"), "{}", next.err);
+    assert!(bench.ends(3, &["show", "small.epiloom.unfinished-1"]).out.contains("first"));
+    assert!(bench.ends(0, &["show", "small.epiloom"]).out.contains("other"));
+}
+
+/// Source of truth: the lock on the unfinished archive: a second run of the same archive is refused, the first goes on.
+#[cfg(unix)]
+#[test]
+fn two_runs_do_not_write_one_archive() {
+    let bench = small(LONG);
+    let mut child = started(&bench);
+    let second = bench.ends(5, &["run", "small.rhai"]);
+    assert!(second.err.contains("E405") && second.err.contains("--out"), "{}", second.err);
+    assert!(child.try_wait().expect("it can be asked").is_none(), "the first goes on");
+    child.kill().expect("it was going on");
+    child.wait().expect("it ends");
+}
+
+/// Source of truth: a full disk, played by /dev/full: the results cannot be printed, and that is said.
+#[cfg(target_os = "linux")]
+#[test]
+fn a_full_disk_under_standard_output_is_said() {
+    let bench = Bench::empty();
+    let full = std::fs::OpenOptions::new().write(true).open("/dev/full").expect("it is there on Linux");
+    let ran = Ran::of(bench.command(&["materials"]).stdout(full).output().expect("it starts"));
+    assert!(ran.code == 5 && ran.err.contains("E403"), "{}: {}", ran.code, ran.err);
+}
+
+/// Source of truth: the rule that scripts read below their own folder only, and that a replay wants the same bytes.
+#[test]
+fn data_files_are_read_inside_the_folder_and_replayed_by_their_digest() {
+    let bench = small(
+        "let rows = read_csv(\"levels.csv\");\nfor row in rows { store(`at ${row.level}`, cell.at(row.level, lamp)); }",
+    );
+    bench.write("levels.csv", "level_V\n0.1\n0.2\n");
+    bench.ends(0, &["run", "small.rhai"]);
+    assert!(bench.ends(0, &["show", "small.epiloom"]).out.contains("data file levels.csv"));
+    bench.ends(0, &["replay", "small.epiloom"]);
+    bench.write("levels.csv", "level_V\n0.1\n0.3\n");
+    let changed = bench.ends(5, &["replay", "small.epiloom"]);
+    assert!(changed.err.contains("E421") && changed.err.contains("levels.csv"), "{}", changed.err);
+    std::fs::create_dir(bench.path("scripts")).expect("writable");
+    bench.write("scripts/outside.rhai", "let rows = read_csv(\"../levels.csv\");\nprint(rows.len());");
+    let refused = bench.ends(1, &["run", "scripts/outside.rhai"]);
+    assert!(refused.err.contains("E401") && refused.err.contains("--allow-read"), "{}", refused.err);
+    let allowed = bench.ends(0, &["run", "scripts/outside.rhai", "--allow-read", "."]);
+    assert_eq!(allowed.out, "2\n");
+}
+
+/// Source of truth: what a terminal would obey: an escape in a name is shown as text, on both streams.
+#[test]
+fn control_characters_never_reach_the_terminal() {
+    let bench = small("store(\"\\x1b[2Jred\", cell.jv(lamp, [0.V]));\nprint(\"\\x1b[31m\");");
+    let ran = bench.ends(0, &["run", "small.rhai"]);
+    let listed = bench.ends(0, &["show", "small.epiloom"]);
+    let missing = bench.ends(2, &["show", "small.epiloom", "\u{1b}[0m"]);
+    for text in [&ran.out, &ran.err, &listed.out, &missing.err] {
+        assert!(!text.contains('\u{1b}'), "{text:?}");
+    }
+    assert!(listed.out.contains("\\u{1b}[2Jred"), "{}", listed.out);
+}

@@ -45,12 +45,7 @@ pub fn snapshot_text(snapshot: &Snapshot) -> String {
     let news: Vec<Condition> =
         snapshot.conditions.iter().filter(|each| !snapshot.stack.settings.contains(each)).cloned().collect();
     text.push_str(&settings_text(&news));
-    let rows: Vec<Vec<String>> = snapshot
-        .figures
-        .iter()
-        .map(|figure| vec![figure_title(&figure.name), figure_value(figure)])
-        .collect();
-    text.push_str(&columns(&rows, &[], 2));
+    text.push_str(&figures_text(&snapshot.figures));
     for ledger in &snapshot.ledgers {
         text.push_str(&ledger_text(ledger));
     }
@@ -58,6 +53,19 @@ pub fn snapshot_text(snapshot: &Snapshot) -> String {
         text.push_str(&table_text(table));
     }
     text
+}
+
+/// The figures, one a line; where none exists, all for one reason, that is said once.
+fn figures_text(figures: &[Figure]) -> String {
+    if let [first, second, ..] = figures
+        && second.reason.is_some()
+        && figures.iter().all(|each| each.value.is_none() && each.reason == first.reason)
+    {
+        return format!("  figures of merit  {}\n", figure_value(first));
+    }
+    let rows: Vec<Vec<String>> =
+        figures.iter().map(|figure| vec![figure_title(&figure.name), figure_value(figure)]).collect();
+    columns(&rows, &[], 2)
 }
 
 /// The warnings of a snapshot.

@@ -9,7 +9,7 @@ use super::figure::Figure;
 use super::ladder::{AnalysisError, Ladder, MOST, check_voltage};
 use super::ledger::{Ledger, LedgerPart, ledger};
 use super::profiles::{barriers, profiles, sheet_resistance};
-use super::results::BiasPoint;
+use super::results::{BiasPoint, Warning};
 
 /// The solution under `light` at a terminal voltage, V.
 pub fn bias_point(device: &Device, light: &Light, voltage: f64) -> Result<BiasPoint, AnalysisError> {
@@ -73,7 +73,10 @@ fn collect(ladder: &mut Ladder, voltage: f64, points: Vec<Point>, mut ledgers: V
     let profiles = profiles(problem, point, &collection);
     let sheet_resistance = sheet_resistance(problem, &profiles);
     let barriers = barriers(problem);
-    let warnings = ladder.warnings();
+    let ledger = ledgers.swap_remove(finest);
+    let mut warnings = ladder.warnings();
+    let unclosed = ledger.unclosed().into_iter();
+    warnings.extend(unclosed.map(|message| Warning { code: "W312", message }));
     BiasPoint {
         voltage,
         junction_voltage: point.state.voltage,
@@ -81,7 +84,7 @@ fn collect(ladder: &mut Ladder, voltage: f64, points: Vec<Point>, mut ledgers: V
         own_current_density: point.current,
         conductance: point.conductance,
         profiles,
-        ledger: ledgers.swap_remove(finest),
+        ledger,
         carrier_figures,
         sheet_resistance,
         barriers,

@@ -42,11 +42,6 @@ super::rows! {
     CURVE_STOPPED = "W310", "a curve stopped early",
         "A voltage of the curve could not be solved; the points before it are good and kept.",
         "cell.jv(dark(), 0.V, 1.1.V, 20.mV)";
-    NOT_CHECKED = "W311", "the current is not independently checked",
-        "The terminal current is compared with the fluxes through the edges of the mesh; here their rounding is \
-         larger than the current, so that the comparison says nothing. The current itself comes from a sum that \
-         keeps its digits.",
-        "cell.at(0.1.V, dark())";
     NOT_CLOSED = "W312", "a balance does not close",
         "Photons, carriers or free energy in and out differ by more than rounding explains. The result is suspect: \
          please report it with the script.",
