@@ -7,6 +7,7 @@ use std::sync::mpsc::channel;
 
 use crate::diagnostics::{Diagnostic, codes};
 
+mod described;
 mod device_value;
 mod dimension;
 mod display;
@@ -22,6 +23,7 @@ mod result_value;
 mod sandbox;
 mod session;
 mod snapshot;
+mod solver_faults;
 mod spans;
 mod topics;
 mod units;

@@ -99,3 +99,30 @@ fn archived_files_stand_in_for_the_folder() {
     let outcome = run(&given, RunOptions::default(), &mut Recorder::default());
     assert_eq!(outcome.errors[0].code, codes::REPLAY_INPUT); // E421
 }
+
+/// Source of truth: the columns that the reference page names; a lamp of constant irradiance integrates by hand.
+#[test]
+fn spectra_and_optical_constants_come_from_files() {
+    let root = tempfile::tempdir().expect("a folder");
+    std::fs::write(
+        root.path().join("lamp.csv"),
+        "# a lamp\nwavelength_nm,irradiance_W_per_m2_nm\n400,1\n900,1\n",
+    )
+    .expect("a file");
+    std::fs::write(root.path().join("nk.csv"), "wavelength_um,n,k\n0.3,2.5,0.1\n1.2,2.3,0\n")
+        .expect("a file");
+    std::fs::write(root.path().join("bad.csv"), "wavelength_um,n,k\n1.2,2.5,0.1\n0.3,2.3,0\n")
+        .expect("a file");
+    let text = "print(spectrum_file(\"lamp.csv\").irradiance);\nlet zns = optical_constants(\"nk.csv\");\n\
+        let two = coating([film(\"MgF2\", 100.nm), film(zns, 50.nm)]);\nlet own = material(\"GaAs\", #{ optical_constants: zns });";
+    let (outcome, recorder) = in_folder(root.path(), text, &[]);
+    assert!(outcome.errors.is_empty(), "{}", shown(text, &outcome.errors));
+    assert_eq!(recorder.lines, ["50 mW/cm2"]);
+    assert_eq!(recorder.files.iter().map(|f| f.name.as_str()).collect::<Vec<_>>(), ["lamp.csv", "nk.csv"]);
+    for text in
+        ["spectrum_file(\"nk.csv\");", "optical_constants(\"bad.csv\");", "optical_constants(\"lamp.csv\");"]
+    {
+        let (outcome, _) = in_folder(root.path(), text, &[]);
+        assert_eq!(outcome.errors[0].code, codes::DATA_FILE, "{text}");
+    }
+}

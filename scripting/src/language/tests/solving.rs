@@ -197,3 +197,35 @@ fn a_snapshot_that_is_not_kept_stops_the_script() {
     assert_eq!(outcome.errors[0].code, codes::UNWRITABLE); // E403
     assert_eq!((outcome.errors[0].message.as_str(), outcome.stored), ("the disk is full", 0));
 }
+
+/// Source of truth: every way to describe doping, composition and optics goes through the solver; currents in the dark at 0 V vanish.
+#[test]
+fn every_way_of_describing_a_stack_is_solved() {
+    let text = r#"
+        let life = #{ electron_lifetime: 5.ns, hole_lifetime: 5.ns };
+        let gaas = material("GaAs", life);
+        let cell = stack("all", [
+            layer("graded", material("AlGaAs", #{ x: graded("linear", 0.3, 0.0), electron_lifetime: 1.ns, hole_lifetime: 1.ns }), 50.nm, donors(2e18.per_cm3)),
+            layer("erfc", gaas, 200.nm, donors(graded("erfc", 2e18.per_cm3, 1e15.per_cm3, 80.nm)) + acceptors(1e16.per_cm3)),
+            layer("intrinsic", gaas, 20.nm, intrinsic()),
+            layer("table", gaas, 100.nm, acceptors(graded([[0.nm, 1e16.per_cm3], [50.nm, 1e17.per_cm3]])), #{ optics: "inert" }),
+            layer("exponential", gaas, 1.um, acceptors(graded("exponential", 1e17.per_cm3, 1e18.per_cm3))),
+        ]);
+        cell.front_reflectance = coating([film("MgF2", 90.nm), film("ZnS", 50.nm)]);
+        cell.rear_reflectance = 0.5;
+        cell.grid_shading = 4.percent;
+        let sun = spectrum("AM1.5D", 10.suns);
+        let jv = cell.jv(sun, [0.V]);
+        print(jv.points[0].current_density < 0.mA_per_cm2);
+        cell.lit_from = "rear";
+        cell.front_reflectance = [[300.nm, 0.3], [4000.nm, 0.3]];
+        let rear = cell.jv(sun, [0.V]);
+        print(rear.points[0].current_density > jv.points[0].current_density);
+        print(abs(cell.at(0.V, dark()).current_density) < 1e-12.mA_per_cm2);
+        print(cell.jv(monochromatic(#{ photon_flux: 1e17.per_cm2_s, wavelength: 700.nm }), [0.V]).points[0].current_density < 0.mA_per_cm2);
+        print(cell.jv(black_body(5800.K, 100.mW_per_cm2), [0.V]).points[0].current_density < 0.mA_per_cm2);
+    "#;
+    let (outcome, recorder) = run_text(text);
+    assert!(outcome.errors.is_empty(), "{}", shown(text, &outcome.errors));
+    assert_eq!(recorder.lines, ["true"; 5]);
+}

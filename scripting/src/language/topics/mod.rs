@@ -2,6 +2,8 @@
 
 use super::vocabulary::Topic;
 
+mod analyses;
+mod doping;
 mod files;
 mod functions;
 mod layers;
@@ -17,9 +19,11 @@ pub(super) static ALL: &[&Topic] = &[
     &numbers::TOPIC,
     &functions::TOPIC,
     &materials::TOPIC,
+    &doping::TOPIC,
     &layers::TOPIC,
     &stacks::TOPIC,
     &light::TOPIC,
+    &analyses::TOPIC,
     &results::TOPIC,
 ];
 
@@ -29,6 +33,6 @@ pub(super) fn register_platform_replacements(engine: &mut rhai::Engine) {
 }
 
 pub(super) use layers::optics_word;
-pub(super) use materials::dimension as parameter_dimension;
+pub(super) use materials::{dimension as parameter_dimension, material_fault, range};
 pub(super) use results::{account, income};
 pub(super) use stacks::{side_word, statistics_word};

@@ -21,7 +21,7 @@ use crate::language::vocabulary::{
     Answer, Call, function, getter, index_getter, index_setter, setter, topic, unknown_property,
 };
 
-use super::layers::pair;
+use super::doping::pair;
 
 topic! {
     "Stacks",
