@@ -218,7 +218,8 @@ impl<'a> Ladder<'a> {
             }
             base += cells;
         }
-        State { nodes, voltage: coarse.state.voltage, light: coarse.state.light }
+        let remainders = vec![[0.0; 2]; nodes.len()];
+        State { nodes, remainders, voltage: coarse.state.voltage, light: coarse.state.light }
     }
 
     /// Warnings that hold whatever the bias: of the device, and light outside the tables.

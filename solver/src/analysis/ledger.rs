@@ -152,21 +152,13 @@ fn contact_recombination(problem: &Problem, which: usize, local: &Local) -> (f64
     ((if along { flux } else { -flux }) - system.net[node], 0.0)
 }
 
-/// Rounding of the current of one edge: a few units in the last place of every unknown that enters it.
+/// Rounding of the current of one edge: its fluxes are right relative to themselves (the differences of the levels are
+/// held beyond the last place of the levels), by the last place of the energies that their exponents are made from.
 pub(super) fn edge_rounding(problem: &Problem, point: &Point, k: usize) -> f64 {
-    let c = &problem.coefficients;
     let system = problem.system();
-    let last = c.nodes() - 1;
-    let coupling = if k + 1 == last { system.ends[1].1 } else { system.jacobian.lower[k + 1] };
-    let other = if k == 0 { system.ends[0].1 } else { system.jacobian.upper[k] };
-    let mut sum = 0.0;
-    for row in 1..3 {
-        for column in 0..3 {
-            sum += coupling[(row, column)].abs() * point.state.nodes[k][column].abs();
-            sum += other[(row, column)].abs() * point.state.nodes[k + 1][column].abs();
-        }
-    }
-    4.0 * f64::EPSILON * sum
+    let size = |node: usize| point.state.nodes[node].iter().map(|x| x.abs()).sum::<f64>();
+    let energies = size(k) + size(k + 1) + problem.largest_energy();
+    4.0 * f64::EPSILON * energies * (system.electron_flux[k].abs() + system.hole_flux[k].abs())
 }
 
 /// The account of a solved point. The problem must have been assembled at its state.
@@ -276,8 +268,9 @@ pub(crate) fn ledger(
         for e in c.first[layer]..c.first[layer + 1] - 1 {
             let k = e - layer;
             let (a, b) = (&point.state.nodes[k], &point.state.nodes[k + 1]);
-            electrons -= system.electron_flux[k] * (b[1] - a[1]);
-            holes -= system.hole_flux[k] * (b[2] - a[2]);
+            let (low_a, low_b) = (&point.state.remainders[k], &point.state.remainders[k + 1]);
+            electrons -= system.electron_flux[k] * ((b[1] - a[1]) + (low_b[0] - low_a[0]));
+            holes -= system.hole_flux[k] * ((b[2] - a[2]) + (low_b[1] - low_a[1]));
         }
         let name = &stack.layers[layer].name;
         ledger.add(part, name, "electron transport", electrons * power, false);

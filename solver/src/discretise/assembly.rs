@@ -96,16 +96,20 @@ impl Scratch {
     }
 
     /// The exponentials of every cell's fluxes.
-    fn edges(&mut self, c: &Coefficients<f64>, state: &[[f64; 3]]) {
+    fn edges(&mut self, c: &Coefficients<f64>, state: &[[f64; 3]], remainders: &[[f64; 2]]) {
         self.electron_edges.clear();
         self.hole_edges.clear();
         for layer in 0..c.layers() {
             for right in c.first[layer] + 1..c.first[layer + 1] {
                 let (left, i) = (right - 1, right - layer);
                 let electron_step = self.electron_level[right] - self.electron_level[left];
-                self.electron_edges.push(electron_step, state[i][1] - state[i - 1][1]);
+                let (here, before) = (&state[i], &state[i - 1]);
+                let (low, low_before) = (&remainders[i], &remainders[i - 1]);
+                let rise = (here[1] - before[1]) + (low[0] - low_before[0]);
+                self.electron_edges.push(electron_step, rise);
                 let hole_step = self.hole_level[left] - self.hole_level[right];
-                self.hole_edges.push(hole_step, state[i][2] - state[i - 1][2]);
+                let rise = (here[2] - before[2]) + (low[1] - low_before[1]);
+                self.hole_edges.push(hole_step, rise);
             }
         }
         self.electron_edges.evaluate();
@@ -264,26 +268,33 @@ impl System {
         }
     }
 
-    /// Evaluates residual and Jacobian at `state` with the rear contact's level at `rear` (kT/q) and the pairs
+    /// Evaluates residual and Jacobian at `state`, whose quasi-Fermi potentials hold `remainders` besides, with the rear contact's level at `rear` (kT/q) and the pairs
     /// generated per area in each entry's volume, each times `light`.
     pub fn assemble(
         &mut self,
         c: &Coefficients<f64>,
         state: &[[f64; 3]],
+        remainders: &[[f64; 2]],
         rear: f64,
         generation: &[f64],
         light: f64,
     ) {
         let mut scratch = std::mem::take(&mut self.scratch);
         scratch.carriers(c, state, rear);
-        scratch.edges(c, state);
+        scratch.edges(c, state, remainders);
         self.sources(c, &scratch, generation, light);
         self.fluxes(c, state, &scratch);
         self.scratch = scratch;
-        self.apply_contacts(c, state, rear);
+        self.apply_contacts(c, state, remainders, rear);
     }
 
-    fn apply_contacts(&mut self, c: &Coefficients<f64>, state: &[[f64; 3]], rear: f64) {
+    fn apply_contacts(
+        &mut self,
+        c: &Coefficients<f64>,
+        state: &[[f64; 3]],
+        remainders: &[[f64; 2]],
+        rear: f64,
+    ) {
         let last = state.len() - 1;
         for (which, i) in [(0, 0), (1, last)] {
             let contact = &c.contacts[which];
@@ -297,7 +308,8 @@ impl System {
             pin(0, state[i][0] - own - contact.potential, residual, diagonal, neighbour);
             for (carrier, row) in [(Carrier::Electron, 1), (Carrier::Hole, 2)] {
                 // The level relative to the contact's own, without a rounding of the bias where the references agree.
-                let level = state[i][row] + rear * (c.reference[row - 1] - which as f64);
+                let level =
+                    state[i][row] + rear * (c.reference[row - 1] - which as f64) + remainders[i][row - 1];
                 match contact.velocity {
                     Some(velocity) if !contact.pins(carrier) => {
                         let excess = if row == 1 { -level } else { level };

@@ -47,7 +47,7 @@ fn jacobian_is_the_derivative_of_the_plain_residual() {
             let state = disturbed(&c, scale);
             let rear = 1.7;
             let mut system = System::new(n);
-            system.assemble(&c, &state, rear, &generation, 1.0);
+            system.assemble(&c, &state, &vec![[0.0; 2]; state.len()], rear, &generation, 1.0);
             let by_level = system.by_rear_level(&c);
             let magnitude = |i: usize, row: usize| {
                 let mut sum = 0.0;
@@ -125,7 +125,7 @@ fn terminal_gradient_against_differences() {
         let state = disturbed(&c, 0.3);
         let value = |state: &[[f64; 3]], rear: f64| {
             let mut system = System::new(n);
-            system.assemble(&c, state, rear, &generation, 1.0);
+            system.assemble(&c, state, &vec![[0.0; 2]; state.len()], rear, &generation, 1.0);
             Terminal::new(&c, &system)
         };
         let at = value(&state, 1.7);

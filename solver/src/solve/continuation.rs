@@ -209,14 +209,14 @@ pub fn hermite(a: &Point, b: &Point, voltage: f64) -> State {
     let (s2, s3) = (s * s, s * s * s);
     let (w_a, w_b) = (2.0 * s3 - 3.0 * s2 + 1.0, -2.0 * s3 + 3.0 * s2);
     let (t_a, t_b) = ((s3 - 2.0 * s2 + s) * h, (s3 - s2) * h);
-    let nodes = (0..a.state.nodes.len())
+    let nodes: Vec<[f64; 3]> = (0..a.state.nodes.len())
         .map(|i| {
             let (x, y) = (&a.state.nodes[i], &b.state.nodes[i]);
             let (u, v) = (&a.tangent[i], &b.tangent[i]);
             std::array::from_fn(|k| w_a * x[k] + w_b * y[k] + t_a * u[k] + t_b * v[k])
         })
         .collect();
-    State { nodes, voltage, light: b.state.light }
+    State { remainders: vec![[0.0; 2]; nodes.len()], nodes, voltage, light: b.state.light }
 }
 
 impl Problem {

@@ -82,6 +82,17 @@ fn largest(update: &[Triple]) -> Stalled {
     worst
 }
 
+/// Adds to an unevaluated sum of two numbers, exactly but for the last place of the second.
+#[inline(always)]
+fn add(high: &mut f64, low: &mut f64, term: f64) {
+    let sum = *high + term;
+    // The rounding of that sum (D. E. Knuth's two-sum, no order of the sizes assumed).
+    let back = sum - *high;
+    let rest = (*high - (sum - back)) + (term - back) + *low;
+    *high = sum + rest;
+    *low = rest - (*high - sum);
+}
+
 impl Problem {
     /// Iterates from `start` to the drive's solution.
     pub fn newton(&mut self, start: &State, drive: Drive, tolerances: &Tolerances) -> Result<Point, Stalled> {
@@ -184,14 +195,14 @@ impl Problem {
 
     /// Applies an update, damped in the logarithm of the densities.
     fn apply(&self, state: &mut State, update: &[Triple]) {
-        for (x, u) in state.nodes.iter_mut().zip(update) {
+        for ((x, low), u) in state.nodes.iter_mut().zip(&mut state.remainders).zip(update) {
             let potential = damped(u[0]);
             // The change of ln n is that of (psi - phi_n), of ln p that of (phi_p - psi), up to the statistics' slope.
             let electrons = damped(u[0] - u[1]);
             let holes = damped(u[2] - u[0]);
             x[0] += potential;
-            x[1] += potential - electrons;
-            x[2] += potential + holes;
+            add(&mut x[1], &mut low[0], potential - electrons);
+            add(&mut x[2], &mut low[1], potential + holes);
         }
     }
 }

@@ -31,6 +31,9 @@ impl std::ops::AddAssign for Work {
 pub struct State {
     /// Potential and the two stored quasi-Fermi potentials at each node, kT/q: `[nodes]`.
     pub nodes: Vec<[f64; 3]>,
+    /// What the two quasi-Fermi potentials hold beyond the last place of `nodes`: `[nodes]`. In a floating region they are
+    /// large and all but equal from node to node; the flux lives in differences far below their last place.
+    pub remainders: Vec<[f64; 2]>,
     /// Voltage across the device (inside its series resistance), V.
     pub voltage: f64,
     /// Share of the problem's light, 0 to 1.
@@ -74,6 +77,11 @@ impl Problem {
         }
     }
 
+    /// The largest band energy, kT: what exponents are rounded against.
+    pub fn largest_energy(&self) -> f64 {
+        self.coefficients.entries.iter().map(|e| e.affinity_and_gap).fold(0.0, f64::max)
+    }
+
     /// Whether any light is absorbed.
     pub fn is_lit(&self) -> bool {
         self.generation.iter().any(|g| *g != 0.0)
@@ -110,7 +118,7 @@ impl Problem {
         nodes[0][0] = c.contacts[0].potential;
         let last = nodes.len() - 1;
         nodes[last][0] = c.contacts[1].potential;
-        State { nodes, voltage: 0.0, light: 0.0 }
+        State { remainders: vec![[0.0; 2]; nodes.len()], nodes, voltage: 0.0, light: 0.0 }
     }
 
     /// The built-in voltage: difference of the contacts' equilibrium potentials, V, positive for a junction.
@@ -123,7 +131,8 @@ impl Problem {
     /// Assembles the equations at a state.
     pub fn assemble(&mut self, state: &State) -> &System {
         let rear = self.rear_level(state.voltage);
-        self.system.assemble(&self.coefficients, &state.nodes, rear, &self.generation, state.light);
+        let State { nodes, remainders, light, .. } = state;
+        self.system.assemble(&self.coefficients, nodes, remainders, rear, &self.generation, *light);
         self.work.newton_iterations += 1;
         &self.system
     }
