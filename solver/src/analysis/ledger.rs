@@ -154,10 +154,10 @@ fn contact_recombination(problem: &Problem, which: usize, local: &Local) -> (f64
 
 /// Rounding of the current of one edge: its fluxes are right relative to themselves (the differences of the levels are
 /// held beyond the last place of the levels), by the last place of the energies that their exponents are made from.
-pub(super) fn edge_rounding(problem: &Problem, point: &Point, k: usize) -> f64 {
+pub(super) fn edge_rounding(problem: &Problem, point: &Point, k: usize, largest_energy: f64) -> f64 {
     let system = problem.system();
     let size = |node: usize| point.state.nodes[node].iter().map(|x| x.abs()).sum::<f64>();
-    let energies = size(k) + size(k + 1) + problem.largest_energy();
+    let energies = size(k) + size(k + 1) + largest_energy;
     4.0 * f64::EPSILON * energies * (system.electron_flux[k].abs() + system.hole_flux[k].abs())
 }
 
@@ -310,8 +310,10 @@ pub(crate) fn ledger(
     }
 
     // The current of the best-conditioned edge, evaluated from the carriers there and nothing else.
-    let best =
-        (0..c.cells.len()).map(|k| (k, edge_rounding(problem, point, k))).min_by(|a, b| a.1.total_cmp(&b.1));
+    let energy = problem.largest_energy();
+    let best = (0..c.cells.len())
+        .map(|k| (k, edge_rounding(problem, point, k, energy)))
+        .min_by(|a, b| a.1.total_cmp(&b.1));
     if let Some((k, rounding)) = best {
         let edge = -c.polarity * (system.electron_flux[k] + system.hole_flux[k]);
         let own = 16.0 * f64::EPSILON * terminal.magnitude;

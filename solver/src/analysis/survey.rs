@@ -250,7 +250,8 @@ fn examine(seed: u64) -> Verdict {
         // The same current through every edge.
         for k in 0..c.cells.len() {
             let edge = -c.polarity * (system.electron_flux[k] + system.hole_flux[k]);
-            let rounding = 4.0 * edge_rounding(problem, point, k)
+            let rounding = 4.0 * edge_rounding(problem, point, k, problem.largest_energy())
+                + 1.0 / scales::FLUX // one carrier per square metre and second
                 + 1e-13 * terminal.magnitude
                 + 1e-9 * terminal.current.abs();
             let off = (edge - terminal.current).abs();

@@ -283,6 +283,7 @@ impl System {
         scratch.carriers(c, state, rear);
         scratch.edges(c, state, remainders);
         self.sources(c, &scratch, generation, light);
+        self.jacobian.sums.clone_from(&self.jacobian.diagonal);
         self.fluxes(c, state, &scratch);
         self.scratch = scratch;
         self.apply_contacts(c, state, remainders, rear);
@@ -299,11 +300,11 @@ impl System {
         for (which, i) in [(0, 0), (1, last)] {
             let contact = &c.contacts[which];
             let own = if which == 0 { 0.0 } else { rear };
-            let System { residual, jacobian, .. } = self;
+            let System { residual, jacobian, ends, surface, .. } = self;
             let neighbour = if which == 0 { &mut jacobian.upper[i] } else { &mut jacobian.lower[i] };
             let diagonal = &mut jacobian.diagonal[i];
-            self.ends[which] = (*diagonal, *neighbour);
-            self.surface[which] = (0.0, 0.0);
+            ends[which] = (*diagonal, *neighbour);
+            surface[which] = (0.0, 0.0);
             let residual = &mut residual[i];
             pin(0, state[i][0] - own - contact.potential, residual, diagonal, neighbour);
             for (carrier, row) in [(Carrier::Electron, 1), (Carrier::Hole, 2)] {
@@ -314,12 +315,26 @@ impl System {
                     Some(velocity) if !contact.pins(carrier) => {
                         let excess = if row == 1 { -level } else { level };
                         let (flux, slope) = sloped_surface_flux(c.statistics, contact, velocity, excess);
-                        self.surface[which] = (flux, slope);
+                        surface[which] = (flux, slope);
                         residual[row] += if row == 1 { -flux } else { flux };
                         // d excess / d u is -1 for electrons (row sign -1) and +1 for holes (row sign +1).
                         diagonal[(row, row)] += slope;
+                        jacobian.sums[i][(row, row)] += slope;
                     }
                     _ => pin(row, level, residual, diagonal, neighbour),
+                }
+            }
+            // Column sums of pinned rows: the row itself and the rest of its edge, whose other end is in the rows beyond.
+            let (inner, back) =
+                if which == 0 { (1, jacobian.lower[1]) } else { (last - 1, jacobian.upper[last - 1]) };
+            for row in 0..3 {
+                let carrier = if row == 1 { Carrier::Electron } else { Carrier::Hole };
+                if row == 0 || contact.velocity.is_none() || contact.pins(carrier) {
+                    for column in 0..3 {
+                        jacobian.sums[i][(row, column)] =
+                            f64::from(u8::from(row == column)) + back[(row, column)];
+                        jacobian.sums[inner][(row, column)] -= ends[which].1[(row, column)];
+                    }
                 }
             }
         }

@@ -48,6 +48,9 @@ const LARGEST_STEP: f64 = 0.4;
 /// Smallest factor by which a light ramp may rise before giving up.
 const SMALLEST_RISE: f64 = 1.05;
 
+/// What a predictor may add to the change of the bias, kT/q.
+const MARGIN: f64 = 20.0;
+
 impl Problem {
     /// The dark equilibrium: Poisson's equation with flat levels (the continuity rows vanish exactly).
     pub fn equilibrium(&mut self, tolerances: &Tolerances) -> Result<Point, SolveError> {
@@ -171,7 +174,7 @@ impl Problem {
             |p: &Point| 1.0 + self.series_resistance * (p.device_conductance + self.shunt_conductance);
         let slope = per_device(here);
         let target = here.state.voltage + (voltage - here.voltage) / slope;
-        match before {
+        let mut state = match before {
             Some(old)
                 if old.state.light == here.state.light
                     && usable(old.state.voltage, here.state.voltage, target) =>
@@ -189,7 +192,15 @@ impl Problem {
                 state.voltage = target;
                 state
             }
+        };
+        // A level that next to nothing holds has a tangent without bound; the contacts bound what it can do.
+        let most = MARGIN + 2.0 * (target - here.state.voltage).abs() / self.coefficients.thermal_voltage;
+        for (x, old) in state.nodes.iter_mut().zip(&here.state.nodes) {
+            for k in 0..3 {
+                x[k] = x[k].clamp(old[k] - most, old[k] + most);
+            }
         }
+        state
     }
 }
 

@@ -69,6 +69,15 @@ pub struct Stalled {
     pub update: f64,
 }
 
+/// A last update this small, kT/q, leaves nothing that rounding does not.
+const SETTLED: f64 = 1e-7;
+
+/// Most that a potential moves in one iteration, kT/q: damped updates reach it where the linear equations ask for 1100.
+const LARGEST_RISE: f64 = 8.0;
+
+/// How far outside those bounds quasi-Fermi potentials may stray, kT/q.
+const OUTSIDE: f64 = 40.0;
+
 fn largest(update: &[Triple]) -> Stalled {
     let mut worst = Stalled { node: 0, unknown: 0, update: 0.0 };
     for (node, u) in update.iter().enumerate() {
@@ -113,11 +122,15 @@ impl Problem {
         }
         let per_volt = self.coefficients.polarity / self.coefficients.thermal_voltage;
         let mut polishing = false;
+        let mut smallest = f64::INFINITY;
         let mut worst = Stalled { node: 0, unknown: 0, update: f64::INFINITY };
         for _ in 0..tolerances.most_iterations {
             self.assemble(&state);
             if let Some(step) = step {
                 self.add_storage(&state, step);
+            }
+            if self.by_rows {
+                self.system.jacobian.sums.clear();
             }
             let factored = self.system.jacobian.factor(&mut self.factors);
             self.work.factorisations += 1;
@@ -170,8 +183,14 @@ impl Problem {
             }
             self.apply(&mut state, &update);
             state.voltage += voltage_step;
+            // The polishing update is near the square of the one before; where it is not (levels that next to nothing holds),
+            // go on for as long as updates shrink.
+            let settled = size <= SETTLED || size > 0.5 * smallest || !tolerances.polish;
+            smallest = smallest.min(size);
             if size <= tolerances.update {
-                if let (true, Some((tangent, device_current, device_conductance))) = (last, border) {
+                if let (true, true, Some((tangent, device_current, device_conductance))) =
+                    (last, settled, border)
+                {
                     let slope = device_conductance + self.shunt_conductance;
                     let current = device_current + self.shunt_conductance * state.voltage;
                     return Ok(Point {
@@ -194,15 +213,31 @@ impl Problem {
     }
 
     /// Applies an update, damped in the logarithm of the densities.
+    ///
+    /// Quasi-Fermi potentials stay between the contacts' levels, by a maximum principle, but for what light can split them
+    /// by, about the largest gap; outside, an iteration that has lost its way would empty nodes of their carriers.
     fn apply(&self, state: &mut State, update: &[Triple]) {
+        let c = &self.coefficients;
+        let rear = self.rear_level(state.voltage);
+        let margin = OUTSIDE + if state.light > 0.0 { self.largest_gap } else { 0.0 };
+        let bounds = [0, 1].map(|k| {
+            (rear.min(0.0) - margin - rear * c.reference[k], rear.max(0.0) + margin - rear * c.reference[k])
+        });
         for ((x, low), u) in state.nodes.iter_mut().zip(&mut state.remainders).zip(update) {
-            let potential = damped(u[0]);
+            let potential = damped(u[0]).clamp(-LARGEST_RISE, LARGEST_RISE);
             // The change of ln n is that of (psi - phi_n), of ln p that of (phi_p - psi), up to the statistics' slope.
             let electrons = damped(u[0] - u[1]);
             let holes = damped(u[2] - u[0]);
             x[0] += potential;
             add(&mut x[1], &mut low[0], potential - electrons);
             add(&mut x[2], &mut low[1], potential + holes);
+            for carrier in 0..2 {
+                let inside = x[1 + carrier].clamp(bounds[carrier].0, bounds[carrier].1);
+                if inside != x[1 + carrier] {
+                    x[1 + carrier] = inside;
+                    low[carrier] = 0.0;
+                }
+            }
         }
     }
 }

@@ -53,6 +53,10 @@ pub struct Problem {
     pub shunt_conductance: f64,
     /// Work done so far.
     pub work: Work,
+    /// Whether to eliminate by rows, with their rounding, instead of by column sums.
+    pub(super) by_rows: bool,
+    /// The largest gap, kT.
+    pub(super) largest_gap: f64,
     pub(super) system: System,
     pub(super) factors: Factors,
 }
@@ -67,6 +71,12 @@ impl Problem {
     ) -> Problem {
         let nodes = coefficients.nodes();
         Problem {
+            by_rows: false,
+            largest_gap: coefficients
+                .entries
+                .iter()
+                .map(|e| e.affinity_and_gap - e.affinity)
+                .fold(0.0, f64::max),
             generation: generation.iter().map(|g| g / scales::FLUX).collect(),
             coefficients,
             series_resistance,

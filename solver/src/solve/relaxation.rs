@@ -70,14 +70,37 @@ impl Problem {
                 // Electrons: -(n - n_old)/dt, n rising with psi - phi_n; holes: +(p - p_old)/dt, p rising with phi_p - psi.
                 let sign = if row == 1 { -1.0 } else { 1.0 };
                 self.system.residual[i][row] += sign * step.rate * (value - then[row - 1]);
-                self.system.jacobian.diagonal[i][(row, 0)] -= step.rate * slope;
-                self.system.jacobian.diagonal[i][(row, row)] += step.rate * slope;
+                let jacobian = &mut self.system.jacobian;
+                for blocks in [&mut jacobian.diagonal, &mut jacobian.sums] {
+                    blocks[i][(row, 0)] -= step.rate * slope;
+                    blocks[i][(row, row)] += step.rate * slope;
+                }
             }
         }
     }
 
     /// From a state to the steady solution at its light and the given drive, through time.
+    ///
+    /// Where that fails, once more with the rounding of a plain elimination, which ties a level that nothing else holds to
+    /// its neighbours by the last place of their conductance; then without it from there, if that is to be had.
     pub(super) fn relax(
+        &mut self,
+        start: &State,
+        drive: Drive,
+        tolerances: &Tolerances,
+    ) -> Result<Point, Stalled> {
+        if let Ok(point) = self.through_time(start, drive, tolerances) {
+            return Ok(point);
+        }
+        self.work.rejected_steps += 1;
+        self.by_rows = true;
+        let tied = self.through_time(start, drive, tolerances);
+        self.by_rows = false;
+        let tied = tied?;
+        Ok(self.newton(&tied.state, drive, tolerances).unwrap_or(tied))
+    }
+
+    fn through_time(
         &mut self,
         start: &State,
         drive: Drive,
