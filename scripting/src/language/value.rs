@@ -6,9 +6,12 @@ use rhai::{Array, Dynamic, Engine, FLOAT, INT, ImmutableString, Map};
 
 use crate::diagnostics::codes;
 
+use super::device_value::{LayerValue, MaterialValue, StackValue};
 use super::dimension::Dimension;
 use super::fault::{Fault, Faults, Place};
+use super::light_value::LightValue;
 use super::quantity::Quantity;
+use super::result_value::{CurveValue, ResponseValue, StateValue};
 use super::session::Session;
 
 /// What stands, while checking, for a value that an earlier fault left unknown.
@@ -259,6 +262,14 @@ impl Options {
     }
 }
 
+/// How values of a kind stand in texts.
+fn shown<T: rhai::Variant + Clone>(engine: &mut Engine, words: fn(&T) -> String) {
+    for name in ["to_string", "to_debug", "print", "debug"] {
+        engine.register_fn(name, move |value: T| words(&value));
+    }
+    engine.register_fn("+", move |text: ImmutableString, value: T| format!("{text}{}", words(&value)));
+}
+
 /// Teaches an engine the values that stand for themselves: the unknown one, and faults that a script catches.
 pub fn register(engine: &mut Engine, session: &Arc<Session>) {
     engine.register_type_with_name::<Unknown>("unknown");
@@ -266,6 +277,13 @@ pub fn register(engine: &mut Engine, session: &Arc<Session>) {
     super::vocabulary::index_setter::<Unknown>(engine, session, |_, _| Ok(Dynamic::UNIT));
     engine.register_type_with_name::<Faults>("fault");
     engine.register_iterator::<Unknown>();
+    shown::<MaterialValue>(engine, |m| format!("material {}", m.material.name()));
+    shown::<LayerValue>(engine, |l| format!("layer `{}`, {}", l.layer.name, l.layer.thickness));
+    shown::<StackValue>(engine, |s| format!("stack `{}`, layers: {}", s.stack.name, s.stack.layers.len()));
+    shown::<LightValue>(engine, LightValue::words);
+    shown::<CurveValue>(engine, |c| format!("J-V curve of `{}`", c.0.stack.name));
+    shown::<StateValue>(engine, |p| format!("bias point of `{}`", p.0.stack.name));
+    shown::<ResponseValue>(engine, |r| format!("spectral response of `{}`", r.0.stack.name));
     let words = |faults: &mut Faults| -> String {
         let messages: Vec<&str> = faults.0.iter().map(|f| f.message.as_str()).collect();
         messages.join("; ")

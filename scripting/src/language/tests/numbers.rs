@@ -127,6 +127,37 @@ fn a_check_reports_all_faults_once() {
     );
 }
 
+/// Source of truth: steps and ratios by hand; comparison with nothing is no fault.
+#[test]
+fn rows_of_values_and_what_is_printed() {
+    let lines = printed(
+        r#"
+        print(linear(20.nm, 100.nm, 5));
+        print(logarithmic(1e16.per_cm3, 1e18.per_cm3, 3));
+        print(linear(0, 1, 3));
+        print(1.nm == ());
+        print(1.nm != ());
+        let gaas = material("GaAs");
+        print(gaas);
+        let bar = stack("bar", [layer("bar", gaas, 1.um, donors(1e17.per_cm3))]);
+        print(`${bar} with ${bar["bar"]} under ` + spectrum("AM1.5D", 500.suns));
+        "#,
+    );
+    let want = [
+        "[20 nm, 40 nm, 60 nm, 80 nm, 100 nm]",
+        "[1e16 cm^-3, 1e17 cm^-3, 1e18 cm^-3]",
+        "[0, 0.5, 1]",
+        "false",
+        "true",
+        "material GaAs",
+        "stack `bar`, layers: 1 with layer `bar`, 1 um under AM1.5D x 500 suns",
+    ];
+    assert_eq!(lines, want);
+    fails("linear(1.nm, 2.V, 3); // ~ E202");
+    fails("linear(1.nm, 2.nm, 1); // ~ E107");
+    fails("logarithmic(0.nm, 2.nm, 3); // ~ E223");
+}
+
 /// Source of truth: a caught fault says what was wrong.
 #[test]
 fn faults_can_be_caught() {

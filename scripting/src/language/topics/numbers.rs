@@ -3,14 +3,16 @@
 use std::cmp::Ordering;
 use std::sync::Arc;
 
-use rhai::{Dynamic, Engine, FLOAT, INT, ImmutableString};
+use rhai::{Array, Dynamic, Engine, FLOAT, INT, ImmutableString};
 
-use crate::language::fault::{Fault, Outcome};
+use crate::diagnostics::codes;
+use crate::language::dimension::Dimension;
+use crate::language::fault::{Fault, Outcome, Place};
 use crate::language::quantity::Quantity;
 use crate::language::session::Session;
 use crate::language::units::UNITS;
-use crate::language::value::{Number, give, text};
-use crate::language::vocabulary::{function, getter, index_getter, method, topic};
+use crate::language::value::{Number, any_quantity, give, quantity, text};
+use crate::language::vocabulary::{Answer, Call, function, getter, index_getter, topic};
 
 topic! {
     "Numbers and units",
@@ -26,7 +28,7 @@ topic! {
         example: "let t = 30.nm;\nprint(t.to(\"um\"));",
         register: |engine, session| {
             function(engine, session, "to", 2..=2, |_, arguments| {
-                let quantity = crate::language::value::any_quantity(arguments[0]);
+                let quantity = any_quantity(arguments[0]);
                 let name = text(arguments[1], "the unit")?;
                 match quantity {
                     Some(quantity) => Ok(give(quantity.to(&name)?)),
@@ -67,6 +69,22 @@ topic! {
         example: "print(max(30.nm, 1.um));",
         register: |engine, _| choice(engine, "max", Ordering::Greater),
     }
+    Function "linear" {
+        forms: ["linear(from, to, count)"],
+        doc: "An array of so many values in equal steps from the first to the last, both included.",
+        example: "for t in linear(20.nm, 100.nm, 5) { print(t); }",
+        register: |engine, session| {
+            function(engine, session, "linear", 3..=3, |call, arguments| spaced(call, arguments, false));
+        },
+    }
+    Function "logarithmic" {
+        forms: ["logarithmic(from, to, count)"],
+        doc: "An array of so many values in equal ratios from the first to the last, both included; both must be positive.",
+        example: "for density in logarithmic(1e16.per_cm3, 1e19.per_cm3, 4) { print(density); }",
+        register: |engine, session| {
+            function(engine, session, "logarithmic", 3..=3, |call, arguments| spaced(call, arguments, true));
+        },
+    }
     Constant "infinity" {
         forms: ["infinity"],
         doc: "No bound: `infinity.ns` is the lifetime of a channel that is switched off.",
@@ -101,7 +119,6 @@ fn arithmetic(engine: &mut Engine, session: &Arc<Session>) {
         let q = arguments[0].read_lock::<Quantity>().map(|q| q.clone()).unwrap_or_default();
         Err(no_unit(&name, &q).into())
     });
-    let _ = method::<Quantity>;
 }
 
 /// The fault of `30.nanometre`.
@@ -187,6 +204,52 @@ fn printing(engine: &mut Engine) {
     engine.register_fn("debug", |q: Quantity| q.to_string());
     engine.register_fn("+", |text: ImmutableString, q: Quantity| format!("{text}{q}"));
     engine.register_fn("+", |q: Quantity, text: ImmutableString| format!("{q}{text}"));
+}
+
+/// Values in equal steps or ratios.
+fn spaced(call: &Call, arguments: &mut [&mut Dynamic], ratios: bool) -> Answer {
+    let at = |index: usize| move |fault: Fault| fault.at(Place::Argument(index));
+    let from = finite(arguments[0], "the first value").map_err(at(0))?;
+    let to = quantity(arguments[1], "the last value", from.dimension).map_err(at(1))?;
+    let count = quantity(arguments[2], "the count", Dimension::NONE).map_err(at(2))?;
+    if from.unknown || to.unknown || count.unknown {
+        return Err(Fault::of_unknown().into());
+    }
+    let most = call.session.options.limits.array;
+    if count.value.fract() != 0.0 || count.value < 2.0 || count.value > most as f64 {
+        return Err(Fault::new(
+            codes::WRONG_KIND,
+            format!("the count must be a whole number from 2 to {most}"),
+        )
+        .label(format!("this is {count}"))
+        .at(Place::Argument(2))
+        .into());
+    }
+    if ratios && (from.value <= 0.0 || to.value <= 0.0) {
+        return Err(Fault::new(codes::PROFILE, "equal ratios go between positive values")
+            .label(format!("this is {}", if from.value <= 0.0 { &from } else { &to }))
+            .at(Place::Argument(usize::from(from.value > 0.0)))
+            .into());
+    }
+    let last = count.value as usize - 1;
+    let mut list = Array::with_capacity(last + 1);
+    for k in 0..=last {
+        let share = Quantity::number(k as f64 / last as f64);
+        let value = match k {
+            0 => from.clone(),
+            k if k == last => to.clone(),
+            _ if ratios => from.multiply(&to.divide(&from)?.power(&share)?)?,
+            _ => from.add(&to.subtract(&from)?.multiply(&share)?)?,
+        };
+        list.push(give(Quantity { shown_in: from.shown_in, ..value }));
+    }
+    Ok(list.into())
+}
+
+/// A quantity of any dimension, or a number, that is finite.
+fn finite(value: &Dynamic, what: &str) -> Result<Quantity, Fault> {
+    let dimension = any_quantity(value).map_or(Dimension::NONE, |q| q.dimension);
+    quantity(value, what, dimension)
 }
 
 /// The smaller or larger of two numbers of any kind.
