@@ -96,6 +96,7 @@ fn coarse_curve(
             let share = a.current / (a.current - b.current);
             // The current rises like an exponential: start nearer the far end than the chord says.
             let guess = hermite(a, b, a.state.voltage + (b.state.voltage - a.state.voltage) * share.max(0.5));
+            problem.grant();
             let open = problem
                 .newton(&guess, Drive::Current(0.0), &tolerances)
                 .or_else(|_| problem.newton(&b.state, Drive::Current(0.0), &tolerances));
@@ -203,6 +204,7 @@ fn maximum_power(ladder: &mut Ladder, rung: usize, mut a: Point, mut b: Point) -
         let share = (next - a.voltage) / (b.voltage - a.voltage);
         let guess = hermite(&a, &b, a.state.voltage + share * (b.state.voltage - a.state.voltage));
         let drive = problem.drive(next);
+        problem.grant();
         let point = problem.newton(&guess, drive, &tolerances).ok()?;
         if power_slope(&point) < 0.0 {
             a = point.clone();

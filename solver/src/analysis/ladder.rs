@@ -173,6 +173,7 @@ impl<'a> Ladder<'a> {
     ) -> Result<Point, AnalysisError> {
         let tolerances = self.tolerances;
         let problem = &mut self.rungs[rung].problem;
+        problem.grant();
         if let Ok(point) = problem.newton(guess, drive, &tolerances) {
             return Ok(point);
         }

@@ -20,6 +20,4 @@ pub use results::{BiasPoint, CurrentVoltage, JvPoint, Profiles, SpectralResponse
 pub use spectral_response::spectral_response;
 
 #[cfg(test)]
-mod survey;
-#[cfg(test)]
 pub(crate) mod tests;

@@ -1,6 +1,7 @@
 //! Reference devices and invariants.
 
 mod odd_ends;
+mod survey;
 
 use std::collections::BTreeMap;
 
@@ -384,4 +385,14 @@ fn exchanged_carriers_give_the_same_cell() {
             y.current_density
         );
     }
+}
+
+/// Truth: the work of the ordinary path, counted. A change of the solver that makes it work harder must say why.
+#[test]
+fn work_of_the_reference_cases_is_pinned() {
+    let voltages = |from: i32, to: i32| Voltages::Given((from..=to).map(|k| f64::from(k) / 20.0).collect());
+    let dark = current_voltage(&Device::new(r1()).unwrap(), &Light::Dark, &voltages(-10, 22)).unwrap();
+    let lit = current_voltage(&Device::new(r3()).unwrap(), &r3_light(), &voltages(0, 21)).unwrap();
+    let count = |c: &WorkCounts| (c.newton_iterations, c.factorisations, c.solves, c.rejected_steps);
+    assert_eq!((count(&dark.counts), count(&lit.counts)), ((565, 565, 730, 0), (506, 506, 659, 0)));
 }

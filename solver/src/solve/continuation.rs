@@ -62,6 +62,7 @@ impl Problem {
 
     /// From the dark equilibrium to the problem's light at zero terminal voltage: at once, or by a ramp of the light.
     pub fn short_circuit(&mut self, tolerances: &Tolerances) -> Result<Point, SolveError> {
+        self.grant();
         let dark = self.equilibrium(tolerances)?;
         if !self.is_lit() {
             return Ok(dark);
@@ -117,6 +118,7 @@ impl Problem {
         tolerances: &Tolerances,
     ) -> Result<Point, SolveError> {
         let begun = self.work.newton_iterations;
+        self.grant();
         let mut before = earlier.cloned();
         let mut here = from.clone();
         let mut step = (target - here.voltage).clamp(-LARGEST_STEP, LARGEST_STEP);

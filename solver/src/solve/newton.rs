@@ -125,6 +125,9 @@ impl Problem {
         let mut smallest = f64::INFINITY;
         let mut worst = Stalled { node: 0, unknown: 0, update: f64::INFINITY };
         for _ in 0..tolerances.most_iterations {
+            if self.work.newton_iterations >= self.budget {
+                break;
+            }
             self.assemble(&state);
             if let Some(step) = step {
                 self.add_storage(&state, step);

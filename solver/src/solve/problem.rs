@@ -26,6 +26,10 @@ impl std::ops::AddAssign for Work {
     }
 }
 
+/// Most Newton iterations on the way to one point, ramps, halved steps and relaxation included: a way that takes more is
+/// called failed, so that no device hangs (empirical: ordinary points take 3, the worst solved odd devices some thousands).
+pub(super) const MOST_WORK: usize = 10_000;
+
 /// The state of a device: node unknowns, the voltage across it and the share of the light that is on.
 #[derive(Clone, Debug, PartialEq)]
 pub struct State {
@@ -53,6 +57,8 @@ pub struct Problem {
     pub shunt_conductance: f64,
     /// Work done so far.
     pub work: Work,
+    /// Newton iterations, counted from the problem's beginning, after which the way to a point under way is given up.
+    pub(super) budget: usize,
     /// Whether to eliminate by rows, with their rounding, instead of by column sums.
     pub(super) by_rows: bool,
     /// The largest gap, kT.
@@ -82,6 +88,7 @@ impl Problem {
             series_resistance,
             shunt_conductance,
             work: Work::default(),
+            budget: MOST_WORK,
             system: System::new(nodes),
             factors: Factors::default(),
         }
@@ -90,6 +97,11 @@ impl Problem {
     /// The largest band energy, kT: what exponents are rounded against.
     pub fn largest_energy(&self) -> f64 {
         self.coefficients.entries.iter().map(|e| e.affinity_and_gap).fold(0.0, f64::max)
+    }
+
+    /// Grants the work that the way to one more point may take.
+    pub(crate) fn grant(&mut self) {
+        self.budget = self.work.newton_iterations + MOST_WORK;
     }
 
     /// Whether any light is absorbed.

@@ -1,7 +1,7 @@
 //! A survey of odd devices: seeded random legal stacks, each of which must be solved or refused with a diagnosis.
 //!
-//! The committed test visits the first devices; `SURVEY_COUNT=5000 SURVEY_FIRST=0 cargo test --release -- --ignored
-//! survey --nocapture` visits as many as asked for and prints what failed.
+//! The test visits the first 60 devices; `SURVEY_COUNT=1000 cargo test --release -p epiloom-solver --lib odd_devices --
+//! --nocapture` visits as many as asked for and names those that failed.
 
 use std::collections::BTreeMap;
 
@@ -11,8 +11,8 @@ use crate::materials::{Material, Parameter};
 use crate::optics::{Light, Spectrum};
 use crate::quantity::constants::{BOLTZMANN, ELEMENTARY_CHARGE};
 
-use super::ladder::{AnalysisError, Ladder};
-use super::ledger::edge_rounding;
+use crate::analysis::ladder::{AnalysisError, Ladder};
+use crate::analysis::ledger::edge_rounding;
 
 /// Uniform random numbers from a seed (the finaliser of a 64-bit counter).
 pub(crate) struct Random(u64);
@@ -266,7 +266,7 @@ fn examine(seed: u64) -> Verdict {
                 break;
             }
         }
-        let account = super::ledger::ledger(&device, illumination, problem, point);
+        let account = crate::analysis::ledger::ledger(&device, illumination, problem, point);
         if account.energy_closure.abs() > account.energy_bound {
             wrong.push(format!(
                 "mesh {rung}: energy {:e} bound {:e}",
@@ -334,53 +334,38 @@ fn number(name: &str, default: u64) -> u64 {
     std::env::var(name).ok().and_then(|v| v.parse().ok()).unwrap_or(default)
 }
 
-/// Not a gate: prints the figures of as many devices as asked for.
+/// Truth: every solution re-derived from its state: finite, the voltage asked for, one current through every edge, accounts
+/// that close within their bounds. The shares are what this solver reaches on these devices, as floors: it may only get
+/// better. (Those that do not check are dark or nearly so, with currents that doubles cannot tell from a floating region's
+/// majority fluxes; their ledgers say so.)
 #[test]
-#[ignore = "minutes: the long form of the survey"]
-fn long_survey() {
-    let (first, count) = (number("SURVEY_FIRST", 0), number("SURVEY_COUNT", 1000));
-    let verbose = number("SURVEY_VERBOSE", 0);
-    let (mut failed, mut bad, mut newton) = (0, 0, Vec::new());
-    let mut stages: BTreeMap<String, usize> = BTreeMap::new();
+fn odd_devices_are_solved_or_diagnosed() {
+    let (first, count) = (number("SURVEY_FIRST", 0), number("SURVEY_COUNT", 60));
+    let (mut unsolved, mut unchecked, mut newton) = (Vec::new(), Vec::new(), Vec::new());
     for seed in first..first + count {
-        if verbose > 1 {
-            eprintln!("{}", describe(seed));
-        }
-        let begun = std::time::Instant::now();
         let verdict = examine(seed);
-        let seconds = begun.elapsed().as_secs_f64();
         newton.push(verdict.newton);
-        if verdict.failure.is_some() || !verdict.wrong.is_empty() || seconds > 1.0 {
-            if verbose > 0 {
-                println!("{}", describe(seed));
+        assert!(verdict.nodes < 200_000, "seed {seed}: {} nodes", verdict.nodes);
+        assert!(verdict.newton <= 100_000, "seed {seed}: {} iterations\n{}", verdict.newton, describe(seed));
+        match verdict.failure {
+            None => (),
+            Some(AnalysisError::NotConverged { ref layer, depth_nm, .. }) => {
+                assert!(!layer.is_empty() && depth_nm.is_finite());
+                unsolved.push(seed);
             }
-            println!(
-                "seed {seed}: {} its, {} nodes, {seconds:.2} s, {}",
-                verdict.newton,
-                verdict.nodes,
-                verdict.failure.as_ref().map(|e| e.to_string()).unwrap_or_default()
-            );
-            for w in &verdict.wrong {
-                println!("    wrong: {w}");
-            }
+            Some(other) => panic!("seed {seed}: {other}\n{}", describe(seed)),
         }
-        if let Some(error) = &verdict.failure {
-            failed += 1;
-            let stage = match error {
-                AnalysisError::NotConverged { stage, .. } => stage.to_string(),
-                other => other.to_string(),
-            };
-            *stages.entry(stage).or_default() += 1;
+        if !verdict.wrong.is_empty() {
+            unchecked.push(seed);
         }
-        bad += usize::from(!verdict.wrong.is_empty());
+        let unusable = |w: &String| w.contains("not finite") || w.contains("refused");
+        assert!(!verdict.wrong.iter().any(unusable), "seed {seed}: {:?}", verdict.wrong);
     }
     newton.sort_unstable();
-    let at = |share: f64| newton[((newton.len() - 1) as f64 * share) as usize];
+    let median = newton[newton.len() / 2];
     println!(
-        "{count} devices: {failed} not solved {stages:?}, {bad} wrong; Newton median {} 90 % {} 99 % {} most {}",
-        at(0.5),
-        at(0.9),
-        at(0.99),
-        at(1.0)
+        "{count} devices, Newton median {median}; not solved {unsolved:?}; accounts beyond bounds {unchecked:?}"
     );
+    assert!(unsolved.len() as u64 * 20 <= count, "not solved: {unsolved:?}");
+    assert!(unchecked.len() as u64 * 8 <= count, "accounts beyond their bounds: {unchecked:?}");
 }
