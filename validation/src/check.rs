@@ -109,6 +109,18 @@ impl Checks {
         self.add(what, reference, ours, Tolerance::Relative(share), reason);
     }
 
+    /// One number to a difference in its own unit.
+    pub fn absolute(
+        &mut self,
+        what: impl Into<String>,
+        reference: f64,
+        ours: f64,
+        difference: f64,
+        reason: &'static str,
+    ) {
+        self.add(what, reference, ours, Tolerance::Absolute(difference), reason);
+    }
+
     /// Many numbers of a kind under one tolerance: the one that is furthest off stands for all. `parts` are what it is,
     /// the reference and ours.
     pub fn worst(
