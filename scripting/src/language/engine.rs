@@ -145,6 +145,9 @@ pub(super) fn run(engine: &Engine, ast: &AST, session: &Arc<Session>) -> Result<
     if !session.checking() {
         let result = engine.run_ast_with_scope(&mut scope, ast);
         session.finished.store(true, std::sync::atomic::Ordering::Relaxed);
+        if result.as_ref().is_err_and(|error| !super::report::is_stop(error)) {
+            session.forget_lost_edits();
+        }
         return result;
     }
     for statement in ast.statements() {

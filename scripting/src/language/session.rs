@@ -245,6 +245,11 @@ impl Session {
         }
     }
 
+    /// Forgets changes that were lost only because the script broke off before their use.
+    pub(super) fn forget_lost_edits(&self) {
+        self.state().faults.retain(|fault| fault.code != super::codes::EDIT_LOST);
+    }
+
     /// Hands a snapshot to the sink and waits until it is safe there.
     pub(super) fn store(&self, snapshot: Snapshot) -> Result<(), Fault> {
         let (reply, answer) = channel();

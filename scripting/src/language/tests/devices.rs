@@ -87,7 +87,7 @@ fn stacks_are_checked_at_their_place() {
     fails(&with_cell("cell.front_reflectance = [[900.nm, 0.1], [300.nm, 0.2]]; // ~ E223"));
 }
 
-/// Source of truth: the list of mistakes that every author meets.
+/// Source of truth: the list of mistakes that every author meets.
 #[test]
 fn lost_edits_have_their_own_help() {
     let fault = fails(&with_cell(
@@ -96,6 +96,8 @@ fn lost_edits_have_their_own_help() {
     assert!(fault.help.as_deref().is_some_and(|h| h.contains("return the changed stack")), "{fault:?}");
     fails(&with_cell("fn hot(c) {\n    c.temperature = 350.K; // ~ E113\n    1\n}\nhot(cell);"));
     fails(&with_cell("if true {\n    let base = cell[\"base\"];\n    base.thickness = 2.um; // ~ E113\n}"));
+    // a change is not lost where the script breaks off before its use
+    fails(&with_cell("cell.temperature = 350.K;\nlet sum = 3.nm + 1; // ~ E200"));
     fails(&with_cell("cell.layer(\"base\") = 3; // ~ E114"));
     fails(&with_cell("cell.layer(\"base\").thickness = 3.nm; // ~ E114"));
     // what is returned, used or superseded is not lost

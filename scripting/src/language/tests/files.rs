@@ -8,7 +8,7 @@ fn set(text: &str, name: &str, value: &str) -> (RunOutcome, Recorder) {
     run_with(text, options)
 }
 
-/// Source of truth: the rules of `--set`.
+/// Source of truth: the specified rules of `--set`.
 #[test]
 fn inputs_are_overridden_by_name() {
     let text = "let t = input(\"t\", 80.nm); let n = input(\"n\", 3); let kind = input(\"kind\", \"a\"); print(`${t} ${n} ${kind}`);";
@@ -38,7 +38,7 @@ fn in_folder(folder: &Path, text: &str, allow: &[&Path]) -> (RunOutcome, Recorde
     (outcome, recorder)
 }
 
-/// Source of truth: the rule of folders; each attack tries a way out of the script's folder.
+/// Source of truth: the rule of folders; each attack tries a way out of the script's folder.
 #[test]
 fn files_are_read_from_the_scripts_folder_alone() {
     let root = tempfile::tempdir().expect("a folder");

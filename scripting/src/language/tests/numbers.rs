@@ -56,7 +56,7 @@ fn numbers_and_units_behave_as_written() {
     assert_eq!(lines, want);
 }
 
-/// Source of truth: the issue's rule that a bare number never meets a quantity; place and code written in each script.
+/// Source of truth: the rule that a bare number never meets a quantity; place and code written in each script.
 #[test]
 fn what_does_not_fit_is_refused_at_its_place() {
     let fault = fails("let x = 1.nm == 1; // ~ E200");
@@ -81,7 +81,7 @@ fn what_does_not_fit_is_refused_at_its_place() {
     fails("fn abs(x) { x } // ~ E121");
 }
 
-/// Source of truth: the mistakes that the issue names, each with its own help.
+/// Source of truth: the common mistakes, each with its own help.
 #[test]
 fn common_mistakes_have_their_own_help() {
     let fault = fails("let t = 3.nm;\nfn f(x) { x + t } // ~ E103\nf(1.nm);");

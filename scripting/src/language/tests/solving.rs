@@ -1,4 +1,4 @@
-//! Scripts that solve: the issue's own script, and the other forms of asking.
+//! Scripts that solve: the main scenario's script, and the other forms of asking.
 
 use super::*;
 
@@ -28,7 +28,7 @@ store("response", cell.eqe(300.nm, 900.nm, 5.nm));
 store("bands at maximum power", cell.at(jv.mpp.voltage, sun));
 "#;
 
-/// Source of truth: the issue's text and its physical bounds, 26 to 30 mA/cm2 and 1.0 to 1.1 V.
+/// Source of truth: the specification and its physical bounds, 26 to 30 mA/cm2 and 1.0 to 1.1 V.
 #[test]
 fn the_main_script_runs_as_it_stands() {
     let (outcome, recorder) = run_text(WINDOW_AND_BSF);
@@ -52,7 +52,7 @@ fn the_main_script_runs_as_it_stands() {
     );
 }
 
-/// Source of truth: conventions of the issue: a bar has no figures of merit but a reason; J V >= 0 in the dark.
+/// Source of truth: the stated conventions: a bar has no figures of merit but a reason; J V >= 0 in the dark.
 #[test]
 fn figures_that_do_not_exist_are_nothing_with_a_reason() {
     let lines = printed(
@@ -75,7 +75,7 @@ fn figures_that_do_not_exist_are_nothing_with_a_reason() {
     );
 }
 
-/// Source of truth: the forms named in the issue, each used once on a small diode; ledger and totals agree by definition.
+/// Source of truth: the specified forms, each used once on a small diode; ledger and totals agree by definition.
 #[test]
 fn every_form_of_asking_works() {
     let text = r#"

@@ -266,7 +266,7 @@ pub fn read_quantity(words: &str) -> Result<Quantity, Fault> {
 mod tests {
     use super::*;
 
-    /// Source of truth: the spellings of `--set`, read by hand.
+    /// Source of truth: the specified spellings of `--set`, read by hand.
     #[test]
     fn numbers_with_units_are_read_as_typed() {
         for (words, si, dimension) in [
@@ -288,7 +288,7 @@ mod tests {
         assert_eq!(read_quantity("1e999").unwrap_err().code, codes::BAD_INPUT_VALUE);
     }
 
-    /// Source of truth: the column names.
+    /// Source of truth: the specified column names.
     #[test]
     fn columns_carry_their_units() {
         let name = |word: &str| {
