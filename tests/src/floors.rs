@@ -87,11 +87,18 @@ pub fn sources(root: &Path) -> Vec<Source> {
 
 /// The modules that a file declares behind `#[cfg(test)]`.
 fn test_modules(source: &Source) -> Vec<Vec<String>> {
-    let words = tokens(&source.text);
-    let marker = ["#", "[", "cfg", "(", "test", ")", "]", "mod"];
-    let marked =
-        words.windows(marker.len() + 1).filter(|w| w.iter().zip(marker).all(|(word, m)| word.0 == m));
-    marked.map(|w| source.module.iter().cloned().chain([w[marker.len()].0.clone()]).collect()).collect()
+    let words: Vec<String> = tokens(&source.text).into_iter().map(|token| token.0).collect();
+    let plain = ["#", "[", "cfg", "(", "test", ")", "]", "mod"];
+    let shared = ["#", "[", "cfg", "(", "test", ")", "]", "pub", "(", "crate", ")", "mod"];
+    let mut found = Vec::new();
+    for marker in [&plain[..], &shared[..]] {
+        for window in
+            words.windows(marker.len() + 1).filter(|w| w.iter().zip(marker).all(|(word, m)| word == m))
+        {
+            found.push(source.module.iter().cloned().chain([window[marker.len()].clone()]).collect());
+        }
+    }
+    found
 }
 
 /// What a file may not name, given the floors from the highest down.
