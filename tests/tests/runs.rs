@@ -317,6 +317,12 @@ fn data_files_are_read_inside_the_folder_and_replayed_by_their_digest() {
     assert!(refused.err.contains("E401") && refused.err.contains("--allow-read"), "{}", refused.err);
     let allowed = bench.ends(0, &["run", "scripts/outside.rhai", "--allow-read", "."]);
     assert_eq!(allowed.out, "2\n");
+    let outside = bench.path("small.rhai");
+    let text = std::fs::read_to_string(outside).expect("a script").replace("levels.csv", "../levels.csv");
+    bench.write("scripts/outside.rhai", &text);
+    bench.ends(0, &["run", "scripts/outside.rhai", "--allow-read", "."]);
+    bench.ends(5, &["replay", "outside.epiloom", "--data", "scripts"]);
+    bench.ends(0, &["replay", "outside.epiloom", "--data", "scripts", "--allow-read", "."]);
 }
 
 /// Source of truth: what a terminal would obey: an escape in a name is shown as text, on both streams.

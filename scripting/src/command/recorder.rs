@@ -1,6 +1,8 @@
 //! What listens to a run: prints as it goes, and puts every snapshot into the archive before the script goes on.
 
-use crate::archive::{DataFile, RunHeader, Snapshot, Stack, Status, Writer};
+use epiloom_solver::solve::Tolerances;
+
+use crate::archive::{Condition, DataFile, RunHeader, Snapshot, Stack, Status, Value, Writer};
 use crate::diagnostics::{Diagnostic, SourceText};
 use crate::language::{self, InputRecord, Script, Sink};
 
@@ -64,8 +66,18 @@ pub fn header(script: &Script) -> RunHeader {
         program_version: env!("CARGO_PKG_VERSION").to_string(),
         script_name: script.name.clone(),
         script_text: script.text.clone(),
+        tolerances: tolerances(),
         ..RunHeader::default()
     }
+}
+
+/// What the solver calls solved.
+fn tolerances() -> Vec<Condition> {
+    let Tolerances { update, most_iterations, .. } = Tolerances::default();
+    vec![
+        Condition::new("last Newton update in kT/q, at most", Value::number(update, "")),
+        Condition::new("Newton iterations of a step, at most", Value::number(most_iterations as f64, "")),
+    ]
 }
 
 /// Name and digest of a data file as an archive holds them.

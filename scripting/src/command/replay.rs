@@ -24,6 +24,9 @@ pub struct Replay {
     /// The folder of the script's data files, if it reads any [default: the archive's folder]
     #[arg(long, value_name = "DIR")]
     pub data: Option<PathBuf>,
+    /// A folder outside it that data files lay in, as it was given to the run
+    #[arg(long, value_name = "DIR", value_hint = clap::ValueHint::DirPath)]
+    pub allow_read: Vec<PathBuf>,
 }
 
 /// Compares every snapshot with the archive's as it comes.
@@ -109,7 +112,11 @@ impl Replay {
         let differs =
             !differences.is_empty() || !missing.is_empty() || (archive.is_finished() && !extra.is_empty());
         let compared = seen.len() - damaged.len();
-        let verdict = if differs { "differs" } else { "every number is identical to the bit" };
+        let verdict = match compared {
+            _ if differs => "differs",
+            0 => "nothing could be compared",
+            _ => "every number is identical to the bit",
+        };
         output.result(&format!(
             "{}: {verdict} ({compared} snapshots, {numbers} numbers)\n",
             self.file.display()
@@ -133,10 +140,12 @@ impl Replay {
         let mut files = BTreeMap::new();
         for (name, recorded) in &run.data_files {
             let fault = |why: &str| {
-                Diagnostic::new(codes::REPLAY_INPUT, format!("the data file `{name}` {why}"))
-                    .help("give the folder it lies in: --data DIR")
+                Diagnostic::new(codes::REPLAY_INPUT, format!("the data file `{name}` {why}")).help(
+                    "give the script's folder, --data DIR, and other folders it was given, --allow-read DIR",
+                )
             };
-            let path = inside(&folder, name).ok_or_else(|| fault("is not in the folder of data files"))?;
+            let path = inside(&folder, &self.allow_read, name)
+                .ok_or_else(|| fault("is not in the folder of data files"))?;
             let length = path.metadata().map(|m| m.len()).ok();
             if length != Some(recorded.length) {
                 return Err(Box::new(fault("is not as long as it was")));
@@ -151,11 +160,12 @@ impl Replay {
     }
 }
 
-/// The regular file of this name below the folder; an archive from elsewhere cannot reach out of it.
-fn inside(folder: &Path, name: &str) -> Option<PathBuf> {
-    let folder = folder.canonicalize().ok()?;
+/// The regular file of this name, below the folder or one that was opened; an archive from elsewhere reaches no other.
+fn inside(folder: &Path, allowed: &[PathBuf], name: &str) -> Option<PathBuf> {
     let path = folder.join(name).canonicalize().ok()?;
-    (path.starts_with(&folder) && path.is_file()).then_some(path)
+    let open = |folder: &Path| folder.canonicalize().is_ok_and(|folder| path.starts_with(folder));
+    let found = open(folder) || allowed.iter().any(|folder| open(folder));
+    (found && path.is_file()).then_some(path)
 }
 
 /// Numbers of a snapshot that are compared.

@@ -128,8 +128,11 @@ fn run_text(run: &RunHeader) -> String {
         })
         .collect();
     text.push_str(&columns(&inputs, &[Align::Left], 2));
+    for each in &run.tolerances {
+        // writing to a text cannot fail, here and below
+        let _ = writeln!(text, "  {}: {}", each.name, value_text(&each.value));
+    }
     for (name, file) in &run.data_files {
-        // writing to a text cannot fail
         let _ = writeln!(text, "  data file {name}, {} bytes, BLAKE3 {}", file.length, file.blake3);
     }
     text.push('\n');

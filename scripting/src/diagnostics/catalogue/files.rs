@@ -54,7 +54,7 @@ super::rows! {
     REPLAY_INPUT = "E421", "a data file changed since the archive was written",
         "The script reads a data file whose content is not what the archive recorded, or which is gone, so the \
          replay would answer another question.",
-        "epiloom replay cell.epiloom --allow-read measured";
+        "epiloom replay cell.epiloom --data scripts";
     UNKNOWN_CODE = "E430", "unknown code",
         "`epiloom explain` takes a code as printed in brackets in a message; without a code it lists all.",
         "epiloom explain E210";
