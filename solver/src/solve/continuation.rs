@@ -142,9 +142,12 @@ impl Problem {
                     before = None;
                     if step.abs() < RELAXED_STEP {
                         // Newton's method loses its way here: go on through time.
-                        let aim = here.voltage + step;
+                        let aim = if step.abs() < remaining.abs() { here.voltage + step } else { target };
                         let guess = self.predict(None, &here, aim);
                         if let Ok(point) = self.relax(&guess, self.drive(aim), tolerances) {
+                            if aim == target {
+                                return Ok(point);
+                            }
                             here = point;
                             step *= 4.0;
                             continue;
