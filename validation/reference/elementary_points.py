@@ -7,7 +7,7 @@ Run from the root of the repository, with mpmath:
 Each elementary function is given as (x, upper, lower): the sum of the last two is the true value to about 32 digits, so
 that errors can be stated in fractions of the last place. Special functions are rounded to double. All arithmetic has
 50 digits. The arguments are spread over the whole range and denser near 0 (near 1 for the logarithm); besides them stand
-those at which a search over 1e7 arguments, against 80-bit arithmetic, found the largest errors.
+those at which a search over several million arguments, against 80-bit arithmetic, found the largest errors.
 """
 
 import random

@@ -55,7 +55,6 @@ impl<R: Num, const N: usize> Sub for Dual<R, N> {
 #[allow(clippy::suspicious_arithmetic_impl, reason = "the product rule has a sum in it")]
 impl<R: Num, const N: usize> Mul for Dual<R, N> {
     type Output = Self;
-    #[allow(clippy::suspicious_arithmetic_impl)] // the product rule has a sum
     #[inline(always)]
     fn mul(self, other: Self) -> Self {
         Self {

@@ -336,8 +336,8 @@ fn number(name: &str, default: u64) -> u64 {
 
 /// Truth: every solution re-derived from its state: finite, the voltage asked for, one current through every edge, accounts
 /// that close within their bounds. The shares are what this solver reaches on these devices, as floors: it may only get
-/// better. (Those that do not check are dark or nearly so, with currents that doubles cannot tell from a floating region's
-/// majority fluxes; their ledgers say so.)
+/// better. (Those that do not check are mostly dark or nearly so, with currents that doubles cannot tell from a floating
+/// region's majority fluxes; some of their ledgers exceed their own bound, which warning W312 tells.)
 #[test]
 fn odd_devices_are_solved_or_diagnosed() {
     let (first, count) = (number("SURVEY_FIRST", 0), number("SURVEY_COUNT", 60));
