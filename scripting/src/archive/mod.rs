@@ -24,6 +24,7 @@ mod layout;
 mod reader;
 mod scan;
 pub mod storage;
+mod sweep;
 mod writer;
 
 #[cfg(test)]
@@ -36,4 +37,5 @@ pub use model::{
     OrderKey, RunHeader, Snapshot, Stack, Status, Table, Value,
 };
 pub use reader::{Archive, Entry};
+pub use sweep::{Cell, Point, PointOutput, SweepColumn, SweepStart};
 pub use writer::{Writer, unfinished_path};

@@ -33,7 +33,9 @@ mod vocabulary;
 pub use dimension::Dimension;
 pub use quantity::Quantity;
 pub use reference::reference;
-pub use session::{DataFile, InputRecord, InputValue, Limits, RunOptions, RunOutcome, Script, Sink};
+pub use session::{
+    DataFile, InputRecord, InputValue, Limits, Part, RunOptions, RunOutcome, Script, Sink, StoredPoints,
+};
 pub use units::{UNITS, Unit, unit};
 
 use fault::Fault;

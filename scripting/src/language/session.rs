@@ -1,4 +1,4 @@
-//! One run of one script: its limits, its inputs, what it has stored and warned of, and the line to whoever runs it.
+//! One  run of one script: its limits, its inputs, what it has stored and warned of, and the line to whoever runs it.
 
 use std::collections::BTreeMap;
 use std::path::PathBuf;
@@ -8,7 +8,7 @@ use std::sync::{Arc, Mutex, MutexGuard};
 
 use rhai::Position;
 
-use crate::archive::Snapshot;
+use crate::archive::{Point, Snapshot, SweepStart};
 use crate::diagnostics::{Diagnostic, SourceText, codes};
 
 use super::fault::{Fault, Place};
@@ -68,8 +68,19 @@ pub struct RunOptions {
     pub limits: Limits,
     /// Threads for what can be done in parallel; `None` takes all. No result depends on it.
     pub threads: Option<usize>,
+    /// The share of every plan that this run solves; `None` solves all.
+    pub part: Option<Part>,
     /// Raised from outside to stop the run (Ctrl-C).
     pub interrupt: Arc<AtomicBool>,
+}
+
+/// One of equal shares of every plan: the points whose index leaves `number - 1` when divided by `of`.
+#[derive(Clone, Copy, Debug, PartialEq, Eq)]
+pub struct Part {
+    /// Which share, from 1.
+    pub number: u64,
+    /// How many shares there are.
+    pub of: u64,
 }
 
 /// A script to run.
@@ -132,7 +143,26 @@ pub trait Sink {
     fn working(&mut self, what: &str);
     /// The script stored a result. An error stops the script with this message.
     fn snapshot(&mut self, snapshot: Snapshot) -> Result<(), String>;
+    /// A sweep begins. Gives those of its points that are stored already, in any order; they are not solved again.
+    ///
+    /// # Errors
+    /// What is stored does not belong to this sweep, or cannot be read: the script stops with this message.
+    fn sweep(&mut self, _sweep: &SweepStart) -> Result<StoredPoints, String> {
+        Ok(Box::new(std::iter::empty()))
+    }
+    /// Points of a sweep are done, in any order. They count as finished once this returns: they are durable then.
+    ///
+    /// # Errors
+    /// They could not be stored: the script stops with this message.
+    fn points(&mut self, sweep: &SweepStart, _points: Vec<Point>) -> Result<(), String> {
+        Err(format!("the points of the sweep `{}` are kept nowhere here", sweep.name))
+    }
+    /// All points of this run's share are done, or the sweep was stopped.
+    fn sweep_done(&mut self, _sweep: &SweepStart) {}
 }
+
+/// Points that are stored already, one after the other, so that a million need no memory.
+pub type StoredPoints = Box<dyn Iterator<Item = Result<Point, String>> + Send>;
 
 /// What came of a run.
 #[derive(Clone, Debug, Default)]
