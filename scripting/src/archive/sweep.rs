@@ -11,7 +11,8 @@ pub struct SweepStart {
     pub name: String,
     /// Position of the call that runs it in the run of the script, from 0.
     pub step: u64,
-    /// How many points the whole plan has, whatever share of them this run solves.
+    /// Indices of the whole plan, whatever share of them this run solves. Each is a point, but those that a filter of
+    /// the plan leaves out: nothing is stored for them.
     pub points: u64,
     /// The plan in words, such as `grid of bsf (3) by x (15)`.
     pub plan: String,
@@ -24,7 +25,8 @@ pub struct SweepStart {
 pub struct SweepColumn {
     /// Its name, such as `bsf`.
     pub name: String,
-    /// Its unit as a script spells it; empty for a plain number, a text or a flag.
+    /// Its unit as a script spells it, which follows from the dimension alone; `percent` for a share that is shown so;
+    /// empty for a plain number, a text or a flag.
     pub unit: String,
 }
 

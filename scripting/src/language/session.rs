@@ -1,4 +1,4 @@
-//! One  run of one script: its limits, its inputs, what it has stored and warned of, and the line to whoever runs it.
+//! One run of one script: its limits, its inputs, what it has stored and warned of, and the line to whoever runs it.
 
 use std::collections::BTreeMap;
 use std::path::PathBuf;
@@ -157,8 +157,11 @@ pub trait Sink {
     fn points(&mut self, sweep: &SweepStart, _points: Vec<Point>) -> Result<(), String> {
         Err(format!("the points of the sweep `{}` are kept nowhere here", sweep.name))
     }
-    /// All points of this run's share are done, or the sweep was stopped.
-    fn sweep_done(&mut self, _sweep: &SweepStart) {}
+    /// All points of this run's share are done. Not told of a sweep that was stopped.
+    ///
+    /// `left_out` counts the indices of this run's share that the plan's filter leaves out: they are no points and
+    /// nothing is handed over for them, so that a share is complete when its points and they add up to it.
+    fn sweep_done(&mut self, _sweep: &SweepStart, _left_out: u64) {}
 }
 
 /// Points that are stored already, one after the other, so that a million need no memory.
@@ -173,8 +176,11 @@ pub struct RunOutcome {
     pub warnings: Vec<Diagnostic>,
     /// Whether the run was stopped from outside.
     pub interrupted: bool,
-    /// How many snapshots were stored.
+    /// How many snapshots were stored, those of points not counted.
     pub stored: usize,
+    /// Whether the script ended early, and well, where it reads the table of a sweep of which this run solves a share
+    /// only ([`RunOptions::part`]): the name of that sweep. Gathering the parts runs the script again with all points.
+    pub waits_for: Option<String>,
 }
 
 /// A message from the script's thread to the sink.
