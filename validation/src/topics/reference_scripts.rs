@@ -8,7 +8,7 @@ use epiloom_solver::analysis::Figure;
 use crate::check::{Check, Checks, Tolerance};
 use crate::stored::Failure;
 
-use super::reference_cases::{StoredCase, cases};
+use super::reference_cases::{StoredCase, StoredSplit, cases, ledger_line};
 
 const SOURCE: &str = "collocation, agreeing with extrapolated finite volumes of another program to 1e-10";
 const ASKED: &str = "asked of the extrapolation";
@@ -85,6 +85,20 @@ fn curve(name: &str, case: &StoredCase, snapshot: &Snapshot, checks: &mut Checks
     }
 }
 
+fn split(name: &str, bias: &str, stored: &StoredSplit, snapshots: &[Snapshot], checks: &mut Checks) {
+    let snapshot = snapshots.iter().find(|s| s.name() == format!("split {bias}"));
+    let mut pairs = Vec::new();
+    for (part, reference) in &stored.bvp {
+        let Some((place, channel)) = ledger_line(part) else { continue };
+        let line = format!("{place} {channel}");
+        let ours = snapshot.and_then(|s| s.figure(&line)).and_then(|f| f.value);
+        pairs.push((line, reference * 1e4, ours.map_or(f64::NAN, |v| v * 10.0)));
+    }
+    let what = format!("{name} at {} V, split, A/m2", stored.voltage);
+    let reason = "lines are asked for a hundredth of the current's accuracy";
+    checks.worst(&what, &pairs, Tolerance::Relative(1e-5), reason);
+}
+
 /// R1 and R3 from their scripts.
 pub fn checks() -> Result<Vec<Check>, Failure> {
     let mut checks = Checks::new("scripts", SOURCE);
@@ -94,6 +108,9 @@ pub fn checks() -> Result<Vec<Check>, Failure> {
         let stored = snapshots(name, text)?;
         let lit = stored.iter().find(|s| s.table("points").is_some()).ok_or("no curve was stored")?;
         curve(name, case, lit, &mut checks);
+        for (bias, reference) in &case.results.split {
+            split(name, bias, reference, &stored, &mut checks);
+        }
     }
     Ok(checks.done())
 }

@@ -137,7 +137,8 @@ topic! {
         forms: ["point.ledger"],
         doc: "The account of photons, carriers and energy: an array of maps with `account` (\"photons\", \"carriers\", \"free energy\", \
               \"photon energy\"), `place` (a layer, contact or interface; empty for the whole), `channel`, `value` (a current density \
-              or a power per area), `share` (of what came in) and `source` (true for what comes in).",
+              or a power per area), `share` (of what came in) and `source` (true for what comes in). Values are those of the finest mesh, with which \
+              the account closes; lines of \"carriers\" have `extrapolated` beside them, with its error.",
         example: "let gaas = material(\"GaAs\", #{ electron_lifetime: 20.ns, hole_lifetime: 20.ns });\nlet cell = stack(\"diode\", [layer(\"emitter\", gaas, 100.nm, donors(2e18.per_cm3)), layer(\"base\", gaas, 2.um, acceptors(1e17.per_cm3))]);\nfor line in cell.at(0.9.V, dark()).ledger { print(`${line.place} ${line.channel} ${line.value}`); }",
         register: |engine, session| {
             getter::<StateValue>(engine, session, "ledger", |_, arguments| {
@@ -302,6 +303,8 @@ pub fn income(state: &BiasPoint, part: LedgerPart) -> f64 {
 }
 
 fn ledger(state: &BiasPoint) -> Array {
+    // The carriers' lines have figures beside them, extrapolated over the meshes.
+    let mut figures = state.carrier_figures.iter();
     state
         .ledger
         .lines
@@ -312,6 +315,11 @@ fn ledger(state: &BiasPoint) -> Array {
             map.insert("place".into(), line.place.clone().into());
             map.insert("channel".into(), line.channel.clone().into());
             map.insert("value".into(), give(Quantity::si(line.value, account_dimension(line.part))));
+            let figure = if line.part == LedgerPart::Carriers { figures.next() } else { None };
+            let extrapolated = figure.map_or(Dynamic::UNIT, |f| {
+                give(Quantity::si(f.value, account_dimension(line.part)).with_error(f.error))
+            });
+            map.insert("extrapolated".into(), extrapolated);
             let income = income(state, line.part);
             let share = if income == 0.0 {
                 Dynamic::UNIT
