@@ -5,3 +5,4 @@ pub mod command;
 pub mod diagnostics;
 pub mod figure_text;
 pub mod language;
+pub mod picture;

@@ -3,12 +3,15 @@
 use epiloom_solver::analysis::{
     BiasPoint, CurrentVoltage, LedgerPart, Outcome, Profiles, SpectralResponse, Warning,
 };
+use epiloom_solver::optics::Shares;
+use epiloom_solver::quantity::constants::{BOLTZMANN, ELEMENTARY_CHARGE};
 use rhai::{Array, Dynamic, Map};
 
 use crate::archive::{
     Column, Condition, Figure, Label, Ledger, LedgerLine, MeshValue, OrderKey, Snapshot, Status, Table, Value,
 };
 use crate::diagnostics::codes;
+use crate::picture::charts::{CLOSURES, COMES_IN};
 
 use super::described::{described_stack, materials};
 use super::dimension::Dimension;
@@ -53,26 +56,38 @@ pub fn curve(name: &str, step: u64, solved: &Solved<CurrentVoltage>, result: &Cu
     let current = |f: fn(&epiloom_solver::analysis::JvPoint) -> f64, unit: &str| -> Vec<f64> {
         result.points.iter().map(|p| in_unit(f(p), unit)).collect()
     };
-    snapshot.tables.push(Table::new(
-        "points",
-        vec![
-            Column::new("voltage_V", "V", current(|p| p.voltage, "V")),
-            Column::new(
-                "current_density_mA_per_cm2",
-                "mA_per_cm2",
-                current(|p| p.current_density, "mA_per_cm2"),
-            ),
-            Column::new("junction_voltage_V", "V", current(|p| p.junction_voltage, "V")),
-            Column::new("conductance_mS_per_cm2", "mS_per_cm2", current(|p| p.conductance, "mS_per_cm2")),
-            Column::new(
-                "extrapolated_current_density_mA_per_cm2",
-                "mA_per_cm2",
-                current(|p| p.extrapolated.value, "mA_per_cm2"),
-            ),
-            Column::new("error_mA_per_cm2", "mA_per_cm2", current(|p| p.extrapolated.error, "mA_per_cm2")),
-        ],
-    ));
+    let mut columns = vec![
+        Column::new("voltage_V", "V", current(|p| p.voltage, "V")),
+        Column::new("current_density_mA_per_cm2", "mA_per_cm2", current(|p| p.current_density, "mA_per_cm2")),
+        Column::new("junction_voltage_V", "V", current(|p| p.junction_voltage, "V")),
+        Column::new("conductance_mS_per_cm2", "mS_per_cm2", current(|p| p.conductance, "mS_per_cm2")),
+        Column::new(
+            "extrapolated_current_density_mA_per_cm2",
+            "mA_per_cm2",
+            current(|p| p.extrapolated.value, "mA_per_cm2"),
+        ),
+        Column::new("error_mA_per_cm2", "mA_per_cm2", current(|p| p.extrapolated.error, "mA_per_cm2")),
+    ];
+    if kind == "light J-V" {
+        let power = current(|p| -p.voltage * p.extrapolated.value, "mW_per_cm2");
+        columns.push(Column::new("delivered_power_mW_per_cm2", "mW_per_cm2", power));
+    } else {
+        columns.push(Column::new("local_ideality", "", ideality(result, solved.stack.temperature.value)));
+    }
+    snapshot.tables.push(Table::new("points", columns));
     snapshot
+}
+
+/// Local ideality J/(dJ/dV)/(kT/q) of each point of a dark curve, the finest mesh's own values.
+///
+/// It tells of the diode where the current is a rising exponential: nothing below 3 kT/q of forward bias.
+fn ideality(result: &CurrentVoltage, temperature: f64) -> Vec<f64> {
+    let thermal = BOLTZMANN * temperature / ELEMENTARY_CHARGE;
+    let of = |p: &epiloom_solver::analysis::JvPoint| {
+        let found = p.current_density / (p.conductance * thermal);
+        if p.voltage >= 3.0 * thermal && found.is_finite() && found > 0.0 { found } else { f64::NAN }
+    };
+    result.points.iter().map(of).collect()
 }
 
 /// A bias point.
@@ -133,6 +148,14 @@ pub fn response(
     for (layer, absorbed) in solved.stack.layers.iter().zip(&result.absorbed) {
         columns.push(Column::new(format!("absorbed in {}", layer.name), "", absorbed.clone()));
     }
+    let share = |of: fn(&Shares<f64>) -> f64| result.shares.iter().map(of).collect();
+    columns.extend([
+        Column::new("shaded_share", "", share(|s| s.shaded)),
+        Column::new("reflected_share", "", share(|s| s.reflected)),
+        Column::new("coating_share", "", share(|s| s.coating)),
+        Column::new("transmitted_share", "", share(|s| s.transmitted)),
+        Column::new("escaped_share", "", share(|s| s.escaped)),
+    ]);
     snapshot.tables.push(Table::new("response", columns));
     snapshot
 }
@@ -366,7 +389,7 @@ fn ledgers(result: &BiasPoint) -> Vec<Ledger> {
                 value: Some(in_unit(l.value, unit)),
                 unit: unit.to_string(),
                 share: (income != 0.0).then(|| l.value / income),
-                note: if l.source { "comes in".to_string() } else { String::new() },
+                note: if l.source { COMES_IN.to_string() } else { String::new() },
             })
             .collect();
         if lines.is_empty() {
@@ -382,7 +405,7 @@ fn ledgers(result: &BiasPoint) -> Vec<Ledger> {
         };
         match part {
             LedgerPart::Photons => {
-                lines.push(closure("unaccounted share", Some(ledger.photon_closure), "", String::new()));
+                lines.push(closure(CLOSURES[0], Some(ledger.photon_closure), "", String::new()));
             }
             LedgerPart::Carriers => {
                 let note = if ledger.carrier_checked {
@@ -391,11 +414,11 @@ fn ledgers(result: &BiasPoint) -> Vec<Ledger> {
                     "not independently checked".to_string()
                 };
                 let value = ledger.carrier_checked.then(|| in_unit(ledger.carrier_closure, unit));
-                lines.push(closure("terminal current minus edge current", value, unit, note));
+                lines.push(closure(CLOSURES[1], value, unit, note));
             }
             LedgerPart::FreeEnergy => {
                 let note = format!("allowed: {:.1e} mW/cm2", in_unit(ledger.energy_bound, unit));
-                lines.push(closure("unaccounted", Some(in_unit(ledger.energy_closure, unit)), unit, note));
+                lines.push(closure(CLOSURES[2], Some(in_unit(ledger.energy_closure, unit)), unit, note));
             }
             LedgerPart::PhotonEnergy => {}
         }

@@ -1,5 +1,6 @@
 //! What the analyses return. SI units throughout.
 
+use crate::optics::Shares;
 use crate::solve::Work as WorkCounts;
 
 use super::figure::{Figure, Outcome};
@@ -161,6 +162,8 @@ pub struct SpectralResponse {
     pub reflectance: Vec<f64>,
     /// Share of the incident photons absorbed in each layer: `[layers][wavelengths]`.
     pub absorbed: Vec<Vec<f64>>,
+    /// Shares of the incident photons that no layer absorbs; with the absorbed ones they add up to 1: `[wavelengths]`.
+    pub shares: Vec<Shares<f64>>,
     /// Terminal voltage of the bias point, V.
     pub voltage: f64,
     /// Nodes of each nested mesh, coarsest first.

@@ -33,7 +33,7 @@ pub fn spectral_response(
     let probe = LitStack::probed(device.stack(), device, wavelengths)?;
     let mut point = ladder.coarse(voltage)?;
     let mut by_mesh: Vec<Vec<f64>> = Vec::new();
-    let (layers_absorbed, uncovered) = loop {
+    let (layers_absorbed, shares, uncovered) = loop {
         let rung = by_mesh.len();
         if rung > 0 {
             let drive = ladder.rungs[rung].problem.drive(voltage);
@@ -54,7 +54,7 @@ pub fn spectral_response(
             .map(|w| extrapolate(&by_mesh.iter().map(|m| m[w]).collect::<Vec<f64>>()).error)
             .fold(0.0, f64::max);
         if meshes >= MOST || meshes >= 2 && worst <= device.stack().accuracy.max(1e-9) {
-            break (absorbed, covered);
+            break (absorbed, operator.shares().to_vec(), covered);
         }
         if meshes >= ladder.rungs.len() {
             ladder.refine()?;
@@ -90,6 +90,7 @@ pub fn spectral_response(
         internal,
         reflectance,
         absorbed: layers_absorbed,
+        shares,
         voltage,
         nodes: ladder.nodes(),
         counts: ladder.work(),

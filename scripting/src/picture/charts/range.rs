@@ -1,0 +1,70 @@
+//! Ranges and scales from the data.
+
+use epiloom_solver::math::elementary::log10;
+
+use crate::picture::chart::{Axis, Scale};
+
+/// Least and greatest of the finite numbers.
+pub(super) fn extent<'a>(numbers: impl IntoIterator<Item = &'a f64>) -> Option<(f64, f64)> {
+    numbers.into_iter().filter(|v| v.is_finite()).fold(None, |found, &v| {
+        Some(found.map_or((v, v), |(least, most): (f64, f64)| (least.min(v), most.max(v))))
+    })
+}
+
+/// Least and greatest of the positive finite magnitudes.
+pub(super) fn magnitudes<'a>(numbers: impl IntoIterator<Item = &'a f64>) -> Option<(f64, f64)> {
+    numbers.into_iter().map(|v| v.abs()).filter(|v| v.is_finite() && *v > 0.0).fold(None, |found, v| {
+        Some(found.map_or((v, v), |(least, most): (f64, f64)| (least.min(v), most.max(v))))
+    })
+}
+
+/// A linear axis over the data.
+pub(super) fn linear<'a>(
+    label: &str,
+    unit: &str,
+    numbers: impl IntoIterator<Item = &'a f64> + Clone,
+) -> Axis {
+    let can_be_log = extent(numbers.clone()).is_some_and(|(least, _)| least > 0.0);
+    Axis {
+        label: label.to_string(),
+        unit: unit.to_string(),
+        scale: Scale::Linear,
+        can_be_log,
+        magnitude: false,
+        range: extent(numbers).unwrap_or((0.0, 1.0)),
+    }
+}
+
+/// A logarithmic axis of magnitudes over at most `decades` below the greatest; what lies below is told in `notes`.
+pub(super) fn logarithmic<'a>(
+    label: &str,
+    unit: &str,
+    numbers: impl IntoIterator<Item = &'a f64> + Clone,
+    decades: f64,
+    notes: &mut Vec<String>,
+) -> Axis {
+    let all = extent(numbers.clone());
+    let Some((least, most)) = magnitudes(numbers) else { return linear(label, unit, []) };
+    let span = log10(most) - log10(least);
+    let floor = if span > decades {
+        epiloom_solver::math::elementary::pow(10.0, log10(most) - decades)
+    } else {
+        least
+    };
+    if floor > least {
+        notes.push(format!("off-scale: {} below {floor:.1e}, down to {least:.1e}", label.to_lowercase()));
+    }
+    Axis {
+        label: label.to_string(),
+        unit: unit.to_string(),
+        scale: Scale::Log,
+        can_be_log: true,
+        magnitude: all.is_some_and(|(low, _)| low < 0.0),
+        range: (floor, most),
+    }
+}
+
+/// Whether positive numbers span so much that equal ratios show them better.
+pub(super) fn wants_log(numbers: &[f64]) -> bool {
+    extent(numbers).is_some_and(|(least, most)| least > 0.0 && most / least >= 50.0)
+}
