@@ -4,8 +4,10 @@
 
 pub mod assembly;
 pub mod coefficients;
+mod columns;
 pub mod contact;
 pub mod edge;
+mod kernels;
 pub mod residual;
 pub mod scales;
 pub mod side;

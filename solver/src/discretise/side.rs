@@ -47,30 +47,30 @@ pub fn side<T: Over<P>, P: Num>(
 /// Effective levels and logarithms of the densities of a side, with the slopes `d ln n / d eta_n` and `d ln p / d eta_p`
 /// from which all their partial derivatives follow.
 #[derive(Clone, Copy, Debug)]
-pub struct SlopedSide {
+pub struct SlopedSide<T> {
     /// W_n.
-    pub electron_level: f64,
+    pub electron_level: T,
     /// W_p.
-    pub hole_level: f64,
+    pub hole_level: T,
     /// ln n.
-    pub ln_n: f64,
+    pub ln_n: T,
     /// ln p.
-    pub ln_p: f64,
+    pub ln_p: T,
     /// d ln n / d eta_n.
-    pub electron_slope: f64,
+    pub electron_slope: T,
     /// d ln p / d eta_p.
-    pub hole_slope: f64,
+    pub hole_slope: T,
 }
 
-/// [`side`] for plain numbers, up to the exponentials, with its slopes.
+/// [`side`] up to the exponentials, with its slopes.
 #[inline(always)]
-pub fn sloped_side(
+pub fn sloped_side<T: Over<P>, P: Num>(
     statistics: Statistics,
-    entry: &Entry<f64>,
-    psi: f64,
-    phi_n: f64,
-    phi_p: f64,
-) -> SlopedSide {
+    entry: &Entry<P>,
+    psi: T,
+    phi_n: T,
+    phi_p: T,
+) -> SlopedSide<T> {
     let electron_edge = psi + entry.affinity;
     let hole_edge = -(psi + entry.affinity_and_gap);
     let (electron_excess, electron_slope) = ln_occupancy_excess_with_slope(statistics, electron_edge - phi_n);
@@ -82,7 +82,7 @@ pub fn sloped_side(
         hole_level,
         ln_n: electron_level - phi_n,
         ln_p: hole_level + phi_p,
-        electron_slope: 1.0 + electron_slope,
-        hole_slope: 1.0 + hole_slope,
+        electron_slope: electron_slope + 1.0,
+        hole_slope: hole_slope + 1.0,
     }
 }

@@ -46,7 +46,7 @@ fn jacobian_is_the_derivative_of_the_plain_residual() {
         for scale in [0.0, 0.3, 3.0] {
             let state = disturbed(&c, scale);
             let rear = 1.7;
-            let mut system = System::new(n);
+            let mut system = System::new(&c);
             system.assemble(&c, &state, &vec![[0.0; 2]; state.len()], rear, &generation, 1.0);
             let by_level = system.by_rear_level(&c);
             let magnitude = |i: usize, row: usize| {
@@ -112,6 +112,45 @@ fn jacobian_is_the_derivative_of_the_plain_residual() {
     }
 }
 
+/// Truth: one number at a time; the same bits at every width that this machine has, for Fermi-Dirac (degenerate and not) and
+/// Boltzmann statistics, forward and reverse splitting, recombination at an interface and all remainders of the division
+/// of entries into vectors.
+#[test]
+fn every_width_gives_the_same_bits() {
+    use crate::math::lanes::Width;
+    let mut stacks = vec![r1(), r3()];
+    stacks[1].interfaces[1] =
+        Some(Interface { electron_recombination_velocity: 1e3, hole_recombination_velocity: 30.0 });
+    for cells in [4, 5, 6, 7] {
+        for stack in &stacks {
+            let device = Device::new(stack.clone()).unwrap();
+            let grading = Grading { spacing: 20e-9, growth: 0.6, most_cells: cells };
+            let c = Coefficients::new(&device, &Mesh::new(&device, &grading, 0));
+            let generation: Vec<f64> = (0..c.entries.len()).map(|e| 1e-7 * (1.0 + e as f64)).collect();
+            for (scale, rear) in [(0.0, 0.0), (3.0, 17.0), (30.0, -40.0)] {
+                let state = disturbed(&c, scale);
+                let remainders: Vec<[f64; 2]> = state.iter().map(|x| [1e-17 * x[1], -1e-17 * x[2]]).collect();
+                let assembled = |width: Width| {
+                    let mut system = System::new(&c);
+                    system.width = width;
+                    system.assemble(&c, &state, &remainders, rear, &generation, 0.7);
+                    let j = &system.jacobian;
+                    let blocks = [&j.lower, &j.diagonal, &j.upper, &j.sums];
+                    let blocks = blocks.into_iter().flatten().flat_map(|b| b.iter().copied());
+                    let rows = system.residual.iter().chain(&system.net_gradient);
+                    let rows = rows.flat_map(|r| r.iter().copied());
+                    let fluxes = system.electron_flux.iter().chain(&system.hole_flux).chain(&system.net);
+                    blocks.chain(rows).chain(fluxes.copied()).map(f64::to_bits).collect::<Vec<u64>>()
+                };
+                let plain = assembled(Width::One);
+                for width in Width::ALL.into_iter().filter(|w| w.available()) {
+                    assert!(assembled(width) == plain, "{width:?}, {cells} cells, {scale} {rear}");
+                }
+            }
+        }
+    }
+}
+
 /// Truth: the terminal current is a function of state and bias; its gradient against central differences of itself,
 /// 1e-6 of the largest entry (what differences can resolve).
 #[test]
@@ -124,7 +163,7 @@ fn terminal_gradient_against_differences() {
         let generation = vec![0.0; c.entries.len()];
         let state = disturbed(&c, 0.3);
         let value = |state: &[[f64; 3]], rear: f64| {
-            let mut system = System::new(n);
+            let mut system = System::new(&c);
             system.assemble(&c, state, &vec![[0.0; 2]; state.len()], rear, &generation, 1.0);
             Terminal::new(&c, &system)
         };

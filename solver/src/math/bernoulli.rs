@@ -37,10 +37,10 @@ pub fn bernoulli<T: Num>(x: T) -> T {
     if !T::any(near) {
         return quotient(x);
     }
-    if !T::any(below.less(size)) {
+    let zero = T::constant(0.0);
+    if !T::any(zero.less(T::select(near, zero, below))) {
         return series(x);
     }
-    let zero = T::constant(0.0);
     T::select(near, series(T::select(near, x, zero)), quotient(T::select(near, below, x)))
 }
 
@@ -75,11 +75,38 @@ pub fn bernoulli_pair<T: Num>(x: T) -> (T, T) {
     (T::select(negative, larger, smaller), T::select(negative, smaller, larger))
 }
 
+#[inline(always)]
+fn sloped_series<T: Num>(x: T) -> (T, T) {
+    let b = series(Dual::<T, 1>::variable(x, 0));
+    (b.re, b.d[0])
+}
+
+#[inline(always)]
+fn sloped_quotient<T: Num>(x: T) -> (T, T) {
+    let x = x.min(T::constant(LARGEST));
+    let less_one = x.exp_m1();
+    let inverse = less_one.recip();
+    let b = x * inverse;
+    (b, inverse * (-(b * (less_one + 1.0)) + 1.0))
+}
+
 /// `B(x)` and its slope `B'(x)`, between -1 and 0.
+///
+/// The value has the bits of [`bernoulli`]; the quotient's slope is `(1 - B e^x) / (e^x - 1)`.
 #[inline(always)]
 pub fn bernoulli_with_slope<T: Num>(x: T) -> (T, T) {
-    let b = bernoulli(Dual::<T, 1>::variable(x, 0));
-    (b.re, b.d[0])
+    let below = T::constant(SERIES_BELOW);
+    let near = x.abs().less(below);
+    // Each arm alone where every lane takes it, as in `bernoulli`.
+    if !T::any(near) {
+        return sloped_quotient(x);
+    }
+    let zero = T::constant(0.0);
+    if !T::any(zero.less(T::select(near, zero, below))) {
+        return sloped_series(x);
+    }
+    let (close, far) = (sloped_series(T::select(near, x, zero)), sloped_quotient(T::select(near, below, x)));
+    (T::select(near, close.0, far.0), T::select(near, close.1, far.1))
 }
 
 #[cfg(test)]

@@ -18,6 +18,16 @@ pub struct Dual<R, const N: usize> {
     pub d: [R; N],
 }
 
+/// Derivatives times a factor. (Loops and no closures here and below: a closure may stay a call of its own, which vectors
+/// of a wider instruction set do not survive.)
+#[inline(always)]
+fn scaled<R: Num, const N: usize>(mut derivatives: [R; N], factor: R) -> [R; N] {
+    for d in &mut derivatives {
+        *d = *d * factor;
+    }
+    derivatives
+}
+
 impl<R: Num, const N: usize> Dual<R, N> {
     /// Independent variable number `index`.
     #[inline(always)]
@@ -34,7 +44,7 @@ impl<R: Num, const N: usize> Dual<R, N> {
     /// A function's value and slope at this number, applied by the chain rule.
     #[inline(always)]
     pub fn chain(self, value: R, slope: R) -> Self {
-        Self { re: value, d: self.d.map(|d| d * slope) }
+        Self { re: value, d: scaled(self.d, slope) }
     }
 }
 
@@ -42,14 +52,22 @@ impl<R: Num, const N: usize> Add for Dual<R, N> {
     type Output = Self;
     #[inline(always)]
     fn add(self, other: Self) -> Self {
-        Self { re: self.re + other.re, d: std::array::from_fn(|i| self.d[i] + other.d[i]) }
+        let mut d = self.d;
+        for (d, e) in d.iter_mut().zip(&other.d) {
+            *d = *d + *e;
+        }
+        Self { re: self.re + other.re, d }
     }
 }
 impl<R: Num, const N: usize> Sub for Dual<R, N> {
     type Output = Self;
     #[inline(always)]
     fn sub(self, other: Self) -> Self {
-        Self { re: self.re - other.re, d: std::array::from_fn(|i| self.d[i] - other.d[i]) }
+        let mut d = self.d;
+        for (d, e) in d.iter_mut().zip(&other.d) {
+            *d = *d - *e;
+        }
+        Self { re: self.re - other.re, d }
     }
 }
 #[allow(clippy::suspicious_arithmetic_impl, reason = "the product rule has a sum in it")]
@@ -57,17 +75,22 @@ impl<R: Num, const N: usize> Mul for Dual<R, N> {
     type Output = Self;
     #[inline(always)]
     fn mul(self, other: Self) -> Self {
-        Self {
-            re: self.re * other.re,
-            d: std::array::from_fn(|i| self.d[i] * other.re + self.re * other.d[i]),
+        let mut d = self.d;
+        for (d, e) in d.iter_mut().zip(&other.d) {
+            *d = *d * other.re + self.re * *e;
         }
+        Self { re: self.re * other.re, d }
     }
 }
 impl<R: Num, const N: usize> Neg for Dual<R, N> {
     type Output = Self;
     #[inline(always)]
     fn neg(self) -> Self {
-        Self { re: -self.re, d: self.d.map(|d| -d) }
+        let mut d = self.d;
+        for d in &mut d {
+            *d = -*d;
+        }
+        Self { re: -self.re, d }
     }
 }
 impl<R: Num, const N: usize> Add<f64> for Dual<R, N> {
@@ -88,7 +111,11 @@ impl<R: Num, const N: usize> Mul<f64> for Dual<R, N> {
     type Output = Self;
     #[inline(always)]
     fn mul(self, other: f64) -> Self {
-        Self { re: self.re * other, d: self.d.map(|d| d * other) }
+        let mut d = self.d;
+        for d in &mut d {
+            *d = *d * other;
+        }
+        Self { re: self.re * other, d }
     }
 }
 
@@ -108,16 +135,21 @@ impl<R: Num, const N: usize> Num for Dual<R, N> {
     }
     #[inline(always)]
     fn select(mask: Self::Mask, yes: Self, no: Self) -> Self {
-        Self {
-            re: R::select(mask, yes.re, no.re),
-            d: std::array::from_fn(|i| R::select(mask, yes.d[i], no.d[i])),
+        let mut d = no.d;
+        for (d, e) in d.iter_mut().zip(&yes.d) {
+            *d = R::select(mask, *e, *d);
         }
+        Self { re: R::select(mask, yes.re, no.re), d }
     }
     #[inline(always)]
     fn recip(self) -> Self {
         let inverse = self.re.recip();
         // In this order nothing overflows or underflows on the way to a representable slope.
-        Self { re: inverse, d: self.d.map(|d| -(d * inverse) * inverse) }
+        let mut d = self.d;
+        for d in &mut d {
+            *d = -(*d * inverse) * inverse;
+        }
+        Self { re: inverse, d }
     }
     #[inline(always)]
     fn exp(self) -> Self {

@@ -8,6 +8,9 @@
 //! `f64` has inherent methods of the same names that call the platform's library. Do not use them: their last
 //! bits differ between platforms. Inside a function generic over [`Num`](super::Num) the trait's methods are meant.
 
+use super::number::Num;
+use super::piecewise::Piecewise;
+
 /// `1.5 x 2^52`: adding it rounds a number of moderate size to an integer, held in the low bits of the sum.
 const ROUND: f64 = 6755399441055744.0;
 /// `ln 2` in two parts; the upper one has 33 significant bits, so its product with an exponent is exact.
@@ -47,12 +50,33 @@ const LN_SERIES: [f64; 7] = [
     0.14616585424888623,
 ];
 
+/// What the formulas below and tables of polynomials need of a number's bits: one double or several lanes of them.
+pub trait Binary: Num {
+    /// `2^(k - 1)` where `rounded` is `k` plus `1.5 x 2^52`, k from -1021 to 1024.
+    fn half_power(rounded: Self) -> Self;
+    /// The row of a table whose number is in the low bits of `rounded` (the last row where it is none).
+    fn rows(rounded: Self, table: &[[f64; Piecewise::TERMS]]) -> [Self; Piecewise::TERMS];
+}
+
+impl Binary for f64 {
+    #[inline(always)]
+    fn half_power(rounded: f64) -> f64 {
+        // The low bits of `rounded` are k in two's complement; k - 1 is at least -1021 and at most 1023.
+        f64::from_bits((rounded.to_bits() << 52).wrapping_add(1022 << 52))
+    }
+    #[inline(always)]
+    fn rows(rounded: f64, table: &[[f64; Piecewise::TERMS]]) -> [f64; Piecewise::TERMS] {
+        table[(rounded.to_bits() as u32 as usize).min(table.len() - 1)]
+    }
+}
+
 /// Reduction shared by [`exp`] and [`exp_m1`]: `x = k ln 2 + r`; gives `e^r - 1` and `2^(k-1)`.
 #[inline(always)]
-fn reduced_exp(x: f64) -> (f64, f64) {
+fn reduced_exp<R: Binary>(x: R) -> (R, R) {
+    let (largest, smallest) = (R::constant(EXP_LARGEST), R::constant(EXP_SMALLEST));
     // The comparisons leave a NaN in place.
-    let x = if EXP_LARGEST < x { EXP_LARGEST } else { x };
-    let x = if EXP_SMALLEST > x { EXP_SMALLEST } else { x };
+    let x = R::select(largest.less(x), largest, x);
+    let x = R::select(x.less(smallest), smallest, x);
     let rounded = x * LOG2_E + ROUND;
     let k = rounded - ROUND;
     let upper = x - k * LN2_UPPER;
@@ -62,13 +86,30 @@ fn reduced_exp(x: f64) -> (f64, f64) {
     let c = &EXP_SERIES;
     let r2 = r * r;
     // Even and odd powers apart: half the length of the chain of dependent operations.
-    let even = c[0] + r2 * (c[2] + r2 * (c[4] + r2 * (c[6] + r2 * c[8])));
-    let odd = c[1] + r2 * (c[3] + r2 * (c[5] + r2 * (c[7] + r2 * c[9])));
+    let (mut even, mut odd) = (R::constant(c[8]), R::constant(c[9]));
+    for k in (0..4).rev() {
+        even = r2 * even + c[2 * k];
+        odd = r2 * odd + c[2 * k + 1];
+    }
     let series = even + r * odd;
-    let q = r + (r2 * (0.5 + r * series) + correction);
-    // The low bits of `rounded` are k in two's complement; k - 1 is at least -1021 and at most 1023.
-    let half_power = f64::from_bits((rounded.to_bits() << 52).wrapping_add(1022 << 52));
-    (q, half_power)
+    let q = r + (r2 * (r * series + 0.5) + correction);
+    (q, R::half_power(rounded))
+}
+
+/// [`exp`] of one number or of lanes.
+#[inline(always)]
+pub fn exp_of<R: Binary>(x: R) -> R {
+    let (q, half_power) = reduced_exp(x);
+    // Doubling last lets 2^1024 overflow or not as it should.
+    let e = ((q + 1.0) * half_power) * 2.0;
+    R::select(x.less(R::constant(EXP_SMALLEST)), R::constant(0.0), e)
+}
+
+/// [`exp_m1`] of one number or of lanes.
+#[inline(always)]
+pub fn exp_m1_of<R: Binary>(x: R) -> R {
+    let (q, half_power) = reduced_exp(x);
+    (half_power * q + (half_power - 0.5)) * 2.0
 }
 
 /// `e^x`, at most 1 ulp off (0.85 in 3e6 trials).
@@ -76,10 +117,7 @@ fn reduced_exp(x: f64) -> (f64, f64) {
 /// Exactly 0 below [`EXP_SMALLEST`] (-707), so no result is subnormal; infinity above 709.79; NaN for NaN.
 #[inline(always)]
 pub fn exp(x: f64) -> f64 {
-    let (q, half_power) = reduced_exp(x);
-    // Doubling last lets 2^1024 overflow or not as it should.
-    let e = ((1.0 + q) * half_power) * 2.0;
-    if x < EXP_SMALLEST { 0.0 } else { e }
+    exp_of(x)
 }
 
 /// `e^x - 1`, at most 2 ulp off (1.55 in 8e6 trials) and exact in the limit of small `x`.
@@ -87,8 +125,7 @@ pub fn exp(x: f64) -> f64 {
 /// -1 for large negative `x`; infinity above 709.79; NaN for NaN.
 #[inline(always)]
 pub fn exp_m1(x: f64) -> f64 {
-    let (q, half_power) = reduced_exp(x);
-    (half_power * q + (half_power - 0.5)) * 2.0
+    exp_m1_of(x)
 }
 
 /// Natural logarithm, at most 1 ulp off (0.86 in 8e6 trials).

@@ -5,6 +5,7 @@ pub mod dual;
 pub mod elementary;
 pub mod fermi_dirac;
 mod fermi_dirac_table;
+pub mod lanes;
 pub mod number;
 pub mod piecewise;
 mod real;

@@ -1,5 +1,7 @@
 //! Piecewise polynomials on a uniform grid: the tables behind special functions.
 
+use super::elementary::Binary;
+
 /// A piecewise polynomial: equally spaced centres, each with its own power series, lowest order first, used half a
 /// step to either side. The domain runs from the first centre to the last.
 #[derive(Debug)]
@@ -23,19 +25,18 @@ impl Piecewise {
 
     /// The coefficients at the centre nearest to `x`, and `x` relative to it; beyond the domain, those at its end.
     #[inline(always)]
-    fn locate(&self, x: f64) -> (&[f64; Self::TERMS], f64) {
+    fn locate<R: Binary>(&self, x: R) -> ([R; Self::TERMS], R) {
         // 1.5 x 2^52: adding it rounds to an integer, held in the low bits of the sum.
         const ROUND: f64 = 6755399441055744.0;
-        let last = self.coefficients.len() - 1;
-        let end = self.start + self.step * last as f64;
+        let (start, end) = (self.start, self.start + self.step * (self.coefficients.len() - 1) as f64);
+        let (start, end) = (R::constant(start), R::constant(end));
         // The comparisons leave a NaN in place, which then reaches the result.
-        let x = if end < x { end } else { x };
-        let x = if self.start > x { self.start } else { x };
+        let x = R::select(end.less(x), end, x);
+        let x = R::select(x.less(start), start, x);
         let offset = ROUND - self.start * self.inverse_step;
         let rounded = x * self.inverse_step + offset;
         let centre = (rounded - offset) * self.step;
-        let index = (rounded.to_bits() as u32 as usize).min(last); // the bound is for a NaN alone
-        (&self.coefficients[index], x - centre)
+        (R::rows(rounded, self.coefficients), x - centre)
     }
 
     /// Derivatives over factorials at `x`, of the value and of as many orders as `ORDERS` says (at most 3 in all).
@@ -43,10 +44,10 @@ impl Piecewise {
     /// The even and the odd powers are summed apart, as polynomials in the square of the local variable, by Horner
     /// schemes that also give their derivatives: half the length of the chain of dependent operations.
     #[inline(always)]
-    fn taylor<const ORDERS: usize>(&self, x: f64) -> [f64; 3] {
+    fn taylor<R: Binary, const ORDERS: usize>(&self, x: R) -> [R; 3] {
         let (c, t) = self.locate(x);
         let u = t * t;
-        let (mut even, mut odd) = ([0.0; 3], [0.0; 3]);
+        let (mut even, mut odd) = ([R::constant(0.0); 3], [R::constant(0.0); 3]);
         even[0] = c[Self::TERMS - 1];
         odd[0] = c[Self::TERMS - 2];
         for pair in (0..Self::TERMS / 2).rev() {
@@ -63,41 +64,41 @@ impl Piecewise {
         }
         // P(t) = E(u) + t O(u) and its derivatives in t.
         let value = even[0] + t * odd[0];
-        let slope = odd[0] + 2.0 * (t * even[1] + u * odd[1]);
-        let half_curvature = even[1] + 4.0 * u * even[2] + t * (3.0 * odd[1] + 4.0 * u * odd[2]);
+        let slope = odd[0] + (t * even[1] + u * odd[1]) * 2.0;
+        let half_curvature = even[1] + u * 4.0 * even[2] + t * (odd[1] * 3.0 + u * 4.0 * odd[2]);
         [value, slope, half_curvature]
     }
 
     /// The derivative of order `order` at `x`; beyond the domain that of the domain's end; NaN for NaN.
     #[inline(always)]
-    pub fn evaluate(&self, x: f64, order: usize) -> f64 {
+    pub fn evaluate<R: Binary>(&self, x: R, order: usize) -> R {
         match order {
-            0 => self.taylor::<1>(x)[0],
-            1 => self.taylor::<2>(x)[1],
-            2 => self.taylor::<3>(x)[2] * 2.0,
+            0 => self.taylor::<R, 1>(x)[0],
+            1 => self.taylor::<R, 2>(x)[1],
+            2 => self.taylor::<R, 3>(x)[2] * 2.0,
             _ => self.evaluate_high(x, order),
         }
     }
 
     /// The derivatives of orders `order` and `order + 1` at `x`, with the bits of [`Piecewise::evaluate`].
     #[inline(always)]
-    pub fn evaluate_pair(&self, x: f64, order: usize) -> (f64, f64) {
+    pub fn evaluate_pair<R: Binary>(&self, x: R, order: usize) -> (R, R) {
         match order {
             0 => {
-                let [value, slope, _] = self.taylor::<2>(x);
+                let [value, slope, _] = self.taylor::<R, 2>(x);
                 (value, slope)
             }
             1 => {
-                let [_, slope, half_curvature] = self.taylor::<3>(x);
+                let [_, slope, half_curvature] = self.taylor::<R, 3>(x);
                 (slope, half_curvature * 2.0)
             }
             _ => (self.evaluate(x, order), self.evaluate(x, order + 1)),
         }
     }
 
-    fn evaluate_high(&self, x: f64, order: usize) -> f64 {
+    fn evaluate_high<R: Binary>(&self, x: R, order: usize) -> R {
         let (c, t) = self.locate(x);
-        let mut sum = 0.0;
+        let mut sum = R::constant(0.0);
         for k in (order..Self::TERMS).rev() {
             let mut factor = 1.0;
             for j in 0..order {

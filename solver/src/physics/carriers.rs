@@ -27,3 +27,18 @@ pub fn driving_term<T: Num>(carriers: Carriers<T>, ln_n: T, ln_p: T, splitting: 
     let held = T::select(reverse, ln_n + ln_p - splitting, zero);
     T::select(reverse, held.exp() * decay, forward)
 }
+
+/// [`driving_term`] with its derivative with respect to the splitting at fixed densities.
+#[inline(always)]
+pub fn driving_term_with_slope<T: Num>(carriers: Carriers<T>, ln_n: T, ln_p: T, splitting: T) -> (T, T) {
+    let zero = T::constant(0.0);
+    let reverse = splitting.less(zero);
+    let decay = (-splitting.abs()).exp_m1();
+    let product = carriers.n * carriers.p;
+    let forward = (-(product * decay), product * (decay + 1.0));
+    if !T::any(reverse) {
+        return forward;
+    }
+    let equilibrium = T::select(reverse, ln_n + ln_p - splitting, zero).exp();
+    (T::select(reverse, equilibrium * decay, forward.0), T::select(reverse, equilibrium, forward.1))
+}

@@ -75,7 +75,7 @@ impl Problem {
         series_resistance: f64,
         shunt_conductance: f64,
     ) -> Problem {
-        let nodes = coefficients.nodes();
+        let system = System::new(&coefficients);
         Problem {
             by_rows: false,
             largest_gap: coefficients
@@ -89,7 +89,7 @@ impl Problem {
             shunt_conductance,
             work: Work::default(),
             budget: MOST_WORK,
-            system: System::new(nodes),
+            system,
             factors: Factors::default(),
         }
     }
