@@ -5,8 +5,8 @@ Written from scripting/FORMAT.md alone, as a check that the page is enough. Not 
 
     python3 read_archive.py FILE [--bits]
 
-prints the run and every snapshot as JSON; with --bits also every number of a snapshot as 16 hexadecimal
-digits of its IEEE 754 form, in a fixed order. Exits with 1 when anything in the file is damaged.
+prints the run, every snapshot and every point of the sweeps as JSON; with --bits also every number of a snapshot
+or point as 16 hexadecimal digits of its IEEE 754 form, in a fixed order. Exits with 1 when anything in the file is damaged.
 """
 
 import json
@@ -187,8 +187,61 @@ class Payload:
         return self.record(
             label=self.label, offset=self.u64, length=self.u64, header_digest=lambda: self.take(16))
 
+    def sweep_place(self):
+        return self.record(
+            name=self.text, step=self.u64, offset=self.u64, length=self.u64,
+            header_digest=lambda: self.take(16), blocks=lambda: self.list_of(self.block_place))
+
+    def block_place(self):
+        return self.record(
+            first=self.u64, last=self.u64, count=self.u64, failed=self.u64, offset=self.u64,
+            length=self.u64, header_digest=lambda: self.take(16))
+
     def index(self):
-        return self.record(entries=lambda: self.list_of(self.entry))
+        return self.record(
+            entries=lambda: self.list_of(self.entry), sweeps=lambda: self.list_of(self.sweep_place))
+
+    def sweep_column(self):
+        return self.record(name=self.text, unit=self.text)
+
+    def sweep_start(self):
+        return self.record(
+            name=self.text, step=self.u64, points=self.u64, plan=self.text,
+            coordinates=lambda: self.list_of(self.sweep_column))
+
+    def share(self):
+        return self.record(number=self.u64, of=self.u64)
+
+    def sweep(self):
+        return self.record(
+            start=self.sweep_start, share=lambda: self.optional(self.share), run=lambda: self.take(16),
+            left_out=lambda: self.optional(self.u64))
+
+    def block_label(self):
+        return self.record(
+            sweep=self.text, step=self.u64, first=self.u64, last=self.u64, count=self.u64, failed=self.u64)
+
+    def point_column(self):
+        return self.record(
+            name=self.text, unit=self.text, cells=lambda: self.take(self.u64()), values=self.flag,
+            errors=self.flag, texts=lambda: self.list_of(self.u32))
+
+    def row_texts(self):
+        return self.record(row=self.u32, texts=lambda: self.list_of(self.u32))
+
+    def row_snapshot(self):
+        return self.record(
+            row=self.u32, label=self.label, offset=self.u64, length=self.u64,
+            header_digest=lambda: self.take(16))
+
+    def block(self):
+        return self.record(
+            label=self.block_label, indices=lambda: self.list_of(self.u64),
+            coordinates=lambda: self.list_of(self.point_column),
+            outputs=lambda: self.list_of(self.point_column), texts=lambda: self.list_of(self.text),
+            failed=lambda: self.list_of(self.row_texts), printed=lambda: self.list_of(self.row_texts),
+            warnings=lambda: self.list_of(self.row_texts),
+            snapshots=lambda: self.list_of(self.row_snapshot))
 
     def whole(self, read):
         value = read()
@@ -209,8 +262,9 @@ def read_frame(data, at):
         HEADER.unpack_from(data, at)
     if magic != b"\xE7frame\r\n" or digest(data[at:at + HEADER.size - 16]) != own:
         raise Damaged(f"damaged: no frame header at byte {at}")
-    if schema != 1:
-        raise Damaged(f"a frame of kind {kind} has schema {schema}; this reader knows 1")
+    known = {3: 2}.get(kind, 1)
+    if schema != known:
+        raise Damaged(f"a frame of kind {kind} has schema {schema}; this reader knows {known}")
     body = at + HEADER.size + padded(label)
     block = body + padded(payload)
     end = block + 8 * numbers
@@ -238,8 +292,54 @@ def read_snapshot(label, payload, numbers):
     return snapshot
 
 
+def read_block(label, payload, numbers):
+    """The label of a block and its points, each with the places of its snapshots."""
+    label = (lambda taken: taken.whole(taken.block_label))(Payload(label))
+    taken = Payload(payload)
+    block = taken.whole(taken.block)
+    rows = len(block["indices"])
+    if block["label"] != label or label["count"] != rows or label["failed"] != len(block["failed"]):
+        raise Damaged("damaged: a label differs from its block")
+    if (label["first"], label["last"]) != (block["indices"][0], block["indices"][-1]):
+        raise Damaged("damaged: a label differs from its block")
+    points = [
+        {"index": index, "coordinates": [], "outputs": [], "failed": None, "printed": [], "warnings": [],
+         "snapshots": []} for index in block["indices"]]
+    at = 0
+    for into, columns in (("coordinates", block["coordinates"]), ("outputs", block["outputs"])):
+        for column in columns:
+            values = errors = None
+            if column["values"]:
+                values, at = struct.unpack_from(f"<{rows}d", numbers, at), at + 8 * rows
+            if column["errors"]:
+                errors, at = struct.unpack_from(f"<{rows}d", numbers, at), at + 8 * rows
+            texts = iter(column["texts"])
+            for row, tag in enumerate(column["cells"]):
+                cell = {"name": column["name"], "unit": column["unit"]}
+                if tag in (1, 2):
+                    cell["value"] = values[row]
+                    if tag == 2:
+                        cell["error"] = errors[row]
+                elif tag in (3, 6):
+                    cell["text" if tag == 3 else "absent"] = block["texts"][next(texts)]
+                elif tag in (4, 5):
+                    cell["flag"] = tag == 5
+                if tag:
+                    points[row][into].append(cell)
+    if at != len(numbers):
+        raise Damaged("damaged: a number block has another length than its columns")
+    for failed in block["failed"]:
+        points[failed["row"]]["failed"] = block["texts"][failed["texts"][0]]
+    for what in ("printed", "warnings"):
+        for each in block[what]:
+            points[each["row"]][what] = [block["texts"][text] for text in each["texts"]]
+    for each in block["snapshots"]:
+        points[each["row"]]["snapshots"].append((each["label"], each["offset"], each["length"], each["header_digest"]))
+    return label, points
+
+
 def read_archive(data):
-    """The run, the snapshots in order, and whether the file is finished."""
+    """The run, the snapshots and the sweeps in order, and whether the file is finished."""
     if data[:8] != b"\xE7piloom\x1A":
         raise Damaged("not an Epiloom archive")
     if len(data) < 32 or digest(data[:16]) != data[16:32]:
@@ -254,6 +354,7 @@ def read_archive(data):
         if magic == b"\xE7whole\r\n" and digest(data[-FOOTER.size:-16]) == own and length == len(data):
             footer, end = (index, count, index_sum), len(data) - FOOTER.size
     at, expected, places = 32, 0, []
+    sweeps, waiting = {}, {}
     while at < end:
         kind, ordinal, of, label, payload, numbers, own, after = read_frame(data[:end], at)
         if first is None:
@@ -264,13 +365,47 @@ def read_archive(data):
         if kind == 1:
             run = taken.whole(taken.run)
         elif kind == 2:
-            snapshots.append(read_snapshot(label, payload, numbers))
-            places.append((snapshots[-1]["label"], at, after - at, own))
+            snapshot = read_snapshot(label, payload, numbers)
+            place = (snapshot["label"], at, after - at, own)
+            name, order = snapshot["label"]["name"], snapshot["label"]["order"]
+            parent = [each for each in sweeps.values()
+                      if each["step"] == order["step"] and name.startswith(f"{each['name']}/{order['point']}/")]
+            if parent:
+                waiting[at] = (place, snapshot)
+            else:
+                snapshots.append(snapshot)
+                places.append(place)
+        elif kind == 4:
+            record = taken.whole(taken.sweep)
+            start = record["start"]
+            known = sweeps.get(start["name"])
+            if known is None or (known["start"], known["share"], known["run"]) != (
+                    start, record["share"], record["run"]):
+                known = {"name": start["name"], "step": start["step"], "points": {}, "blocks": [],
+                         "place": (at, after - at, own)}
+            sweeps[start["name"]] = {**known, **record}
+        elif kind == 5:
+            block_label, points = read_block(label, payload, numbers)
+            sweep = sweeps[block_label["sweep"]]
+            for point in points:
+                for place in point["snapshots"]:
+                    if waiting.get(place[1], (None,))[0] != place:
+                        raise Damaged("damaged: a point names a snapshot that is not there")
+                point["snapshots"] = [waiting[place[1]][1] for place in point["snapshots"]]
+                sweep["points"][point["index"]] = point
+            waiting = {}
+            sweep["blocks"].append((*(block_label[key] for key in ("first", "last", "count", "failed")),
+                                    at, after - at, own))
         elif kind == 3:
-            index = taken.whole(taken.index)["entries"]
-            listed = [(each["label"], each["offset"], each["length"], each["header_digest"]) for each in index]
-            if footer != (at, len(index), own) or listed != places:
+            index = taken.whole(taken.index)
+            listed = [(each["label"], each["offset"], each["length"], each["header_digest"])
+                      for each in index["entries"]]
+            if footer != (at, len(listed), own) or listed != places:
                 raise Damaged("damaged: the index")
+            listed = [(each["name"], each["step"], (each["offset"], each["length"], each["header_digest"]),
+                       [tuple(block.values()) for block in each["blocks"]]) for each in index["sweeps"]]
+            if listed != [(each["name"], each["step"], each["place"], each["blocks"]) for each in sweeps.values()]:
+                raise Damaged("damaged: the index of the sweeps")
             index_at = at
         else:
             raise Damaged(f"a later kind of frame: {kind}")
@@ -279,7 +414,18 @@ def read_archive(data):
     if not finished:
         snapshots.sort(key=lambda each: (each["label"]["order"]["step"], each["label"]["order"]["point"],
                                          each["label"]["name"].encode()))
-    return run, snapshots, finished
+    listed = [
+        {"start": each["start"], "share": each["share"], "left_out": each["left_out"],
+         "points": [each["points"][index] for index in sorted(each["points"])]}
+        for each in sorted(sweeps.values(), key=lambda each: each["step"])]
+    return run, snapshots, listed, finished
+
+
+def point_bits(point):
+    numbers = []
+    for cell in point["coordinates"] + point["outputs"]:
+        numbers += [cell[key] for key in ("value", "error") if key in cell]
+    return [struct.pack(">d", number).hex() for number in numbers]
 
 
 def bits(snapshot):
@@ -314,13 +460,18 @@ def main(arguments):
     with open(arguments[0], "rb") as file:
         data = file.read()
     try:
-        run, snapshots, finished = read_archive(data)
+        run, snapshots, sweeps, finished = read_archive(data)
     except Damaged as error:
         sys.exit(str(error))
     if "--bits" in arguments[1:]:
         for snapshot in snapshots:
             snapshot["bits"] = bits(snapshot)
-    json.dump(plain({"run": run, "snapshots": snapshots, "finished": finished}), sys.stdout, indent=1)
+        for point in (point for sweep in sweeps for point in sweep["points"]):
+            point["bits"] = point_bits(point)
+            for snapshot in point["snapshots"]:
+                snapshot["bits"] = bits(snapshot)
+    whole = {"run": run, "snapshots": snapshots, "sweeps": sweeps, "finished": finished}
+    json.dump(plain(whole), sys.stdout, indent=1)
     print()
 
 

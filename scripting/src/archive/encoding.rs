@@ -12,11 +12,19 @@ use super::layout::{Digest, Header, Kind, LABEL_LIMIT, digest};
 use super::model::{Label, Snapshot};
 
 record! {
-    /// The index of a finished archive: one entry a snapshot, in the order of the whole.
+    /// The index of a finished archive, in the order of the whole.
     pub struct Index {
-        /// The entries.
+        /// The snapshots, but those that the points of a sweep stored.
         pub entries: Vec<IndexEntry>,
+        /// The sweeps.
+        pub sweeps: Vec<SweepPlace>,
     }
+}
+
+/// The index in its schema 1, which knew no sweeps.
+#[derive(Debug, Deserialize)]
+pub(crate) struct FirstIndex {
+    pub entries: Vec<IndexEntry>,
 }
 
 record! {
@@ -24,6 +32,44 @@ record! {
     pub struct IndexEntry {
         /// The same label as in its frame.
         pub label: Label,
+        /// Where its frame begins.
+        pub offset: u64,
+        /// Length of its frame in bytes.
+        pub length: u64,
+        /// Digest of its frame header, which covers the digests of label and body.
+        pub header_digest: Digest,
+    }
+}
+
+record! {
+    /// Where a sweep stands.
+    pub struct SweepPlace {
+        /// Its name.
+        pub name: String,
+        /// Its step.
+        pub step: u64,
+        /// Where the frame of its description begins.
+        pub offset: u64,
+        /// Length of that frame in bytes.
+        pub length: u64,
+        /// Digest of the header of that frame.
+        pub header_digest: Digest,
+        /// Its blocks of points, by index.
+        pub blocks: Vec<BlockPlace>,
+    }
+}
+
+record! {
+    /// Where a block of points stands.
+    pub struct BlockPlace {
+        /// Index of its first point.
+        pub first: u64,
+        /// Index of its last point.
+        pub last: u64,
+        /// Number of its points.
+        pub count: u64,
+        /// How many of them failed.
+        pub failed: u64,
         /// Where its frame begins.
         pub offset: u64,
         /// Length of its frame in bytes.
@@ -82,6 +128,14 @@ fn encode<T: Serialize>(what: &str, value: &T, limit: usize) -> Result<Vec<u8>, 
     if bytes.len() > limit { Err(too_large(what, bytes.len(), limit)) } else { Ok(bytes) }
 }
 
+impl Sections {
+    /// Adds numbers to the number block.
+    pub(crate) fn push_numbers(&mut self, numbers: &[f64]) {
+        self.numbers += numbers.len() as u64;
+        self.body.extend(numbers.iter().flat_map(|number| number.to_le_bytes()));
+    }
+}
+
 fn pad(bytes: &mut Vec<u8>) {
     bytes.resize(bytes.len().next_multiple_of(8), 0);
 }
@@ -94,14 +148,24 @@ pub(crate) fn sections<T: Serialize>(kind: Kind, what: &str, value: &T) -> Resul
     Ok(Sections { kind, label: Vec::new(), label_length: 0, body, payload_length, numbers: 0 })
 }
 
-/// The sections of the frame of a snapshot: label, payload, and the columns of all tables in order.
-pub(crate) fn snapshot_sections(snapshot: &Snapshot) -> Result<Sections, ArchiveError> {
-    let what = format!("snapshot `{}`", snapshot.name());
-    let mut label = encode(&format!("the label of {what}"), &snapshot.label, LABEL_LIMIT)?;
+/// The sections of a frame that holds this record under this label, with no numbers yet.
+pub(crate) fn labelled_sections<L: Serialize, T: Serialize>(
+    kind: Kind,
+    what: &str,
+    label: &L,
+    value: &T,
+) -> Result<Sections, ArchiveError> {
+    let mut label = encode(&format!("the label of {what}"), label, LABEL_LIMIT)?;
     // At most LABEL_LIMIT, which is far below u32.
     let label_length = label.len() as u32;
     pad(&mut label);
-    let mut made = sections(Kind::Snapshot, &what, snapshot)?;
+    Ok(Sections { label, label_length, ..sections(kind, what, value)? })
+}
+
+/// The sections of the frame of a snapshot: label, payload, and the columns of all tables in order.
+pub(crate) fn snapshot_sections(snapshot: &Snapshot) -> Result<Sections, ArchiveError> {
+    let what = format!("snapshot `{}`", snapshot.name());
+    let mut made = labelled_sections(Kind::Snapshot, &what, &snapshot.label, snapshot)?;
     for table in &snapshot.tables {
         for column in &table.columns {
             let found = column.values.len() as u64;
@@ -113,19 +177,16 @@ pub(crate) fn snapshot_sections(snapshot: &Snapshot) -> Result<Sections, Archive
                     expected: table.rows,
                 });
             }
-            made.numbers += found;
-            for number in &column.values {
-                made.body.extend_from_slice(&number.to_le_bytes());
-            }
+            made.push_numbers(&column.values);
         }
     }
-    Ok(Sections { label, label_length, ..made })
+    Ok(made)
 }
 
 /// The record in exactly these bytes; nothing when they hold anything else, or bytes are left over.
 pub(crate) fn decode<T: DeserializeOwned>(bytes: &[u8], kind: Kind) -> Option<T> {
     let decoded = match kind {
-        Kind::Run | Kind::Snapshot => bincode::serde::decode_from_slice(
+        Kind::Run | Kind::Snapshot | Kind::Sweep | Kind::Points => bincode::serde::decode_from_slice(
             bytes,
             config::legacy().with_limit::<{ super::layout::PAYLOAD_LIMIT }>(),
         ),
@@ -141,7 +202,7 @@ pub(crate) fn decode<T: DeserializeOwned>(bytes: &[u8], kind: Kind) -> Option<T>
 }
 
 /// The label in exactly these bytes.
-pub(crate) fn decode_label(bytes: &[u8]) -> Option<Label> {
+pub(crate) fn decode_label<T: DeserializeOwned>(bytes: &[u8]) -> Option<T> {
     match bincode::serde::decode_from_slice(bytes, config::legacy().with_limit::<LABEL_LIMIT>()) {
         Ok((value, used)) if used == bytes.len() => Some(value),
         _ => None,

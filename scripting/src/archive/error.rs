@@ -4,6 +4,8 @@ use std::path::PathBuf;
 
 use thiserror::Error;
 
+use super::blocks::BlockLabel;
+
 /// Why an archive could not be written or read.
 #[derive(Debug, Error)]
 #[non_exhaustive]
@@ -55,6 +57,46 @@ pub enum ArchiveError {
         name: String,
         /// Where its frame begins.
         offset: u64,
+    },
+    /// A block of points whose bytes are not those that were written.
+    #[error("points {first} to {last} of the sweep `{sweep}` are damaged (frame at byte {offset})")]
+    DamagedPoints {
+        /// Name of the sweep.
+        sweep: String,
+        /// Index of the first point of the block.
+        first: u64,
+        /// Index of its last point.
+        last: u64,
+        /// Where its frame begins.
+        offset: u64,
+    },
+    /// No sweep has that name.
+    #[error("no sweep is called `{name}`")]
+    NoSuchSweep {
+        /// The name asked for.
+        name: String,
+        /// The sweeps that there are.
+        there: Vec<String>,
+    },
+    /// The sweep does not hold that point.
+    #[error("the sweep `{sweep}` holds no point {index}{}", points.map(|points| format!(": its plan has {points}, counted from 0")).unwrap_or_default())]
+    NoSuchPoint {
+        /// Name of the sweep.
+        sweep: String,
+        /// The point asked for.
+        index: u64,
+        /// How many points the plan has.
+        points: Option<u64>,
+    },
+    /// What a script stores is not what the earlier run of the same script stored under that name.
+    #[error(
+        "`{name}` came out differently from what the unfinished archive of the earlier run holds: {place}"
+    )]
+    NotAsStored {
+        /// Name of the snapshot or the sweep.
+        name: String,
+        /// The first place where they differ.
+        place: String,
     },
     /// The description of the run is damaged or missing.
     #[error("the description of the run (script, inputs, version) is damaged or missing")]
@@ -134,6 +176,19 @@ impl ArchiveError {
                 format!("did you mean {}?", names.join(" or "))
             }
             ArchiveError::NoSuchSnapshot { .. } => "`epiloom show FILE` lists the snapshots".to_owned(),
+            ArchiveError::NoSuchSweep { there, .. } if there.is_empty() => {
+                "the archive holds no sweep".to_owned()
+            }
+            ArchiveError::NoSuchSweep { there, .. } => {
+                let names: Vec<String> = there.iter().map(|name| format!("`{name}`")).collect();
+                format!("there is {}", names.join(" and "))
+            }
+            ArchiveError::NotAsStored { .. } => {
+                "begin anew with --anew, which sets the unfinished archive aside".to_owned()
+            }
+            ArchiveError::DamagedPoints { .. } => {
+                "all other points are still readable; run the script again to get these back".to_owned()
+            }
             ArchiveError::Newer { .. } => {
                 "read it with the version of Epiloom that wrote it, or a later one".to_owned()
             }
@@ -167,10 +222,12 @@ impl ArchiveError {
 #[non_exhaustive]
 pub enum ArchiveWarning {
     /// The file was never finished, or its end is gone.
-    #[error("the archive is not finished: it holds {snapshots} whole snapshots")]
+    #[error("the archive is not finished: it holds {snapshots} whole snapshots{}", if *points == 0 { String::new() } else { format!(" and {points} points of sweeps") })]
     NotFinished {
         /// How many whole snapshots there are.
         snapshots: usize,
+        /// How many points of sweeps.
+        points: u64,
     },
     /// Bytes at the end that make no whole frame.
     #[error(
@@ -188,6 +245,26 @@ pub enum ArchiveWarning {
     #[error("snapshot `{name}` is damaged (frame at byte {offset})")]
     DamagedSnapshot {
         /// Its name.
+        name: String,
+        /// Where its frame begins.
+        offset: u64,
+    },
+    /// A block of points whose frame is damaged.
+    #[error("points {first} to {last} of the sweep `{sweep}` are damaged (frame at byte {offset})")]
+    DamagedPoints {
+        /// Name of the sweep.
+        sweep: String,
+        /// Index of the first point of the block.
+        first: u64,
+        /// Index of its last point.
+        last: u64,
+        /// Where it begins.
+        offset: u64,
+    },
+    /// The description of a sweep is damaged.
+    #[error("the description of the sweep `{name}` is damaged (frame at byte {offset})")]
+    DamagedSweep {
+        /// Name of the sweep.
         name: String,
         /// Where its frame begins.
         offset: u64,
@@ -216,4 +293,12 @@ pub enum ArchiveWarning {
     /// The index of a finished archive is damaged; the snapshots were found by reading through.
     #[error("the index is damaged; the snapshots were found by reading through the file")]
     DamagedIndex,
+}
+
+impl ArchiveWarning {
+    /// The warning for a damaged block of that label.
+    pub(crate) fn damaged_points(label: &BlockLabel, offset: u64) -> Self {
+        let BlockLabel { sweep, first, last, .. } = label.clone();
+        ArchiveWarning::DamagedPoints { sweep, first, last, offset }
+    }
 }

@@ -62,11 +62,15 @@ pub(crate) enum Kind {
     Snapshot,
     /// The index of a finished archive.
     Index,
+    /// The description of a sweep.
+    Sweep,
+    /// A block of points of a sweep.
+    Points,
 }
 
 impl Kind {
     /// Every kind, in the order of its number.
-    pub(crate) const ALL: [Kind; 3] = [Kind::Run, Kind::Snapshot, Kind::Index];
+    pub(crate) const ALL: [Kind; 5] = [Kind::Run, Kind::Snapshot, Kind::Index, Kind::Sweep, Kind::Points];
 
     /// The number in the frame header.
     pub(crate) fn number(self) -> u16 {
@@ -74,20 +78,23 @@ impl Kind {
             Kind::Run => 1,
             Kind::Snapshot => 2,
             Kind::Index => 3,
+            Kind::Sweep => 4,
+            Kind::Points => 5,
         }
     }
 
     /// The schema that this program writes, and the highest that it reads.
     pub(crate) fn schema(self) -> u16 {
         match self {
-            Kind::Run | Kind::Snapshot | Kind::Index => 1,
+            Kind::Run | Kind::Snapshot | Kind::Sweep | Kind::Points => 1,
+            Kind::Index => 2,
         }
     }
 
     /// The longest payload of this kind.
     pub(crate) fn payload_limit(self) -> usize {
         match self {
-            Kind::Run | Kind::Snapshot => PAYLOAD_LIMIT,
+            Kind::Run | Kind::Snapshot | Kind::Sweep | Kind::Points => PAYLOAD_LIMIT,
             Kind::Index => INDEX_LIMIT,
         }
     }

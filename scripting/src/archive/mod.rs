@@ -16,15 +16,20 @@
 
 #[macro_use]
 mod model;
+mod blocks;
+mod claim;
 mod compare;
 mod encoding;
 mod error;
 pub mod export;
 mod layout;
 mod reader;
+mod resume;
 mod scan;
 pub mod storage;
+mod stored;
 mod sweep;
+mod whole;
 mod writer;
 
 #[cfg(test)]
@@ -37,5 +42,10 @@ pub use model::{
     OrderKey, RunHeader, Snapshot, Stack, Status, Table, Value,
 };
 pub use reader::{Archive, Entry};
-pub use sweep::{Cell, Point, PointOutput, SweepColumn, SweepStart};
-pub use writer::{Writer, unfinished_path};
+pub use resume::EarlierPoints;
+pub use stored::{Points, Sweep};
+pub use sweep::{
+    Cell, Point, PointOutput, Share, SnapshotPlace, StoredPoint, SweepColumn, SweepRecord, SweepStart,
+    point_of_name, point_snapshot_name,
+};
+pub use writer::{Earlier, Writer, unfinished_path};

@@ -5,7 +5,9 @@ use std::io::{self, Read, Seek, SeekFrom};
 use std::path::{Path, PathBuf};
 use std::sync::{Mutex, PoisonError};
 
-use super::encoding::{Index, decode, decode_snapshot};
+use serde::de::DeserializeOwned;
+
+use super::encoding::{FirstIndex, Index, SweepPlace, decode};
 use super::error::{ArchiveError, ArchiveWarning};
 use super::layout::{
     CONTAINER_VERSION, Digest, FOOTER_LENGTH, Footer, HEADER_LENGTH, Header, Kind, LABEL_LIMIT, MAGIC,
@@ -13,6 +15,8 @@ use super::layout::{
 };
 use super::model::{Label, RunHeader, Snapshot};
 use super::scan;
+use super::stored::{Sweep, read_snapshot};
+use super::sweep::{SnapshotPlace, SweepRecord, point_of_name};
 
 /// Something that bytes can be read from at any place.
 pub(crate) trait Source: std::fmt::Debug + Send + Sync {
@@ -77,8 +81,12 @@ pub struct Archive {
     run: Option<RunHeader>,
     run_digest: Option<Digest>,
     entries: Vec<Entry>,
+    pub(crate) sweeps: Vec<Sweep>,
     warnings: Vec<ArchiveWarning>,
     finished: bool,
+    /// Where the last whole frame ends and the number of the next one, of a file that was read through.
+    pub(crate) end: (u64, u64),
+    indexed: Vec<SweepPlace>,
 }
 
 /// A checked frame header with its label bytes still unread.
@@ -126,7 +134,7 @@ impl Bytes<'_> {
     }
 
     /// The label of the frame, if it is undamaged.
-    pub(crate) fn label(&self, placed: &Placed) -> Result<Option<Label>, ArchiveError> {
+    pub(crate) fn label<T: DeserializeOwned>(&self, placed: &Placed) -> Result<Option<T>, ArchiveError> {
         if placed.header.label as usize > LABEL_LIMIT {
             return Ok(None);
         }
@@ -225,20 +233,30 @@ impl Archive {
             run: None,
             run_digest: None,
             entries: Vec::new(),
+            sweeps: Vec::new(),
             warnings: Vec::new(),
             finished: footer.is_some(),
+            end: (START_LENGTH as u64, 0),
+            indexed: Vec::new(),
             path: path.to_owned(),
             source,
         };
         match &footer {
-            Some(footer) if archive.read_index(footer)? => archive.read_run()?,
+            Some(footer) if archive.read_index(footer)? => {
+                archive.read_run()?;
+                archive.read_sweeps()?;
+            }
             _ => archive.read_through(if footer.is_some() { footer_at } else { length })?,
         }
         Ok(archive)
     }
 
-    fn bytes(&self) -> Bytes<'_> {
+    pub(crate) fn bytes(&self) -> Bytes<'_> {
         Bytes { source: &*self.source, path: &self.path }
+    }
+
+    pub(crate) fn run_digest(&self) -> Option<Digest> {
+        self.run_digest
     }
 
     /// Takes the entries from the index; false when it is damaged.
@@ -254,7 +272,12 @@ impl Archive {
             return Ok(false);
         }
         let Some((payload, _)) = bytes.body(&placed)? else { return Ok(false) };
-        let Some(index) = decode::<Index>(&payload, Kind::Index) else { return Ok(false) };
+        let decoded = match placed.header.schema {
+            1 => decode::<FirstIndex>(&payload, Kind::Index)
+                .map(|first| Index { entries: first.entries, sweeps: Vec::new() }),
+            _ => decode::<Index>(&payload, Kind::Index),
+        };
+        let Some(index) = decoded else { return Ok(false) };
         let inside = |offset: u64, length: u64| {
             offset >= START_LENGTH as u64
                 && length >= HEADER_LENGTH as u64
@@ -262,9 +285,16 @@ impl Archive {
         };
         if index.entries.len() as u64 != footer.snapshots
             || !index.entries.iter().all(|entry| inside(entry.offset, entry.length))
+            || !index.sweeps.iter().all(|sweep| {
+                inside(sweep.offset, sweep.length)
+                    && sweep.blocks.iter().all(|block| inside(block.offset, block.length))
+                    && sweep.blocks.is_sorted_by(|a, b| a.last < b.first)
+                    && sweep.blocks.len() < u32::MAX as usize
+            })
         {
             return Ok(false);
         }
+        self.indexed = index.sweeps;
         self.run_digest = Some(placed.header.run);
         self.entries = index
             .entries
@@ -277,6 +307,31 @@ impl Archive {
             })
             .collect();
         Ok(true)
+    }
+
+    /// Reads the descriptions of the sweeps at their places in a finished archive.
+    fn read_sweeps(&mut self) -> Result<(), ArchiveError> {
+        for place in std::mem::take(&mut self.indexed) {
+            let SweepPlace { name, step, offset, length, header_digest, blocks } = place;
+            let bytes = self.bytes();
+            let mut record = None;
+            if let Some(placed) = bytes.header(offset, offset.saturating_add(length))?
+                && placed.length == length
+                && placed.header.own_digest() == header_digest
+                && Some(placed.header.run) == self.run_digest
+                && known_kind(&placed.header, || format!("the sweep `{name}`"))? == Kind::Sweep
+                && bytes.label::<String>(&placed)?.as_ref() == Some(&name)
+                && let Some((payload, _)) = bytes.body(&placed)?
+            {
+                record = decode::<SweepRecord>(&payload, Kind::Sweep)
+                    .filter(|record| record.start.name == name && record.start.step == step);
+            }
+            if record.is_none() {
+                self.warnings.push(ArchiveWarning::DamagedSweep { name: name.clone(), offset });
+            }
+            self.sweeps.push(Sweep { name, step, record, blocks, in_order: true, ..Sweep::default() });
+        }
+        Ok(())
     }
 
     /// Reads the description of the run at its place in a finished archive.
@@ -313,7 +368,8 @@ impl Archive {
         self.warnings = if self.finished {
             vec![ArchiveWarning::DamagedIndex]
         } else {
-            vec![ArchiveWarning::NotFinished { snapshots: found.whole_snapshots }]
+            let points = found.sweeps.iter().map(Sweep::count).sum();
+            vec![ArchiveWarning::NotFinished { snapshots: found.whole_snapshots, points }]
         };
         self.warnings.extend(found.warnings);
         if found.run.is_none() {
@@ -321,6 +377,9 @@ impl Archive {
         }
         self.run = found.run;
         self.run_digest = found.run_digest;
+        self.end = (found.end, found.next_ordinal);
+        self.sweeps = found.sweeps;
+        self.sweeps.sort_by(|a, b| a.step.cmp(&b.step).then_with(|| a.name.cmp(&b.name)));
         self.entries = found.entries;
         self.entries
             .sort_by(|a, b| a.label.order.cmp(&b.label.order).then_with(|| a.label.name.cmp(&b.label.name)));
@@ -363,7 +422,10 @@ impl Archive {
     pub fn snapshot(&self, name: &str) -> Result<Snapshot, ArchiveError> {
         match self.entries.iter().position(|entry| entry.label.name == name) {
             Some(index) => self.snapshot_at(index),
-            None => Err(ArchiveError::NoSuchSnapshot { name: name.to_owned(), near: self.near(name) }),
+            None => match self.stored_by_point(name)? {
+                Some(place) => self.point_snapshot(&place),
+                None => Err(ArchiveError::NoSuchSnapshot { name: name.to_owned(), near: self.near(name) }),
+            },
         }
     }
 
@@ -375,43 +437,51 @@ impl Archive {
     pub fn snapshot_at(&self, index: usize) -> Result<Snapshot, ArchiveError> {
         let entry =
             self.entries.get(index).ok_or(ArchiveError::NoSuchIndex { index, count: self.entries.len() })?;
-        let name = &entry.label.name;
-        let damaged = || ArchiveError::DamagedSnapshot { name: name.clone(), offset: entry.offset };
-        let bytes = self.bytes();
-        let end = entry.offset.checked_add(entry.length).ok_or_else(damaged)?;
-        let placed = bytes.header(entry.offset, end)?.ok_or_else(damaged)?;
-        if placed.length != entry.length
-            || placed.header.own_digest() != entry.header_digest
-            || Some(placed.header.run) != self.run_digest
-        {
-            return Err(damaged());
-        }
-        if known_kind(&placed.header, || format!("snapshot `{name}`"))? != Kind::Snapshot {
-            return Err(damaged());
-        }
-        if bytes.label(&placed)?.as_ref() != Some(&entry.label) {
-            return Err(damaged());
-        }
-        let (payload, numbers) = bytes.body(&placed)?.ok_or_else(damaged)?;
-        match decode_snapshot(&payload, &numbers) {
-            Some(snapshot) if snapshot.label == entry.label => Ok(snapshot),
-            _ => Err(damaged()),
-        }
+        let place = SnapshotPlace {
+            label: entry.label.clone(),
+            offset: entry.offset,
+            length: entry.length,
+            header_digest: entry.header_digest,
+        };
+        read_snapshot(self.bytes(), self.run_digest, &place)
     }
 
-    /// Reads every snapshot and says which are damaged.
+    /// Where the snapshot of that name stands that a point stored.
+    fn stored_by_point(&self, name: &str) -> Result<Option<SnapshotPlace>, ArchiveError> {
+        let Some((sweep, index, Some(_))) = point_of_name(name) else { return Ok(None) };
+        if !self.sweeps.iter().any(|each| each.name == sweep) {
+            return Ok(None);
+        }
+        let point = self.point(sweep, index)?;
+        Ok(point.snapshots.into_iter().find(|place| place.label.name == name))
+    }
+
+    /// Reads every snapshot and every point and says which are damaged.
     ///
     /// # Errors
     /// [`ArchiveError::Newer`], [`ArchiveError::Io`].
     pub fn verify(&self) -> Result<Vec<ArchiveWarning>, ArchiveError> {
         let mut found = Vec::new();
+        let mut keep = |error| match error {
+            ArchiveError::DamagedSnapshot { name, offset } => {
+                found.push(ArchiveWarning::DamagedSnapshot { name, offset });
+                Ok(())
+            }
+            ArchiveError::DamagedPoints { sweep, first, last, offset } => {
+                found.push(ArchiveWarning::DamagedPoints { sweep, first, last, offset });
+                Ok(())
+            }
+            error => Err(error),
+        };
         for index in 0..self.entries.len() {
-            match self.snapshot_at(index) {
-                Ok(_) => {}
-                Err(ArchiveError::DamagedSnapshot { name, offset }) => {
-                    found.push(ArchiveWarning::DamagedSnapshot { name, offset });
-                }
-                Err(error) => return Err(error),
+            self.snapshot_at(index).map(|_| ()).or_else(&mut keep)?;
+        }
+        for sweep in &self.sweeps {
+            for point in self.points(sweep) {
+                let read = point.and_then(|point| {
+                    point.snapshots.iter().try_for_each(|place| self.point_snapshot(place).map(|_| ()))
+                });
+                read.or_else(&mut keep)?;
             }
         }
         Ok(found)

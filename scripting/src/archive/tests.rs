@@ -6,4 +6,5 @@ mod format_page;
 mod other_readers;
 mod round_trip;
 mod sample;
+mod sweeps;
 mod writing;

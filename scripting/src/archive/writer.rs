@@ -1,36 +1,62 @@
 //! Writing an archive: frames in completion order while the run lasts, then the sorted whole.
 
-use std::collections::BTreeSet;
-use std::ffi::OsString;
 use std::path::{Path, PathBuf};
 
-use super::encoding::{Index, IndexEntry, Sections, sections, snapshot_sections};
+use super::blocks::{BLOCK_BYTES, BLOCK_POINTS, PointPlace, block_sections, sort_places, weight};
+use super::claim::{Held, Left, claim, set_aside, with_suffix};
+use super::compare::compare_bits;
+use super::encoding::{BlockPlace, Sections, labelled_sections, sections, snapshot_sections};
 use super::error::ArchiveError;
-use super::layout::{
-    Digest, FOOTER_LENGTH, Footer, HEADER_LENGTH, Header, Kind, START_LENGTH, digest, start_bytes,
-};
+use super::layout::{Digest, Header, Kind, START_LENGTH, start_bytes};
 use super::model::{Label, RunHeader, Snapshot};
 use super::reader::Archive;
-use super::storage::{Disk, Opening, Storage, StoredFile};
+use super::resume::{EarlierPoints, another_run, changed, says_nothing_new};
+use super::storage::{Disk, Storage};
+use super::stored::Sweep;
+use super::sweep::{
+    Point, Share, SnapshotPlace, StoredPoint, SweepRecord, SweepStart, point_of_name, point_order,
+    point_snapshot_name,
+};
+use super::whole;
 
 /// The name under which an archive stands while it is being written: `NAME.epiloom.unfinished`.
 pub fn unfinished_path(path: &Path) -> PathBuf {
     with_suffix(path, ".unfinished")
 }
 
-fn with_suffix(path: &Path, suffix: &str) -> PathBuf {
-    let mut name: OsString = path.as_os_str().to_owned();
-    name.push(suffix);
-    PathBuf::from(name)
-}
-
 /// One snapshot that stands in the unfinished file.
 #[derive(Debug)]
-struct Written {
-    label: Label,
-    offset: u64,
-    header: Header,
-    length: u64,
+pub(crate) struct Written {
+    pub place: SnapshotPlace,
+    /// Whether this run has stored it, or found it as it would store it.
+    pub current: bool,
+}
+
+/// One sweep that stands in the unfinished file.
+#[derive(Debug)]
+pub(crate) struct WrittenSweep {
+    pub sweep: Sweep,
+    /// Whether this run has begun it.
+    pub current: bool,
+}
+
+/// What became of the unfinished file of an earlier run.
+#[derive(Clone, Debug, PartialEq, Eq)]
+pub enum Earlier {
+    /// It was renamed, and why.
+    SetAside {
+        /// Where it is now.
+        path: PathBuf,
+        /// Why it could not be gone on with.
+        why: String,
+    },
+    /// This run goes on with it.
+    TakenOver {
+        /// How many snapshots it holds.
+        snapshots: usize,
+        /// How many points of sweeps it holds.
+        points: u64,
+    },
 }
 
 /// An archive being written.
@@ -38,41 +64,66 @@ struct Written {
 /// A snapshot that [`append`](Writer::append) has accepted survives a kill of the process at once, and a
 /// power cut from the next sync on: after every append, or after every `n` (see
 /// [`sync_every`](Writer::sync_every)), so that a power cut loses at most the last `n - 1` snapshots.
+/// Points that [`append_points`](Writer::append_points) has accepted survive both.
 /// Dropping the writer keeps the unfinished file.
 #[derive(Debug)]
 pub struct Writer<'a> {
     storage: &'a dyn Storage,
-    path: PathBuf,
-    unfinished: PathBuf,
-    file: Box<dyn StoredFile>,
+    pub(crate) path: PathBuf,
+    pub(crate) unfinished: PathBuf,
+    held: Held,
     length: u64,
     ordinal: u64,
     run: Digest,
-    run_header: RunHeader,
+    /// As it stands in the unfinished file.
+    pub(crate) run_header: RunHeader,
+    /// As this run knows it so far.
+    known: RunHeader,
+    share: Option<Share>,
     written: Vec<Written>,
-    names: BTreeSet<String>,
+    sweeps: Vec<WrittenSweep>,
+    /// What an earlier run has left, until it is known whether this is the same run.
+    undecided: Option<Box<Archive>>,
+    /// The same once this run goes on with it.
+    taken_over: Option<Box<Archive>>,
     sync_every: u32,
     unsynced: u32,
     broken: bool,
-    set_aside: Option<PathBuf>,
+    earlier: Option<Earlier>,
 }
 
 impl Writer<'static> {
     /// Begins the archive that will stand at `path`, in the locked file beside it.
     ///
-    /// An unfinished file of an earlier run that holds snapshots is renamed, never overwritten; see
-    /// [`set_aside`](Writer::set_aside).
+    /// An unfinished file of an earlier run that holds anything is renamed, never overwritten; see
+    /// [`earlier`](Writer::earlier).
     ///
     /// # Errors
     /// [`ArchiveError::HeldByAnotherRun`] while another run writes there, [`ArchiveError::Io`].
     pub fn create(path: &Path, header: &RunHeader) -> Result<Self, ArchiveError> {
-        if path.is_dir() {
-            // Known now rather than when the run is over.
-            let source = std::io::ErrorKind::IsADirectory.into();
-            return Err(ArchiveError::Io { action: "write", path: path.to_owned(), source });
-        }
+        no_folder(path)?;
         Writer::create_in(&Disk, path, header)
     }
+
+    /// As [`create`](Writer::create), but goes on with the unfinished file of an earlier run where that was the
+    /// same run: script, version, tolerances, share, inputs and data files. The last two are compared when
+    /// something is first stored, when they are known; until then nothing is written or renamed.
+    ///
+    /// # Errors
+    /// As [`create`](Writer::create).
+    pub fn resume(path: &Path, header: &RunHeader, share: Option<Share>) -> Result<Self, ArchiveError> {
+        no_folder(path)?;
+        Writer::resume_in(&Disk, path, header, share)
+    }
+}
+
+/// Known now rather than when the run is over.
+fn no_folder(path: &Path) -> Result<(), ArchiveError> {
+    if path.is_dir() {
+        let source = std::io::ErrorKind::IsADirectory.into();
+        return Err(ArchiveError::Io { action: "write", path: path.to_owned(), source });
+    }
+    Ok(())
 }
 
 impl<'a> Writer<'a> {
@@ -85,37 +136,124 @@ impl<'a> Writer<'a> {
         path: &Path,
         header: &RunHeader,
     ) -> Result<Self, ArchiveError> {
+        let mut writer = Writer::resume_in(storage, path, header, None)?;
+        if writer.undecided.take().is_some() {
+            writer.start_beside("this run begins anew".to_owned())?;
+        }
+        Ok(writer)
+    }
+
+    /// As [`resume`](Writer::resume), with the file operations of that storage.
+    ///
+    /// # Errors
+    /// As [`resume`](Writer::resume).
+    pub fn resume_in(
+        storage: &'a dyn Storage,
+        path: &Path,
+        header: &RunHeader,
+        share: Option<Share>,
+    ) -> Result<Self, ArchiveError> {
         let unfinished = unfinished_path(path);
         let first = sections(Kind::Run, "the description of the run", header)?;
-        let run = first.body_digest();
-        let (file, set_aside) = claim(storage, &unfinished)?;
+        let (held, left) = claim(storage, &unfinished)?;
         let mut writer = Writer {
             storage,
             path: path.to_owned(),
             unfinished,
-            file,
+            held,
             length: 0,
             ordinal: 0,
-            run,
+            run: first.body_digest(),
             run_header: header.clone(),
+            known: header.clone(),
+            share,
             written: Vec::new(),
-            names: BTreeSet::new(),
+            sweeps: Vec::new(),
+            undecided: None,
+            taken_over: None,
             sync_every: 1,
             unsynced: 0,
             broken: false,
-            set_aside,
+            earlier: None,
         };
-        writer.file.cut(0).map_err(|source| writer.io("empty", source))?;
-        let start = start_bytes();
-        writer.file.write_at(0, &start).map_err(|source| writer.io("write", source))?;
-        writer.length = START_LENGTH as u64;
-        writer.append_frame(&first)?;
-        writer.sync()?;
-        writer
-            .storage
-            .sync_folder(&writer.unfinished)
-            .map_err(|source| writer.io("sync the folder of", source))?;
+        match left {
+            Left::Nothing => writer.start()?,
+            Left::Other(why) => writer.start_beside(why)?,
+            Left::Archive(archive) => match another_run(&archive, header, share) {
+                Some(why) => writer.start_beside(why)?,
+                None => writer.undecided = Some(archive),
+            },
+        }
         Ok(writer)
+    }
+
+    /// Empties the file and writes the description of the run.
+    fn start(&mut self) -> Result<(), ArchiveError> {
+        let first = sections(Kind::Run, "the description of the run", &self.known)?;
+        self.run = first.body_digest();
+        self.run_header = self.known.clone();
+        let start = start_bytes();
+        let emptied = self.held.file().cut(0);
+        emptied.map_err(|source| self.io("empty", source))?;
+        let written = self.held.file().write_at(0, &start);
+        written.map_err(|source| self.io("write", source))?;
+        self.length = START_LENGTH as u64;
+        self.ordinal = 0;
+        self.append_frame(&first)?;
+        self.sync()?;
+        self.storage.sync_folder(&self.unfinished).map_err(|source| self.io("sync the folder of", source))
+    }
+
+    /// Renames what is there and begins a new file.
+    fn start_beside(&mut self, why: String) -> Result<(), ArchiveError> {
+        let path = set_aside(self.storage, &self.unfinished)?;
+        self.earlier = Some(Earlier::SetAside { path, why });
+        let (held, left) = claim(self.storage, &self.unfinished)?;
+        self.held = held;
+        match left {
+            Left::Nothing => self.start(),
+            // Another run has claimed the name in between and stored something already.
+            _ => Err(ArchiveError::HeldByAnotherRun { path: self.unfinished.clone() }),
+        }
+    }
+
+    /// Settles whether the earlier run was this one, now that something is to be stored.
+    fn settle(&mut self) -> Result<(), ArchiveError> {
+        let Some(left) = self.undecided.take() else { return Ok(()) };
+        if let Some(why) = another_run(&left, &self.known, self.share) {
+            return self.start_beside(why);
+        }
+        let (end, ordinal) = left.end;
+        let cut = self.held.file().cut(end);
+        cut.map_err(|source| self.io("cut off the torn end of", source))?;
+        self.length = end;
+        self.ordinal = ordinal;
+        // Both are there, or it would be another run.
+        self.run = left.run_digest().unwrap_or(self.run);
+        self.run_header = left.run()?.clone();
+        // What a killed run has written but not synced counts as stored from here on.
+        self.sync()?;
+        self.written = left
+            .entries()
+            .iter()
+            .map(|entry| Written {
+                place: SnapshotPlace {
+                    label: entry.label.clone(),
+                    offset: entry.offset,
+                    length: entry.length,
+                    header_digest: entry.header_digest,
+                },
+                current: false,
+            })
+            .collect();
+        self.sweeps =
+            left.sweeps().iter().map(|sweep| WrittenSweep { sweep: sweep.clone(), current: false }).collect();
+        self.earlier = Some(Earlier::TakenOver {
+            snapshots: self.written.len(),
+            points: left.sweeps().iter().map(Sweep::count).sum(),
+        });
+        self.taken_over = Some(left);
+        Ok(())
     }
 
     /// Syncs after every `snapshots` appends (at least 1) instead of after each.
@@ -124,9 +262,9 @@ impl<'a> Writer<'a> {
         self
     }
 
-    /// Where the unfinished file of an earlier run was moved to, if there was one.
-    pub fn set_aside(&self) -> Option<&Path> {
-        self.set_aside.as_deref()
+    /// What became of the unfinished file of an earlier run, as far as that is settled.
+    pub fn earlier(&self) -> Option<&Earlier> {
+        self.earlier.as_ref()
     }
 
     /// The file that is being written.
@@ -134,23 +272,45 @@ impl<'a> Writer<'a> {
         &self.unfinished
     }
 
-    /// How many snapshots are stored.
+    /// How many snapshots this run has stored, those of points not counted.
     pub fn count(&self) -> usize {
-        self.written.len()
+        self.written.iter().filter(|written| written.current).count()
     }
 
-    /// Whether a snapshot of that name is stored.
-    pub fn contains(&self, name: &str) -> bool {
-        self.names.contains(name)
+    /// Whether this run has stored anything, or an earlier one whose file is kept.
+    pub fn holds_anything(&self) -> bool {
+        self.undecided.is_some()
+            || !self.written.is_empty()
+            || self.sweeps.iter().any(|each| each.current || each.sweep.count() > 0)
+    }
+
+    /// How many points of sweeps stand in the file.
+    pub fn points(&self) -> u64 {
+        let left = self.undecided.iter().flat_map(|archive| archive.sweeps()).map(Sweep::count);
+        self.sweeps.iter().map(|each| each.sweep.count()).chain(left).sum()
     }
 
     /// Replaces the description of the run, which grows as the script declares inputs and reads data.
     ///
-    /// Writes nothing when it is the same as before.
+    /// Writes nothing when it says nothing new.
     ///
     /// # Errors
-    /// As [`append`](Writer::append).
+    /// [`ArchiveError::NotAsStored`] where it contradicts that of the earlier run whose file is gone on with, and as
+    /// [`append`](Writer::append).
     pub fn update_run(&mut self, header: &RunHeader) -> Result<(), ArchiveError> {
+        self.known = header.clone();
+        if self.undecided.is_some() {
+            return self.settle();
+        }
+        if self.taken_over.is_some() {
+            if let Some(place) = changed(&self.run_header, header) {
+                return Err(ArchiveError::NotAsStored { name: header.script_name.clone(), place });
+            }
+            // It may well say more, which the script has not come to yet.
+            if says_nothing_new(&self.run_header, header) {
+                return Ok(());
+            }
+        }
         if self.run_header == *header {
             return Ok(());
         }
@@ -160,35 +320,213 @@ impl<'a> Writer<'a> {
         Ok(())
     }
 
-    /// Stores one snapshot.
+    /// Whether this run has used the name.
+    fn name_taken(&self, name: &str) -> bool {
+        let sweep_of_point = point_of_name(name).map(|(sweep, ..)| sweep);
+        self.written.iter().any(|each| each.current && each.place.label.name == name)
+            || self.sweeps.iter().filter(|each| each.current).any(|each| {
+                each.sweep.name == name || sweep_of_point.is_some_and(|sweep| sweep == each.sweep.name)
+            })
+    }
+
+    /// Stores one snapshot. One that an earlier run has stored, whose file is gone on with, must be the same to the
+    /// last bit, and is not written again.
     ///
     /// # Errors
-    /// [`ArchiveError::NameTaken`], [`ArchiveError::RaggedTable`] and [`ArchiveError::TooLarge`] leave the
-    /// archive as it was; so does [`ArchiveError::Io`] where the half-written frame could be cut off again.
-    /// Where it could not, and after a failed sync, every later call is [`ArchiveError::WriterBroken`]; the
-    /// snapshots stored before stay readable in the unfinished file.
+    /// [`ArchiveError::NameTaken`], [`ArchiveError::RaggedTable`], [`ArchiveError::TooLarge`] and
+    /// [`ArchiveError::NotAsStored`] leave the archive as it was; so does [`ArchiveError::Io`] where the
+    /// half-written frame could be cut off again. Where it could not, and after a failed sync, every later call is
+    /// [`ArchiveError::WriterBroken`]; what was stored before stays readable in the unfinished file.
     pub fn append(&mut self, snapshot: &Snapshot) -> Result<(), ArchiveError> {
         self.check()?;
-        if self.names.contains(snapshot.name()) {
-            return Err(ArchiveError::NameTaken { name: snapshot.name().to_owned() });
+        self.settle()?;
+        let name = snapshot.name();
+        if self.name_taken(name) {
+            return Err(ArchiveError::NameTaken { name: name.to_owned() });
         }
         let made = snapshot_sections(snapshot)?;
+        if let Some(at) = self.written.iter().position(|each| each.place.label.name == name) {
+            let stored = match &self.taken_over {
+                Some(left) => left.point_snapshot(&self.written[at].place),
+                None => Err(ArchiveError::DamagedRun),
+            };
+            match stored {
+                Ok(stored) => {
+                    if let Some(difference) = compare_bits(&stored, snapshot).into_iter().next() {
+                        let place = format!(
+                            "{}: then {}, now {}",
+                            difference.place, difference.first, difference.second
+                        );
+                        return Err(ArchiveError::NotAsStored { name: name.to_owned(), place });
+                    }
+                    self.written[at].current = true;
+                    return Ok(());
+                }
+                // Damaged there: it is stored again.
+                Err(_) => drop(self.written.remove(at)),
+            }
+        }
         let offset = self.length;
-        let header = self.append_frame(&made)?;
-        let length = self.length - offset;
-        self.written.push(Written { label: snapshot.label.clone(), offset, header, length });
-        self.names.insert(snapshot.name().to_owned());
+        let header_digest = self.append_frame(&made)?;
+        let place = SnapshotPlace {
+            label: snapshot.label.clone(),
+            offset,
+            length: self.length - offset,
+            header_digest,
+        };
+        self.written.push(Written { place, current: true });
         self.unsynced += 1;
         if self.unsynced >= self.sync_every { self.sync() } else { Ok(()) }
     }
 
-    /// Makes every snapshot stored so far survive a power cut.
+    /// Begins a sweep, and gives those of its points that an earlier run has stored.
+    ///
+    /// # Errors
+    /// [`ArchiveError::NameTaken`] and those of [`append`](Writer::append).
+    pub fn begin_sweep(&mut self, start: &SweepStart) -> Result<EarlierPoints, ArchiveError> {
+        self.check()?;
+        self.settle()?;
+        let of_point = point_snapshot_name(&start.name, 0, "");
+        if point_of_name(&of_point).is_none_or(|(sweep, ..)| sweep != start.name) {
+            return Err(ArchiveError::Encoding {
+                what: format!("the sweep `{}`", start.name),
+                reason: "its name reads as that of a point of a sweep".to_owned(),
+            });
+        }
+        let of_its_points = |each: &Written| {
+            each.current && point_of_name(&each.place.label.name).is_some_and(|(of, ..)| of == start.name)
+        };
+        if self.name_taken(&start.name) || self.written.iter().any(of_its_points) {
+            return Err(ArchiveError::NameTaken { name: start.name.clone() });
+        }
+        let run = sections(Kind::Run, "the description of the run", &self.known)?.body_digest();
+        let record = SweepRecord { start: start.clone(), share: self.share, run, left_out: None };
+        let known = self.sweeps.iter().position(|each| each.sweep.name == start.name);
+        let same = |each: &WrittenSweep| {
+            !each.sweep.in_doubt && each.sweep.record().is_some_and(|known| known.same_points(&record))
+        };
+        let at = match known {
+            Some(at) if same(&self.sweeps[at]) => {
+                self.sweeps[at].current = true;
+                at
+            }
+            other => {
+                self.append_record(&record)?;
+                let begun = WrittenSweep { sweep: Sweep::of(record), current: true };
+                match other {
+                    Some(at) => {
+                        self.sweeps[at] = begun;
+                        at
+                    }
+                    None => {
+                        self.sweeps.push(begun);
+                        self.sweeps.len() - 1
+                    }
+                }
+            }
+        };
+        EarlierPoints::of(&self.held, &self.unfinished, self.run, &self.sweeps[at].sweep)
+    }
+
+    /// Stores points of a sweep that was begun, with what they stored, and syncs: they survive a power cut from here
+    /// on. A power cut before loses these points and no others.
+    ///
+    /// # Errors
+    /// As [`append`](Writer::append).
+    pub fn append_points(&mut self, sweep: &str, mut points: Vec<Point>) -> Result<(), ArchiveError> {
+        self.check()?;
+        let begun = self.sweeps.iter().position(|each| each.current && each.sweep.name == sweep);
+        let start = begun.and_then(|at| self.sweeps[at].sweep.record().map(|record| record.start.clone()));
+        let (Some(at), Some(start)) = (begun, start) else {
+            return Err(ArchiveError::NoSuchSweep { name: sweep.to_owned(), there: Vec::new() });
+        };
+        points.sort_by_key(|point| point.index);
+        let mut batch = Batch::new(self.length, self.ordinal, self.run);
+        let mut waiting: Vec<StoredPoint> = Vec::new();
+        let mut weighed = 0;
+        let mut blocks = Vec::new();
+        for mut point in points {
+            let snapshots = std::mem::take(&mut point.snapshots);
+            let labels: usize = snapshots.iter().map(|snapshot| label_weight(&snapshot.label)).sum();
+            let weight = weight(&point, labels);
+            if !waiting.is_empty() && (waiting.len() >= BLOCK_POINTS || weighed + weight > BLOCK_BYTES) {
+                blocks.push(batch.block(&start, std::mem::take(&mut waiting))?);
+                weighed = 0;
+            }
+            weighed += weight;
+            let mut places: Vec<SnapshotPlace> = Vec::new();
+            for snapshot in &snapshots {
+                let name = snapshot.name();
+                let inside = point_of_name(name).and_then(|(_, _, inside)| inside).unwrap_or_default();
+                let expected = point_snapshot_name(sweep, point.index, inside);
+                if name != expected || snapshot.label.order != point_order(start.step, point.index) {
+                    return Err(ArchiveError::Encoding {
+                        what: format!("snapshot `{name}` of point {} of the sweep `{sweep}`", point.index),
+                        reason: "it is not named and ordered as a point's".to_owned(),
+                    });
+                }
+                if places.iter().any(|place| place.label.name == name) {
+                    return Err(ArchiveError::NameTaken { name: name.to_owned() });
+                }
+                let (offset, length, header_digest) = batch.frame(&snapshot_sections(snapshot)?);
+                places.push(SnapshotPlace { label: snapshot.label.clone(), offset, length, header_digest });
+            }
+            waiting.push(StoredPoint { point, snapshots: places });
+        }
+        if !waiting.is_empty() {
+            blocks.push(batch.block(&start, waiting)?);
+        }
+        self.put(&batch.bytes)?;
+        self.ordinal = batch.ordinal;
+        self.sync()?;
+        let sweep = &mut self.sweeps[at].sweep;
+        for (place, indices) in blocks {
+            // Fewer than 2^32 blocks: each takes more than a hundred bytes.
+            let block = sweep.blocks.len() as u32;
+            sweep.blocks.push(place);
+            for (row, index) in indices.into_iter().enumerate() {
+                sweep.places.push(PointPlace { index, block, row: row as u32 });
+                sweep.incomplete.remove(&index);
+            }
+        }
+        Ok(())
+    }
+
+    /// All points of this run's share of the sweep are done; `left_out` counts the indices of the share that the
+    /// filter of its plan leaves out.
+    ///
+    /// # Errors
+    /// As [`append`](Writer::append).
+    pub fn finish_sweep(&mut self, sweep: &str, left_out: u64) -> Result<(), ArchiveError> {
+        self.check()?;
+        let begun = self.sweeps.iter().position(|each| each.current && each.sweep.name == sweep);
+        let record = begun.and_then(|at| self.sweeps[at].sweep.record.clone().map(|record| (at, record)));
+        let Some((at, record)) = record else {
+            return Err(ArchiveError::NoSuchSweep { name: sweep.to_owned(), there: Vec::new() });
+        };
+        sort_places(&mut self.sweeps[at].sweep.places);
+        if record.left_out == Some(left_out) {
+            return Ok(());
+        }
+        let record = SweepRecord { left_out: Some(left_out), ..record };
+        self.append_record(&record)?;
+        self.sweeps[at].sweep.record = Some(record);
+        self.sync()
+    }
+
+    fn append_record(&mut self, record: &SweepRecord) -> Result<(), ArchiveError> {
+        let made = record_sections(record)?;
+        self.append_frame(&made).map(|_| ())
+    }
+
+    /// Makes everything stored so far survive a power cut.
     ///
     /// # Errors
     /// [`ArchiveError::Io`]; the writer is broken afterwards, since what a failed sync has kept is unknown.
     pub fn sync(&mut self) -> Result<(), ArchiveError> {
         self.check()?;
-        if let Err(source) = self.file.sync() {
+        let synced = self.held.file().sync();
+        if let Err(source) = synced {
             self.broken = true;
             return Err(self.io("sync", source));
         }
@@ -205,98 +543,51 @@ impl<'a> Writer<'a> {
         Ok(self.unfinished)
     }
 
+    /// Removes the unfinished file of a run that stored nothing. What an earlier run has stored there is kept.
+    ///
+    /// # Errors
+    /// [`ArchiveError::Io`]; the next run takes the file over.
+    pub fn discard(self) -> Result<(), ArchiveError> {
+        if self.holds_anything() {
+            return Ok(());
+        }
+        self.storage.remove(&self.unfinished).map_err(|source| self.io("remove", source))
+    }
+
     /// Writes the whole in order beside the unfinished file, syncs it, renames it to its name, syncs the
     /// folder and removes the unfinished file. An archive of that name is replaced.
     ///
     /// Should the unfinished file refuse to be removed, it is left: the archive is whole without that.
     ///
     /// # Errors
-    /// [`ArchiveError::Io`], [`ArchiveError::DamagedSnapshot`] when the unfinished file no longer holds what
-    /// was written. The unfinished file is kept whatever fails.
+    /// [`ArchiveError::Io`], [`ArchiveError::DamagedSnapshot`] and [`ArchiveError::DamagedPoints`] when the
+    /// unfinished file no longer holds what was written. The unfinished file is kept whatever fails.
     pub fn finish(mut self, header: &RunHeader) -> Result<PathBuf, ArchiveError> {
         self.check()?;
         self.update_run(header)?;
+        self.settle()?;
         self.sync()?;
-        let beside = with_suffix(&self.path, ".finishing");
-        let failed = |action, source| ArchiveError::Io { action, path: beside.clone(), source };
-        {
-            let mut whole =
-                self.storage.open(&beside, Opening::Emptied).map_err(|source| failed("create", source))?;
-            self.write_whole(&mut *whole, &beside)?;
-            whole.sync().map_err(|source| failed("sync", source))?;
-        }
-        self.storage.rename(&beside, &self.path).map_err(|source| failed("rename", source))?;
-        self.storage.sync_folder(&self.path).map_err(|source| failed("sync the folder of", source))?;
-        let Writer { storage, path, unfinished, file, .. } = self;
+        let parts = whole::Parts {
+            source: self.held.source().map_err(|source| self.io("read", source))?,
+            path: &self.unfinished,
+            run: self.run,
+            header,
+            snapshots: self.written.iter().filter(|each| each.current).map(|each| &each.place).collect(),
+            sweeps: self.sweeps.iter().filter(|each| each.current).map(|each| &each.sweep).collect(),
+        };
+        whole::write(self.storage, &parts, &self.path)?;
+        drop(parts);
+        let Writer { storage, path, unfinished, held, taken_over, .. } = self;
+        drop(taken_over);
         if cfg!(unix) {
             // Removed while the lock is held, so that no other run can have claimed it in between.
             let _ = storage.remove(&unfinished);
-            drop(file);
+            drop(held);
         } else {
-            drop(file);
+            drop(held);
             let _ = storage.remove(&unfinished);
         }
         Ok(path)
-    }
-
-    /// Copies everything in order into the file that becomes the archive.
-    fn write_whole(&mut self, whole: &mut dyn StoredFile, beside: &Path) -> Result<(), ArchiveError> {
-        let failed = |source| ArchiveError::Io { action: "write", path: beside.to_owned(), source };
-        let first = sections(Kind::Run, "the description of the run", &self.run_header)?;
-        let run = first.body_digest();
-        let mut at = START_LENGTH as u64;
-        whole.write_at(0, &start_bytes()).map_err(failed)?;
-        let mut put = |bytes: &[u8], at: &mut u64| -> Result<(), ArchiveError> {
-            whole.write_at(*at, bytes).map_err(failed)?;
-            *at += bytes.len() as u64;
-            Ok(())
-        };
-        put(&first.frame(&first.header(0, run)), &mut at)?;
-
-        let mut order: Vec<usize> = (0..self.written.len()).collect();
-        order.sort_by(|&a, &b| {
-            let (a, b) = (&self.written[a].label, &self.written[b].label);
-            a.order.cmp(&b.order).then_with(|| a.name.cmp(&b.name))
-        });
-        let mut index = Index::default();
-        for (position, which) in order.into_iter().enumerate() {
-            let Written { label, offset, header, length } = &self.written[which];
-            let damaged = || ArchiveError::DamagedSnapshot { name: label.name.clone(), offset: *offset };
-            let mut frame = vec![0; usize::try_from(*length).map_err(|_| damaged())?];
-            self.file.read_at(*offset, &mut frame).map_err(|source| ArchiveError::Io {
-                action: "read",
-                path: self.unfinished.clone(),
-                source,
-            })?;
-            let body = HEADER_LENGTH + header.label_length() as usize;
-            let intact = frame[..HEADER_LENGTH] == header.to_bytes()
-                && digest(&frame[HEADER_LENGTH..body]) == header.label_digest
-                && digest(&frame[body..]) == header.body_digest;
-            if !intact {
-                return Err(damaged());
-            }
-            let sealed = Header { ordinal: position as u64 + 1, run, ..header.clone() };
-            frame[..HEADER_LENGTH].copy_from_slice(&sealed.to_bytes());
-            index.entries.push(IndexEntry {
-                label: label.clone(),
-                offset: at,
-                length: *length,
-                header_digest: sealed.own_digest(),
-            });
-            put(&frame, &mut at)?;
-        }
-
-        let made = sections(Kind::Index, "the index", &index)?;
-        let header = made.header(index.entries.len() as u64 + 1, run);
-        let index_at = at;
-        put(&made.frame(&header), &mut at)?;
-        let footer = Footer {
-            index: index_at,
-            length: at + FOOTER_LENGTH as u64,
-            snapshots: index.entries.len() as u64,
-            index_digest: header.own_digest(),
-        };
-        put(&footer.to_bytes(), &mut at)
     }
 
     fn check(&self) -> Result<(), ArchiveError> {
@@ -307,80 +598,96 @@ impl<'a> Writer<'a> {
         ArchiveError::Io { action, path: self.unfinished.clone(), source }
     }
 
-    /// Appends one frame; on a failed write cuts what was half written, or breaks.
-    fn append_frame(&mut self, made: &Sections) -> Result<Header, ArchiveError> {
+    /// Appends bytes; on a failed write cuts what was half written, or breaks.
+    fn put(&mut self, bytes: &[u8]) -> Result<(), ArchiveError> {
         self.check()?;
-        let header = made.header(self.ordinal, self.run);
-        let frame = made.frame(&header);
-        if let Err(source) = self.file.write_at(self.length, &frame) {
-            self.broken = self.file.cut(self.length).is_err();
+        let written = self.held.file().write_at(self.length, bytes);
+        if let Err(source) = written {
+            self.broken = self.held.file().cut(self.length).is_err();
             return Err(self.io("write", source));
         }
-        self.length += frame.len() as u64;
+        self.length += bytes.len() as u64;
+        Ok(())
+    }
+
+    /// Appends one frame; the digest of its header.
+    fn append_frame(&mut self, made: &Sections) -> Result<Digest, ArchiveError> {
+        let header = made.header(self.ordinal, self.run);
+        self.put(&made.frame(&header))?;
         self.ordinal += 1;
-        Ok(header)
+        Ok(header.own_digest())
     }
 }
 
-/// Opens and locks the unfinished file; moves one that holds snapshots out of the way first.
-fn claim(
-    storage: &dyn Storage,
-    unfinished: &Path,
-) -> Result<(Box<dyn StoredFile>, Option<PathBuf>), ArchiveError> {
-    let failed = |action, source| ArchiveError::Io { action, path: unfinished.to_owned(), source };
-    let mut set_aside = None;
-    // Each turn either claims the file, or finds that another run has just claimed or finished it.
-    for _ in 0..100 {
-        let mut file = storage.open(unfinished, Opening::AsItIs).map_err(|source| failed("open", source))?;
-        if !file.try_lock().map_err(|source| failed("lock", source))? {
-            return Err(ArchiveError::HeldByAnotherRun { path: unfinished.to_owned() });
-        }
-        if !file.stands_at(unfinished).map_err(|source| failed("open", source))? {
-            continue;
-        }
-        if !holds_anything(&mut *file).map_err(|source| failed("read", source))? {
-            return Ok((file, set_aside));
-        }
-        let aside = free_name(storage, unfinished)?;
-        storage.rename(unfinished, &aside).map_err(|source| failed("set aside", source))?;
-        set_aside = Some(aside);
-    }
-    Err(ArchiveError::HeldByAnotherRun { path: unfinished.to_owned() })
+/// The sections of the description of a sweep.
+pub(crate) fn record_sections(record: &SweepRecord) -> Result<Sections, ArchiveError> {
+    let what = format!("the sweep `{}`", record.start.name);
+    labelled_sections(Kind::Sweep, &what, &record.start.name, record)
 }
 
-/// Whether there is more in the file than the description of a run that stored nothing.
-fn holds_anything(file: &mut dyn StoredFile) -> std::io::Result<bool> {
-    let length = file.length()?;
-    if length == 0 {
-        return Ok(false);
-    }
-    // A file of ours that holds no snapshot is small; a large one is kept without looking.
-    if length > (1 << 24) {
-        return Ok(true);
-    }
-    // Bounded by 16 MiB just above.
-    let mut bytes = vec![0; length as usize];
-    file.read_at(0, &mut bytes)?;
-    Ok(match Archive::from_bytes(bytes) {
-        Ok(archive) => !archive.entries().is_empty() || archive.is_damaged(),
-        // Neither ours nor readable: somebody's file, kept. A torn first frame holds nothing.
-        Err(ArchiveError::NoWholeFrame { .. }) => false,
-        Err(_) => true,
-    })
+/// Bytes that the label of a point's snapshot takes in its block, about.
+pub(crate) fn label_weight(label: &Label) -> usize {
+    label.name.len() + label.kind.len() + 96
 }
 
-fn free_name(storage: &dyn Storage, unfinished: &Path) -> Result<PathBuf, ArchiveError> {
-    let mut number = 1_u32;
-    loop {
-        let aside = with_suffix(unfinished, &format!("-{number}"));
-        let taken = storage.exists(&aside).map_err(|source| ArchiveError::Io {
-            action: "look for",
-            path: aside.clone(),
-            source,
-        })?;
-        match number.checked_add(1) {
-            Some(next) if taken => number = next,
-            _ => return Ok(aside),
-        }
+/// Frames that are written at once.
+pub(crate) struct Batch {
+    pub bytes: Vec<u8>,
+    pub ordinal: u64,
+    begin: u64,
+    run: Digest,
+}
+
+impl Batch {
+    /// None yet; the first will stand there and have that number.
+    pub(crate) fn new(begin: u64, ordinal: u64, run: Digest) -> Self {
+        Batch { bytes: Vec::new(), ordinal, begin, run }
+    }
+
+    /// Adds a frame: its place, length and header digest.
+    pub(crate) fn frame(&mut self, made: &Sections) -> (u64, u64, Digest) {
+        let header = made.header(self.ordinal, self.run);
+        let offset = self.begin + self.bytes.len() as u64;
+        let frame = made.frame(&header);
+        self.bytes.extend_from_slice(&frame);
+        self.ordinal += 1;
+        (offset, frame.len() as u64, header.own_digest())
+    }
+
+    /// Everything so far is written: the next frame will stand there.
+    pub(crate) fn start_again(&mut self, begin: u64) {
+        self.bytes.clear();
+        self.begin = begin;
+    }
+
+    /// Adds a frame of another file under its new number and run: its place and header digest.
+    pub(crate) fn resealed(&mut self, header: Header, rest: &[u8]) -> (u64, Digest) {
+        let header = Header { ordinal: self.ordinal, run: self.run, ..header };
+        let offset = self.begin + self.bytes.len() as u64;
+        self.bytes.extend_from_slice(&header.to_bytes());
+        self.bytes.extend_from_slice(rest);
+        self.ordinal += 1;
+        (offset, header.own_digest())
+    }
+
+    /// Adds the block of these points: its place and their indices.
+    pub(crate) fn block(
+        &mut self,
+        start: &SweepStart,
+        points: Vec<StoredPoint>,
+    ) -> Result<(BlockPlace, Vec<u64>), ArchiveError> {
+        let indices: Vec<u64> = points.iter().map(|each| each.point.index).collect();
+        let failed = points.iter().filter(|each| each.point.status != super::model::Status::Solved).count();
+        let (offset, length, header_digest) = self.frame(&block_sections(start, &points)?);
+        let place = BlockPlace {
+            first: indices.first().copied().unwrap_or(0),
+            last: indices.last().copied().unwrap_or(0),
+            count: indices.len() as u64,
+            failed: failed as u64,
+            offset,
+            length,
+            header_digest,
+        };
+        Ok((place, indices))
     }
 }

@@ -8,6 +8,7 @@ mod completions;
 mod exit;
 mod explain;
 mod export;
+mod holder;
 mod inputs;
 mod materials;
 mod output;
@@ -17,6 +18,7 @@ mod replay;
 mod report;
 mod script;
 mod show;
+mod sweeps;
 mod trouble;
 
 // the verb of the same name

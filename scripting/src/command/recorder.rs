@@ -2,13 +2,18 @@
 
 use epiloom_solver::solve::Tolerances;
 
-use crate::archive::{Condition, DataFile, RunHeader, Snapshot, Stack, Status, Value, Writer};
+use std::sync::{Arc, Mutex, PoisonError};
+
+use crate::archive::{
+    Condition, DataFile, Earlier, Point, RunHeader, Share, Snapshot, Stack, Status, SweepStart, Value, Writer,
+};
 use crate::diagnostics::{Diagnostic, SourceText};
-use crate::language::{self, InputRecord, Script, Sink};
+use crate::language::{self, InputRecord, Script, Sink, StoredPoints};
 
 use super::inputs;
 use super::output::Output;
 use super::report::{snapshot_text, stack_text, warnings_text};
+use super::sweeps::Tally;
 
 /// The listener of `epiloom run`.
 pub struct Recorder<'a> {
@@ -19,7 +24,11 @@ pub struct Recorder<'a> {
     header: RunHeader,
     shown: Option<Stack>,
     told: Vec<String>,
+    told_of_earlier: bool,
     failed: usize,
+    share: Option<Share>,
+    /// The points of the sweep that is going on, those that were found stored as they are read.
+    tally: Arc<Mutex<Tally>>,
 }
 
 impl<'a> Recorder<'a> {
@@ -30,8 +39,29 @@ impl<'a> Recorder<'a> {
         quiet: bool,
         writer: Writer<'static>,
         header: RunHeader,
+        share: Option<Share>,
     ) -> Self {
-        Recorder { output, source, quiet, writer, header, shown: None, told: Vec::new(), failed: 0 }
+        Recorder {
+            output,
+            source,
+            quiet,
+            writer,
+            header,
+            shown: None,
+            told: Vec::new(),
+            told_of_earlier: false,
+            failed: 0,
+            share,
+            tally: Arc::default(),
+        }
+    }
+
+    /// What became of the unfinished file of an earlier run, once.
+    fn tell_of_earlier(&mut self) {
+        let Some(earlier) = self.writer.earlier().filter(|_| !self.told_of_earlier) else { return };
+        let text = earlier_text(earlier);
+        self.told_of_earlier = true;
+        self.output.remark(&text);
     }
 
     /// The archive, the description of the run, and how many snapshots hold no solution.
@@ -58,6 +88,25 @@ impl<'a> Recorder<'a> {
         text.push('\n');
         self.output.result(&text);
     }
+}
+
+/// What became of the unfinished file of an earlier run, in words.
+pub fn earlier_text(earlier: &Earlier) -> String {
+    match earlier {
+        Earlier::SetAside { path, why } => {
+            format!("an unfinished archive was there, but {why}: it is kept as {}", path.display())
+        }
+        Earlier::TakenOver { snapshots, points } => format!(
+            "going on with the unfinished archive of an earlier run: {points} points of sweeps are stored and not \
+             solved again, {snapshots} snapshots are compared"
+        ),
+    }
+}
+
+/// The counts, whoever holds them.
+fn tally_of(tally: &Mutex<Tally>) -> std::sync::MutexGuard<'_, Tally> {
+    // counting cannot fail half-way
+    tally.lock().unwrap_or_else(PoisonError::into_inner)
 }
 
 /// The description of a run before its script has said anything.
@@ -113,12 +162,57 @@ impl Sink for Recorder<'_> {
 
     fn snapshot(&mut self, snapshot: Snapshot) -> Result<(), String> {
         let kept = self.writer.update_run(&self.header).and_then(|()| self.writer.append(&snapshot));
-        kept.map_err(|error| error.to_string())?;
+        self.tell_of_earlier();
+        kept.map_err(|error| error_text(&error))?;
         self.output.stored();
         self.failed += usize::from(snapshot.label.status != Status::Solved);
         if !self.quiet {
             self.report(&snapshot);
         }
         Ok(())
+    }
+
+    fn sweep(&mut self, sweep: &SweepStart) -> Result<StoredPoints, String> {
+        let begun = self.writer.update_run(&self.header).and_then(|()| self.writer.begin_sweep(sweep));
+        self.tell_of_earlier();
+        let found = begun.map_err(|error| error_text(&error))?;
+        self.tally = Arc::default();
+        let total = self.share.map_or(sweep.points, |share| share.count(sweep.points));
+        self.output.sweep_begins(&sweep.name, total, found.count_left() as u64);
+        let tally = Arc::clone(&self.tally);
+        Ok(Box::new(found.map(move |point| {
+            let point = point.map_err(|error| error_text(&error))?;
+            tally_of(&tally).count(&point);
+            Ok(point)
+        })))
+    }
+
+    fn points(&mut self, sweep: &SweepStart, points: Vec<Point>) -> Result<(), String> {
+        points.iter().for_each(|point| tally_of(&self.tally).count(point));
+        self.writer.append_points(&sweep.name, points).map_err(|error| error_text(&error))?;
+        let tally = tally_of(&self.tally);
+        self.output.sweep_goes_on(tally.done, tally.failed);
+        Ok(())
+    }
+
+    fn sweep_done(&mut self, sweep: &SweepStart, left_out: u64) {
+        let finished = self.writer.finish_sweep(&sweep.name, left_out);
+        self.output.sweep_ends();
+        if let Err(error) = finished {
+            // the writer is broken now, or the archive lacks no point: finishing tells
+            self.output.remark(&error_text(&error));
+        }
+        if !self.quiet {
+            let text = tally_of(&self.tally).summary(sweep, left_out);
+            self.output.result(&text);
+        }
+    }
+}
+
+/// A fault of the archive in one text, with its mend.
+fn error_text(error: &crate::archive::ArchiveError) -> String {
+    match error.help() {
+        Some(help) => format!("{error}; {help}"),
+        None => error.to_string(),
     }
 }

@@ -4,13 +4,15 @@ use std::num::NonZeroUsize;
 use std::path::{Path, PathBuf};
 use std::sync::Arc;
 use std::sync::atomic::{AtomicBool, Ordering};
+use std::time::Duration;
 
-use crate::archive::{Archive, ArchiveError, Writer, unfinished_path};
+use crate::archive::{Archive, ArchiveError, RunHeader, Share, Writer, unfinished_path};
 use crate::diagnostics::{Diagnostic, codes};
-use crate::language;
+use crate::language::{self, Part};
 
 use super::exit::Exit;
-use super::output::Output;
+use super::holder::{Holder, holder_of};
+use super::output::{LOG_EVERY, Output};
 use super::recorder::{Recorder, header};
 use super::script::ScriptArguments;
 use super::trouble::writing_error;
@@ -18,22 +20,47 @@ use super::trouble::writing_error;
 /// `epiloom run SCRIPT`.
 #[derive(clap::Args, Debug)]
 #[command(after_help = "\
-Prints the stack, each stored snapshot with its figures, their numerical errors and its ledger, warnings, and last the
-archive. Snapshots are kept from the moment they are stored: after Ctrl-C, a fault or a kill they are in
-FILE.epiloom.unfinished, which `epiloom show` opens. An earlier archive of the same script is replaced when the run
-has ended well; the archive of another script never is.")]
+Prints the stack, each stored snapshot with its figures, their numerical errors and its ledger, what came of each sweep,
+warnings, and last the archive. Snapshots and points are kept from the moment they are stored: after Ctrl-C, a fault or
+a kill they are in FILE.epiloom.unfinished, which `epiloom show` opens. The same command goes on from there: points of
+sweeps that are stored are not solved again, and the archive is the same to the byte as that of a run that was never
+stopped. An unfinished archive of another run is kept under another name. An earlier archive of the same script is
+replaced when the run has ended well; the archive of another script never is.
+
+A failed point of a sweep is a row with its reason and no failure of the run.
+
+On several machines: `--part 3/64` solves every 64th point of each plan, beginning with the third, into an archive of
+its own; `epiloom gather` makes the whole of all parts, and `epiloom job` writes the script for a cluster.")]
 pub struct Run {
     #[command(flatten)]
     script: ScriptArguments,
     /// The archive to write [default: the script's name with .epiloom, in the current folder]
     #[arg(long, value_name = "FILE.epiloom")]
     out: Option<PathBuf>,
+    /// Solve only this share of every plan, such as 3/64, for `epiloom gather`
+    #[arg(long, value_name = "K/N", value_parser = share)]
+    part: Option<Share>,
+    /// Begin anew: an unfinished archive of this very run is set aside, not gone on with
+    #[arg(long)]
+    anew: bool,
     /// Threads to use; no result depends on it [default: all]
     #[arg(long, value_name = "N")]
     threads: Option<NonZeroUsize>,
     /// Print only what the script prints, and what is wrong
     #[arg(long)]
     quiet: bool,
+    /// Seconds between two lines of progress, where standard error is no terminal
+    #[arg(long, value_name = "SECONDS", default_value_t = LOG_EVERY)]
+    log_every: u64,
+}
+
+/// A share as it is typed, `3/64`.
+pub fn share(text: &str) -> Result<Share, String> {
+    let parts = text.split_once('/').and_then(|(number, of)| Some((number.parse().ok()?, of.parse().ok()?)));
+    match parts {
+        Some((number, of)) if (1..=of).contains(&number) => Ok(Share { number, of }),
+        _ => Err("expected K/N, such as 3/64 for the third of 64 parts".to_string()),
+    }
 }
 
 impl Run {
@@ -54,57 +81,104 @@ impl Run {
         let path = self.archive_path();
         may_replace(&path, &script.name)?;
         let first = header(&script);
-        let writer = Writer::create(&path, &first).map_err(|e| writing_error(&e))?;
-        if let Some(aside) = writer.set_aside() {
-            output.remark(&format!("an unfinished archive of an earlier run is kept as {}", aside.display()));
-        }
+        let opened =
+            if self.anew { Writer::create(&path, &first) } else { Writer::resume(&path, &first, self.part) };
+        let writer = opened.map_err(|error| claim_error(&error, &path))?;
+        let _holder = Holder::name(&path);
         let mut options = self.script.options();
         options.threads = self.threads.map(NonZeroUsize::get);
+        options.part = self.part.map(|share| Part { number: share.number, of: share.of });
         options.interrupt = stop_on_interrupt(output);
         if !self.quiet {
+            output.log_every(Duration::from_secs(self.log_every));
             output.show_progress();
         }
-        let mut recorder = Recorder::new(output, &source, self.quiet, writer, first);
+        let mut recorder = Recorder::new(output, &source, self.quiet, writer, first, self.part);
         let outcome = language::run(&script, options, &mut recorder);
         let (writer, header, failed) = recorder.into_parts();
         output.end_progress();
         for error in &outcome.errors {
             output.diagnostic(error, Some(&source));
         }
-        let stored = writer.count();
-        if stored == 0 {
-            discard(writer);
-            if outcome.errors.is_empty() {
-                output.remark(
-                    "the script stored nothing, so no archive was written: store(\"name\", result) does",
-                );
-            }
-        } else if outcome.errors.is_empty() {
-            let written = writer.finish(&header).map_err(|error| kept(&error, &path))?;
-            if !self.quiet {
-                output.result(&format!("archive {}\n", written.display()));
-            }
-        } else {
-            let unfinished = writer.abandon().map_err(|error| kept(&error, &path))?;
-            let snapshots = if stored == 1 {
-                "1 finished snapshot is"
-            } else {
-                &format!("{stored} finished snapshots are")
-            };
-            output.remark(&format!("{snapshots} kept in {}", unfinished.display()));
-        }
+        end(output, writer, &header, &path, &outcome, self.quiet)?;
         Ok(ending(&outcome, failed))
     }
 
     fn archive_path(&self) -> PathBuf {
-        match &self.out {
-            Some(path) => path.clone(),
-            None => {
-                let mut name = self.script.script.file_stem().unwrap_or_default().to_os_string();
-                name.push(".epiloom");
-                PathBuf::from(name)
-            }
+        self.out.clone().unwrap_or_else(|| default_archive(&self.script.script, self.part))
+    }
+}
+
+/// The archive of a script, or of a part of it, in the current folder: names of parts sort by their number.
+pub fn default_archive(script: &Path, share: Option<Share>) -> PathBuf {
+    let mut name = script.file_stem().unwrap_or_default().to_os_string();
+    if let Some(Share { number, of }) = share {
+        let digits = of.to_string().len();
+        name.push(format!(".part-{number:0digits$}-of-{of}"));
+    }
+    name.push(".epiloom");
+    PathBuf::from(name)
+}
+
+/// Finishes the archive, or keeps what is stored, and says so.
+///
+/// # Errors
+/// The archive could not be finished; what was stored is kept.
+pub fn end(
+    output: &mut Output,
+    writer: Writer<'static>,
+    header: &RunHeader,
+    path: &Path,
+    outcome: &language::RunOutcome,
+    quiet: bool,
+) -> Result<(), Box<Diagnostic>> {
+    if !writer.holds_anything() {
+        // should its file refuse to go, the next run takes it over
+        let _ = writer.discard();
+        if outcome.errors.is_empty() {
+            output.remark(
+                "the script stored nothing, so no archive was written: store(\"name\", result) does, and a sweep",
+            );
         }
+        return Ok(());
+    }
+    if outcome.errors.is_empty() {
+        let written = writer.finish(header).map_err(|error| kept(&error, path))?;
+        if !quiet {
+            output.result(&format!("archive {}\n", written.display()));
+        }
+        return Ok(());
+    }
+    let (snapshots, points) = (writer.count(), writer.points());
+    let unfinished = writer.abandon().map_err(|error| kept(&error, path))?;
+    let mut what = Vec::new();
+    if points > 0 {
+        what.push(if points == 1 {
+            "1 finished point".to_string()
+        } else {
+            format!("{points} finished points")
+        });
+    }
+    if snapshots == 1 {
+        what.push("1 finished snapshot".to_string());
+    } else if snapshots > 1 {
+        what.push(format!("{snapshots} finished snapshots"));
+    }
+    let verb = if points + snapshots as u64 == 1 { "is" } else { "are" };
+    let what = if what.is_empty() { "what an earlier run stored".to_string() } else { what.join(" and ") };
+    output.remark(&format!(
+        "{what} {verb} kept in {}; the same command goes on from there",
+        unfinished.display()
+    ));
+    Ok(())
+}
+
+/// Why the archive could not be claimed, with who holds it.
+pub fn claim_error(error: &ArchiveError, path: &Path) -> Diagnostic {
+    let fault = writing_error(error);
+    match (error, holder_of(path)) {
+        (ArchiveError::HeldByAnotherRun { .. }, Some(holder)) => fault.note(format!("it is {holder}")),
+        _ => fault,
     }
 }
 
@@ -149,13 +223,6 @@ fn may_replace(path: &Path, script: &str) -> Result<(), Box<Diagnostic>> {
 fn kept(error: &ArchiveError, path: &Path) -> Diagnostic {
     let unfinished = unfinished_path(path);
     writing_error(error).note(format!("what was stored is in {}", unfinished.display()))
-}
-
-/// Drops an archive that holds nothing; should its file refuse to go, the next run takes it over.
-fn discard(writer: Writer<'static>) {
-    let unfinished = writer.unfinished().to_path_buf();
-    let _ = std::fs::remove_file(unfinished);
-    drop(writer);
 }
 
 /// A flag that Ctrl-C raises; a second Ctrl-C ends the process at once, which loses nothing that is stored.

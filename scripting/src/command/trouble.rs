@@ -12,8 +12,12 @@ pub fn archive_error(error: &ArchiveError) -> Diagnostic {
         ArchiveError::NoWholeFrame { .. } => codes::TORN_ARCHIVE,
         ArchiveError::DamagedStart { .. }
         | ArchiveError::DamagedSnapshot { .. }
+        | ArchiveError::DamagedPoints { .. }
         | ArchiveError::DamagedRun => codes::DAMAGED_FRAME,
-        ArchiveError::NoSuchSnapshot { .. } | ArchiveError::NoSuchIndex { .. } => codes::UNKNOWN_SNAPSHOT,
+        ArchiveError::NoSuchSnapshot { .. }
+        | ArchiveError::NoSuchIndex { .. }
+        | ArchiveError::NoSuchSweep { .. }
+        | ArchiveError::NoSuchPoint { .. } => codes::UNKNOWN_SNAPSHOT,
         ArchiveError::HeldByAnotherRun { .. } => codes::BUSY,
         ArchiveError::NameTaken { .. } => codes::SNAPSHOT_TWICE,
         ArchiveError::RaggedTable { .. } | ArchiveError::Encoding { .. } => codes::INTERNAL,

@@ -2,7 +2,10 @@
 //! returned is exactly what was written.
 
 use super::sample;
-use crate::archive::encoding::{Index, IndexEntry, decode_snapshot, sections, snapshot_sections};
+use crate::archive::blocks::BlockLabel;
+use crate::archive::encoding::{
+    Index, IndexEntry, decode_label, decode_snapshot, sections, snapshot_sections,
+};
 use crate::archive::layout::{
     FOOTER_LENGTH, Footer, HEADER_LENGTH, Header, Kind, START_LENGTH, digest, start_bytes,
 };
@@ -16,6 +19,115 @@ fn finished() -> Vec<u8> {
 fn unfinished() -> Vec<u8> {
     let folder = tempfile::tempdir().unwrap();
     std::fs::read(sample::write_unfinished(folder.path())).unwrap()
+}
+
+/// Everything of an archive with a sweep, as bytes of text, held against what was written: the points that were read,
+/// the snapshots of points among them, and whether anything at all was reported as amiss.
+fn check_swept(bytes: Vec<u8>, what: &str) -> (usize, usize, bool) {
+    let Ok(archive) = Archive::from_bytes(bytes) else { return (0, 0, true) };
+    let mut reported = archive.is_damaged() || archive.run().is_err();
+    for index in 0..archive.entries().len() {
+        match archive.snapshot_at(index) {
+            Ok(snapshot) => {
+                let original = [sample::snapshot("light J-V", 0), sample::failed("bands", 2)]
+                    .into_iter()
+                    .find(|each| each.name() == snapshot.name());
+                assert_eq!(compare_bits(&original.unwrap(), &snapshot), [], "{what}");
+            }
+            Err(_) => reported = true,
+        }
+    }
+    let (mut points, mut snapshots) = (0, 0);
+    for sweep in archive.sweeps() {
+        assert_eq!(sweep.name, "map", "{what}");
+        if let Some(record) = sweep.record() {
+            assert_eq!(record.start, sample::sweep_start(), "{what}");
+        }
+        for stored in archive.points(sweep) {
+            let Ok(stored) = stored else {
+                reported = true;
+                continue;
+            };
+            let original =
+                sample::points().into_iter().find(|each| each.index == stored.point.index).unwrap();
+            let written = Point { snapshots: Vec::new(), ..original.clone() };
+            assert_eq!(format!("{:?}", stored.point), format!("{written:?}"), "{what}");
+            points += 1;
+            for (place, original) in stored.snapshots.iter().zip(&original.snapshots) {
+                match archive.point_snapshot(place) {
+                    Ok(snapshot) => {
+                        assert_eq!(compare_bits(original, &snapshot), [], "{what}");
+                        snapshots += 1;
+                    }
+                    Err(_) => reported = true,
+                }
+            }
+        }
+    }
+    (points, snapshots, reported)
+}
+
+/// Every byte of an archive with a sweep matters: each flip is reported, nothing wrong is read, and no more is lost than
+/// the block or the snapshot that the byte belongs to.
+#[test]
+fn every_flipped_byte_of_an_archive_with_a_sweep_is_reported() {
+    let folder = tempfile::tempdir().unwrap();
+    let finished = std::fs::read(sample::write_swept_finished(folder.path())).unwrap();
+    let unfinished = std::fs::read(sample::write_swept_unfinished(folder.path())).unwrap();
+    for (bytes, least) in [(finished, 0), (unfinished, 4)] {
+        assert_eq!(check_swept(bytes.clone(), "untouched"), (7, 4, false));
+        for place in 0..bytes.len() {
+            for pattern in [0x01, 0x80] {
+                let mut flipped = bytes.clone();
+                flipped[place] ^= pattern;
+                let what = format!("byte {place} ^ {pattern:#x}");
+                let (points, snapshots, reported) = check_swept(flipped, &what);
+                assert!(reported, "{what} went unnoticed");
+                // a damaged block loses its points, a damaged snapshot itself, and each nothing else
+                let lost_one = points == 7 && snapshots >= 3 || points >= least;
+                assert!(
+                    place < START_LENGTH || lost_one,
+                    "{what}: {points} points, {snapshots} snapshots left"
+                );
+            }
+        }
+    }
+}
+
+/// A file with a sweep cut anywhere opens to the points of its whole blocks and says so.
+#[test]
+fn a_sweep_cut_at_any_length_keeps_its_whole_blocks() {
+    let folder = tempfile::tempdir().unwrap();
+    for bytes in [sample::write_swept_unfinished(folder.path()), {
+        sample::write_swept_finished(&tempfile::tempdir_in(folder.path()).unwrap().keep())
+    }]
+    .map(|file| std::fs::read(file).unwrap())
+    {
+        let ends = frame_ends(&bytes);
+        let blocks: Vec<(usize, usize)> = ends
+            .windows(2)
+            .filter_map(|pair| {
+                let header =
+                    Header::from_bytes(bytes[pair[0]..pair[0] + HEADER_LENGTH].try_into().unwrap()).unwrap();
+                let label = HEADER_LENGTH + pair[0]..HEADER_LENGTH + pair[0] + header.label as usize;
+                let label: BlockLabel =
+                    (header.kind == Kind::Points.number()).then(|| decode_label(&bytes[label]).unwrap())?;
+                Some((pair[1], label.count as usize))
+            })
+            .collect();
+        assert_eq!(blocks.iter().map(|block| block.1).sum::<usize>(), 7);
+        for length in 0..bytes.len() {
+            let what = format!("cut at {length}");
+            let archive = Archive::from_bytes(bytes[..length].to_vec());
+            let read = archive.map_or(0, |archive| {
+                assert!(!archive.warnings().is_empty());
+                archive.sweeps().iter().map(Sweep::count).sum::<u64>()
+            });
+            let whole: usize = blocks.iter().filter(|block| block.0 <= length).map(|block| block.1).sum();
+            assert_eq!(read, whole as u64, "{what}");
+            check_swept(bytes[..length].to_vec(), &what);
+        }
+    }
 }
 
 /// Opens the bytes and holds everything that comes out against what was written. Returns the names of the
@@ -268,7 +380,7 @@ fn newer_formats_are_refused_with_both_numbers() {
     let bytes = unfinished();
     let at = frame_ends(&bytes)[1];
     let header = Header::from_bytes(bytes[at..at + HEADER_LENGTH].try_into().unwrap()).unwrap();
-    for changed in [Header { schema: 2, ..header.clone() }, Header { kind: 77, ..header }] {
+    for changed in [Header { schema: 9, ..header.clone() }, Header { kind: 77, ..header }] {
         let mut newer = bytes.clone();
         newer[at..at + HEADER_LENGTH].copy_from_slice(&changed.to_bytes());
         assert!(matches!(Archive::from_bytes(newer), Err(ArchiveError::Newer { .. })));
@@ -337,7 +449,8 @@ fn a_lying_index_gives_errors() {
         .unwrap()
         .run;
     let with = |entries: Vec<IndexEntry>| {
-        let made = sections(Kind::Index, "index", &Index { entries: entries.clone() }).unwrap();
+        let made =
+            sections(Kind::Index, "index", &Index { entries: entries.clone(), sweeps: Vec::new() }).unwrap();
         let header = made.header(4, run);
         let mut lying = bytes[..footer.index as usize].to_vec();
         lying.extend(made.frame(&header));

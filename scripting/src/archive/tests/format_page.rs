@@ -2,9 +2,11 @@
 
 use std::fmt::Write;
 
-use crate::archive::encoding::{Index, IndexEntry};
+use crate::archive::blocks::{BlockLabel, PointBlock, PointColumn, RowSnapshot, RowTexts};
+use crate::archive::encoding::{BlockPlace, Index, IndexEntry, SweepPlace};
 use crate::archive::layout::*;
 use crate::archive::model::*;
+use crate::archive::{Share, SweepColumn, SweepRecord, SweepStart};
 
 const PAGE: &str = concat!(env!("CARGO_MANIFEST_DIR"), "/FORMAT.md");
 
@@ -136,6 +138,8 @@ fn kinds() -> String {
             Kind::Run => ("the description of the run", "none", "RunHeader"),
             Kind::Snapshot => ("one snapshot", "Label", "Snapshot"),
             Kind::Index => ("the index of a finished file", "none", "Index"),
+            Kind::Sweep => ("the description of a sweep", "text: its name", "SweepRecord"),
+            Kind::Points => ("points of a sweep", "BlockLabel", "PointBlock"),
         };
         let (number, schema, limit) = (kind.number(), kind.schema(), kind.payload_limit());
         writeln!(out, "| {number} | {schema} | {holds} | {label} | {payload} | {limit} |").unwrap();
@@ -204,8 +208,19 @@ fn records() -> String {
         ("Stack", Stack::FIELDS),
         ("Layer", Layer::FIELDS),
         ("MaterialValue", MaterialValue::FIELDS),
+        ("SweepRecord", SweepRecord::FIELDS),
+        ("SweepStart", SweepStart::FIELDS),
+        ("SweepColumn", SweepColumn::FIELDS),
+        ("Share", Share::FIELDS),
+        ("BlockLabel", BlockLabel::FIELDS),
+        ("PointBlock", PointBlock::FIELDS),
+        ("PointColumn", PointColumn::FIELDS),
+        ("RowTexts", RowTexts::FIELDS),
+        ("RowSnapshot", RowSnapshot::FIELDS),
         ("Index", Index::FIELDS),
         ("IndexEntry", IndexEntry::FIELDS),
+        ("SweepPlace", SweepPlace::FIELDS),
+        ("BlockPlace", BlockPlace::FIELDS),
     ] {
         write!(out, "\n### {name}\n\n| field | type | meaning |\n|---|---|---|\n").unwrap();
         for (field, kind, meaning, mark) in list {

@@ -78,6 +78,57 @@ fn an_independent_reader_finds_the_same_numbers() {
         }
     }
 
+    for file in [
+        sample::write_swept_unfinished(folder.path()),
+        sample::write_swept_finished(&tempfile::tempdir_in(folder.path()).unwrap().keep()),
+    ] {
+        let printed = run(&python, &[reader.to_str().unwrap(), file.to_str().unwrap(), "--bits"]).unwrap();
+        let read: serde_json::Value = serde_json::from_str(&printed).unwrap();
+        assert_eq!(read["snapshots"].as_array().unwrap().len(), 2);
+        let sweep = &read["sweeps"][0];
+        assert_eq!((&sweep["start"]["name"], &sweep["left_out"]), (&"map".into(), &2.into()));
+        let mut points = sample::points();
+        points.sort_by_key(|point| point.index);
+        assert_eq!(sweep["points"].as_array().unwrap().len(), points.len());
+        for (point, read) in points.iter().zip(sweep["points"].as_array().unwrap()) {
+            assert_eq!(read["index"], point.index);
+            let cells: Vec<&Cell> =
+                point.coordinates.iter().chain(point.outputs.iter().map(|output| &output.cell)).collect();
+            let numbers = cells.iter().flat_map(|cell| match cell {
+                Cell::Number { value, error } => [Some(*value), *error],
+                _ => [None, None],
+            });
+            let bits: Vec<String> =
+                numbers.flatten().map(|value| format!("{:016x}", value.to_bits())).collect();
+            assert_eq!(read["bits"], serde_json::json!(bits));
+            let failed = match &point.status {
+                Status::Failed { reason } => serde_json::json!(reason),
+                Status::Solved => serde_json::Value::Null,
+            };
+            assert_eq!(read["failed"], failed);
+            assert_eq!(read["printed"], serde_json::json!(point.printed));
+            assert_eq!(read["warnings"], serde_json::json!(point.warnings));
+            for (output, shown) in point.outputs.iter().zip(read["outputs"].as_array().unwrap()) {
+                assert_eq!(
+                    (&shown["name"], &shown["unit"]),
+                    (&output.column.name.as_str().into(), &output.column.unit.as_str().into())
+                );
+                match &output.cell {
+                    Cell::Text(text) => assert_eq!(shown["text"], text.as_str()),
+                    Cell::Flag(flag) => assert_eq!(shown["flag"], *flag),
+                    Cell::Absent { reason } => assert_eq!(shown["absent"], reason.as_str()),
+                    Cell::Number { .. } => {}
+                }
+            }
+            let names: Vec<&str> = point.snapshots.iter().map(Snapshot::name).collect();
+            let stored = read["snapshots"].as_array().unwrap();
+            assert_eq!(stored.iter().map(|each| &each["label"]["name"]).collect::<Vec<_>>(), names);
+            for (snapshot, read) in point.snapshots.iter().zip(stored) {
+                assert_eq!(read["bits"], serde_json::json!(all_bits(snapshot)));
+            }
+        }
+    }
+
     // The check can fail: the reader refuses a file with one byte changed.
     let file = sample::write_finished(&tempfile::tempdir_in(folder.path()).unwrap().keep());
     let mut bytes = std::fs::read(&file).unwrap();

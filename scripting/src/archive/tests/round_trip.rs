@@ -202,7 +202,8 @@ proptest! {
     #[test]
     fn hostile_payloads_are_refused_quietly(bytes in prop::collection::vec(any::<u8>(), 0..400)) {
         let _ = decode_snapshot(&bytes, &[]);
-        let _ = crate::archive::encoding::decode_label(&bytes);
+        let _ = crate::archive::encoding::decode_label::<Label>(&bytes);
+        let _ = crate::archive::blocks::Block::decode(&bytes, &[]);
         let _ = Archive::from_bytes(bytes);
     }
 }

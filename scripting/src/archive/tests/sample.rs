@@ -127,3 +127,97 @@ pub(super) fn write_finished(folder: &Path) -> PathBuf {
     }
     writer.finish(&run()).unwrap()
 }
+
+/// A sweep of nine indices, two of which its filter leaves out.
+pub(super) fn sweep_start() -> SweepStart {
+    let column = |name: &str, unit: &str| SweepColumn { name: name.to_owned(), unit: unit.to_owned() };
+    SweepStart {
+        name: "map".to_owned(),
+        step: 1,
+        points: 9,
+        plan: "grid of bsf (3) by alloy (3)".to_owned(),
+        coordinates: vec![column("bsf", "nm"), column("alloy", "")],
+    }
+}
+
+/// The points of that sweep with every kind of cell, out of order: solved, failed, with lines, warnings and snapshots.
+pub(super) fn points() -> Vec<Point> {
+    let output = |name: &str, unit: &str, cell: Cell| PointOutput {
+        column: SweepColumn { name: name.to_owned(), unit: unit.to_owned() },
+        cell,
+    };
+    [5, 0, 8, 2, 3, 7, 6]
+        .into_iter()
+        .map(|index: u64| {
+            let number = 1.0 + index as f64 / 3.0;
+            let mut point = Point {
+                index,
+                coordinates: vec![
+                    Cell::Number { value: 10.0 * number, error: None },
+                    Cell::Text(["GaAs", "AlGaAs"][index as usize % 2].to_owned()),
+                ],
+                outputs: vec![
+                    output("efficiency", "", Cell::Number { value: number, error: Some(1e-9) }),
+                    output("good", "", Cell::Flag(index.is_multiple_of(2))),
+                    output("note", "", Cell::Text("as grown".to_owned())),
+                    output("voc", "V", Cell::Number { value: -0.0, error: None }),
+                ],
+                ..Point::default()
+            };
+            match index {
+                2 => {
+                    point.outputs.clear();
+                    point.status = Status::Failed { reason: "no convergence at 0.7 V".to_owned() };
+                }
+                3 => {
+                    // another unit under the same name, a number that is none, and nothing with its reason
+                    point.outputs[1] =
+                        output("good", "", Cell::Absent { reason: "not looked at".to_owned() });
+                    point.outputs[3] = output("voc", "mV", Cell::Number { value: f64::NAN, error: None });
+                }
+                5 => {
+                    point.printed = vec!["as grown".to_owned(), String::new()];
+                    point.warnings = vec!["the lifetime is illustrative".to_owned()];
+                }
+                6 | 7 => point.snapshots = vec![of_point(index, "bands"), of_point(index, "light J-V")],
+                _ => {}
+            }
+            point
+        })
+        .collect()
+}
+
+/// What a point stores.
+fn of_point(index: u64, name: &str) -> Snapshot {
+    let mut made = failed(&point_snapshot_name("map", index, name), 1);
+    made.label.order.point = index;
+    made.tables = vec![Table::new("bands", vec![Column::new("depth_um", "um", vec![0.5, index as f64])])];
+    made
+}
+
+/// Hands the sweep to a writer: three batches.
+pub(super) fn write_sweep(writer: &mut Writer<'_>) {
+    assert_eq!(writer.begin_sweep(&sweep_start()).unwrap().count(), 0);
+    for batch in points().chunks(3) {
+        writer.append_points("map", batch.to_vec()).unwrap();
+    }
+    writer.finish_sweep("map", 2).unwrap();
+}
+
+/// Two snapshots with a sweep between them, unfinished.
+pub(super) fn write_swept_unfinished(folder: &Path) -> PathBuf {
+    let mut writer = Writer::create(&folder.join("swept.epiloom"), &run()).unwrap();
+    writer.append(&snapshot("light J-V", 0)).unwrap();
+    write_sweep(&mut writer);
+    writer.append(&failed("bands", 2)).unwrap();
+    writer.unfinished().to_owned()
+}
+
+/// The same, finished.
+pub(super) fn write_swept_finished(folder: &Path) -> PathBuf {
+    let mut writer = Writer::create(&folder.join("swept.epiloom"), &run()).unwrap();
+    writer.append(&failed("bands", 2)).unwrap();
+    write_sweep(&mut writer);
+    writer.append(&snapshot("light J-V", 0)).unwrap();
+    writer.finish(&run()).unwrap()
+}

@@ -20,7 +20,15 @@ fn a_second_writer_is_refused_until_the_first_is_gone() {
     }
     drop(first);
     let second = Writer::create(&path, &sample::run()).unwrap();
-    assert_eq!(second.set_aside(), None); // the first had stored nothing
+    assert_eq!(second.earlier(), None); // the first had stored nothing
+}
+
+/// Where the earlier unfinished file was moved to.
+fn aside(writer: &Writer<'_>) -> std::path::PathBuf {
+    match writer.earlier() {
+        Some(Earlier::SetAside { path, .. }) => path.clone(),
+        other => panic!("{other:?}"),
+    }
 }
 
 /// Nothing is lost: what a killed run has stored opens whole, and the next run moves it out of the way.
@@ -30,7 +38,7 @@ fn the_snapshots_of_a_killed_run_are_kept() {
     let left = sample::write_unfinished(folder.path());
     let archive = Archive::open(&left).unwrap();
     assert!(!archive.is_finished());
-    assert_eq!(archive.warnings(), [ArchiveWarning::NotFinished { snapshots: 3 }]);
+    assert_eq!(archive.warnings(), [ArchiveWarning::NotFinished { snapshots: 3, points: 0 }]);
     assert_eq!(archive.run().unwrap(), &sample::run());
     for written in sample::snapshots() {
         assert_eq!(compare_bits(&written, &archive.snapshot(written.name()).unwrap()), []);
@@ -38,7 +46,7 @@ fn the_snapshots_of_a_killed_run_are_kept() {
     for number in 1..=2 {
         let path = folder.path().join("run.epiloom");
         let mut writer = Writer::create(&path, &sample::run()).unwrap();
-        let aside = writer.set_aside().unwrap().to_owned();
+        let aside = aside(&writer);
         assert_eq!(aside, folder.path().join(format!("run.epiloom.unfinished-{number}")));
         assert!(!Archive::open(&aside).unwrap().entries().is_empty());
         writer.append(&sample::snapshot("again", 0)).unwrap();
@@ -56,7 +64,7 @@ fn what_stands_in_the_way_is_neither_overwritten_nor_found_too_late() {
     let path = folder.path().join("run.epiloom");
     std::fs::write(unfinished_path(&path), "a note").unwrap();
     let writer = Writer::create(&path, &sample::run()).unwrap();
-    assert_eq!(std::fs::read(writer.set_aside().unwrap()).unwrap(), b"a note");
+    assert_eq!(std::fs::read(aside(&writer)).unwrap(), b"a note");
 }
 
 /// A name is stored once; a ragged table is refused; neither harms what is there.
@@ -184,7 +192,7 @@ fn a_half_written_frame_is_cut_off_again() {
         writer.append(&sample::snapshot("two", 1)).unwrap();
         writer.append(&sample::snapshot("one", 0)).unwrap();
         let archive = Archive::open(&writer.abandon().unwrap()).unwrap();
-        assert_eq!(archive.warnings(), [ArchiveWarning::NotFinished { snapshots: 2 }]);
+        assert_eq!(archive.warnings(), [ArchiveWarning::NotFinished { snapshots: 2, points: 0 }]);
         break;
     }
 }
