@@ -143,6 +143,9 @@ impl Drop for Edit {
             format!("this change of {} is lost: nothing uses the changed copy", self.what),
         )
         .help(help);
+        if !session.checking() && super::point::lose(session.diagnostic(&fault, self.position)) {
+            return;
+        }
         session.keep(&fault, self.position);
         session.lost_edit.store(true, Ordering::Relaxed);
     }

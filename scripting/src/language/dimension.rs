@@ -116,6 +116,24 @@ impl Dimension {
         })
     }
 
+    /// The dimension of base units written as [`Dimension::base_units`] writes them.
+    pub fn of_base_units(text: &str) -> Option<Dimension> {
+        let mut found = Dimension::NONE;
+        for word in text.split(' ').filter(|word| *word != "1") {
+            let (unit, exponent) = word.split_once('^').unwrap_or((word, "1"));
+            let slot = match unit {
+                "kg" => &mut found.kilogram,
+                "m" => &mut found.metre,
+                "s" => &mut found.second,
+                "A" => &mut found.ampere,
+                "K" => &mut found.kelvin,
+                _ => return None,
+            };
+            *slot = exponent.parse().ok()?;
+        }
+        Some(found)
+    }
+
     /// Its family's words: "a length, such as 30.nm"; base units where scripts know no family of it.
     pub fn family(self) -> String {
         match FAMILIES.iter().find(|f| f.dimension == self) {
@@ -228,5 +246,16 @@ mod tests {
         assert_eq!(Dimension::AREA.power(0.5), Some(Dimension::LENGTH));
         assert_eq!(Dimension::LENGTH.power(0.5), None);
         assert_eq!(Dimension::DENSITY.power(100.0), None);
+    }
+
+    /// Source of truth: reading back what was written.
+    #[test]
+    fn base_units_are_read_back() {
+        for dimension in
+            [Dimension::NONE, Dimension::RADIATIVE, Dimension::AREA_RESISTANCE, Dimension::TEMPERATURE]
+        {
+            assert_eq!(Dimension::of_base_units(&dimension.base_units()), Some(dimension));
+        }
+        assert_eq!(Dimension::of_base_units("furlong"), None);
     }
 }

@@ -25,6 +25,12 @@ pub(super) fn build(session: &Arc<Session>) -> Engine {
     }
     super::value::register(&mut engine, session);
     engine.register_global_module(sandbox::constants(constants()).into());
+    #[allow(deprecated, reason = "marked volatile, not deprecated, by the engine; its version is pinned")]
+    engine.on_parse_token(|token, _, _| match token {
+        // the engine keeps the word for itself and has no use for it; the trade has
+        rhai::Token::Reserved(word) if word.as_str() == "yield" => rhai::Token::Identifier(word),
+        token => token,
+    });
     let printing = Arc::clone(session);
     engine.on_print(move |line| printing.print(line));
     let debugging = Arc::clone(session);
@@ -52,11 +58,16 @@ pub(super) fn constants() -> impl Iterator<Item = (String, Dynamic)> {
     units.chain([("infinity".to_string(), Dynamic::from(f64::INFINITY))])
 }
 
+/// Functions whose names scripts may use for variables of their own: such a variable hides nothing, since functions are
+/// called with brackets.
+const COMMON_NOUNS: &[&str] = &["grid", "list", "zip", "random", "normal", "uniform", "triangular"];
+
 /// Words that a script cannot define as variables.
 fn reserved_names() -> Vec<&'static str> {
     let mut names: Vec<&'static str> = UNITS.iter().map(|u| u.name).collect();
     names.push("infinity");
-    names.extend(vocabulary::entries().filter(|e| e.sort == vocabulary::Sort::Function).map(|e| e.name));
+    let functions = vocabulary::entries().filter(|e| e.sort == vocabulary::Sort::Function).map(|e| e.name);
+    names.extend(functions.filter(|name| !COMMON_NOUNS.contains(name)));
     names.sort_unstable();
     names.dedup();
     names

@@ -7,6 +7,8 @@ use std::sync::mpsc::channel;
 
 use crate::diagnostics::{Diagnostic, codes};
 
+mod captured;
+mod cells;
 mod described;
 mod device_value;
 mod dimension;
@@ -16,6 +18,8 @@ mod fault;
 mod files;
 mod light_value;
 mod lower;
+mod plan;
+mod point;
 mod quantity;
 mod reference;
 mod report;
@@ -25,6 +29,8 @@ mod session;
 mod snapshot;
 mod solver_faults;
 mod spans;
+mod sweep;
+mod table;
 mod topics;
 mod units;
 mod value;
@@ -91,6 +97,7 @@ pub fn run(script: &Script, options: RunOptions, sink: &mut dyn Sink) -> RunOutc
     errors.sort_by_key(|d| d.span());
     outcome.errors = errors;
     outcome.warnings = std::mem::take(&mut state.warnings);
+    outcome.waits_for = state.waits_for.take();
     outcome.interrupted = outcome.errors.iter().any(|e| e.code == codes::INTERRUPTED);
     outcome.stored = session.stored.load(std::sync::atomic::Ordering::Relaxed) as usize;
     outcome
@@ -98,6 +105,7 @@ pub fn run(script: &Script, options: RunOptions, sink: &mut dyn Sink) -> RunOutc
 
 /// Reads and runs the script of a session.
 fn evaluate(session: &std::sync::Arc<Session>) -> Vec<Diagnostic> {
+    point::allow(session.options.limits.operations);
     let mut engine = engine::build(session);
     let ast = match engine::compile(&mut engine, &session.source.text) {
         Ok(ast) => ast,
@@ -177,6 +185,13 @@ fn hand_over(event: Event, sink: &mut dyn Sink) {
         Event::Snapshot(snapshot, reply) => {
             let _ = reply.send(sink.snapshot(*snapshot));
         }
+        Event::Sweep(sweep, reply) => {
+            let _ = reply.send(sink.sweep(&sweep));
+        }
+        Event::Points(sweep, points, reply) => {
+            let _ = reply.send(sink.points(&sweep, points));
+        }
+        Event::SweepDone(sweep, left_out) => sink.sweep_done(&sweep, left_out),
     }
 }
 

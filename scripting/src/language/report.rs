@@ -27,6 +27,19 @@ pub(super) fn is_stop(error: &EvalAltResult) -> bool {
     )
 }
 
+/// Why a script was stopped between two operations, if it was.
+pub(super) fn stop(error: &EvalAltResult) -> Option<Stop> {
+    match innermost(error).0 {
+        EvalAltResult::ErrorTerminated(value, _) => value.clone().try_cast::<Stop>(),
+        _ => None,
+    }
+}
+
+/// The error that stops a script.
+pub(super) fn stopped(stop: Stop, position: Position) -> Box<EvalAltResult> {
+    Box::new(EvalAltResult::ErrorTerminated(Dynamic::from(stop), position))
+}
+
 /// Keeps the error's faults without stopping.
 pub(super) fn keep(session: &Arc<Session>, error: &EvalAltResult) {
     for (fault, position) in faults(session, error) {
@@ -65,10 +78,13 @@ fn faults(session: &Arc<Session>, error: &EvalAltResult) -> Vec<(Fault, Position
             }
             None => one(Fault::new(codes::THROWN, thrown(value))),
         },
-        EvalAltResult::ErrorTerminated(value, _) if value.clone().try_cast::<Stop>() == Some(Stop::Fault) => {
+        EvalAltResult::ErrorTerminated(value, _)
+            if matches!(value.clone().try_cast::<Stop>(), Some(Stop::Fault | Stop::Share | Stop::Halted)) =>
+        {
             Vec::new()
         }
         EvalAltResult::ErrorTerminated(value, _) => one(match value.clone().try_cast::<Stop>() {
+            Some(Stop::Operations) => too_many_operations(session),
             Some(Stop::Memory) => {
                 Fault::new(codes::TOO_LARGE, "the script needs more memory than it may have")
                     .label(format!("stopped here, at {} MB", session.options.limits.memory >> 20))
@@ -124,11 +140,7 @@ fn faults(session: &Arc<Session>, error: &EvalAltResult) -> Vec<(Fault, Position
             one(Fault::new(codes::ARITHMETIC, "this calculation with whole numbers has no result")
                 .help("write one of the numbers with a point, `2.0`, to calculate with real numbers"))
         }
-        EvalAltResult::ErrorTooManyOperations(_) => one(Fault::new(
-            codes::TOO_MANY_OPERATIONS,
-            format!("the script did more than {} operations", session.options.limits.operations),
-        )
-        .label("stopped here")),
+        EvalAltResult::ErrorTooManyOperations(_) => one(too_many_operations(session)),
         EvalAltResult::ErrorTooManyVariables(_) => {
             one(Fault::new(codes::TOO_LARGE, "the script defines too many variables"))
         }
@@ -449,6 +461,16 @@ fn thrown(value: &Dynamic) -> String {
         Ok(text) => text,
         Err(_) => format!("the script stopped itself with {}", super::value::described(value)),
     }
+}
+
+fn too_many_operations(session: &Session) -> Fault {
+    let limits = &session.options.limits;
+    let message = if super::point::inside() {
+        format!("the point did more than {} operations", limits.point_operations)
+    } else {
+        format!("the script did more than {} operations", limits.operations)
+    };
+    Fault::new(codes::TOO_MANY_OPERATIONS, message).label("stopped here")
 }
 
 fn first_word(text: &str) -> &str {

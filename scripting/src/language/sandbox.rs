@@ -7,6 +7,7 @@ use rhai::{Dynamic, Engine, INT, Module};
 use crate::diagnostics::codes;
 
 use super::fault::{Fault, Outcome};
+use super::point;
 use super::session::Session;
 
 /// Why a script was stopped between two operations.
@@ -18,6 +19,12 @@ pub(super) enum Stop {
     Memory,
     /// A fault that is kept already.
     Fault,
+    /// More operations than the script, or a point of a sweep, may do.
+    Operations,
+    /// Another point of the sweep has stopped the script.
+    Halted,
+    /// It reads a table of which this run has a share only.
+    Share,
 }
 
 /// Operations between two looks at the memory in use.
@@ -46,15 +53,26 @@ pub(super) fn close(engine: &mut Engine, session: &Arc<Session>) {
         engine.register_fn(name, move |_: f64| -> Outcome<Dynamic> { Err(closed_function(name).into()) });
     }
     let watched = Arc::clone(session);
-    engine.on_progress(move |operations| {
+    engine.on_progress(move |_| {
+        // counted here, since the engine forgets what closures do that its own functions call
+        let (operations, allowed) = point::count_operation();
+        if !allowed {
+            return Some(Dynamic::from(Stop::Operations));
+        }
         if watched.interrupted() {
             return Some(Dynamic::from(Stop::Interrupted));
         }
-        if watched.lost_edit.load(std::sync::atomic::Ordering::Relaxed) && !watched.checking() {
+        let lost = point::lost() || watched.lost_edit.load(std::sync::atomic::Ordering::Relaxed);
+        if lost && !watched.checking() {
             return Some(Dynamic::from(Stop::Fault));
         }
-        if operations % MEMORY_INTERVAL == 0 && too_much_memory(&watched) {
-            return Some(Dynamic::from(Stop::Memory));
+        if operations % MEMORY_INTERVAL == 0 {
+            if too_much_memory(&watched) {
+                return Some(Dynamic::from(Stop::Memory));
+            }
+            if point::halted() {
+                return Some(Dynamic::from(Stop::Halted));
+            }
         }
         None
     });

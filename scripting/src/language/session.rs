@@ -4,7 +4,7 @@ use std::collections::BTreeMap;
 use std::path::PathBuf;
 use std::sync::atomic::{AtomicBool, AtomicU64, Ordering};
 use std::sync::mpsc::{Sender, channel};
-use std::sync::{Arc, Mutex, MutexGuard};
+use std::sync::{Arc, Mutex, MutexGuard, OnceLock};
 
 use rhai::Position;
 
@@ -13,6 +13,7 @@ use crate::diagnostics::{Diagnostic, SourceText, codes};
 
 use super::fault::{Fault, Place};
 use super::files::Files;
+use super::point;
 use super::quantity::Quantity;
 use super::spans::locate;
 
@@ -35,6 +36,12 @@ pub struct Limits {
     pub memory: u64,
     /// Points of one curve or spectral response.
     pub points: usize,
+    /// Operations of the script in one point of a sweep; solving does not count.
+    pub point_operations: u64,
+    /// Operations of the script in all points of all sweeps.
+    pub sweep_operations: u64,
+    /// Points of one sweep.
+    pub sweep_points: u64,
     /// Bytes of one data file.
     pub file: u64,
 }
@@ -50,6 +57,9 @@ impl Default for Limits {
             variables: 2_000,
             memory: 1 << 30,
             points: 20_000,
+            point_operations: 20_000_000,
+            sweep_operations: 1_000_000_000_000,
+            sweep_points: 20_000_000,
             file: 64 << 20,
         }
     }
@@ -191,6 +201,9 @@ pub(super) enum Event {
     Warning(Diagnostic),
     Working(String),
     Snapshot(Box<Snapshot>, Sender<Result<(), String>>),
+    Sweep(Arc<SweepStart>, Sender<Result<StoredPoints, String>>),
+    Points(Arc<SweepStart>, Vec<Point>, Sender<Result<(), String>>),
+    SweepDone(Arc<SweepStart>, u64),
     Done,
 }
 
@@ -202,6 +215,7 @@ pub(super) struct State {
     pub faults: Vec<Diagnostic>,
     pub warnings: Vec<Diagnostic>,
     pub step: u64,
+    pub waits_for: Option<String>,
 }
 
 /// One run of one script, as its functions see it.
@@ -219,6 +233,10 @@ pub struct Session {
     /// Raised when a change was dropped with its value: the fault is kept, the script is to stop.
     pub(super) lost_edit: AtomicBool,
     pub(super) stored: AtomicU64,
+    /// Operations in the points of all sweeps.
+    pub(super) swept_operations: AtomicU64,
+    /// The threads that solve points, once there was a sweep.
+    workers: OnceLock<Option<rayon::ThreadPool>>,
     events: Sender<Event>,
     state: Mutex<State>,
 }
@@ -234,6 +252,8 @@ impl Session {
             finished: AtomicBool::new(false),
             lost_edit: AtomicBool::new(false),
             stored: AtomicU64::new(0),
+            swept_operations: AtomicU64::new(0),
+            workers: OnceLock::new(),
             events,
             state: Mutex::new(State::default()),
         })
@@ -249,6 +269,40 @@ impl Session {
         self.state.lock().unwrap_or_else(|poisoned| poisoned.into_inner())
     }
 
+    /// The threads that solve points.
+    ///
+    /// # Errors
+    /// The system gives no threads.
+    pub(super) fn workers(&self) -> Result<&rayon::ThreadPool, Fault> {
+        let pool = self.workers.get_or_init(|| {
+            let threads = self.options.threads.unwrap_or(0);
+            // as for the script's own thread: what the system grants
+            super::STACKS.iter().find_map(|stack| {
+                let builder = rayon::ThreadPoolBuilder::new().num_threads(threads).stack_size(*stack);
+                builder.thread_name(|k| format!("points {k}")).build().ok()
+            })
+        });
+        pool.as_ref().ok_or_else(|| Fault::new(codes::INTERNAL, "no threads could be started"))
+    }
+
+    /// Asks the sink and waits for its answer.
+    pub(super) fn ask<T>(&self, event: impl FnOnce(Sender<Result<T, String>>) -> Event) -> Result<T, Fault> {
+        let (reply, answer) = channel();
+        self.tell(event(reply));
+        match answer.recv() {
+            Ok(Ok(given)) => Ok(given),
+            Ok(Err(message)) => Err(Fault::new(codes::UNWRITABLE, message)),
+            Err(_) => Err(Fault::new(codes::INTERNAL, "what was told was not taken")),
+        }
+    }
+
+    /// Tells what is being worked on; points of a sweep are told by their number alone.
+    pub(super) fn working(&self, what: String) {
+        if !point::inside() {
+            self.tell(Event::Working(what));
+        }
+    }
+
     /// Tells the sink. A sink that has gone away has no use for it.
     pub(super) fn tell(&self, event: Event) {
         let _ = self.events.send(event);
@@ -256,7 +310,10 @@ impl Session {
 
     /// The script printed a line; while checking nothing is printed, since figures are not known.
     pub(super) fn print(&self, line: &str) {
-        if !self.checking() {
+        if self.checking() {
+            return;
+        }
+        if point::with(|p| p.printed.push(line.to_string())).is_none() {
             self.tell(Event::Print(line.to_string()));
         }
     }
@@ -264,6 +321,17 @@ impl Session {
     /// A warning, told once for each place and message.
     pub(super) fn warn(&self, fault: Fault, position: Position) {
         let warning = self.diagnostic(&fault, position);
+        let gathered = (!self.checking()).then(|| {
+            point::with(|p| {
+                let words = format!("[{}] {}", warning.code, warning.message);
+                if !p.warnings.contains(&words) {
+                    p.warnings.push(words);
+                }
+            })
+        });
+        if gathered.flatten().is_some() {
+            return;
+        }
         let mut state = self.state();
         if !state.warnings.contains(&warning) {
             state.warnings.push(warning.clone());
@@ -288,16 +356,9 @@ impl Session {
 
     /// Hands a snapshot to the sink and waits until it is safe there.
     pub(super) fn store(&self, snapshot: Snapshot) -> Result<(), Fault> {
-        let (reply, answer) = channel();
-        self.tell(Event::Snapshot(Box::new(snapshot), reply));
-        match answer.recv() {
-            Ok(Ok(())) => {
-                self.stored.fetch_add(1, Ordering::Relaxed);
-                Ok(())
-            }
-            Ok(Err(message)) => Err(Fault::new(codes::UNWRITABLE, message)),
-            Err(_) => Err(Fault::new(codes::INTERNAL, "the snapshot was not taken")),
-        }
+        self.ask(|reply| Event::Snapshot(Box::new(snapshot), reply))?;
+        self.stored.fetch_add(1, Ordering::Relaxed);
+        Ok(())
     }
 
     /// Whether the run is to stop.

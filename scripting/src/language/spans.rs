@@ -141,6 +141,10 @@ pub fn bindings(text: &str) -> Vec<(&str, Span)> {
             }
             before = 'a';
             at = end;
+        } else if rest.starts_with("||") {
+            // "or" between two values, or the empty list of a closure's arguments: neither binds a name
+            before = ';';
+            at = start + 2;
         } else if first == '|' && !(before.is_alphanumeric() || matches!(before, ')' | ']' | '}' | '"')) {
             let until = text[start + 1..].find('|').map_or(text.len(), |i| start + 1 + i);
             names_between(text, start + 1, until, &mut found);
@@ -306,6 +310,14 @@ mod tests {
         let closures = "run(|a, b| a + b, `x ${f(1, \")\")} y`, 3)";
         assert_eq!(found(closures, "run", Place::Argument(0)), "|a, b| a + b");
         assert_eq!(found(closures, "run", Place::Argument(2)), "3");
+    }
+
+    /// Source of truth: the text itself: "or" binds nothing, closures with and without arguments bind theirs.
+    #[test]
+    fn only_bound_names_are_found() {
+        let text = "let f = |a, b| a || b || x | y; let g = || z; for i in 0..3 { } t.filter(|r| r.x > 1.um || (r.y) || r.z < 2.nm)";
+        let names: Vec<&str> = bindings(text).into_iter().map(|(name, _)| name).collect();
+        assert_eq!(names, ["a", "b", "i", "r"]);
     }
 
     /// Source of truth: a torn script must not make the search read past its end.

@@ -10,9 +10,11 @@ use super::device_value::{LayerValue, MaterialValue, StackValue};
 use super::dimension::Dimension;
 use super::fault::{Fault, Faults, Place};
 use super::light_value::LightValue;
+use super::plan::{PlanValue, SpreadValue};
 use super::quantity::Quantity;
 use super::result_value::{CurveValue, ResponseValue, StateValue};
 use super::session::Session;
+use super::table::TableValue;
 
 /// What stands, while checking, for a value that an earlier fault left unknown.
 #[derive(Clone, Copy, Debug)]
@@ -56,6 +58,9 @@ pub const KINDS: &[(&str, &str)] = &[
     ("J-V curve", "J-V curve"),
     ("bias point", "bias point"),
     ("spectral response", "spectral response"),
+    ("plan", "plan"),
+    ("spread", "spread"),
+    ("table", "table"),
 ];
 
 /// "a layer", "an array".
@@ -283,6 +288,9 @@ pub fn register(engine: &mut Engine, session: &Arc<Session>) {
     shown::<LightValue>(engine, LightValue::words);
     shown::<CurveValue>(engine, |c| format!("J-V curve of `{}`", c.0.stack.name));
     shown::<StateValue>(engine, |p| format!("bias point of `{}`", p.0.stack.name));
+    shown::<PlanValue>(engine, |p| format!("plan: {}, {} points", p.0.words(), p.0.size));
+    shown::<SpreadValue>(engine, |s| s.0.words());
+    shown::<TableValue>(engine, |t| t.0.words());
     shown::<ResponseValue>(engine, |r| format!("spectral response of `{}`", r.0.stack.name));
     let words = |faults: &mut Faults| -> String {
         let messages: Vec<&str> = faults.0.iter().map(|f| f.message.as_str()).collect();

@@ -134,6 +134,8 @@ pub struct Call<'a> {
     pub session: &'a Arc<Session>,
     /// Where the call stands.
     pub position: Position,
+    /// The call as the engine sees it, to call closures in.
+    pub context: &'a NativeCallContext<'a>,
 }
 
 impl Call<'_> {
@@ -194,7 +196,7 @@ fn by_value<T: rhai::Variant + Clone>(
 ) {
     let session = Arc::clone(session);
     let run = move |context: NativeCallContext, mut arguments: Vec<Dynamic>| -> Outcome<Dynamic> {
-        let call = Call { session: &session, position: context.call_position() };
+        let call = Call { session: &session, position: context.call_position(), context: &context };
         let mut references: Vec<&mut Dynamic> = arguments.iter_mut().collect();
         settle(&call, body(&call, &mut references))
     };
@@ -210,6 +212,49 @@ fn by_value<T: rhai::Variant + Clone>(
             run(c, vec![D::from(x), y, z, u, v])
         }),
     };
+}
+
+/// The body of a function that calls closures, whose errors it passes on.
+pub type Caller = fn(&Call, &mut [&mut Dynamic]) -> Outcome<Dynamic>;
+
+/// Registers a method that calls closures; the range counts the arguments between the brackets.
+pub fn caller<T: rhai::Variant + Clone>(
+    engine: &mut Engine,
+    session: &Arc<Session>,
+    name: &'static str,
+    arguments: RangeInclusive<usize>,
+    body: Caller,
+) {
+    for count in arguments {
+        let mut kinds = vec![TypeId::of::<T>()];
+        kinds.extend(vec![TypeId::of::<Dynamic>(); count]);
+        let session = Arc::clone(session);
+        engine.register_raw_fn(
+            name,
+            kinds,
+            move |context: NativeCallContext, arguments: &mut [&mut Dynamic]| {
+                let call = Call { session: &session, position: context.call_position(), context: &context };
+                // the receiver is copied, so that the engine sees that it is not changed
+                let mut values: Vec<Dynamic> = arguments.iter().map(|value| value.flatten_clone()).collect();
+                let mut references: Vec<&mut Dynamic> = values.iter_mut().collect();
+                settle_error(&call, body(&call, &mut references))
+            },
+        );
+    }
+}
+
+/// As [`settle`], where errors of closures may come along.
+fn settle_error(call: &Call, outcome: Outcome<Dynamic>) -> Outcome<Dynamic> {
+    outcome.or_else(|error| match *error {
+        rhai::EvalAltResult::ErrorRuntime(value, Position::NONE) if value.is::<Faults>() => {
+            settle(call, Err(value.cast::<Faults>()))
+        }
+        other if call.session.checking() && !super::report::is_stop(&other) => {
+            super::report::keep(call.session, &other);
+            Ok(Dynamic::from(Unknown))
+        }
+        other => Err(Box::new(other)),
+    })
 }
 
 /// Registers a property of values of type `T` that can be read.
@@ -257,7 +302,7 @@ fn method_owned<T: rhai::Variant + Clone>(
 fn register(engine: &mut Engine, session: &Arc<Session>, name: &str, kinds: Vec<TypeId>, body: Body) {
     let session = Arc::clone(session);
     engine.register_raw_fn(name, kinds, move |context: NativeCallContext, arguments: &mut [&mut Dynamic]| {
-        let call = Call { session: &session, position: context.call_position() };
+        let call = Call { session: &session, position: context.call_position(), context: &context };
         settle(&call, body(&call, arguments))
     });
 }

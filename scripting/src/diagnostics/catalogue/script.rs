@@ -89,4 +89,15 @@ super::rows! {
     WRONG_CHOICE = "E122", "a word that is not among the choices",
         "The setting takes one of a few words. The message lists them.",
         "cell.statistics = \"boltzmann\";";
+    PLAN = "E130", "a plan cannot be made of this",
+        "A plan names what varies and its values: each coordinate has values of one kind, plans that are multiplied \
+         vary different things, plans that follow each other the same things, and a spread stands in samples only.",
+        "grid(#{ bsf: [20.nm, 50.nm], x: linear(0.2, 0.8, 4) })";
+    EMPTY_TABLE = "E131", "a table without rows is asked for a number",
+        "No row of the table has a number in this column: all points failed, a filter let none pass, or the figure \
+         does not exist at any point. Compare `table.len` with 0 first.",
+        "let good = map.filter(|r| r.efficiency > 20.percent);\nif good.len > 0 { print(good.best(\"efficiency\")); }";
+    FIT = "E132", "a curve cannot be fitted",
+        "A line needs rows at two different abscissae, a parabola at three; rows without a number do not count.",
+        "table.fit(\"thickness\", \"efficiency\", \"parabola\")";
 }

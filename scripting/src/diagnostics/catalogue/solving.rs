@@ -19,6 +19,11 @@ super::rows! {
         "A factorisation met a pivot of zero: some unknown is not determined, as in an insulating layer without any \
          carriers. The message names layer and depth.",
         "layer(\"buffer\", gaas, 300.nm, acceptors(5e18.per_cm3))";
+    ALL_POINTS_FAILED = "E330", "every point of a sweep failed",
+        "Not one point of the plan gave a result, so there is nothing to go on with. The notes say why, the most \
+         frequent reason first; a slip in the closure fails at every point alike. `epiloom check` finds slips before \
+         anything is solved.",
+        "grid(#{ t: [1.um, 2.um] }).run(\"thickness\", |p| #{ voc: cell_with(p.t).jv(sun).voc })";
     TOO_MANY_OPERATIONS = "E500", "the script ran too long",
         "A script may do a limited number of operations, so that a loop without an end stops. Solving does not \
          count. Check the condition of the loop at the marked place.",

@@ -50,6 +50,14 @@ super::rows! {
         "The numerical error of a figure is larger than the accuracy that the script asked for. The error printed \
          with the figure is the one to trust.",
         "cell.accuracy = 1e-4;";
+    POINTS_FAILED = "W330", "points of a sweep failed",
+        "Some points of the plan gave no result. The table has the others; `table.failures` lists those that failed \
+         with their reasons, and statistics leave them out.",
+        "for f in map.failures { print(`${f.point}: ${f.reason}`); }";
+    POINTS_WARNED = "W331", "points of a sweep have warnings",
+        "Analyses at some points of the plan warned. The message counts the points for each warning and shows that of \
+         the first; the archive keeps the warnings of every point.",
+        "epiloom explain W313";
     TORN = "W400", "the archive is cut off",
         "The file ends within a frame. What is shown comes from the whole frames before the cut.",
         "epiloom show cell.epiloom.unfinished";

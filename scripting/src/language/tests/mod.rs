@@ -4,13 +4,14 @@ mod attacks;
 mod devices;
 mod files;
 mod numbers;
+mod plans;
 mod solving;
 mod words;
 
 use std::collections::BTreeMap;
 
 use super::*;
-use crate::archive::Snapshot;
+use crate::archive::{Point, Snapshot, SweepStart};
 
 /// A sink that remembers.
 #[derive(Default)]
@@ -19,6 +20,10 @@ pub(super) struct Recorder {
     pub inputs: Vec<InputRecord>,
     pub files: Vec<DataFile>,
     pub snapshots: Vec<Snapshot>,
+    /// Sweeps with their points in the order of the plan, and what their filters left out.
+    pub sweeps: Vec<(SweepStart, Vec<Point>, Option<u64>)>,
+    /// Points that are stored from the start, by the name of their sweep.
+    pub stored: BTreeMap<String, Vec<Point>>,
 }
 
 impl Sink for Recorder {
@@ -36,6 +41,23 @@ impl Sink for Recorder {
     fn snapshot(&mut self, snapshot: Snapshot) -> Result<(), String> {
         self.snapshots.push(snapshot);
         Ok(())
+    }
+    fn sweep(&mut self, sweep: &SweepStart) -> Result<StoredPoints, String> {
+        let stored = self.stored.get(&sweep.name).cloned().unwrap_or_default();
+        self.sweeps.push((sweep.clone(), stored.clone(), None));
+        Ok(Box::new(stored.into_iter().map(Ok)))
+    }
+    fn points(&mut self, sweep: &SweepStart, points: Vec<Point>) -> Result<(), String> {
+        let found = self.sweeps.iter_mut().find(|(start, ..)| start == sweep);
+        let (_, kept, _) = found.ok_or("points of no sweep")?;
+        kept.extend(points);
+        kept.sort_by_key(|point| point.index);
+        Ok(())
+    }
+    fn sweep_done(&mut self, sweep: &SweepStart, left_out: u64) {
+        if let Some((_, _, done)) = self.sweeps.iter_mut().find(|(start, ..)| start == sweep) {
+            *done = Some(left_out);
+        }
     }
 }
 

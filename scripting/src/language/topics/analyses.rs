@@ -14,7 +14,6 @@ use crate::language::light_value::LightValue;
 use crate::language::lower;
 use crate::language::quantity::Quantity;
 use crate::language::result_value::{CurveValue, ResponseValue, Solved, StateValue};
-use crate::language::session::Event;
 use crate::language::solver_faults::{analysis_fault, device_fault};
 use crate::language::value::{Options, array, quantity, take};
 use crate::language::vocabulary::{Answer, Call, OptionRow, method, topic};
@@ -100,7 +99,7 @@ fn solve<T>(
         }
         return Ok(Solved { result: None, device: Some(device), stack: Arc::clone(&stack.stack), light });
     }
-    call.session.tell(Event::Working(format!("{what} of `{}`", stack.stack.name)));
+    call.session.working(format!("{what} of `{}`", stack.stack.name));
     let result = analysis(&device, &plain_light).map_err(|error| analysis_fault(&error))?;
     Ok(Solved { result: Some(result), device: Some(device), stack: Arc::clone(&stack.stack), light })
 }

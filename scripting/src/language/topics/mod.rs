@@ -10,8 +10,10 @@ mod layers;
 mod light;
 mod materials;
 mod numbers;
+mod plans;
 mod results;
 mod stacks;
+mod tables;
 
 /// All topics, in the order of the reference page.
 pub(super) static ALL: &[&Topic] = &[
@@ -25,6 +27,8 @@ pub(super) static ALL: &[&Topic] = &[
     &light::TOPIC,
     &analyses::TOPIC,
     &results::TOPIC,
+    &plans::TOPIC,
+    &tables::TOPIC,
 ];
 
 /// Replaces what the engine's own library would compute with the platform's functions.

@@ -6,11 +6,13 @@ use rhai::{Array, Dynamic, Map};
 use crate::diagnostics::codes;
 use crate::language::dimension::Dimension;
 use crate::language::fault::{Fault, Place};
+use crate::language::point;
 use crate::language::quantity::Quantity;
 use crate::language::result_value::{
     CurveValue, FIGURES, ResponseValue, Solved, StateValue, figure, outcome,
 };
 use crate::language::snapshot;
+use crate::language::table::{Extent, TableValue};
 use crate::language::value::{Unknown, give, take, text};
 use crate::language::vocabulary::{
     Answer, Call, function, getter, index_getter, method, topic, unknown_property,
@@ -64,7 +66,7 @@ topic! {
                 let curve: CurveValue = take(arguments[0], "the curve", "a J-V curve")?;
                 Ok(match &curve.0.result {
                     None => Dynamic::from(Unknown),
-                    Some(result) => result.points.iter().map(point).collect::<Array>().into(),
+                    Some(result) => result.points.iter().map(point_map).collect::<Array>().into(),
                 })
             });
         },
@@ -234,7 +236,7 @@ fn of_state(value: &Dynamic, dimension: Dimension, f: fn(&BiasPoint) -> Quantity
     Ok(give(state.0.result.as_ref().map_or_else(|| Quantity::unsolved(dimension), f)))
 }
 
-fn point(point: &analysis::JvPoint) -> Dynamic {
+fn point_map(point: &analysis::JvPoint) -> Dynamic {
     let mut map = Map::new();
     let current = |v: f64| Quantity::si(v, Dimension::CURRENT_DENSITY);
     map.insert("voltage".into(), give(Quantity::si(point.voltage, Dimension::VOLTAGE)));
@@ -385,23 +387,34 @@ fn store(call: &Call, arguments: &mut [&mut Dynamic]) -> Answer {
     if name.trim().is_empty() {
         return Err(Fault::new(codes::WRONG_CHOICE, "a snapshot needs a name").at(Place::Argument(0)).into());
     }
-    let step = {
-        let mut state = session.state();
-        if state.snapshots.insert(name.clone(), call.position).is_some() {
-            return Err(Fault::new(codes::SNAPSHOT_TWICE, format!("two snapshots are called `{name}`"))
-                .help("put what changes into the name: store(`window ${t}`, ..)")
-                .at(Place::Argument(0))
-                .into());
-        }
-        state.step += 1;
-        state.step - 1
+    let twice = || {
+        Fault::new(codes::SNAPSHOT_TWICE, format!("two snapshots are called `{name}`"))
+            .help("put what changes into the name: store(`window ${t}`, ..)")
+            .at(Place::Argument(0))
     };
+    // in a point of a sweep the name is the point's own, and stands behind the sweep's and the point's
+    let inside = point::with(|p| (p.names.insert(name.clone()), p.step, p.index, p.prefix.clone()));
+    let (new, step, index, prefix) = match inside {
+        Some(inside) => inside,
+        None => {
+            let mut state = session.state();
+            let new = state.snapshots.insert(name.clone(), call.position).is_none();
+            state.step += u64::from(new);
+            (new, state.step.saturating_sub(1), 0, String::new())
+        }
+    };
+    if !new {
+        return Err(twice().into());
+    }
+    let name = format!("{prefix}{name}");
     let built = if let Some(curve) = arguments[1].read_lock::<CurveValue>() {
         curve.0.result.as_ref().map(|result| snapshot::curve(&name, step, &curve.0, result))
     } else if let Some(state) = arguments[1].read_lock::<StateValue>() {
         state.0.result.as_ref().map(|result| snapshot::state(&name, step, &state.0, result))
     } else if let Some(response) = arguments[1].read_lock::<ResponseValue>() {
         response.0.result.as_ref().map(|result| snapshot::response(&name, step, &response.0, result))
+    } else if let Some(table) = arguments[1].read_lock::<TableValue>() {
+        (table.0.extent == Extent::Whole).then(|| table.0.snapshot(&name, "table", step))
     } else if arguments[1].is_array() || arguments[1].is_map() {
         let built = snapshot::figures(&name, step, arguments[1]).map_err(|f| f.at(Place::Argument(1)))?;
         (!session.checking()).then_some(built)
@@ -410,7 +423,16 @@ fn store(call: &Call, arguments: &mut [&mut Dynamic]) -> Answer {
             .map_err(|f| f.at(Place::Argument(1)))?;
         None
     };
-    if let Some(built) = built {
+    let Some(mut built) = built else { return Ok(Dynamic::UNIT) };
+    built.label.order.point = index;
+    let mut built = Some(built);
+    if point::with(|p| p.snapshots.extend(built.take())).is_some() {
+        return Ok(Dynamic::UNIT);
+    }
+    // a part holds its share of the plans; what the script stores itself comes when the parts are gathered
+    if session.options.part.is_none()
+        && let Some(built) = built
+    {
         session.store(built)?;
     }
     Ok(Dynamic::UNIT)
