@@ -40,11 +40,13 @@ impl SolveError {
 /// Smallest bias step before giving up, V.
 const SMALLEST_STEP: f64 = 1e-3;
 /// Iterations spent on one advance before giving up.
-const MOST_ITERATIONS: usize = 5_000;
-/// Below this step, V, a failing step is tried through time.
-const RELAXED_STEP: f64 = 0.03;
+const MOST_ITERATIONS: usize = 20_000;
+/// Up to this step, V, a failing step is tried through time.
+const RELAXED_STEP: f64 = 0.1;
 /// Largest bias step tried at once, V.
 const LARGEST_STEP: f64 = 0.4;
+/// Terminal voltages this near, V, are the same.
+const REACHED: f64 = 1e-12;
 /// Smallest factor by which a light ramp may rise before giving up.
 const SMALLEST_RISE: f64 = 1.05;
 
@@ -73,8 +75,16 @@ impl Problem {
             return Ok(point);
         }
         self.work.rejected_steps += 1;
-        if let Ok(point) = self.relax(&lit, Drive::Terminal(0.0), tolerances) {
-            return Ok(point);
+        if let Ok(point) = self.relax(&lit, 0.0, tolerances) {
+            if point.voltage.abs() <= REACHED {
+                return Ok(point);
+            }
+            if let Ok(point) = self.newton(&point.state, Drive::Terminal(0.0), tolerances) {
+                return Ok(point);
+            }
+            if let Ok(point) = self.advance(None, &point, 0.0, tolerances) {
+                return Ok(point);
+            }
         }
         self.work.rejected_steps += 1;
         let mut good = dark;
@@ -122,6 +132,9 @@ impl Problem {
         let mut before = earlier.cloned();
         let mut here = from.clone();
         let mut step = (target - here.voltage).clamp(-LARGEST_STEP, LARGEST_STEP);
+        // The step below which a failing one is tried through time: all of them once that was needed.
+        let mut relaxed = RELAXED_STEP;
+        let mut at_once = true;
         loop {
             let remaining = target - here.voltage;
             let mut aim = here.voltage + step;
@@ -138,22 +151,27 @@ impl Problem {
                 }
                 Err(stalled) => {
                     self.work.rejected_steps += 1;
-                    step *= 0.5;
                     before = None;
-                    if step.abs() < RELAXED_STEP {
-                        // Newton's method loses its way here: go on through time.
-                        let aim = if step.abs() < remaining.abs() { here.voltage + step } else { target };
-                        let guess = self.predict(None, &here, aim);
-                        if let Ok(point) = self.relax(&guess, self.drive(aim), tolerances) {
-                            if aim == target {
+                    if (aim - here.voltage).abs() <= relaxed {
+                        // Newton's method loses its way here: go on through time, to the end at once if that serves.
+                        let end = if at_once { target } else { aim };
+                        let aim = here.state.voltage + (end - here.voltage) / self.per_device(&here);
+                        if let Ok(point) = self.relax(&here.state, aim, tolerances) {
+                            if (point.voltage - target).abs() <= REACHED {
+                                return Ok(point);
+                            }
+                            if let Ok(point) = self.newton(&point.state, self.drive(target), tolerances) {
                                 return Ok(point);
                             }
                             here = point;
-                            step *= 4.0;
+                            relaxed = f64::INFINITY;
+                            step = (target - here.voltage).clamp(-LARGEST_STEP, LARGEST_STEP);
                             continue;
                         }
                         self.work.rejected_steps += 1;
+                        at_once = false;
                     }
+                    step = 0.5 * (aim - here.voltage);
                     let spent = self.work.newton_iterations - begun;
                     if step.abs() < SMALLEST_STEP || spent > MOST_ITERATIONS {
                         return Err(SolveError::new(&stalled, aim, "stepping the bias", Some(&here)));
@@ -172,12 +190,15 @@ impl Problem {
         }
     }
 
+    /// The slope of the terminal voltage against the voltage across the device.
+    fn per_device(&self, p: &Point) -> f64 {
+        1.0 + self.series_resistance * (p.device_conductance + self.shunt_conductance)
+    }
+
     /// A guess at a terminal voltage: the cubic through two points and their tangents, or one tangent.
     pub fn predict(&self, before: Option<&Point>, here: &Point, voltage: f64) -> State {
         // Work in the voltage across the device, with the slope of the terminal voltage against it.
-        let per_device =
-            |p: &Point| 1.0 + self.series_resistance * (p.device_conductance + self.shunt_conductance);
-        let slope = per_device(here);
+        let slope = self.per_device(here);
         let target = here.state.voltage + (voltage - here.voltage) / slope;
         let mut state = match before {
             Some(old)

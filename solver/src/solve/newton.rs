@@ -72,13 +72,18 @@ pub struct Stalled {
 /// A last update this small, kT/q, leaves nothing that rounding does not.
 const SETTLED: f64 = 1e-7;
 
+/// A step in time is given up where its updates are this many times the first one (or one kT/q) ...
+const LOST: f64 = 1e3;
+/// ... in more than so many iterations running.
+const MOST_LOST: usize = 3;
+
 /// Most that a potential moves in one iteration, kT/q: damped updates reach it where the linear equations ask for 1100.
 const LARGEST_RISE: f64 = 8.0;
 
 /// How far outside those bounds quasi-Fermi potentials may stray, kT/q.
 const OUTSIDE: f64 = 40.0;
 
-fn largest(update: &[Triple]) -> Stalled {
+pub(super) fn largest(update: &[Triple]) -> Stalled {
     let mut worst = Stalled { node: 0, unknown: 0, update: 0.0 };
     for (node, u) in update.iter().enumerate() {
         for unknown in 0..3 {
@@ -93,7 +98,7 @@ fn largest(update: &[Triple]) -> Stalled {
 
 /// Adds to an unevaluated sum of two numbers, exactly but for the last place of the second.
 #[inline(always)]
-fn add(high: &mut f64, low: &mut f64, term: f64) {
+pub(super) fn add(high: &mut f64, low: &mut f64, term: f64) {
     let sum = *high + term;
     // The rounding of that sum (D. E. Knuth's two-sum, no order of the sizes assumed).
     let back = sum - *high;
@@ -123,6 +128,7 @@ impl Problem {
         let per_volt = self.coefficients.polarity / self.coefficients.thermal_voltage;
         let mut polishing = false;
         let mut smallest = f64::INFINITY;
+        let (mut first, mut lost) = (0.0_f64, 0);
         let mut worst = Stalled { node: 0, unknown: 0, update: f64::INFINITY };
         for _ in 0..tolerances.most_iterations {
             if self.work.newton_iterations >= self.budget {
@@ -145,7 +151,8 @@ impl Problem {
             let bordered = !matches!(drive, Drive::Device(_));
             let mut border = None;
             let mut voltage_step = 0.0;
-            let last = polishing || !tolerances.polish && largest(&update).update <= tolerances.update;
+            let last = polishing
+                || !tolerances.polish && self.largest_of_note(&state, &update).update <= tolerances.update;
             if bordered || last {
                 let terminal = Terminal::new(&self.coefficients, &self.system);
                 let mut tangent: Vec<Triple> = self.system.by_rear_level(&self.coefficients);
@@ -178,11 +185,19 @@ impl Problem {
                 }
                 border = Some((tangent, current + conductance * voltage_step, conductance));
             }
-            worst = largest(&update);
+            worst = self.largest_of_note(&state, &update);
             let relative_voltage = (voltage_step * per_volt).abs();
             let size = worst.update.max(relative_voltage);
             if !size.is_finite() {
                 return Err(worst);
+            }
+            // A step in time that has lost its way is made shorter: it need not be followed to the end.
+            if step.is_some() {
+                first = first.max(if first == 0.0 { size.max(1.0) } else { 0.0 });
+                lost = if size > LOST * first { lost + 1 } else { 0 };
+                if lost > MOST_LOST {
+                    return Err(worst);
+                }
             }
             self.apply(&mut state, &update);
             state.voltage += voltage_step;

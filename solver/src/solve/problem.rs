@@ -28,7 +28,7 @@ impl std::ops::AddAssign for Work {
 
 /// Most Newton iterations on the way to one point, ramps, halved steps and relaxation included: a way that takes more is
 /// called failed, so that no device hangs (empirical: ordinary points take 3, the worst solved odd devices some thousands).
-pub(super) const MOST_WORK: usize = 10_000;
+pub(super) const MOST_WORK: usize = 20_000;
 
 /// The state of a device: node unknowns, the voltage across it and the share of the light that is on.
 #[derive(Clone, Debug, PartialEq)]
@@ -61,6 +61,8 @@ pub struct Problem {
     pub(super) budget: usize,
     /// Whether to eliminate by rows, with their rounding, instead of by column sums.
     pub(super) by_rows: bool,
+    /// Carriers per area in a node's volume, scaled, below which its level may be unsettled; 0 on the ordinary way.
+    pub(super) negligible: f64,
     /// The largest gap, kT.
     pub(super) largest_gap: f64,
     pub(super) system: System,
@@ -78,6 +80,7 @@ impl Problem {
         let system = System::new(&coefficients);
         Problem {
             by_rows: false,
+            negligible: 0.0,
             largest_gap: coefficients
                 .entries
                 .iter()

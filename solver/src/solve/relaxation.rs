@@ -7,7 +7,10 @@
 use crate::discretise::side::sloped_side;
 use crate::math::Num;
 
-use super::newton::{Drive, Point, Stalled, Tolerances};
+use crate::linear::Triple;
+
+use super::damping::damped;
+use super::newton::{Drive, Point, Stalled, Tolerances, add, largest};
 use super::problem::{Problem, State};
 
 /// One implicit step: the carriers stored at its beginning and the reciprocal of its length.
@@ -23,10 +26,20 @@ pub(super) struct TimeStep {
 const FIRST: f64 = 1e-3;
 /// Shortest step before giving up.
 const SHORTEST: f64 = 1e-10;
-/// Longest step: beyond, storage is nothing beside any flux that doubles can tell from rounding.
-const LONGEST: f64 = 1e30;
+/// Longest step (1e18 s, twice the age of the universe): a state that keeps through it is as good as steady.
+const LONGEST: f64 = 1e27;
+/// Most that a step may be longer than the one before.
+const LARGEST_GROWTH: f64 = 10.0;
+/// Least that a step is tried longer than the last good one before it is made shorter.
+const SMALLEST_GROWTH: f64 = 1.1;
+/// Steps up to this length go on by rows where those have served; longer ones try column sums first.
+const ROWS: f64 = 1e6;
+/// Fewer carriers than this per area in a node's volume, scaled (1e-24 per m^2), are nothing: their level may be unsettled.
+const NEGLIGIBLE: f64 = 1e-40;
+/// Most iterations on one way through time.
+const MOST_WAY: usize = 6_000;
 /// Most steps before giving up.
-const MOST_STEPS: usize = 100;
+const MOST_STEPS: usize = 400;
 
 impl Problem {
     /// Electrons and holes per area in each node's volume, with their derivatives by the reduced energies: `[nodes]`.
@@ -79,76 +92,163 @@ impl Problem {
         }
     }
 
-    /// From a state to the steady solution at its light and the given drive, through time.
+    /// Moves the rear contact to another voltage across the device while every carrier stays where it is: the potential
+    /// takes the bias like a row of capacitors, and the levels go with it.
+    fn jump(&self, state: &mut State, voltage: f64) {
+        let c = &self.coefficients;
+        let rise = self.rear_level(voltage) - self.rear_level(state.voltage);
+        let whole: f64 = c.cells.iter().map(|cell| 1.0 / cell.displacement).sum();
+        let mut share = 0.0;
+        for (i, (x, low)) in state.nodes.iter_mut().zip(&mut state.remainders).enumerate() {
+            if i > 0 {
+                share += 1.0 / (c.cells[i - 1].displacement * whole);
+            }
+            x[0] += rise * share;
+            for carrier in 0..2 {
+                add(&mut x[1 + carrier], &mut low[carrier], rise * (share - c.reference[carrier]));
+            }
+        }
+        state.voltage = voltage;
+    }
+
+    /// From a state to the steady solution at its light and a voltage across the device, through time.
     ///
-    /// Where that fails, once more with the rounding of a plain elimination, which ties a level that nothing else holds to
-    /// its neighbours by the last place of their conductance; then without it from there, if that is to be had.
+    /// The start must be in balance (a solved state, but for the light): its carriers are what is stored when the bias jumps.
+    /// A step that fails by column sums is tried by rows: sums keep the leaks of long steps, rows hold the rounding of
+    /// densities of 1e-70 beside large ones in short steps.
     pub(super) fn relax(
         &mut self,
         start: &State,
-        drive: Drive,
+        voltage: f64,
         tolerances: &Tolerances,
     ) -> Result<Point, Stalled> {
-        if let Ok(point) = self.through_time(start, drive, tolerances) {
-            return Ok(point);
-        }
-        self.work.rejected_steps += 1;
-        self.by_rows = true;
-        let tied = self.through_time(start, drive, tolerances);
-        self.by_rows = false;
-        let tied = tied?;
-        Ok(self.newton(&tied.state, drive, tolerances).unwrap_or(tied))
+        let whole = self.budget;
+        self.budget = whole.min(self.work.newton_iterations + MOST_WAY);
+        self.negligible = NEGLIGIBLE;
+        let result = self.through_time(start, voltage, tolerances);
+        self.negligible = 0.0;
+        self.budget = whole;
+        result
     }
 
+    /// [`Problem::relax`] with next to no carriers left out of what must settle.
     fn through_time(
         &mut self,
         start: &State,
-        drive: Drive,
+        voltage: f64,
         tolerances: &Tolerances,
     ) -> Result<Point, Stalled> {
         let within = Tolerances { update: 1e-2, most_iterations: 30, polish: false };
+        let attempt = Tolerances { most_iterations: 25.min(tolerances.most_iterations), ..*tolerances };
         let mut state = start.clone();
-        if let Drive::Device(voltage) = drive {
-            state.voltage = voltage;
-        }
         let mut stored = self.stored(start);
-        let mut length = FIRST;
-        let mut tried = 1.0;
+        self.jump(&mut state, voltage);
+        let held = Drive::Device(voltage);
+        let (mut good, mut growth) = (0.0, LARGEST_GROWTH);
+        let (mut length, mut tried) = (FIRST, 1.0);
+        let (mut rows, mut last_rows) = (false, false);
         let mut failure = Stalled { node: 0, unknown: 0, update: f64::INFINITY };
         for _ in 0..MOST_STEPS {
             let step =
                 TimeStep { stored: stored.iter().map(|s| [s[0][0], s[1][0]]).collect(), rate: 1.0 / length };
             let before = self.work.newton_iterations;
-            match self.newton_with(&state, drive, &within, Some(&step)) {
+            rows &= length < ROWS;
+            self.by_rows = rows;
+            let mut result = self.newton_with(&state, held, &within, Some(&step));
+            if result.is_err() && (good == 0.0 || growth <= SMALLEST_GROWTH || last_rows) {
+                self.by_rows = !rows;
+                result = self.newton_with(&state, held, &within, Some(&step));
+                if result.is_ok() {
+                    rows = !rows;
+                }
+            }
+            self.by_rows = false;
+            last_rows = rows;
+            let effort = self.work.newton_iterations - before;
+            match result {
                 Ok(point) => {
-                    let effort = self.work.newton_iterations - before;
                     state = point.state;
                     stored = self.stored(&state);
+                    good = length;
                     if length >= 100.0 * tried {
                         tried = length;
-                        match self.newton(&state, drive, tolerances) {
+                        match self.steady(&state, held, &attempt, rows) {
                             Ok(point) => return Ok(point),
                             Err(stalled) => failure = stalled,
                         }
                         if length >= LONGEST {
-                            return Err(failure);
+                            // Nothing moves any more within the step: stationary, if not to be told from its neighbours.
+                            self.by_rows = rows;
+                            let kept = self.newton_with(&state, held, tolerances, Some(&step));
+                            self.by_rows = false;
+                            return kept;
                         }
                     }
+                    growth = match effort {
+                        0..=4 => (growth * growth).min(LARGEST_GROWTH),
+                        5..=12 => (growth * growth.sqrt()).min(LARGEST_GROWTH),
+                        _ => growth,
+                    };
                     length *= match effort {
-                        0..=7 => 10.0,
-                        8..=12 => 4.0,
-                        _ => 2.0,
+                        0..=7 => growth,
+                        8..=12 => growth.min(4.0),
+                        _ => growth.min(2.0),
                     };
                 }
                 Err(stalled) => {
                     failure = stalled;
-                    length *= 0.1;
-                    if length < SHORTEST {
+                    if good > 0.0 && growth > SMALLEST_GROWTH {
+                        growth = growth.sqrt();
+                        length = good * growth;
+                    } else {
+                        length *= 0.1;
+                        good = 0.0;
+                    }
+                    if length < SHORTEST || self.work.newton_iterations >= self.budget {
                         return Err(failure);
                     }
                 }
             }
         }
         Err(failure)
+    }
+
+    /// The steady state from one that is near; where rows have served, with their rounding if need be, which ties a level
+    /// that nothing else holds to its neighbours by the last place of their conductance.
+    fn steady(
+        &mut self,
+        state: &State,
+        drive: Drive,
+        tolerances: &Tolerances,
+        rows: bool,
+    ) -> Result<Point, Stalled> {
+        match self.newton(state, drive, tolerances) {
+            Err(_) if rows => (),
+            result => return result,
+        }
+        self.by_rows = true;
+        let tied = self.newton(state, drive, tolerances);
+        self.by_rows = false;
+        let tied = tied?;
+        Ok(self.newton(&tied.state, drive, tolerances).unwrap_or(tied))
+    }
+
+    /// The largest update, those of the levels of carriers that are next to none (before it and after it) left out.
+    pub(super) fn largest_of_note(&self, state: &State, update: &[Triple]) -> Stalled {
+        if self.negligible == 0.0 {
+            return largest(update);
+        }
+        let stored = self.stored(state);
+        let mut kept = update.to_vec();
+        for (u, amounts) in kept.iter_mut().zip(&stored) {
+            for carrier in 0..2 {
+                let energy = if carrier == 0 { u[0] - u[1] } else { u[2] - u[0] };
+                let after = amounts[carrier][0] * Num::exp(damped(energy));
+                if amounts[carrier][0].max(after) < self.negligible {
+                    u[1 + carrier] = 0.0;
+                }
+            }
+        }
+        largest(&kept)
     }
 }

@@ -366,6 +366,6 @@ fn odd_devices_are_solved_or_diagnosed() {
     println!(
         "{count} devices, Newton median {median}; not solved {unsolved:?}; accounts beyond bounds {unchecked:?}"
     );
-    assert!(unsolved.len() as u64 * 20 <= count, "not solved: {unsolved:?}");
-    assert!(unchecked.len() as u64 * 8 <= count, "accounts beyond their bounds: {unchecked:?}");
+    assert!(unsolved.len() as u64 * 50 <= count, "not solved: {unsolved:?}");
+    assert!(unchecked.len() as u64 * 6 <= count, "accounts beyond their bounds: {unchecked:?}");
 }
