@@ -124,5 +124,7 @@ fn in_trade_unit(value: f64, kind: Kind) -> (f64, &'static str) {
         Kind::RadiativeCoefficient => (value * 1e6, "cm3_per_s"),
         Kind::AugerCoefficient => (value * 1e12, "cm6_per_s"),
         Kind::InverseLength => (value / 100.0, "per_cm"),
+        Kind::Temperature => (value, "K"),
+        Kind::EnergyPerTemperature => (value / ELEMENTARY_CHARGE, "eV_per_K"),
     }
 }

@@ -129,6 +129,13 @@ impl Edit {
 
 impl Drop for Edit {
     fn drop(&mut self) {
+        self.report_if_unseen();
+    }
+}
+
+impl Edit {
+    /// Keeps the fault of a change that nothing has looked at, while the script runs.
+    pub fn report_if_unseen(&self) {
         let session = &self.session.0;
         if self.seen.load(Ordering::Relaxed) || session.finished.load(Ordering::Relaxed) {
             return;

@@ -49,6 +49,8 @@ impl Dimension {
     pub const VOLTAGE: Dimension = dim(2, 1, -3, -1, 0);
     /// Temperature.
     pub const TEMPERATURE: Dimension = dim(0, 0, 0, 0, 1);
+    /// Energy over temperature: how a gap moves.
+    pub const ENERGY_PER_TEMPERATURE: Dimension = dim(2, 1, -2, 0, -1);
     /// Electric field.
     pub const FIELD: Dimension = dim(1, 1, -3, -1, 0);
     /// Mobility of carriers.
@@ -201,6 +203,7 @@ const FAMILIES: &[Family] = &[
     family(Dimension::ENERGY, "an energy", "1.42.eV"),
     family(Dimension::VOLTAGE, "a voltage", "0.9.V"),
     family(Dimension::TEMPERATURE, "a temperature", "300.K"),
+    family(Dimension::ENERGY_PER_TEMPERATURE, "an energy per kelvin", "0.5.meV_per_K"),
     family(Dimension::FIELD, "an electric field", "10.kV_per_cm"),
     family(Dimension::MOBILITY, "a mobility", "3000.cm2_per_Vs"),
     family(Dimension::DIFFUSION, "a diffusion coefficient", "10.cm2_per_s"),
@@ -233,6 +236,7 @@ mod tests {
         let field = Dimension::VOLTAGE.over(Dimension::LENGTH).unwrap();
         assert_eq!(field, Dimension::FIELD);
         assert_eq!(Dimension::VELOCITY.over(field), Some(Dimension::MOBILITY));
+        assert_eq!(Dimension::ENERGY.over(Dimension::TEMPERATURE), Some(Dimension::ENERGY_PER_TEMPERATURE));
         let charge = ampere.times(Dimension::TIME).unwrap();
         assert_eq!(charge.over(Dimension::AREA), Some(Dimension::CHARGE_DENSITY));
         assert_eq!(Dimension::CHARGE_DENSITY.over(Dimension::VOLTAGE), Some(Dimension::CAPACITANCE_DENSITY));

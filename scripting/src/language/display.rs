@@ -42,6 +42,7 @@ impl fmt::Display for Quantity {
             _ if unit.is_none() && self.is_number() => plain(value),
             _ => significant(value, DIGITS),
         };
+        let symbol = if symbol == "suns" && value == 1.0 { "sun".to_string() } else { symbol };
         if symbol.is_empty() { f.write_str(&number) } else { write!(f, "{number} {symbol}") }
     }
 }

@@ -155,6 +155,9 @@ pub(super) fn run(engine: &Engine, ast: &AST, session: &Arc<Session>) -> Result<
     let mut scope = outer_scope();
     if !session.checking() {
         let result = engine.run_ast_with_scope(&mut scope, ast);
+        if result.is_ok() {
+            report_unused_layers(&scope);
+        }
         session.finished.store(true, std::sync::atomic::Ordering::Relaxed);
         if result.as_ref().is_err_and(|error| !super::report::is_stop(error)) {
             session.forget_lost_edits();
@@ -178,8 +181,43 @@ pub(super) fn run(engine: &Engine, ast: &AST, session: &Arc<Session>) -> Result<
             }
         }
     }
+    report_unused_layers(&scope);
     session.finished.store(true, std::sync::atomic::Ordering::Relaxed);
     Ok(())
+}
+
+/// Changed copies of layers that the script ends with and never looked at: their stacks never heard of the change.
+///
+/// A changed stack that nothing solves is no slip of that kind: it is what the script's next line would be about.
+fn report_unused_layers(scope: &Scope) {
+    for (_, _, value) in scope.iter() {
+        if let Some(layer) = value.read_lock::<super::device_value::LayerValue>()
+            && let Some(edit) = &layer.edit
+        {
+            edit.report_if_unseen();
+        }
+    }
+}
+
+/// Line and column of every call of a function of this name, in functions too.
+pub(super) fn calls_of(ast: &AST, name: &str) -> std::collections::BTreeSet<(usize, usize)> {
+    let mut found = std::collections::BTreeSet::new();
+    ast.walk(&mut |path: &[rhai::ASTNode]| {
+        let call = match path.last() {
+            Some(rhai::ASTNode::Expr(rhai::Expr::FnCall(call, at) | rhai::Expr::MethodCall(call, at))) => {
+                Some((call, at))
+            }
+            Some(rhai::ASTNode::Stmt(rhai::Stmt::FnCall(call, at))) => Some((call, at)),
+            _ => None,
+        };
+        if let Some((call, at)) = call
+            && call.name == name
+        {
+            found.insert((at.line().unwrap_or(0), at.position().unwrap_or(0)));
+        }
+        true
+    });
+    found
 }
 
 /// The variable that a `let` defines.

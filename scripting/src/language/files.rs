@@ -36,6 +36,17 @@ impl Files {
         }
     }
 
+    /// The same files, none of them read yet.
+    pub fn afresh(&self) -> Self {
+        Files {
+            folder: self.folder.clone(),
+            allowed: self.allowed.clone(),
+            given: self.given.clone(),
+            read: Mutex::new(BTreeMap::new()),
+            limit: self.limit,
+        }
+    }
+
     /// The bytes of a file by the name the script gives it, and whether this is the first reading.
     ///
     /// A file keeps, for the whole run, the bytes it had when it was first read.

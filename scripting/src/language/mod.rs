@@ -115,40 +115,58 @@ fn evaluate(session: &std::sync::Arc<Session>) -> Vec<Diagnostic> {
     if !redefined.is_empty() {
         return redefined;
     }
-    // a slip in a name is told before hours of solving, where the name stands nowhere in the script
-    let strange = unknown_inputs(session, |name| session.source.text.contains(name));
-    if !strange.is_empty() {
+    if let Some(strange) = strange_inputs(session) {
         return strange;
     }
     match engine::run(&engine, &ast, session) {
-        Ok(()) => unknown_inputs(session, |name| session.state().inputs.contains_key(name)),
+        Ok(()) => unknown_inputs(session, &declared_inputs(session)),
         Err(error) => report::diagnostics(session, &error),
     }
 }
 
-/// What `--set` names without the script having it.
-fn unknown_inputs(session: &Session, has: impl Fn(&str) -> bool) -> Vec<Diagnostic> {
-    let text = &session.source.text;
-    let mut known: Vec<&str> = text
-        .split("input(\"")
-        .skip(1)
-        .filter_map(|rest| rest.split('"').next())
-        .filter(|name| !name.is_empty() && name.len() < 100)
-        .collect();
-    known.dedup();
-    session
-        .options
-        .set
-        .iter()
-        .filter(|(name, _)| !has(name))
+/// What `--set` names without the script having it, as far as that can be told before anything is solved.
+///
+/// A rehearsal of the script, which solves nothing, declares its inputs, those with computed names too. It knows them
+/// all if it came past every call of `input` with a known name.
+fn strange_inputs(session: &std::sync::Arc<Session>) -> Option<Vec<Diagnostic>> {
+    let literal = |name: &str| session.source.text.contains(&format!("input(\"{name}\""));
+    if session.checking() || session.options.set.iter().all(|(name, _)| literal(name)) {
+        return None;
+    }
+    let rehearsal = session.rehearsal();
+    let mut engine = engine::build(&rehearsal);
+    let ast = engine::compile(&mut engine, &rehearsal.source.text).ok()?;
+    point::allow(rehearsal.options.limits.operations);
+    let rehearsed = engine::run(&engine, &ast, &rehearsal);
+    point::allow(session.options.limits.operations);
+    rehearsed.ok()?;
+    let calls = engine::calls_of(&ast, "input");
+    if !calls.is_subset(&rehearsal.state().input_calls) {
+        return None;
+    }
+    let strange = unknown_inputs(session, &declared_inputs(&rehearsal));
+    (!strange.is_empty()).then_some(strange)
+}
+
+/// Names of the inputs that a run has declared.
+fn declared_inputs(session: &Session) -> Vec<String> {
+    session.state().inputs.keys().cloned().collect()
+}
+
+/// What `--set` names that is not among the inputs.
+fn unknown_inputs(session: &Session, inputs: &[String]) -> Vec<Diagnostic> {
+    let set = session.options.set.iter();
+    set.filter(|(name, _)| !inputs.contains(name))
         .map(|(name, _)| {
             let fault =
                 Fault::new(codes::UNKNOWN_INPUT, format!("--set {name}: the script has no input `{name}`"));
-            let fault = if known.is_empty() {
+            let fault = if inputs.is_empty() {
                 fault.help(format!("declare it: let {name} = input(\"{name}\", ..);"))
             } else {
-                let all = known.iter().map(|k| format!("`{k}`")).collect::<Vec<_>>().join(", ");
-                fault.candidates(name, known.iter().copied()).note(format!("the inputs of the script: {all}"))
+                let all = inputs.iter().map(|k| format!("`{k}`")).collect::<Vec<_>>().join(", ");
+                fault
+                    .candidates(name, inputs.iter().map(String::as_str))
+                    .note(format!("the inputs of the script: {all}"))
             };
             session.diagnostic(&fault, rhai::Position::NONE)
         })

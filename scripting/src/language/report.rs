@@ -220,11 +220,25 @@ fn parsing(text: &str, kind: &ParseErrorType, position: Position) -> Fault {
             LexError::MalformedEscapeSequence(words) => {
                 syntax(format!("`{words}` has no meaning in a text")).help("write a backslash as `\\\\`")
             }
-            LexError::UnexpectedInput(words) => syntax(format!("`{words}` cannot stand here")),
+            LexError::UnexpectedInput(words) => {
+                let fault = syntax(format!("`{words}` cannot stand here"));
+                match foreign_sign(words) {
+                    Some(help) => fault.help(help),
+                    None => fault,
+                }
+            }
             LexError::MalformedIdentifier(words) => syntax(format!("`{words}` is no name")),
             _ => syntax("this cannot be read".to_string()),
         },
         ParseErrorType::UnknownOperator(words) => syntax(format!("`{words}` is no operator")),
+        ParseErrorType::MissingToken(token, why) if token == "," => {
+            let closing = match why.to_lowercase() {
+                w if w.contains("array") => "]",
+                w if w.contains("map") => "}",
+                _ => ")",
+            };
+            syntax(format!("`,` or `{closing}` is missing before this place"))
+        }
         ParseErrorType::MissingToken(token, _) => {
             let fault = syntax(format!("`{token}` is missing before this place"));
             if token == ";" { fault.help("end the statement before this place with `;`") } else { fault }
@@ -285,6 +299,50 @@ fn parsing(text: &str, kind: &ParseErrorType, position: Position) -> Fault {
         _ => syntax("the text cannot be read here".to_string()),
     }
 }
+
+/// What to write instead of a sign that word processors and keyboards put into scripts.
+fn foreign_sign(words: &str) -> Option<&'static str> {
+    Some(match words.chars().next()? {
+        '\u{b5}' | '\u{3bc}' => {
+            "units are spelled in plain letters: `um` for micrometre, `us` for microsecond"
+        }
+        '\u{3a9}' | '\u{2126}' => "units are spelled in plain letters: `ohm_cm2`",
+        '²' | '³' | '⁻' => "powers in units are spelled in plain characters: `per_cm3`, `cm2`",
+        '“' | '”' | '„' | '«' | '»' => "texts stand in straight quotes: \"window\"",
+        '‘' | '’' => "texts stand in straight double quotes: \"window\"",
+        '\u{2212}' | '\u{2013}' | '\u{2014}' => "the minus sign is `-`",
+        '×' | '·' => "the sign of a product is `*`",
+        '÷' => "the sign of a quotient is `/`",
+        '\u{a0}' | '\u{200b}' | '\u{feff}' => {
+            "an invisible character that is no blank stands here: type the blank anew"
+        }
+        _ => return None,
+    })
+}
+
+/// Words of every script that no row of the vocabulary teaches.
+const PLAIN_WORDS: [&str; 20] = [
+    "print",
+    "push",
+    "pop",
+    "len",
+    "keys",
+    "values",
+    "range",
+    "insert",
+    "remove",
+    "contains",
+    "map",
+    "filter",
+    "sort",
+    "join",
+    "split",
+    "to_string",
+    "type_of",
+    "is_empty",
+    "append",
+    "reduce",
+];
 
 /// A name that nothing has defined; a variable of the script where a function asks for it.
 fn unknown_name(text: &str, name: &str, position: Position) -> Fault {
@@ -377,6 +435,7 @@ fn not_found(signature: &str) -> Option<Fault> {
         let names: Vec<&str> = entries()
             .filter(|e| !matches!(e.sort, super::vocabulary::Sort::Constant))
             .map(|e| e.name)
+            .chain(PLAIN_WORDS)
             .collect();
         return Some(match crate::diagnostics::suggest(name, names.iter().copied()) {
             Some(near) => {

@@ -93,6 +93,9 @@ pub struct Part {
     pub of: u64,
 }
 
+/// Operations of a rehearsal, at most: a fraction of a second.
+const REHEARSED_OPERATIONS: u64 = 2_000_000;
+
 /// A script to run.
 #[derive(Clone, Debug, Default)]
 pub struct Script {
@@ -211,6 +214,8 @@ pub(super) enum Event {
 #[derive(Default)]
 pub(super) struct State {
     pub inputs: BTreeMap<String, InputRecord>,
+    /// Line and column of every call that declared an input.
+    pub input_calls: std::collections::BTreeSet<(usize, usize)>,
     pub snapshots: BTreeMap<String, Position>,
     pub faults: Vec<Diagnostic>,
     pub warnings: Vec<Diagnostic>,
@@ -255,6 +260,25 @@ impl Session {
             swept_operations: AtomicU64::new(0),
             workers: OnceLock::new(),
             events,
+            state: Mutex::new(State::default()),
+        })
+    }
+
+    /// A session of the same script that solves nothing, tells nobody, takes every default and gives up early.
+    pub(super) fn rehearsal(&self) -> Arc<Self> {
+        let mut options = RunOptions { check_only: true, set: Vec::new(), ..self.options.clone() };
+        options.limits.operations = options.limits.operations.min(REHEARSED_OPERATIONS);
+        Arc::new(Session {
+            source: self.source.clone(),
+            files: self.files.afresh(),
+            options,
+            memory_at_start: self.memory_at_start,
+            finished: AtomicBool::new(false),
+            lost_edit: AtomicBool::new(false),
+            stored: AtomicU64::new(0),
+            swept_operations: AtomicU64::new(0),
+            workers: OnceLock::new(),
+            events: channel().0,
             state: Mutex::new(State::default()),
         })
     }

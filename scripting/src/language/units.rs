@@ -91,6 +91,8 @@ units! {
     "mV" "mV" Over(1e3), VOLTAGE, "millivolt";
     "V" "V" Times(1.0), VOLTAGE, "volt";
     "K" "K" Times(1.0), TEMPERATURE, "kelvin";
+    "meV_per_K" "meV/K" Times(ELEMENTARY_CHARGE / 1e3), ENERGY_PER_TEMPERATURE, "millielectronvolt per kelvin";
+    "eV_per_K" "eV/K" Times(ELEMENTARY_CHARGE), ENERGY_PER_TEMPERATURE, "electronvolt per kelvin";
     "V_per_cm" "V/cm" Times(1e2), FIELD, "volt per centimetre";
     "kV_per_cm" "kV/cm" Times(1e5), FIELD, "kilovolt per centimetre";
     "V_per_m" "V/m" Times(1.0), FIELD, "volt per metre";

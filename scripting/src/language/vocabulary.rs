@@ -198,7 +198,7 @@ fn by_value<T: rhai::Variant + Clone>(
     let run = move |context: NativeCallContext, mut arguments: Vec<Dynamic>| -> Outcome<Dynamic> {
         let call = Call { session: &session, position: context.call_position(), context: &context };
         let mut references: Vec<&mut Dynamic> = arguments.iter_mut().collect();
-        settle(&call, body(&call, &mut references))
+        settle(&call, body(&call, &mut references).map_err(|faults| with_forms(name, faults)))
     };
     type D = Dynamic;
     type C<'a> = NativeCallContext<'a>;
@@ -305,6 +305,19 @@ fn register(engine: &mut Engine, session: &Arc<Session>, name: &str, kinds: Vec<
         let call = Call { session: &session, position: context.call_position(), context: &context };
         settle(&call, body(&call, arguments))
     });
+}
+
+/// An argument of the wrong kind, with no better help: the forms of the function.
+fn with_forms(name: &str, faults: Faults) -> Faults {
+    let helped = faults.0.into_iter().map(|fault| {
+        if fault.code != codes::WRONG_KIND || fault.help.is_some() || fault.of_unknown {
+            return fault;
+        }
+        let forms: Vec<&str> = callable(name).flat_map(|e| e.forms.iter().copied()).collect();
+        let title = if forms.len() == 1 { "its form" } else { "its forms" };
+        fault.help(format!("{title}: {}", forms.join("; ")))
+    });
+    Faults(helped.collect())
 }
 
 /// A run stops at the first fault; a check keeps it and goes on with an unknown value.

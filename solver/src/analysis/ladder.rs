@@ -227,17 +227,25 @@ impl<'a> Ladder<'a> {
     pub fn warnings(&self) -> Vec<Warning> {
         let mut warnings: Vec<Warning> = self.device.warnings().iter().map(Warning::of_device).collect();
         let finest = &self.rungs[self.rungs.len() - 1].illumination;
-        for (layer, missing) in finest.uncovered.iter().enumerate() {
-            if *missing > 0.0 {
-                warnings.push(Warning {
-                    code: "W301",
-                    message: format!(
-                        "{missing:.3} W/m2 of the light lies outside the absorption table of layer `{}` and is taken as not \
-                         absorbed there",
-                        self.device.stack().layers[layer].name
-                    ),
-                });
+        // One warning for each amount: layers of one table lack the same light.
+        let mut lacking: Vec<(f64, Vec<&str>)> = Vec::new();
+        for (layer, &missing) in self.device.stack().layers.iter().zip(&finest.uncovered) {
+            match lacking.iter_mut().find(|(amount, _)| *amount == missing) {
+                Some((_, layers)) => layers.push(&layer.name),
+                None if missing > 0.0 => lacking.push((missing, vec![&layer.name])),
+                None => {}
             }
+        }
+        for (missing, layers) in lacking {
+            let s = if layers.len() == 1 { "" } else { "s" };
+            let names = layers.join("`, `");
+            warnings.push(Warning {
+                code: "W301",
+                message: format!(
+                    "{missing:.3} W/m2 of the light lies outside the absorption table of layer{s} `{names}` and is taken as not \
+                     absorbed there"
+                ),
+            });
         }
         if finest.uncovered_reflectance > 0.0 {
             warnings.push(Warning {

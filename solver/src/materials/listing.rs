@@ -53,7 +53,7 @@ impl<P> Values<P>
 where
     P: Scalar,
 {
-    /// The value of a parameter, if it is one of these (neither absorption nor a trap given from a band edge).
+    /// The value of a parameter, if it is one of these (neither absorption nor what other values follow from).
     pub fn get(&self, parameter: Parameter) -> Option<P> {
         Some(match parameter {
             Parameter::Gap => self.gap,
@@ -69,9 +69,7 @@ where
             Parameter::RadiativeCoefficient => self.radiative_coefficient,
             Parameter::ElectronAuger => self.electron_auger,
             Parameter::HoleAuger => self.hole_auger,
-            Parameter::TrapBelowConduction | Parameter::TrapAboveValence | Parameter::Absorption => {
-                return None;
-            }
+            _ => return None,
         })
     }
 }
@@ -104,7 +102,7 @@ impl Record {
                 origin: Origin::Illustrative,
                 source: "at the intrinsic level unless the script sets it",
             }),
-            Parameter::TrapBelowConduction | Parameter::TrapAboveValence | Parameter::Absorption => None,
+            _ => None,
         }
     }
 }
@@ -152,7 +150,7 @@ impl<P: Scalar> Material<P> {
             MaterialBase::Custom(_) => None,
         };
         let of = |parameter: &Parameter| {
-            if self.overrides.contains_key(parameter) {
+            if self.overrides.contains_key(parameter) || self.follows_from_script(*parameter) {
                 let everywhere = super::TEMPERATURE_LIMITS;
                 let source = "set by the script";
                 return Some(Provenance {

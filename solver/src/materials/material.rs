@@ -13,7 +13,7 @@ use super::parameter::Parameter;
 pub enum MaterialBase {
     /// A material of the library, by its name there ("GaAs", "AlGaAs", ...).
     Library(String),
-    /// A material that stands on the numbers given for it alone, at every temperature.
+    /// A material that stands on the numbers given for it alone.
     Custom(String),
 }
 
@@ -104,6 +104,44 @@ pub enum MaterialError {
         material: String,
         /// The parameter's word in scripts.
         parameter: &'static str,
+    },
+    /// Two values that say the same thing in different ways.
+    #[error("material `{material}`: give `{first}` or `{second}`, not both")]
+    Exclusive {
+        /// The material.
+        material: String,
+        /// One parameter's word in scripts.
+        first: &'static str,
+        /// The other's.
+        second: &'static str,
+    },
+    /// A value that means nothing without another.
+    #[error("`{parameter}` of material `{material}` needs `{needs}`")]
+    Needs {
+        /// The material.
+        material: String,
+        /// The parameter's word in scripts.
+        parameter: &'static str,
+        /// The word of what it cannot do without.
+        needs: &'static str,
+    },
+    /// A value that the script's own temperature model takes out of what is physical.
+    #[error(
+        "`{parameter}` of material `{material}` is {value:e} at {temperature} K, outside {low:e} to {high:e} (SI units)"
+    )]
+    OutOfRangeAt {
+        /// The material.
+        material: String,
+        /// The parameter's word in scripts.
+        parameter: &'static str,
+        /// The value there, SI.
+        value: f64,
+        /// Temperature, K.
+        temperature: f64,
+        /// Lowest value allowed.
+        low: f64,
+        /// Highest value allowed.
+        high: f64,
     },
     /// The trap level was given twice.
     #[error(

@@ -11,6 +11,7 @@ pub mod material;
 pub mod optical;
 pub mod parameter;
 mod record;
+mod temperature;
 mod values;
 
 pub use library::names;

@@ -21,6 +21,10 @@ pub enum Kind {
     AugerCoefficient,
     /// Absorption coefficient, m^-1.
     InverseLength,
+    /// Temperature, K.
+    Temperature,
+    /// Energy over temperature, J/K.
+    EnergyPerTemperature,
 }
 
 macro_rules! parameters {
@@ -66,6 +70,23 @@ parameters! {
     ElectronAuger "electron_auger" AugerCoefficient "Auger coefficient C_n (the energy goes to an electron).";
     HoleAuger "hole_auger" AugerCoefficient "Auger coefficient C_p (the energy goes to a hole).";
     Absorption "absorption" InverseLength "One absorption coefficient; under a spectrum it acts at photon energies above the gap.";
+    ReferenceTemperature "reference_temperature" Temperature "Temperature that the numbers given hold at, where one of the options below moves them; 300 K unless given.";
+    GapAtZero "gap_at_zero_kelvin" Energy "Band gap at 0 K, instead of `gap`, for Varshni's law.";
+    VarshniAlpha "gap_varshni_alpha" EnergyPerTemperature "Varshni's alpha: the gap falls as alpha T^2 / (T + beta).";
+    VarshniBeta "gap_varshni_beta" Temperature "Varshni's beta.";
+    GapSlope "gap_temperature_coefficient" EnergyPerTemperature "Change of the gap with temperature, instead of Varshni's law; negative where the gap narrows.";
+    AffinitySlope "affinity_temperature_coefficient" EnergyPerTemperature "Change of the affinity with temperature; without it the affinity holds, and the valence band takes the change of the gap.";
+    ElectronMass "electron_mass" Number "Density-of-states mass of electrons over that of the free electron, instead of `nc`, which is then 2 (2 pi m k T / h^2)^(3/2).";
+    HoleMass "hole_mass" Number "Density-of-states mass of holes over that of the free electron, instead of `nv`.";
+    ConductionDensityPower "nc_temperature_exponent" Number "Power of T / `reference_temperature` in `nc`: 1.5 for parabolic bands.";
+    ValenceDensityPower "nv_temperature_exponent" Number "Power of T / `reference_temperature` in `nv`.";
+    ElectronMobilityPower "electron_mobility_temperature_exponent" Number "Power of T / `reference_temperature` in `electron_mobility`: -1.5 where acoustic phonons scatter.";
+    HoleMobilityPower "hole_mobility_temperature_exponent" Number "Power of T / `reference_temperature` in `hole_mobility`.";
+    ElectronLifetimePower "electron_lifetime_temperature_exponent" Number "Power of T / `reference_temperature` in `electron_lifetime`.";
+    HoleLifetimePower "hole_lifetime_temperature_exponent" Number "Power of T / `reference_temperature` in `hole_lifetime`.";
+    RadiativePower "radiative_coefficient_temperature_exponent" Number "Power of T / `reference_temperature` in `radiative_coefficient`.";
+    ElectronAugerPower "electron_auger_temperature_exponent" Number "Power of T / `reference_temperature` in `electron_auger`.";
+    HoleAugerPower "hole_auger_temperature_exponent" Number "Power of T / `reference_temperature` in `hole_auger`.";
 }
 
 impl Parameter {

@@ -108,29 +108,38 @@ impl OpticalModel {
     pub(crate) fn source(self) -> &'static str {
         match self {
             OpticalModel::GaAs => {
-                "G. E. Jellison, Opt. Mater. 1, 151 (1992), up to 835 nm; then an analytic direct edge with an Urbach tail of 7 meV"
+                "G. E. Jellison, Opt. Mater. 1, 151 (1992), up to 835 nm; then an analytic direct edge with an Urbach tail of 7 meV; \
+                 refractive index beyond by S. Ozaki and S. Adachi, J. Appl. Phys. 78, 3380 (1995), T. Skauli et al., J. Appl. Phys. 94, \
+                 6447 (2003) from 970 to 2590 nm, and one oscillator"
             }
             OpticalModel::AlGaAs => {
                 "D. E. Aspnes, S. M. Kelso, R. A. Logan and R. Bhat, J. Appl. Phys. 60, 754 (1986): the two nearest compositions, \
-                 each shifted to the gap wanted, weighted; analytic edge below"
+                 each shifted to the gap wanted, weighted; analytic edge below; refractive index below 1.5 eV as GaAs's at the same share \
+                 of the gap"
             }
             OpticalModel::GaInP => {
                 "M. Schubert et al., J. Appl. Phys. 77, 3416 (1995), an ordered sample of gap 1.87 eV, moved to the gap of the layer; an \
-                 Urbach tail of 7 meV below"
+                 Urbach tail of 7 meV below; refractive index beyond 954 nm as GaAs's at the same share of the gap"
             }
             OpticalModel::AlInP => {
                 "illustrative model: GaInP's table shifted to AlInP's direct gap, with a weak indirect tail below"
             }
             OpticalModel::InP => {
                 "D. E. Aspnes and A. A. Studna, Phys. Rev. B 27, 985 (1983), above 1.5 eV; then an analytic direct edge with an \
-                 Urbach tail of 7 meV"
+                 Urbach tail of 7 meV; refractive index beyond by S. Adachi, J. Appl. Phys. 66, 6030 (1989), G. D. Pettit and W. J. Turner, \
+                 J. Appl. Phys. 36, 2081 (1965) from 950 to 2590 nm, and one oscillator"
             }
             OpticalModel::GaInAs => {
                 "stated model: S. Adachi, J. Appl. Phys. 66, 6030 (1989), a dispersion model at x = 0.48, well above the gap; an \
                  analytic direct edge with an Urbach tail of 7 meV below"
             }
-            OpticalModel::Si => "M. A. Green, Sol. Energy Mater. Sol. Cells 92, 1305 (2008)",
-            OpticalModel::Ge => "T. N. Nunley et al., J. Vac. Sci. Technol. B 34, 061205 (2016)",
+            OpticalModel::Si => {
+                "M. A. Green, Sol. Energy Mater. Sol. Cells 92, 1305 (2008); transparent beyond 1450 nm, where it ends; refractive index \
+                 there by the table \"Franta, 300 K\" of the database of optical constants that all tables come from"
+            }
+            OpticalModel::Ge => {
+                "T. N. Nunley et al., J. Vac. Sci. Technol. B 34, 061205 (2016); transparent beyond 2480 nm, where it ends"
+            }
         }
     }
 }

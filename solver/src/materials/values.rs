@@ -35,6 +35,11 @@ impl Parameter {
             Parameter::Gap => (0.05 * ev, 10.0 * ev),
             Parameter::TrapEnergy => (-10.0 * ev, 10.0 * ev),
             Parameter::Permittivity => (1.0, 1e4),
+            Parameter::ReferenceTemperature => TEMPERATURE_LIMITS,
+            Parameter::GapAtZero => (0.05 * ev, 10.0 * ev),
+            Parameter::VarshniAlpha => (0.0, 0.1 * ev),
+            Parameter::ElectronMass | Parameter::HoleMass => (1e-4, 1e3),
+            p if p.moved_by_power().is_some() => (-20.0, 20.0),
             _ => match self.kind() {
                 Kind::Energy => (0.0, 10.0 * ev),
                 Kind::Number => (0.0, f64::MAX),
@@ -44,6 +49,8 @@ impl Parameter {
                 Kind::RadiativeCoefficient => (0.0, 1e-6),
                 Kind::AugerCoefficient => (0.0, 1e-30),
                 Kind::InverseLength => (0.0, 1e10),
+                Kind::Temperature => (0.0, 1e4),
+                Kind::EnergyPerTemperature => (-0.1 * ev, 0.1 * ev),
             },
         }
     }
@@ -127,7 +134,7 @@ impl<P: Scalar> Material<P> {
                     faults.push(MaterialError::UnexpectedComposition { name: name.to_string() });
                 }
                 for parameter in REQUIRED {
-                    if !self.overrides.contains_key(&parameter) {
+                    if !self.overrides.contains_key(&parameter) && !self.follows_from_script(parameter) {
                         faults.push(MaterialError::Missing {
                             material: name.to_string(),
                             parameter: parameter.key(),
@@ -143,6 +150,7 @@ impl<P: Scalar> Material<P> {
         if traps.iter().filter(|t| self.overrides.contains_key(t)).count() > 1 {
             faults.push(MaterialError::TrapTwice { material: name.to_string() });
         }
+        faults.extend(self.temperature_model_faults());
         faults
     }
 
@@ -179,14 +187,15 @@ impl<P: Scalar> Material<P> {
     /// All electronic values at one place, SI units.
     ///
     /// `x` is the composition there if the layer grades it (otherwise the material's own counts), `temperature` in K,
-    /// `doping` the sum of both dopant densities in m^-3, which the mobility depends on. A custom material has the same
-    /// values at every temperature.
+    /// `doping` the sum of both dopant densities in m^-3, which the mobility depends on.
     ///
-    /// An override replaces the library's value. Where `gap` is overridden and `affinity` is not, the valence band stays
+    /// An override replaces the library's value, and a custom material has nothing but overrides; they hold at every
+    /// temperature unless the script gives them a temperature model (`temperature.rs`). Where `gap` is overridden and `affinity` is not, the valence band stays
     /// on the ladder and the affinity follows; `nc` and `nv` stay what the masses give.
     ///
     /// # Errors
-    /// The first fault of [`Material::faults`], a missing composition, or a composition or temperature out of range.
+    /// The first fault of [`Material::faults`], a missing composition, a composition or temperature out of range, or a
+    /// value that the script's temperature model takes out of its limits.
     pub fn values(&self, x: Option<P>, temperature: P, doping: P) -> Result<Values<P>, MaterialError> {
         if let Some(fault) = self.faults().into_iter().next() {
             return Err(fault);
@@ -197,9 +206,11 @@ impl<P: Scalar> Material<P> {
         }
         let mut values = match &self.base {
             MaterialBase::Library(_) => self.library_values(x, temperature, doping)?,
-            MaterialBase::Custom(_) => self.custom_values(x)?,
+            MaterialBase::Custom(_) => self.custom_values(x, temperature)?,
         };
-        for (parameter, value) in &self.overrides {
+        for given in self.overrides.keys() {
+            let parameter = given.stands_for();
+            let Some(value) = self.set_value(parameter, temperature) else { continue };
             let slot = match parameter {
                 Parameter::Gap => &mut values.gap,
                 Parameter::Affinity => &mut values.affinity,
@@ -214,11 +225,20 @@ impl<P: Scalar> Material<P> {
                 Parameter::RadiativeCoefficient => &mut values.radiative_coefficient,
                 Parameter::ElectronAuger => &mut values.electron_auger,
                 Parameter::HoleAuger => &mut values.hole_auger,
-                Parameter::TrapBelowConduction | Parameter::TrapAboveValence | Parameter::Absorption => {
-                    continue;
-                }
+                _ => continue,
             };
-            *slot = *value;
+            let (low, high) = parameter.limits();
+            if !(value.value() >= low && value.value() <= high) {
+                return Err(MaterialError::OutOfRangeAt {
+                    material: self.name().to_string(),
+                    parameter: parameter.key(),
+                    value: value.value(),
+                    temperature: temperature.value(),
+                    low,
+                    high,
+                });
+            }
+            *slot = value;
         }
         // E_trap - E_i with E_i = (Ec + Ev)/2 + (kT/2) ln(Nv/Nc), so that n1 = ni e^(E/kT) is Nc e^(-below/kT) exactly.
         let tilt = (values.valence_density * values.conduction_density.recip()).ln()
@@ -236,10 +256,7 @@ impl<P: Scalar> Material<P> {
     fn library_values(&self, x: Option<P>, temperature: P, doping: P) -> Result<Values<P>, MaterialError> {
         let (record, x) = self.record(x)?;
         let bands = record.bands(x, temperature);
-        let gap = match self.overrides.get(&Parameter::Gap) {
-            Some(gap) => *gap,
-            None => bands.gap * ELEMENTARY_CHARGE,
-        };
+        let gap = self.set_value(Parameter::Gap, temperature).unwrap_or(bands.gap * ELEMENTARY_CHARGE);
         let gaas = super::library::gaas::GAAS.bands(P::constant(0.0), temperature).gap;
         let ionisation = gaas - record.valence_edge(x, temperature) + GAAS_AFFINITY;
         Ok(Values {
@@ -259,12 +276,12 @@ impl<P: Scalar> Material<P> {
         })
     }
 
-    fn custom_values(&self, x: Option<P>) -> Result<Values<P>, MaterialError> {
+    fn custom_values(&self, x: Option<P>, temperature: P) -> Result<Values<P>, MaterialError> {
         if x.is_some() {
             return Err(MaterialError::UnexpectedComposition { name: self.name().to_string() });
         }
         let get = |parameter: Parameter| {
-            self.overrides.get(&parameter).copied().ok_or_else(|| MaterialError::Missing {
+            self.set_value(parameter, temperature).ok_or_else(|| MaterialError::Missing {
                 material: self.name().to_string(),
                 parameter: parameter.key(),
             })

@@ -104,7 +104,7 @@ pub struct Illumination<P> {
     pub energy: Option<PhotonAccount<P>>,
     /// Irradiance on the stack at wavelengths outside each layer's absorption table, W/m^2: `[layers]`.
     pub uncovered: Vec<P>,
-    /// Irradiance at wavelengths outside the tables of the front reflectance or coating, W/m^2.
+    /// Irradiance at wavelengths outside the tables of the front reflectance or coating that some layer absorbs, W/m^2.
     pub uncovered_reflectance: P,
     /// Irradiance that an efficiency divides by, W/m^2; `None` where photons have no energy or nothing shines.
     pub input_power: Option<f64>,
@@ -295,13 +295,17 @@ impl<'a, P: Scalar, M: LayerMaterials<P>> LitStack<'a, P, M> {
             let terms = covered.iter().zip(&samples.energy).filter(|(covered, _)| !**covered);
             terms.fold(zero, |sum, (_, &energy)| sum + energy)
         };
+        // Where no layer absorbs anything, how much is reflected changes no cell.
+        let absorbed = |w: usize| destinations.absorbed(w).iter().any(|share| share.value() > 0.0);
+        let face_known: Vec<bool> =
+            self.face_covered.iter().enumerate().map(|(w, known)| *known || !absorbed(w)).collect();
         Ok(Illumination {
             generation,
             photon_energy: has_energy.then_some(photon_energy),
             photons: account(&destinations, &samples.flux, self.stack.layers.len()),
             energy: has_energy.then(|| account(&destinations, &samples.energy, self.stack.layers.len())),
             uncovered: covered.iter().map(|c| missing(c)).collect(),
-            uncovered_reflectance: missing(&self.face_covered),
+            uncovered_reflectance: missing(&face_known),
             input_power: samples.input_power,
             flux_enters: samples.entered,
         })

@@ -21,7 +21,8 @@ super::rows! {
         "acceptors(1e17.per_cm3)        // not: donors(-1e17.per_cm3)";
     MATERIAL_VALUE = "E215", "a material value that cannot be",
         "A material value lies outside what its law allows: a gap, mobility, density of states, lifetime or \
-         permittivity must be positive; coefficients of recombination must not be negative.",
+         permittivity must be positive; coefficients of recombination must not be negative. Or two values say the \
+         same thing in different ways, or a temperature model leads out of what can be at the temperature of the stack.",
         "material(\"GaAs\", #{ electron_lifetime: 20.ns })";
     COMPOSITION = "E216", "a composition that cannot be",
         "A composition `x` lies between 0 and 1 and within the range of the material's own laws; a compound of fixed \
@@ -31,9 +32,9 @@ super::rows! {
         "The library has no material of this name. `epiloom materials` lists all; `custom_material` builds one from \
          its own numbers.",
         "material(\"GaAs\")";
-    MATERIAL_INCOMPLETE = "E218", "a custom material lacks a value",
-        "A `custom_material` stands on its own numbers alone, so all that the equations use must be given. The \
-         message names what is missing.",
+    MATERIAL_INCOMPLETE = "E218", "a material lacks a value",
+        "A `custom_material` stands on its own numbers alone, so all that the equations use must be given. A \
+         temperature model needs all its parts, and the number that it moves. The message names what is missing.",
         "custom_material(\"test\", #{ gap: 1.424.eV, affinity: 4.07.eV, permittivity: 12.9, .. })";
     SHARE = "E219", "a share outside 0 to 1",
         "Reflectance, shading and the like are shares between 0 and 1. A value in percent is divided by 100.",

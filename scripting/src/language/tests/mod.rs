@@ -6,6 +6,7 @@ mod files;
 mod numbers;
 mod plans;
 mod solving;
+mod temperature_models;
 mod words;
 
 use std::collections::BTreeMap;

@@ -214,7 +214,12 @@ fn table_profile(table: &Array) -> Result<Profile<Quantity>, Fault> {
     let (mut depths, mut values) = (Vec::new(), Vec::new());
     for (row, entry) in table.iter().enumerate() {
         let (depth, value) = pair(entry, "depth", &["density", "x", "value"], row)?;
-        depths.push(quantity(&depth, &format!("the depth in row {row} of the table"), Dimension::LENGTH)?);
+        let depth = quantity(&depth, &format!("the depth in row {row} of the table"), Dimension::LENGTH);
+        // A table with named columns comes from a file: the unit belongs into its header, not to one number.
+        depths.push(depth.map_err(|fault| match entry.is_map() && fault.code == codes::BARE_NUMBER {
+            true => fault.help("name the unit in the header of the file, as scripts spell it: `depth_nm`"),
+            false => fault,
+        })?);
         values.push(level(&value, 0)?);
     }
     let fault = |message: String| {
@@ -251,6 +256,27 @@ pub fn pair(entry: &Dynamic, first: &str, second: &[&str], row: usize) -> Result
     }
     if entry.is::<value::Unknown>() {
         return Err(Fault::of_unknown());
+    }
+    if let Some(map) = entry.read_lock::<Map>() {
+        let columns: Vec<&str> = map.keys().map(|key| key.as_str()).collect();
+        let lacks = if columns.contains(&first) { second[0] } else { first };
+        let shown = columns.iter().map(|c| format!("`{c}`")).collect::<Vec<_>>().join(", ");
+        let fault = Fault::new(codes::PROFILE, format!("the table has no column `{lacks}`"))
+            .label(format!("its columns are {shown}"));
+        let mut names = columns.iter();
+        // `depth_nn`: the name is right, and what follows it is no unit.
+        return Err(match names.find(|c| c.strip_prefix(lacks).is_some_and(|rest| rest.starts_with('_'))) {
+            Some(odd) => {
+                let word = &odd[lacks.len() + 1..];
+                let unit = super::super::quantity::unknown_unit(word);
+                let help = unit.help.clone().unwrap_or_default();
+                fault.note(format!("`{word}` in `{odd}` is no unit that scripts know: {help}"))
+            }
+            None => fault.help(format!(
+                "a row is a map of `{first}` and `{}`, or a pair of them in brackets",
+                second[0]
+            )),
+        });
     }
     Err(Fault::new(
         codes::PROFILE,

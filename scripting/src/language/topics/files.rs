@@ -44,14 +44,39 @@ pub fn read_text(call: &Call, name: &Dynamic) -> Result<(String, String), Fault>
     let here = |fault: Fault| fault.at(Place::Argument(0));
     let name = text(name, "the name of a file").map_err(here)?;
     let (file, first) = call.session.files.read(&name).map_err(here)?;
-    let content = std::str::from_utf8(&file.bytes).map_err(|_| {
-        here(Fault::new(codes::UNREADABLE, format!("the file `{name}` is not text in UTF-8")))
-    })?;
+    let content =
+        std::str::from_utf8(&file.bytes).map_err(|error| here(not_utf8(&name, &file.bytes, error)))?;
     let content = content.strip_prefix('\u{feff}').unwrap_or(content).to_string();
     if first {
         call.session.tell(Event::DataFile(file.clone()));
     }
     Ok((file.name, content))
+}
+
+/// The fault of a file in another encoding, with the line that gives it away.
+fn not_utf8(name: &str, bytes: &[u8], error: std::str::Utf8Error) -> Fault {
+    let message = if bytes.starts_with(&[0xff, 0xfe]) || bytes.starts_with(&[0xfe, 0xff]) {
+        format!("the file `{name}` is text in UTF-16, and UTF-8 is read")
+    } else {
+        let line = 1 + bytes[..error.valid_up_to()].iter().filter(|b| **b == b'\n').count();
+        format!("the file `{name}` is not text in UTF-8: line {line} holds a character in another encoding")
+    };
+    Fault::new(codes::UNREADABLE, message)
+        .help("save it as text in UTF-8; numbers and words without accents or signs are the same in both")
+}
+
+/// The fields of a line, apart by the separator; a field may stand in double quotes, which may hold the separator.
+fn fields(line: &str, separator: char) -> Vec<&str> {
+    let mut quoted = false;
+    line.split(move |c: char| {
+        quoted ^= c == '"';
+        c == separator && !quoted
+    })
+    .map(|field| {
+        let field = field.trim();
+        field.strip_prefix('"').and_then(|f| f.strip_suffix('"')).unwrap_or(field).trim()
+    })
+    .collect()
 }
 
 /// A data file by columns.
@@ -74,31 +99,51 @@ impl Columns {
             .enumerate()
             .map(|(index, line)| (index + 1, line.trim()))
             .filter(|(_, line)| !line.is_empty() && !line.starts_with('#'));
-        let Some((_, header)) = lines.next() else {
+        let Some((header_line, header)) = lines.next() else {
             return Err(fault(1, "no header that names the columns".to_string()));
         };
         let separator = [';', '\t', ','].into_iter().find(|s| header.contains(*s)).unwrap_or(',');
-        let names: Vec<_> =
-            header.split(separator).map(|word| column_name(word.trim().trim_matches('"'))).collect();
+        let names: Vec<_> = fields(header, separator).into_iter().map(column_name).collect();
         if let Some(number) = names.iter().find(|(name, _)| name.parse::<f64>().is_ok()) {
             return Err(fault(
-                1,
+                header_line,
                 format!("a header that names the columns is missing: it begins with `{}`", number.0),
+            ));
+        }
+        if let Some((at, (name, _))) =
+            names.iter().enumerate().find(|(at, n)| names[..*at].iter().any(|m| m.0 == n.0))
+        {
+            return Err(fault(
+                header_line,
+                format!("two columns are called `{name}`, the second is number {}", at + 1),
             ));
         }
         let mut values = vec![Vec::new(); names.len()];
         for (line, row) in lines {
-            let fields: Vec<&str> = row.split(separator).map(str::trim).collect();
+            let fields = fields(row, separator);
             if fields.len() != names.len() {
-                return Err(fault(
-                    line,
-                    format!("{} fields where the header has {}", fields.len(), names.len()),
-                ));
+                let fault =
+                    fault(line, format!("{} fields where the header has {}", fields.len(), names.len()));
+                return Err(if separator == ',' && fields.len() > names.len() {
+                    fault.help(
+                        "commas stand between columns; the decimals of a number follow a point, `2.5e18`",
+                    )
+                } else {
+                    fault
+                });
             }
             for ((field, column), (name, _)) in fields.iter().zip(&mut values).zip(&names) {
                 match field.parse::<f64>() {
                     Ok(number) if number.is_finite() => column.push(number),
-                    _ => return Err(fault(line, format!("column `{name}`: `{field}` is no number"))),
+                    _ => {
+                        let fault = fault(line, format!("column `{name}`: `{field}` is no number"));
+                        let comma = field.replacen(',', ".", 1);
+                        return Err(if comma.parse::<f64>().is_ok() {
+                            fault.help(format!("the decimals of a number follow a point: `{comma}`"))
+                        } else {
+                            fault
+                        });
+                    }
                 }
             }
         }
@@ -148,6 +193,7 @@ fn column_name(word: &str) -> (String, Option<&'static crate::language::units::U
 
 fn input(call: &Call, arguments: &mut [&mut Dynamic]) -> Answer {
     let name = text(arguments[0], "the name of an input").map_err(|f| f.at(Place::Argument(0)))?;
+    call.session.state().input_calls.insert(call.line_and_column());
     let default = match any_quantity(arguments[1]) {
         Some(quantity) => InputValue::Quantity(quantity),
         None if arguments[1].is_string() => InputValue::Text(text(arguments[1], "the default")?),

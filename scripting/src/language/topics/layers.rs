@@ -151,6 +151,9 @@ topic! {
                         (None, None) => Dynamic::UNIT,
                     });
                 }
+                if key == "optical_constants" {
+                    return Ok(layer.material.optical.clone().map_or(Dynamic::UNIT, |own| Dynamic::from(ConstantsValue(own))));
+                }
                 match Parameter::from_key(&key) {
                     Some(parameter) => Ok(layer.material.overrides.get(&parameter).cloned().map_or(Dynamic::UNIT, give)),
                     None => Err(no_property(&key).into()),
@@ -168,6 +171,11 @@ topic! {
                             layer.material.composition = number;
                         }
                     });
+                }
+                if key == "optical_constants" {
+                    let given: ConstantsValue =
+                        take(arguments[2], "`optical_constants`", "`optical_constants(\"file.csv\")`").map_err(here)?;
+                    return change(call, arguments[0], |layer| layer.material.optical = Some(given.0));
                 }
                 let parameter = Parameter::from_key(&key).ok_or_else(|| no_property(&key))?;
                 let given = materials::parameter_value(parameter, arguments[2], &of_layer).map_err(here)?;

@@ -15,7 +15,9 @@ use crate::language::vocabulary::{OptionRow, function, getter, topic};
 topic! {
     "Materials",
     "A material of the library holds its values with their sources (`epiloom materials` prints them); any of them can be \
-     overridden by an option. A custom material stands on its own numbers alone, which hold at every temperature.";
+     overridden by an option. A custom material stands on its own numbers alone. Numbers that a script gives hold at every \
+     temperature, unless it gives a temperature model with them: Varshni's law or a coefficient for the gap, a mass for a \
+     density of states, a power of temperature for any other value.";
 
     Function "material" {
         forms: ["material(\"name\")", "material(\"name\", #{ options })"],
@@ -35,9 +37,11 @@ topic! {
     Function "custom_material" {
         forms: ["custom_material(\"name\", #{ options })"],
         doc: "A material on its own numbers. `gap`, `affinity`, `permittivity`, `nc`, `nv` and both mobilities must be given; \
-              a lifetime that is left out is infinite, a coefficient of recombination or an absorption that is left out is zero.",
-        options: OPTIONS,
-        example: "let test = custom_material(\"test\", #{ gap: 1.424.eV, affinity: 4.07.eV, permittivity: 12.9, nc: 4.7e17.per_cm3,\n    nv: 9e18.per_cm3, electron_mobility: 3000.cm2_per_Vs, hole_mobility: 200.cm2_per_Vs, electron_lifetime: 1.ns,\n    hole_lifetime: 10.ns, absorption: 1e4.per_cm });",
+              a lifetime that is left out is infinite, a coefficient of recombination or an absorption that is left out is zero. \
+              `gap_at_zero_kelvin` stands for `gap`, and `electron_mass` and `hole_mass` for `nc` and `nv`, where temperature \
+              moves them.",
+        options: CUSTOM_OPTIONS,
+        example: "let test = custom_material(\"test\", #{ gap: 1.424.eV, affinity: 4.07.eV, permittivity: 12.9, nc: 4.7e17.per_cm3,\n    nv: 9e18.per_cm3, electron_mobility: 3000.cm2_per_Vs, hole_mobility: 200.cm2_per_Vs, electron_lifetime: 1.ns,\n    hole_lifetime: 10.ns, absorption: 1e4.per_cm });\nlet at_any_temperature = custom_material(\"by Varshni\", #{ gap_at_zero_kelvin: 1.519.eV, gap_varshni_alpha: 0.5405.meV_per_K,\n    gap_varshni_beta: 204.K, affinity: 4.07.eV, permittivity: 12.9, electron_mass: 0.067, hole_mass: 0.47,\n    electron_mobility: 8000.cm2_per_Vs, hole_mobility: 400.cm2_per_Vs, reference_temperature: 300.K,\n    electron_mobility_temperature_exponent: -2.2, hole_mobility_temperature_exponent: -2.2, absorption: 1e4.per_cm });",
         register: |engine, session| {
             function(engine, session, "custom_material", 2..=2, |_, arguments| {
                 let name = text(arguments[0], "the name of a material").map_err(|f| f.at(Place::Argument(0)))?;
@@ -115,14 +119,98 @@ const OPTIONS: &[OptionRow] = &[
     OptionRow {
         key: "optical_constants",
         takes: "`optical_constants(\"file.csv\")`",
-        doc: "A table used as it stands at every temperature instead of the library's.",
+        doc: "A table used as it stands at every temperature instead of the library's; where the gap has a temperature model it moves in photon energy with the gap.",
     },
     OptionRow {
         key: "absorption",
         takes: "an absorption coefficient",
         doc: "One absorption coefficient; under a spectrum it acts at photon energies above the gap.",
     },
+    OptionRow {
+        key: "reference_temperature",
+        takes: "a temperature",
+        doc: "Temperature that the numbers given hold at, where one of the options below moves them; 300 K unless given.",
+    },
+    OptionRow {
+        key: "gap_at_zero_kelvin",
+        takes: "an energy",
+        doc: "Band gap at 0 K, instead of `gap`, for Varshni's law.",
+    },
+    OptionRow {
+        key: "gap_varshni_alpha",
+        takes: "an energy per kelvin",
+        doc: "Varshni's alpha: the gap falls as alpha T^2 / (T + beta).",
+    },
+    OptionRow { key: "gap_varshni_beta", takes: "a temperature", doc: "Varshni's beta." },
+    OptionRow {
+        key: "gap_temperature_coefficient",
+        takes: "an energy per kelvin",
+        doc: "Change of the gap with temperature, instead of Varshni's law; negative where the gap narrows.",
+    },
+    OptionRow {
+        key: "affinity_temperature_coefficient",
+        takes: "an energy per kelvin",
+        doc: "Change of the affinity with temperature; without it the affinity holds, and the valence band takes the change of the gap.",
+    },
+    OptionRow {
+        key: "electron_mass",
+        takes: "a number",
+        doc: "Density-of-states mass of electrons over that of the free electron, instead of `nc`, which is then 2 (2 pi m k T / h^2)^(3/2).",
+    },
+    OptionRow {
+        key: "hole_mass",
+        takes: "a number",
+        doc: "Density-of-states mass of holes over that of the free electron, instead of `nv`.",
+    },
+    OptionRow {
+        key: "nc_temperature_exponent",
+        takes: "a number",
+        doc: "Power of T / `reference_temperature` in `nc`: 1.5 for parabolic bands.",
+    },
+    OptionRow {
+        key: "nv_temperature_exponent",
+        takes: "a number",
+        doc: "Power of T / `reference_temperature` in `nv`.",
+    },
+    OptionRow {
+        key: "electron_mobility_temperature_exponent",
+        takes: "a number",
+        doc: "Power of T / `reference_temperature` in `electron_mobility`: -1.5 where acoustic phonons scatter.",
+    },
+    OptionRow {
+        key: "hole_mobility_temperature_exponent",
+        takes: "a number",
+        doc: "Power of T / `reference_temperature` in `hole_mobility`.",
+    },
+    OptionRow {
+        key: "electron_lifetime_temperature_exponent",
+        takes: "a number",
+        doc: "Power of T / `reference_temperature` in `electron_lifetime`.",
+    },
+    OptionRow {
+        key: "hole_lifetime_temperature_exponent",
+        takes: "a number",
+        doc: "Power of T / `reference_temperature` in `hole_lifetime`.",
+    },
+    OptionRow {
+        key: "radiative_coefficient_temperature_exponent",
+        takes: "a number",
+        doc: "Power of T / `reference_temperature` in `radiative_coefficient`.",
+    },
+    OptionRow {
+        key: "electron_auger_temperature_exponent",
+        takes: "a number",
+        doc: "Power of T / `reference_temperature` in `electron_auger`.",
+    },
+    OptionRow {
+        key: "hole_auger_temperature_exponent",
+        takes: "a number",
+        doc: "Power of T / `reference_temperature` in `hole_auger`.",
+    },
 ];
+
+/// Options of a custom material: all but the composition.
+const CUSTOM_OPTIONS: &[OptionRow] = OPTIONS.split_at(1).1;
 
 /// The dimension of a kind of parameter.
 pub fn dimension(kind: Kind) -> Dimension {
@@ -135,6 +223,8 @@ pub fn dimension(kind: Kind) -> Dimension {
         Kind::RadiativeCoefficient => Dimension::RADIATIVE,
         Kind::AugerCoefficient => Dimension::AUGER,
         Kind::InverseLength => Dimension::INVERSE_LENGTH,
+        Kind::Temperature => Dimension::TEMPERATURE,
+        Kind::EnergyPerTemperature => Dimension::ENERGY_PER_TEMPERATURE,
     }
 }
 
@@ -269,6 +359,39 @@ pub fn material_fault(error: &MaterialError) -> Fault {
             Fault::new(
                 codes::MATERIAL_INCOMPLETE,
                 format!("custom material `{material}` needs `{parameter}`, {}", wants.family()),
+            )
+        }
+        MaterialError::Exclusive { material, first, second } => Fault::new(
+            codes::MATERIAL_VALUE,
+            format!("material `{material}` gives both `{first}` and `{second}`"),
+        )
+        .help("give one of them: they say the same thing in different ways")
+        .at(Place::Key(second.to_string())),
+        MaterialError::Needs { material, parameter: "reference_temperature", .. } => Fault::new(
+            codes::MATERIAL_INCOMPLETE,
+            format!("`reference_temperature` of material `{material}` moves nothing: no value has a temperature model"),
+        )
+        .help("give one, such as gap_varshni_alpha and gap_varshni_beta, or nc_temperature_exponent: 1.5")
+        .at(Place::Key("reference_temperature".to_string())),
+        MaterialError::Needs { material, parameter, needs } => {
+            let wants = Parameter::from_key(needs).map_or(Dimension::NONE, |p| dimension(p.kind()));
+            Fault::new(
+                codes::MATERIAL_INCOMPLETE,
+                format!("`{parameter}` of material `{material}` needs `{needs}` beside it, {}", wants.family()),
+            )
+            .at(Place::Key(parameter.to_string()))
+        }
+        MaterialError::OutOfRangeAt { material, parameter, value, temperature, low, high } => {
+            let dimension = Parameter::from_key(parameter).map_or(Dimension::NONE, |p| dimension(p.kind()));
+            let shown = |v: f64| Quantity::si(v, dimension).to_string();
+            let allowed = range(&shown(*low), *low, &shown(*high), *high);
+            Fault::new(
+                codes::MATERIAL_VALUE,
+                format!(
+                    "`{parameter}` of material `{material}` comes to {} at {temperature} K by its temperature model, \
+                     and must be {allowed}",
+                    shown(*value)
+                ),
             )
         }
         MaterialError::TrapTwice { material } => Fault::new(

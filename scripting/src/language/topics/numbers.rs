@@ -97,6 +97,13 @@ fn not_a_quantity(value: &Dynamic) -> Fault {
     if value.is::<crate::language::value::Unknown>() {
         return Fault::of_unknown();
     }
+    if value.is_unit() {
+        return Fault::new(
+            crate::diagnostics::codes::ABSENT_FIGURE,
+            "`.to(..)` of a value that does not exist, `()`",
+        )
+        .help("a figure of merit that does not exist is `()`, and `.reason(\"voc\")` of the result says why; compare with `()` first");
+    }
     Fault::new(crate::diagnostics::codes::WRONG_KIND, "`.to(..)` belongs to a quantity")
         .label(format!("this is {}", crate::language::value::described(value)))
 }

@@ -146,7 +146,8 @@ impl<P: Scalar> Material<P> {
     /// The material's absorption at one place: composition there if the layer grades it, temperature in K.
     ///
     /// An `absorption` set by the script goes before its table, its table before the library's. Library tables move with
-    /// the gap: with temperature, composition and a `gap` set by the script.
+    /// the gap: with temperature, composition and a `gap` set by the script. The script's own table stands, unless the
+    /// script gives the gap a temperature model: then it moves with the gap, from the reference temperature.
     ///
     /// # Errors
     /// As [`Material::values`].
@@ -159,12 +160,13 @@ impl<P: Scalar> Material<P> {
         match (&self.optical, &self.base) {
             (Some(own), _) => {
                 let table = Arc::new(Table::from_constants(own));
-                tables.push(Shifted { table, shift: zero, share: P::constant(1.0) });
+                let shift = self.set_gap_change(temperature) * (1.0 / ELEMENTARY_CHARGE);
+                tables.push(Shifted { table, shift, share: P::constant(1.0) });
             }
             (None, MaterialBase::Library(_)) => {
                 let (record, x) = self.record(x)?;
-                let moved = match self.overrides.get(&Parameter::Gap) {
-                    Some(gap) => *gap * (1.0 / ELEMENTARY_CHARGE) - record.bands(x, temperature).gap,
+                let moved = match self.set_value(Parameter::Gap, temperature) {
+                    Some(gap) => gap * (1.0 / ELEMENTARY_CHARGE) - record.bands(x, temperature).gap,
                     None => zero,
                 };
                 (tables, tail) = models::tables(record, x, temperature, moved);

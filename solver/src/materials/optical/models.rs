@@ -60,13 +60,18 @@ const ALGAAS: [(f64, &str); 8] = [
 
 /// Every data file but those of AlGaAs.
 #[cfg(test)]
-pub(super) const FILES: [(&str, &str); 6] = [
+pub(super) const FILES: [(&str, &str); 11] = [
     ("GaAs", data!("gaas_jellison.csv")),
     ("InP", data!("inp_aspnes.csv")),
     ("GaInP", data!("gainp_schubert.csv")),
     ("InGaAs", data!("ingaas_adachi.csv")),
     ("Si", data!("si_green.csv")),
     ("Ge", data!("ge_nunley.csv")),
+    ("GaAs", data!("gaas_index_ozaki.csv")),
+    ("GaAs", data!("gaas_index_skauli.csv")),
+    ("InP", data!("inp_index_adachi.csv")),
+    ("InP", data!("inp_index_pettit.csv")),
+    ("Si", data!("si_index_franta.csv")),
 ];
 #[cfg(test)]
 pub(super) const ALLOYS: [(f64, &str); 8] = ALGAAS;
@@ -80,29 +85,40 @@ fn sample_gap(x: f64) -> f64 {
 fn all() -> &'static Tables {
     static TABLES: OnceLock<Tables> = OnceLock::new();
     TABLES.get_or_init(|| {
-        let plain = |record: &Record, text: &str| {
-            let table = Table::from_constants(&OpticalConstants::parse(record.name, text));
-            (record.bands(0.0, ROOM).gap, Arc::new(table))
-        };
-        let edged = |name: &str, text: &str, gap: f64, at_gap: f64, join: f64| {
-            let edge = Edge { gap, at_gap, join, urbach: URBACH };
-            (gap, Arc::new(Table::with_edge(&OpticalConstants::parse(name, text), edge)))
+        let read = |text: &str| OpticalConstants::parse("", text);
+        let edged = |text: &str, gap: f64, at_gap: f64, join: f64| {
+            Table::with_edge(&read(text), Edge { gap, at_gap, join, urbach: URBACH })
         };
         let gap = |record: &Record| record.bands(0.0, ROOM).gap;
+        let (of_gaas, of_inp) = (gap(&library::gaas::GAAS), gap(&library::inp::INP));
+        let gaas = edged(data!("gaas_jellison.csv"), of_gaas, AT_GAP, 1.484)
+            .with_index_of(&read(data!("gaas_index_ozaki.csv")))
+            .with_index_of(&read(data!("gaas_index_skauli.csv")))
+            .continued();
+        let inp = edged(data!("inp_aspnes.csv"), of_inp, AT_GAP, 1.499)
+            .with_index_of(&read(data!("inp_index_adachi.csv")))
+            .with_index_of(&read(data!("inp_index_pettit.csv")));
+        let si = Table::from_constants(&read(data!("si_green.csv")))
+            .with_index_of(&read(data!("si_index_franta.csv")));
+        let gainp = edged(data!("gainp_schubert.csv"), GAINP_GAP, 8.17e5, 1.875)
+            .with_index_like(&gaas, GAINP_GAP / of_gaas);
+        let ge = Table::from_constants(&read(data!("ge_nunley.csv")));
+        let algaas = |&(x, text): &(f64, &str)| {
+            let gap = sample_gap(x);
+            let table = edged(text, gap, AT_GAP, gap + 0.015).with_index_like(&gaas, gap / of_gaas);
+            (x, (gap, Arc::new(table.continued())))
+        };
         Tables {
-            gaas: edged("GaAs", data!("gaas_jellison.csv"), gap(&library::gaas::GAAS), AT_GAP, 1.484),
-            algaas: ALGAAS
-                .iter()
-                .map(|&(x, text)| {
-                    let gap = sample_gap(x);
-                    (x, edged("AlGaAs", text, gap, AT_GAP, gap + 0.015))
-                })
-                .collect(),
-            gainp: edged("GaInP", data!("gainp_schubert.csv"), GAINP_GAP, 8.17e5, 1.875),
-            inp: edged("InP", data!("inp_aspnes.csv"), gap(&library::inp::INP), AT_GAP, 1.499),
-            gainas: edged("GaInAs", data!("ingaas_adachi.csv"), GAINAS_GAP, 4.5e5, 0.81),
-            si: plain(&library::elemental::SI, data!("si_green.csv")),
-            ge: plain(&library::elemental::GE, data!("ge_nunley.csv")),
+            algaas: ALGAAS.iter().map(algaas).collect(),
+            gainp: (GAINP_GAP, Arc::new(gainp.continued())),
+            inp: (of_inp, Arc::new(inp.continued())),
+            gainas: (
+                GAINAS_GAP,
+                Arc::new(edged(data!("ingaas_adachi.csv"), GAINAS_GAP, 4.5e5, 0.81).continued()),
+            ),
+            si: (gap(&library::elemental::SI), Arc::new(si.continued())),
+            ge: (gap(&library::elemental::GE), Arc::new(ge.continued())),
+            gaas: (of_gaas, Arc::new(gaas)),
         }
     })
 }

@@ -37,7 +37,16 @@ pub(super) struct Table {
     index: Vec<f64>,
     /// First and last wavelength of the table, m.
     wavelength: (f64, f64),
+    /// Last wavelength with a refractive index, m.
+    last_index: f64,
+    /// Beyond the last refractive index, `1 / (n^2 - 1) = a + b E^2`.
+    oscillator: Option<(f64, f64)>,
+    /// Whether the material is transparent beyond the last row: a table that ends where next to nothing is absorbed.
+    dark_beyond: bool,
 }
+
+/// A table whose last absorption coefficient lies below this, m^-1, ends in transparency: 1 part in 1000 over a metre.
+const TRANSPARENT: f64 = 1e-3;
 
 impl Table {
     /// A table as it stands.
@@ -65,7 +74,11 @@ impl Table {
         }
         let energy: Vec<f64> = points.iter().map(|p| p.0).collect();
         let ends = |i: Option<&f64>| i.copied().unwrap_or(0.0);
+        let last_index = ends(constants.wavelength.last());
         Table {
+            last_index,
+            oscillator: None,
+            dark_beyond: false,
             inverse: energy.windows(2).map(|w| 1.0 / (w[1] - w[0])).collect(),
             energy,
             log: points.iter().map(|p| if p.1 > 0.0 { elementary::ln(p.1) } else { 0.0 }).collect(),
@@ -77,17 +90,62 @@ impl Table {
         }
     }
 
+    /// The table with the refractive indices of another one beyond its own last.
+    pub(super) fn with_index_of(mut self, more: &OpticalConstants) -> Self {
+        for (&wavelength, &n) in more.wavelength.iter().zip(&more.n) {
+            if wavelength > self.last_index {
+                self.index_energy.insert(0, ENERGY_TIMES_WAVELENGTH / wavelength);
+                self.index.insert(0, n);
+                self.last_index = wavelength;
+            }
+        }
+        self
+    }
+
+    /// The table with refractive indices beyond its own last that fall as another material's do at the same photon energy
+    /// over the gap; `ratio` is the gap of this one over that of the other.
+    pub(super) fn with_index_like(mut self, other: &Table, ratio: f64) -> Self {
+        let (Some(&end), Some(&n)) = (self.index_energy.first(), self.index.first()) else { return self };
+        let Some(scale) = other.index(end / ratio).map(|there| n / there) else { return self };
+        let rows = other.index_energy.iter().zip(&other.index).rev().map(|(e, n)| (e * ratio, n * scale));
+        for (energy, n) in rows.filter(|row| row.0 < end) {
+            self.index_energy.insert(0, energy);
+            self.index.insert(0, n);
+            self.last_index = ENERGY_TIMES_WAVELENGTH / energy;
+        }
+        self
+    }
+
+    /// The table of a material that is transparent beyond its last row, with the refractive index continued by one
+    /// oscillator through the last row and the one at 1.2 times its photon energy.
+    ///
+    /// Form: S. H. Wemple and M. DiDomenico, Phys. Rev. B 3, 1338 (1971), from memory.
+    pub(super) fn continued(mut self) -> Self {
+        self.dark_beyond =
+            self.edge.is_none() && self.coefficient.first().is_some_and(|last| *last < TRANSPARENT);
+        if let (Some(&end), Some(&n)) = (self.index_energy.first(), self.index.first())
+            && let Some(above) = self.index(1.2 * end)
+        {
+            let (here, there) = (1.0 / (n * n - 1.0), 1.0 / (above * above - 1.0));
+            let slope = (there - here) / (0.44 * end * end);
+            self.oscillator = Some((here - slope * end * end, slope));
+        }
+        self
+    }
+
     /// Whether the absorption is known at a wavelength, m: an analytic edge covers everything below it.
     pub(super) fn covers(&self, wavelength: f64) -> bool {
-        wavelength >= self.wavelength.0 && (self.edge.is_some() || wavelength <= self.wavelength.1)
+        let whole = self.edge.is_some() || self.dark_beyond;
+        wavelength >= self.wavelength.0 && (whole || wavelength <= self.wavelength.1)
     }
 
-    /// Whether the refractive index is tabulated at a wavelength, m.
+    /// Whether the refractive index is known at a wavelength, m.
     pub(super) fn index_covers(&self, wavelength: f64) -> bool {
-        wavelength >= self.wavelength.0 && wavelength <= self.wavelength.1
+        wavelength >= self.wavelength.0 && (self.oscillator.is_some() || wavelength <= self.last_index)
     }
 
-    /// The coefficient, m^-1, at a photon energy on the table's own scale, eV; beyond the ends the end value.
+    /// The coefficient, m^-1, at a photon energy on the table's own scale, eV; beyond the ends the end value, or 0 where
+    /// the material is transparent there.
     ///
     /// Between rows its logarithm is linear in energy (the coefficient itself where one of them is 0, and in the interval
     /// between the gap and the table). `hint` is the interval of the last call.
@@ -103,7 +161,8 @@ impl Table {
             return P::constant(0.0); // a table without rows, which no device holds
         };
         if at <= first {
-            return P::constant(self.coefficient[0]);
+            let end = if self.dark_beyond && at < first { 0.0 } else { self.coefficient[0] };
+            return P::constant(end);
         }
         if at >= last {
             return P::constant(self.coefficient[self.energy.len() - 1]);
@@ -135,12 +194,19 @@ impl Table {
         self.energy.partition_point(|e| *e <= at) - 1
     }
 
-    /// Refractive index at a photon energy on the table's own scale, eV, linear between rows; beyond the ends the end value.
+    /// Refractive index at a photon energy on the table's own scale, eV, linear between rows; beyond the last row by one
+    /// oscillator or the end value, before the first its value.
     pub(super) fn index<P: Scalar>(&self, energy: P) -> Option<P> {
         let at = energy.value();
         let (first, last) = (*self.index_energy.first()?, *self.index_energy.last()?);
         if at <= first {
-            return self.index.first().map(|n| P::constant(*n));
+            return match self.oscillator {
+                Some((constant, slope)) => {
+                    let polarisability = (energy * energy * slope + constant).recip();
+                    Some((polarisability + 1.0).sqrt())
+                }
+                None => self.index.first().map(|n| P::constant(*n)),
+            };
         }
         if at >= last {
             return self.index.last().map(|n| P::constant(*n));

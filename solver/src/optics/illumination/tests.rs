@@ -252,9 +252,17 @@ fn a_coating_lies_on_the_lit_layer() {
     let lit = LitStack::probed(&stack, &bench, &[600e-9]).expect("sound");
     assert!(lit.entrance()[0].0 < 1e-30 && lit.entrance()[0].1 == 0.0);
     let light = sun(1.0);
-    let result = LitStack::new(&stack, &bench, &light).expect("sound").illuminate(&nodes(&[1e-6], 5));
-    let result = result.expect("sound");
-    assert!(result.uncovered_reflectance > 300.0, "infrared beyond the film's table");
+    let shine = |bench: &Bench<f64>| {
+        let lit = LitStack::new(&stack, bench, &light).expect("sound");
+        lit.illuminate(&nodes(&[1e-6], 5)).expect("sound")
+    };
+    bench.scalar = vec![Some(0.0)];
+    let result = shine(&bench);
+    assert_eq!(result.uncovered_reflectance, 0.0, "no layer absorbs what the film's table leaves out");
+    bench.scalar = vec![Some(1e6)];
+    let absorbing = shine(&bench).uncovered_reflectance;
+    assert!((250.0..400.0).contains(&absorbing), "800 nm to the gap, and below 400 nm: {absorbing}");
+    bench.scalar = vec![None];
     assert!(result.photons.closure().abs() < 1e-14 * result.photons.incident);
     bench.index = None;
     let fault = LitStack::probed(&stack, &bench, &[600e-9]).err().expect("no index");
