@@ -391,16 +391,22 @@ impl Sweep<'_> {
             );
             self.session.warn(noted(fault), self.context.call_position());
         }
-        for (code, warned) in builder.warned() {
-            let fault = Fault::new(
+        let warned = builder.warned();
+        if !warned.is_empty() {
+            let counts: Vec<String> =
+                warned.iter().map(|(code, w)| format!("{code} at {}", w.points)).collect();
+            let mut fault = Fault::new(
                 codes::POINTS_WARNED,
                 format!(
-                    "{} of {} points of the sweep `{name}` have the warning {code}",
-                    warned.points,
-                    failed + solved
+                    "of {} points of the sweep `{name}` some have warnings: {}",
+                    failed + solved,
+                    counts.join(", ")
                 ),
-            )
-            .note(format!("point {}: {}", warned.first, warned.words));
+            );
+            for found in warned.values() {
+                let words: Vec<&str> = found.words.iter().map(String::as_str).collect();
+                fault = fault.note(format!("point {}: {}", found.first, words.join("; ")));
+            }
             self.session.warn(fault, self.context.call_position());
         }
         Ok(())

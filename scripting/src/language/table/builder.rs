@@ -31,8 +31,8 @@ pub struct Warned {
     pub points: u64,
     /// The first of them.
     pub first: u64,
-    /// What it says.
-    pub words: String,
+    /// What the warnings of this code say there.
+    pub words: Vec<String>,
 }
 
 impl Builder {
@@ -64,19 +64,20 @@ impl Builder {
     }
 
     fn take_warnings(&mut self, point: &Point) {
-        let mut codes = BTreeSet::new();
+        // "[W313] the error .."
+        let code_of =
+            |words: &str| words.split(']').next().unwrap_or_default().trim_start_matches('[').to_string();
+        let mut found: BTreeMap<String, Vec<&String>> = BTreeMap::new();
         for words in &point.warnings {
-            // "[W313] the error .."
-            let code = words.split(']').next().unwrap_or_default().trim_start_matches('[');
-            if !codes.insert(code) {
-                continue;
-            }
-            let new = Warned { points: 0, first: u64::MAX, words: String::new() };
-            let warned = self.warned.entry(code.to_string()).or_insert(new);
+            found.entry(code_of(words)).or_default().push(words);
+        }
+        for (code, words) in found {
+            let new = Warned { points: 0, first: u64::MAX, words: Vec::new() };
+            let warned = self.warned.entry(code).or_insert(new);
             warned.points += 1;
             if point.index < warned.first {
                 warned.first = point.index;
-                warned.words.clone_from(words);
+                warned.words = words.into_iter().cloned().collect();
             }
         }
     }

@@ -181,7 +181,7 @@ fn warnings_of_points_are_gathered() {
         });
     "#;
     let outcome = expect_diagnostics(text, on(2));
-    assert_eq!(outcome.warnings[0].message, "2 of 3 points of the sweep `lit` have the warning W302");
+    assert_eq!(outcome.warnings[0].message, "of 3 points of the sweep `lit` some have warnings: W302 at 2");
     let (_, recorder) = run_with(text, on(1));
     assert!(recorder.sweeps[0].1[0].warnings.is_empty());
     assert!(recorder.sweeps[0].1[2].warnings.iter().all(|w| w.starts_with("[W302]")));

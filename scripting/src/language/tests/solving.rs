@@ -120,6 +120,24 @@ fn every_form_of_asking_works() {
     fails("store(\"x\", [#{ a: 1 }, #{ a: 1.nm }]); // ~ E201");
 }
 
+/// Source of truth: the curve with its points: the figures alone have the same bits, errors and meshes included.
+#[test]
+fn the_figures_alone_are_those_of_the_curve() {
+    let text = r#"
+        let gaas = material("GaAs", #{ electron_lifetime: 20.ns, hole_lifetime: 20.ns });
+        let cell = stack("d", [layer("n", gaas, 100.nm, donors(1e18.per_cm3)), layer("p", gaas, 1.um, acceptors(1e17.per_cm3))]);
+        cell.series_resistance = 0.5.ohm_cm2;
+        store("curve", cell.jv(spectrum("AM1.5G")));
+        store("figures", cell.figures(spectrum("AM1.5G")));
+        print(cell.figures(dark()).reason("voc"));
+    "#;
+    let (outcome, recorder) = run_text(text);
+    assert!(outcome.errors.is_empty(), "{}", shown(text, &outcome.errors));
+    assert_eq!(recorder.snapshots[0].figures, recorder.snapshots[1].figures);
+    assert_eq!(recorder.snapshots[1].table("points").map(|t| t.rows), Some(0));
+    assert_eq!(recorder.lines, ["no light is absorbed"]);
+}
+
 /// Source of truth: the same script gives the same bytes.
 #[test]
 fn a_second_run_gives_the_same_snapshots() {

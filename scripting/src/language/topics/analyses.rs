@@ -35,6 +35,19 @@ topic! {
             method::<StackValue>(engine, session, "jv", 1..=4, jv);
         },
     }
+    Method "figures" of "stack" {
+        forms: ["cell.figures(light)"],
+        doc: "The figures of merit alone, a J-V curve without points: for sweeps. Short circuit, open circuit and maximum power are solved \
+              for as `jv` solves for them, on as many meshes, so the figures and their errors are the same to the last bit.",
+        example: "let gaas = material(\"GaAs\", #{ electron_lifetime: 20.ns, hole_lifetime: 20.ns });\nlet cell = stack(\"diode\", [layer(\"emitter\", gaas, 100.nm, donors(2e18.per_cm3)), layer(\"base\", gaas, 2.um, acceptors(1e17.per_cm3))]);\nprint(cell.figures(spectrum(\"AM1.5G\")).efficiency);",
+        register: |engine, session| {
+            method::<StackValue>(engine, session, "figures", 1..=1, |call, arguments| {
+                let stack = stacks::of(arguments[0])?;
+                let light = light(arguments[1], 0)?;
+                curve(call, &stack, light, false, &Voltages::Given(Vec::new()))
+            });
+        },
+    }
     Method "at" of "stack" {
         forms: ["cell.at(voltage, light)"],
         doc: "The bias point at a terminal voltage under a light: profiles against depth, current, ledger.",
@@ -153,11 +166,16 @@ fn jv(call: &Call, arguments: &mut [&mut Dynamic]) -> Answer {
     };
     let count = if let Voltages::Given(list) = &voltages { list.len() } else { 0 };
     too_many(call, count, codes::VOLTAGES)?;
-    let solved = solve(call, &stack, light, unknown, "J-V curve", |device, light| {
-        analysis::current_voltage(device, light, &voltages)
+    curve(call, &stack, light, unknown, &voltages)
+}
+
+/// A curve at these voltages, with its warnings told.
+fn curve(call: &Call, stack: &StackValue, light: LightValue, unknown: bool, voltages: &Voltages) -> Answer {
+    let solved = solve(call, stack, light, unknown, "J-V curve", |device, light| {
+        analysis::current_voltage(device, light, voltages)
     })?;
     if let Some(result) = &solved.result {
-        result.warnings.iter().for_each(|w| warn(call, &stack, w));
+        result.warnings.iter().for_each(|w| warn(call, stack, w));
         if let Some(reason) = &result.stopped {
             call.session.warn(
                 Fault::new(codes::CURVE_STOPPED, format!("the curve stopped early: {reason}")),
