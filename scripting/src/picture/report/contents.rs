@@ -1,0 +1,81 @@
+//! What a page is made from: an archive read whole, with what is damaged in it by name.
+
+use crate::archive::{Archive, ArchiveWarning, Label, RunHeader, Snapshot, Status};
+
+/// An archive for a page.
+#[derive(Clone, Debug, Default)]
+pub struct Contents {
+    /// Name of the file, without its folder.
+    pub file: String,
+    /// The description of the run; none where it is damaged.
+    pub run: Option<RunHeader>,
+    /// The snapshots in the order of the archive.
+    pub snapshots: Vec<Held>,
+    /// Whether the run has ended well.
+    pub finished: bool,
+    /// What is amiss in the file, in words.
+    pub troubles: Vec<String>,
+}
+
+/// A snapshot, or what is left of it.
+#[derive(Clone, Debug)]
+pub enum Held {
+    /// It is whole.
+    Whole(Box<Snapshot>),
+    /// It cannot be read.
+    Damaged {
+        /// What the listing says of it.
+        label: Label,
+        /// What is wrong.
+        reason: String,
+    },
+}
+
+impl Held {
+    /// Its label.
+    pub fn label(&self) -> &Label {
+        match self {
+            Held::Whole(snapshot) => &snapshot.label,
+            Held::Damaged { label, .. } => label,
+        }
+    }
+
+    /// Whether it holds a solution.
+    pub fn status(&self) -> Status {
+        self.label().status.clone()
+    }
+
+    /// The snapshot, where it is whole.
+    pub fn snapshot(&self) -> Option<&Snapshot> {
+        match self {
+            Held::Whole(snapshot) => Some(snapshot),
+            Held::Damaged { .. } => None,
+        }
+    }
+}
+
+impl Contents {
+    /// Reads an archive whole. `file` is its name as a person will look for it.
+    pub fn of(archive: &Archive, file: &str) -> Contents {
+        let snapshots = archive.entries().iter().enumerate().map(|(index, entry)| {
+            match archive.snapshot_at(index) {
+                Ok(snapshot) => Held::Whole(Box::new(snapshot)),
+                Err(error) => Held::Damaged { label: entry.label.clone(), reason: error.to_string() },
+            }
+        });
+        // that the run has not ended is said once, in the page's own words
+        let amiss = |warning: &&ArchiveWarning| !matches!(warning, ArchiveWarning::NotFinished { .. });
+        Contents {
+            file: file.to_string(),
+            run: archive.run().ok().cloned(),
+            snapshots: snapshots.collect(),
+            finished: archive.is_finished(),
+            troubles: archive.warnings().iter().filter(amiss).map(ToString::to_string).collect(),
+        }
+    }
+
+    /// The snapshots that are whole.
+    pub fn whole(&self) -> impl Iterator<Item = &Snapshot> {
+        self.snapshots.iter().filter_map(Held::snapshot)
+    }
+}
