@@ -28,7 +28,7 @@ const drawnFigure = (chart, { name, csv, draw, legend }) => {
   return {
     element: root,
     repaint: paint,
-    print: () => root.querySelector(".printed").replaceChildren(draw(640, true, () => {})),
+    print: () => root.querySelector(".printed").replaceChildren(draw(PRINTED, true, () => {})),
     end: () => watcher.disconnect(),
   };
 };
@@ -46,9 +46,12 @@ const barsFigure = (chart, columns, context) => {
     const items = [];
     const names = stages.flatMap((stage) => stage.bars.map((bar) => visible(bar.name)));
     const numbers = Math.max(...stages.flatMap((stage) => stage.bars.map((bar) => textWidth(shownBar(bar), 12))), 40);
-    const room = Math.min(Math.max(...names.map((text) => textWidth(text, 12))) + 10, width * 0.42);
-    const left = room;
+    // where names would be cut they stand above their bars
+    const widest = Math.max(...names.map((text) => textWidth(text, 12))) + 10;
+    const above = widest > width * 0.42;
+    const left = above ? 0 : widest;
     const right = width - numbers - 10;
+    const high = above ? 38 : 20;
     let top = 6;
     for (const stage of stages) {
       const [low, high] = stage.axis.range;
@@ -59,15 +62,16 @@ const barsFigure = (chart, columns, context) => {
       let before = null;
       for (const bar of stage.bars) {
         const [a, b] = [px(Math.min(bar.from, bar.to)), px(Math.max(bar.from, bar.to))];
-        if (before !== null) items.push(svg("line", { x1: before, x2: before, y1: top - 5, y2: top + 15, stroke: colours.line, "stroke-width": 1 }));
+        if (before !== null) items.push(svg("line", { x1: before, x2: before, y1: top - 5, y2: top + high - 5, stroke: colours.line, "stroke-width": 1 }));
         const words = `${bar.name}: ${amount(bar.value, stage.axis.unit)}${bar.share ? ` (${bar.share})` : ""}`;
-        const shape = svg("rect", { x: a, y: top, width: Math.max(b - a, 1), height: 15, fill: barColour(bar.role, paper), rx: 1, tabindex: paper ? null : 0,
+        const shape = svg("rect", { x: a, y: top + (above ? 17 : 0), width: Math.max(b - a, 1), height: 15, fill: barColour(bar.role, paper), rx: 1, tabindex: paper ? null : 0,
           role: paper ? null : "listitem", "aria-label": paper ? null : visible(words),
           on: { pointerenter: () => tell(words), pointerleave: () => tell(""), focus: () => tell(words), blur: () => tell("") } }, svg("title", {}, words));
-        items.push(label(left - 8, top + 12, fitText(visible(bar.name), left - 10, 12), { "text-anchor": "end", fill: colours.ink }));
-        items.push(shape, label(right + 8, top + 12, shownBar(bar), { fill: colours.quiet }));
-        before = bar.role === "income" ? px(bar.to) : px(bar.to);
-        top += 20;
+        items.push(above ? label(0, top + 12, fitText(visible(bar.name), width, 12), { fill: colours.ink })
+          : label(left - 8, top + 12, visible(bar.name), { "text-anchor": "end", fill: colours.ink }));
+        items.push(shape, label(right + 8, top + (above ? 29 : 12), shownBar(bar), { fill: colours.quiet }));
+        before = px(bar.to);
+        top += high;
       }
       top += 12;
     }

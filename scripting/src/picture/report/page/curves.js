@@ -403,6 +403,7 @@ const curvesFigure = (chart, columns, { name, csv }) => {
     if (xButton) press(xButton, state.xlog);
     wholeButton.disabled = !(state.x || parts.some((part) => part.range));
     const list = [...chart.notes];
+    if (regions.length > 0) list.push(`layers, front first: ${[...new Set(regions.map((region) => region.name))].join(", ")}`);
     for (const part of parts) {
       const { y, series } = part.panel;
       if (magnitude(part)) list.push(`${y.label}: absolute values are drawn; the reading has the sign`);
@@ -458,7 +459,7 @@ const curvesFigure = (chart, columns, { name, csv }) => {
   }
 
   /** The plot as a drawing on paper, as it is shown now. */
-  const draw = (width) => {
+  const draw = (width, notes = chart.notes) => {
     const colours = PAPER;
     const items = [];
     const title = chart.conditions ? `${name} (${chart.conditions})` : name;
@@ -557,7 +558,7 @@ const curvesFigure = (chart, columns, { name, csv }) => {
       }
     }
     top += 8;
-    for (const note of chart.notes) {
+    for (const note of notes) {
       top += 16;
       items.push(label(left, top, fitText(visible(note), inner, 11), { "font-size": 11, fill: colours.quiet }));
     }
@@ -592,7 +593,7 @@ const curvesFigure = (chart, columns, { name, csv }) => {
         image.replaceWith(swatch(all[place].look, false));
       }
     },
-    print: () => root.querySelector(".printed").replaceChildren(draw(640)),
+    print: () => root.querySelector(".printed").replaceChildren(draw(PRINTED, [])),
     end: () => {
       watcher.disconnect();
       for (const part of parts) part.plot?.destroy();

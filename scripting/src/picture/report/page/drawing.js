@@ -2,6 +2,9 @@
 
 const FONT = 'system-ui, -apple-system, "Segoe UI", Roboto, "Helvetica Neue", "Liberation Sans", Arial, sans-serif';
 
+/** Width of a drawing that is printed in one of two columns: its letters keep the size of the text around. */
+const PRINTED = 400;
+
 const PAPER = { ground: "#ffffff", ink: "#1b1d1f", quiet: "#5d636a", line: "#d9dce0", layer: "#f1f2f4", other: "#e4e6e9", lost: "#b9bec4" };
 const NIGHT = { ground: "#15171a", ink: "#e8e6e1", quiet: "#a3a7ad", line: "#34383e", layer: "#1d2024", other: "#272b30", lost: "#565c64" };
 

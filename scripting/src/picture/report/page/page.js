@@ -126,12 +126,6 @@ const fillSnapshot = async (place, inside) => {
   const files = csvFiles(record, columns);
   if (record.failed) inside.append(el("p", { class: "trouble" }, `Failed: ${record.failed}. What follows is the last good state.`));
   if (record.figures.length > 0) inside.append(figureList(record.figures));
-  if (record.warnings.length > 0) {
-    inside.append(el("ul", { class: "warnings" }, record.warnings.map((text) => {
-      const found = /^\[(\w+)\] (.*)$/s.exec(text);
-      return el("li", {}, el("span", { class: "code" }, found ? found[1] : ""), ` ${found ? found[2] : text}`);
-    })));
-  }
   const charts = record.charts.map((chart) => figureOf(chart, columns, {
     name: record.name,
     csv: chart.csv === null ? null : files[chart.csv],
@@ -144,6 +138,12 @@ const fillSnapshot = async (place, inside) => {
       + "with every extreme and both sides of every interface; no number is changed. All rows: epiloom export, or epiloom report --all-rows."));
   }
   if (charts.length > 0) inside.append(el("div", { class: "charts" }, charts.map((chart) => chart.element)));
+  if (record.warnings.length > 0) {
+    inside.append(el("ul", { class: "warnings" }, record.warnings.map((text) => {
+      const found = /^\[(\w+)\] (.*)$/s.exec(text);
+      return el("li", {}, el("span", { class: "code" }, found ? found[1] : ""), ` ${found ? found[2] : text}`);
+    })));
+  }
   if (record.conditions.length > 0) inside.append(pairs(record.conditions));
   if (record.stack !== null) {
     const stack = records.shared.stacks[record.stack];
@@ -155,6 +155,8 @@ const fillSnapshot = async (place, inside) => {
     inside.append(folded(`Table ${table.name}: ${count(table.rows, "row", "rows")}`, record.tables.length > 0 && record.charts.length === 0,
       () => dataTable(table, columns, files[index])));
   }
+  inside.append(el("div", { class: "tools" }, el("span", { class: "told" }, "CSV, as epiloom export writes it:"), files.map((file, index) =>
+    el("button", { type: "button", title: file.title, "data-file": index, on: { click: file.click } }, `${record.files[index]}${file.part}`))));
 };
 
 /** The short line beside the name of a snapshot that is closed. */
