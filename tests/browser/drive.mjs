@@ -244,7 +244,7 @@ const sizes = async (file, folder) => {
 /** A page of many snapshots: a table that has lost rows. */
 const rows = (file, folder) => withBrowser(async (page, seen) => {
   await open(page, file);
-  const section = page.locator(".snapshot").nth(1);
+  const section = page.locator(".snapshot").last();
   await section.locator("h3 button").click();
   await section.locator("figure").first().waitFor();
   const name = await section.locator(".name").innerText();

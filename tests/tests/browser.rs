@@ -27,7 +27,9 @@ fn chromium() -> Option<String> {
             let usual = ["chromium", "chromium-browser", "google-chrome"].map(str::to_string);
             let found = named.into_iter().chain(usual).find(|program| runs(program));
             if found.is_none() || !tools.join("node_modules/playwright-core").is_dir() || !runs("node") {
-                println!("skipped: no Chromium, node and playwright-core (EPILOOM_CHROMIUM, EPILOOM_BROWSER)");
+                println!(
+                    "skipped: no Chromium, node and playwright-core (EPILOOM_CHROMIUM, EPILOOM_BROWSER)"
+                );
                 return None;
             }
             // playwright wants a path
@@ -99,7 +101,8 @@ fn pointing_at_a_curve_tells_the_number_that_the_archive_holds() {
     let snapshot = bench.snapshot("hostile.epiloom", "light J-V");
     let voltage = column(&snapshot, "voltage_V");
     let current = column(&snapshot, "extrapolated_current_density_mA_per_cm2");
-    let number = |text: &str| text.split_whitespace().find_map(|word| word.parse::<f64>().ok()).expect("a number");
+    let number =
+        |text: &str| text.split_whitespace().find_map(|word| word.parse::<f64>().ok()).expect("a number");
     let readings = told["hover"].as_array().expect("readings");
     let mut rows = Vec::new();
     for reading in readings {
@@ -132,14 +135,19 @@ fn a_plot_switches_zooms_and_hides() {
 #[test]
 fn downloads_are_what_export_writes() {
     let Some((bench, told)) = looked() else { return };
-    let listing: Value = serde_json::from_str(&bench.ends(0, &["show", "hostile.epiloom", "--json"]).out).expect("JSON");
+    let listing: Value =
+        serde_json::from_str(&bench.ends(0, &["show", "hostile.epiloom", "--json"]).out).expect("JSON");
     let names: Vec<&str> =
         listing["snapshots"].as_array().expect("snapshots").iter().map(|each| text(each, "name")).collect();
     let mut compared = 0;
     for (place, name) in names.iter().enumerate() {
         let written = bench.ends(0, &["export", "hostile.epiloom", name, "--to", "csv", "-o", "out.csv"]).out;
-        let files: Vec<&Value> =
-            told["files"].as_array().expect("files").iter().filter(|file| file["snapshot"] == place).collect();
+        let files: Vec<&Value> = told["files"]
+            .as_array()
+            .expect("files")
+            .iter()
+            .filter(|file| file["snapshot"] == place)
+            .collect();
         assert_eq!(files.len(), written.lines().count(), "{name}");
         for (file, path) in files.iter().zip(written.lines()) {
             let got = std::fs::read(text(file, "path")).expect("a download");
@@ -161,7 +169,10 @@ fn tables_sort_and_filter() {
     let sorted = numbers("sorted");
     assert!(sorted.len() > 8 && sorted.windows(2).all(|pair| pair[0] <= pair[1]), "{sorted:?}");
     let filtered = numbers("filtered");
-    assert!(!filtered.is_empty() && filtered.len() < sorted.len() && filtered.iter().all(|v| *v > 1.0), "{filtered:?}");
+    assert!(
+        !filtered.is_empty() && filtered.len() < sorted.len() && filtered.iter().all(|v| *v > 1.0),
+        "{filtered:?}"
+    );
 }
 
 /// Source of truth: what the manual of the keys says; every stop on the way shows where it is.
@@ -171,7 +182,8 @@ fn the_page_is_used_without_a_pointer() {
     let Some((bench, _)) = looked() else { return };
     let told = drive(&program, "keyboard", &[&bench.path("report.html")]);
     quiet(&told["seen"]);
-    let unseen: Vec<&Value> = told["visited"].as_array().expect("stops").iter().filter(|stop| stop["visible"] == false).collect();
+    let unseen: Vec<&Value> =
+        told["visited"].as_array().expect("stops").iter().filter(|stop| stop["visible"] == false).collect();
     assert!(unseen.is_empty(), "stops that do not show: {unseen:?}");
     assert_ne!(told["grounds"][0], told["grounds"][1], "light and dark");
     let steps = told["steps"].as_array().expect("steps");
@@ -203,10 +215,15 @@ fn the_page_fits_narrow_and_wide_light_and_dark() {
         assert_eq!(view["empty"], 0, "{name}");
         let width = view["width"].as_f64().expect("a number");
         let plots = view["plots"].as_array().expect("plots");
-        assert!(plots.len() > 6 && plots.iter().all(|w| w.as_f64().is_some_and(|w| w > 200.0 && w < width)), "{name}: {plots:?}");
+        assert!(
+            plots.len() > 6 && plots.iter().all(|w| w.as_f64().is_some_and(|w| w > 200.0 && w < width)),
+            "{name}: {plots:?}"
+        );
         assert!(view["worst"][1].as_f64().expect("a contrast") >= 4.5, "{name}: {}", view["worst"]);
     }
-    let ground = |scheme: &str| views.iter().find(|view| view["colorScheme"] == scheme).map(|view| view["ground"].clone());
+    let ground = |scheme: &str| {
+        views.iter().find(|view| view["colorScheme"] == scheme).map(|view| view["ground"].clone())
+    };
     assert_ne!(ground("light"), ground("dark"));
 }
 
@@ -226,12 +243,18 @@ fn a_request_that_leaves_is_caught_and_the_policy_stops_it() {
     bench.write("open.html", &open);
     let caught = drive(&program, "leaks", &[&bench.path("open.html")]);
     let asked = caught["seen"]["asked"].to_string();
-    assert!(asked.contains("leak.example/a.png") && asked.contains("a.css"), "the check sees what leaves: {asked}");
+    assert!(
+        asked.contains("leak.example/a.png") && asked.contains("a.css"),
+        "the check sees what leaves: {asked}"
+    );
     assert_eq!(caught["acted"], "1");
     let stopped = drive(&program, "leaks", &[&bench.path("guarded.html")]);
     assert_eq!(stopped["seen"]["asked"].as_array().map(Vec::len), Some(0), "{}", stopped["seen"]);
     assert_eq!(stopped["acted"], Value::Null, "a script that the policy does not know");
-    assert!(stopped["seen"]["console"].as_array().is_some_and(|list| !list.is_empty()), "the browser says why");
+    assert!(
+        stopped["seen"]["console"].as_array().is_some_and(|list| !list.is_empty()),
+        "the browser says why"
+    );
 }
 
 /// Source of truth: every plot has a drawing on paper, and the paper is a file.
@@ -241,7 +264,10 @@ fn the_page_prints() {
     let Some((bench, _)) = looked() else { return };
     let told = drive(&program, "print", &[&bench.path("report.html"), &bench.path("")]);
     quiet(&told["seen"]);
-    assert!(told["drawings"].as_u64() >= told["plots"].as_u64() && told["plots"].as_u64() > Some(6), "{told}");
+    assert!(
+        told["drawings"].as_u64() >= told["plots"].as_u64() && told["plots"].as_u64() > Some(6),
+        "{told}"
+    );
     assert!(bench.bytes("page.pdf").starts_with(b"%PDF") && bench.bytes("page.pdf").len() > 20_000);
 }
 
@@ -253,7 +279,8 @@ fn a_thinned_page_holds_the_archives_numbers() {
     bench.ends(0, &["report", "hundred.epiloom", "-o", "report.html"]);
     let told = drive(&program, "rows", &[&bench.path("report.html"), &bench.path("")]);
     quiet(&told["seen"]);
-    let listing: Value = serde_json::from_str(&bench.ends(0, &["show", "hundred.epiloom", "--json"]).out).expect("JSON");
+    let listing: Value =
+        serde_json::from_str(&bench.ends(0, &["show", "hundred.epiloom", "--json"]).out).expect("JSON");
     assert_eq!(told["rows"], listing["snapshots"].as_array().map_or(0, Vec::len));
     let name = text(&told, "name");
     assert!(text(&told, "said").contains("rows of \u{201c}profiles\u{201d}"), "{}", told["said"]);
@@ -263,7 +290,10 @@ fn a_thinned_page_holds_the_archives_numbers() {
     let mut all = whole.lines();
     assert!(part.lines().count() > 40 && part.lines().count() < whole.lines().count());
     for line in part.lines() {
-        assert!(all.any(|other| other == line), "a row that the archive does not have, or out of order: {line}");
+        assert!(
+            all.any(|other| other == line),
+            "a row that the archive does not have, or out of order: {line}"
+        );
     }
     assert!(figure(&bench.snapshot("hundred.epiloom", name), "current_density").is_finite());
 }

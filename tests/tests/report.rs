@@ -9,7 +9,8 @@ use epiloom::archive::{Archive, Label, OrderKey, RunHeader, Snapshot, Writer};
 use crate::support::{Bench, SMALL_CELL};
 
 /// What no text of an archive may do to a page.
-pub const HOSTILE: &str = "</script><script>document.documentElement.dataset.acted=1</script><img src=x onerror=alert(1)>";
+pub const HOSTILE: &str =
+    "</script><script>document.documentElement.dataset.acted=1</script><img src=x onerror=alert(1)>";
 
 /// A script whose names try to act, with every kind of snapshot.
 pub fn hostile_script() -> String {
@@ -44,24 +45,39 @@ fn a_page_holds_no_markup_but_its_own() {
     let own = scripts.iter().filter(|text| text.starts_with("<script>")).count();
     assert_eq!(own, 2, "the library and the page's script");
     for block in scripts.iter().filter(|text| text.starts_with("<script type=\"text/plain\"")) {
-        let inside = block.split_once('>').and_then(|(_, rest)| rest.split_once("</script>")).expect("an end").0;
+        let inside =
+            block.split_once('>').and_then(|(_, rest)| rest.split_once("</script>")).expect("an end").0;
         assert!(inside.bytes().all(|b| b.is_ascii_alphanumeric() || b"+/=".contains(&b)));
     }
     assert_eq!(own + 1 + 5, scripts.len(), "records, five snapshots, and no other");
     assert!(!page.contains("<img") && !page.contains("javascript:"));
-    assert!(page.contains("&lt;script&gt;alert(2)&lt;/script&gt; &amp; &quot;what&quot;"), "the script shows as itself");
-    let policy = page.split("Content-Security-Policy\" content=\"").nth(1).and_then(|rest| rest.split('"').next());
+    assert!(
+        page.contains("&lt;script&gt;alert(2)&lt;/script&gt; &amp; &quot;what&quot;"),
+        "the script shows as itself"
+    );
+    let policy =
+        page.split("Content-Security-Policy\" content=\"").nth(1).and_then(|rest| rest.split('"').next());
     let policy = policy.expect("a policy").replace("&#39;", "'");
     assert!(policy.starts_with("default-src 'none'; script-src 'sha256-"), "{policy}");
     for word in policy.split([' ', ';']).filter(|word| !word.is_empty()) {
-        let known = ["default-src", "script-src", "style-src", "base-uri", "form-action", "'none'"].contains(&word);
+        let known =
+            ["default-src", "script-src", "style-src", "base-uri", "form-action", "'none'"].contains(&word);
         assert!(known || word.starts_with("'sha256-"), "{word}");
     }
     bench.ends(0, &["report", "hostile.epiloom", "--out", "again.html"]);
     assert!(bench.bytes("report.html") == bench.bytes("again.html"));
     // nothing that the page's own script does turns text into markup
     let script = page.rsplit("<script>").next().expect("a script");
-    for way in ["innerHTML", "outerHTML", "insertAdjacentHTML", "document.write", "eval(", "new Function", "XMLHttpRequest", "WebSocket"] {
+    for way in [
+        "innerHTML",
+        "outerHTML",
+        "insertAdjacentHTML",
+        "document.write",
+        "eval(",
+        "new Function",
+        "XMLHttpRequest",
+        "WebSocket",
+    ] {
         assert!(!script.contains(way), "{way}");
     }
 }
@@ -69,7 +85,12 @@ fn a_page_holds_no_markup_but_its_own() {
 /// Source of truth: the promises of the manual: default name, the archive itself kept, damage told, an unfinished one shown.
 #[test]
 fn a_page_is_written_beside_and_never_over_its_archive() {
-    let bench = Bench::with("small.rhai", &format!("{SMALL_CELL}store(\"light\", cell.jv(lamp, [0.V, 0.5.V]));\nstore(\"more\", cell.at(0.2.V, lamp));"));
+    let bench = Bench::with(
+        "small.rhai",
+        &format!(
+            "{SMALL_CELL}store(\"light\", cell.jv(lamp, [0.V, 0.5.V]));\nstore(\"more\", cell.at(0.2.V, lamp));"
+        ),
+    );
     bench.ends(0, &["run", "small.rhai", "--quiet"]);
     assert_eq!(bench.ends(0, &["report", "small.epiloom"]).out, "small.html\n");
     let before = bench.bytes("small.epiloom");
@@ -130,7 +151,10 @@ pub struct SlowRun {
 impl SlowRun {
     /// A run that has begun and stored one snapshot.
     pub fn begin() -> Self {
-        let bench = Bench::with("slow.rhai", &format!("{SMALL_CELL}store(\"point\", cell.jv(lamp, [0.V, 0.4.V, 0.8.V]));"));
+        let bench = Bench::with(
+            "slow.rhai",
+            &format!("{SMALL_CELL}store(\"point\", cell.jv(lamp, [0.V, 0.4.V, 0.8.V]));"),
+        );
         bench.ends(0, &["run", "slow.rhai", "--quiet", "--out", "model.epiloom"]);
         let model = Archive::open(&bench.path("model.epiloom")).expect("an archive");
         let header = model.run().expect("a run").clone();

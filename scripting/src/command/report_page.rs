@@ -44,27 +44,42 @@ impl Report {
             return Exit::File;
         }
         let contents = Contents::of(&archive, &file_name(&self.file));
-        for held in &contents.snapshots {
-            if let crate::picture::report::Held::Damaged { reason, .. } = held {
-                output.remark(&format!("left out of the page: {reason}"));
-            }
+        let damage: Vec<String> = contents.damage().into_iter().map(str::to_string).collect();
+        for reason in &damage {
+            output.remark(&format!("left out of the page: {reason}"));
         }
         let mut options = Options::default();
         if self.all_rows {
             options.size = None;
         }
         let made = page(&contents, options);
-        if let Some(rows) = made.rows {
-            let tables = if made.thinned == 1 { "1 table has".to_string() } else { format!("{} tables have", made.thinned) };
+        if let Some(rows) = made.rows.filter(|_| made.thinned > 0) {
+            let tables = if made.thinned == 1 {
+                "1 table has".to_string()
+            } else {
+                format!("{} tables have", made.thinned)
+            };
             output.remark(&format!(
                 "{tables} at most about {rows} of their rows in the page, so that it stays under 2 MB; --all-rows keeps all"
+            ));
+        }
+        if made.every > 1 {
+            output.remark(&format!(
+                "of the sweeps, one point in {} has its curves in the page, so that it stays under 2 MB; --all-rows keeps all",
+                made.every
+            ));
+        }
+        if options.size.is_some_and(|size| made.html.len() > size) {
+            output.remark(&format!(
+                "the page has {:.1} MB: its sweeps alone take so much",
+                made.html.len() as f64 / 1e6
             ));
         }
         if let Err(error) = write_whole(&path, made.html.as_bytes()) {
             return tell(&error, output);
         }
         output.result(&format!("{}\n", path.display()));
-        if contents.whole().count() < contents.snapshots.len() { Exit::Archive } else { condition(&archive) }
+        if damage.is_empty() { condition(&archive) } else { Exit::Archive }
     }
 }
 

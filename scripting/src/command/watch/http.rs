@@ -62,7 +62,11 @@ impl Answer {
 }
 
 /// Answers requests for ever; `site` gives what is at a path.
-pub fn serve(listener: &TcpListener, port: u16, site: &(impl Fn(&str) -> Option<Answer> + Clone + Send + 'static)) {
+pub fn serve(
+    listener: &TcpListener,
+    port: u16,
+    site: &(impl Fn(&str) -> Option<Answer> + Clone + Send + 'static),
+) {
     let busy = Arc::new(AtomicUsize::new(0));
     for stream in listener.incoming().flatten() {
         if busy.fetch_add(1, Ordering::SeqCst) >= MOST {
@@ -88,7 +92,10 @@ fn converse(mut stream: TcpStream, port: u16, site: &impl Fn(&str) -> Option<Ans
             break respond(&head[..end], port, site);
         }
         if head.len() > LONGEST {
-            break Answer::refusal("431 Request Header Fields Too Large", "the head of the request is too long");
+            break Answer::refusal(
+                "431 Request Header Fields Too Large",
+                "the head of the request is too long",
+            );
         }
         match stream.read(&mut buffer)? {
             0 => return Ok(()),
@@ -132,7 +139,9 @@ fn respond(head: &[u8], port: u16, site: &impl Fn(&str) -> Option<Answer>) -> An
 fn is_this_machine(host: &str, port: u16) -> bool {
     ["127.0.0.1", "localhost"].iter().any(|name| {
         host.get(..name.len()).is_some_and(|begin| begin.eq_ignore_ascii_case(name))
-            && host.get(name.len()..).is_some_and(|rest| rest == format!(":{port}") || (port == 80 && rest.is_empty()))
+            && host
+                .get(name.len()..)
+                .is_some_and(|rest| rest == format!(":{port}") || (port == 80 && rest.is_empty()))
     })
 }
 
@@ -151,8 +160,21 @@ mod tests {
         for host in ["127.0.0.1:8123", "localhost:8123", "LocalHost:8123"] {
             assert_eq!(status(&format!("GET / HTTP/1.1\r\nHost: {host}\r\nAccept: */*")), "200 OK", "{host}");
         }
-        for host in ["evil.example", "evil.example:8123", "127.0.0.1", "127.0.0.1:80", "127.0.0.1:81234", "localhost.evil.example:8123", "[::1]:8123", ""] {
-            assert_eq!(status(&format!("GET / HTTP/1.1\r\nHost: {host}")), "421 Misdirected Request", "{host}");
+        for host in [
+            "evil.example",
+            "evil.example:8123",
+            "127.0.0.1",
+            "127.0.0.1:80",
+            "127.0.0.1:81234",
+            "localhost.evil.example:8123",
+            "[::1]:8123",
+            "",
+        ] {
+            assert_eq!(
+                status(&format!("GET / HTTP/1.1\r\nHost: {host}")),
+                "421 Misdirected Request",
+                "{host}"
+            );
         }
         assert_eq!(status("GET / HTTP/1.1\r\nAccept: */*"), "400 Bad Request");
         assert_eq!(status("GET / HTTP/1.1\r\nHost: 127.0.0.1:8123\r\nhost: evil.example"), "400 Bad Request");

@@ -204,7 +204,9 @@ fn nobody(finished: &Path, unfinished: &Path) -> Diagnostic {
         fault.help(format!("the run has ended: `epiloom report {shown} -o report.html` writes its page"))
     } else if unfinished.exists() {
         let left = unfinished.display();
-        fault.help(format!("a run has stopped there: `epiloom report {left} -o report.html` shows what it finished"))
+        fault.help(format!(
+            "a run has stopped there: `epiloom report {left} -o report.html` shows what it finished"
+        ))
     } else {
         fault.help(format!("start one first: `epiloom run SCRIPT --out {shown}`"))
     }

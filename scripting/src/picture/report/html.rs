@@ -4,11 +4,13 @@ use std::collections::BTreeMap;
 use std::fmt::Write;
 
 use crate::archive::{Figure, RunHeader, Status, Value};
+use crate::figure_text::{significant, unit_symbol};
 use crate::record_text::{figure_title, figure_value, value_text};
 
 use super::contents::{Contents, Held};
 use super::escape::escape;
 use super::highlight::pieces;
+use super::sweeps::HeldSweep;
 
 /// Most columns of figures in the list of snapshots.
 const MOST_FIGURES: usize = 8;
@@ -43,14 +45,22 @@ pub(super) fn body(contents: &Contents) -> String {
         ("replay", "Replay and versions"),
     ]);
     for (id, words) in sections {
-        let hidden = if id == "sweeps" { " hidden" } else { "" };
-        let _ = write!(out, "<li{hidden}><a href=\"#{id}\">{words}</a></li>");
+        let absent = (id == "sweeps" && contents.sweeps.is_empty())
+            || (id == "snapshots" && contents.snapshots.is_empty());
+        if absent {
+            continue;
+        }
+        let _ = write!(out, "<li><a href=\"#{id}\">{words}</a></li>");
     }
     out.push_str("</ol></nav><main>");
     overview(contents, &mut out);
-    out.push_str("<section id=\"sweeps\" hidden><h2>Sweeps</h2></section>");
-    out.push_str(
-        "<section id=\"snapshots\"><h2>Snapshots</h2><noscript><p class=\"note\">Plots, ledgers, tables and materials are \
+    if !contents.sweeps.is_empty() {
+        out.push_str("<section id=\"sweeps\"><h2>Sweeps</h2></section>");
+    }
+    let hidden = if contents.snapshots.is_empty() { " hidden" } else { "" };
+    let _ = write!(
+        out,
+        "<section id=\"snapshots\"{hidden}><h2>Snapshots</h2><noscript><p class=\"note\">Plots, ledgers, tables and materials are \
          drawn by the script of this page, which this viewer does not run. Open the file in a browser.</p></noscript>\
          </section>",
     );
@@ -73,8 +83,22 @@ fn masthead(contents: &Contents, out: &mut String) {
     }
     let count = contents.snapshots.len();
     let snapshots = if count == 1 { "1 snapshot".to_string() } else { format!("{count} snapshots") };
-    let mut facts = vec![snapshots];
-    let failed = contents.snapshots.iter().filter(|held| held.status() != Status::Solved).count();
+    let mut facts = Vec::new();
+    for sweep in &contents.sweeps {
+        let count = sweep.points.len();
+        let points = if count == 1 { "1 point".to_string() } else { format!("{count} points") };
+        // what the run will reach: its share of the plan, less what the filter leaves out where that is known
+        let planned = sweep
+            .planned
+            .filter(|planned| !contents.finished && sweep.share.is_none() && *planned > count as u64);
+        let of = planned.map_or_else(String::new, |planned| format!(" of {planned}"));
+        facts.push(format!("sweep {}: {points}{of}", sweep.name));
+    }
+    if count > 0 || facts.is_empty() {
+        facts.push(snapshots);
+    }
+    let failed = contents.snapshots.iter().filter(|held| held.status() != Status::Solved).count()
+        + contents.sweeps.iter().map(HeldSweep::failed).sum::<usize>();
     if failed > 0 {
         facts.push(format!("{failed} failed"));
     }
@@ -132,13 +156,23 @@ fn short(name: &str) -> String {
 fn overview(contents: &Contents, out: &mut String) {
     out.push_str("<section id=\"overview\"><h2>Results</h2>");
     if contents.snapshots.is_empty() {
-        out.push_str("<p class=\"note\">No snapshot is stored yet.</p></section>");
+        let words = if contents.sweeps.is_empty() {
+            "No snapshot is stored yet."
+        } else {
+            "All results are in the sweeps below."
+        };
+        let _ = write!(out, "<p class=\"note\">{words}</p></section>");
         return;
     }
     let names = chosen_figures(contents);
     out.push_str("<div class=\"scroll\"><table class=\"sortable\" data-name=\"results\"><thead><tr><th>snapshot</th><th>kind</th>");
     for name in &names {
-        let _ = write!(out, "<th class=\"number\" title=\"{}\">{}</th>", escape(&figure_title(name)), escape(&short(name)));
+        let _ = write!(
+            out,
+            "<th class=\"number\" title=\"{}\">{}</th>",
+            escape(&figure_title(name)),
+            escape(&short(name))
+        );
     }
     out.push_str("</tr></thead><tbody>");
     for (place, held) in contents.snapshots.iter().enumerate() {
@@ -176,19 +210,29 @@ fn cell(figure: Option<&Figure>, out: &mut String) {
     let shown = figure_value(figure);
     match figure.value {
         Some(value) => {
-            let exact = Value::number(value, figure.unit.clone()).to_string();
-            let short = shown.split(" +- ").next().unwrap_or(&shown);
+            let exact = exact(&Value::number(value, figure.unit.clone()));
+            let short = shown.split(" +- ").next().unwrap_or(&shown).replace("/cm2", "/cm\u{b2}");
             let _ = write!(
                 out,
                 "<td class=\"number\" data-sort=\"{value:?}\" title=\"{} ({})\">{}</td>",
                 escape(&exact),
                 escape(&shown),
-                escape(short)
+                escape(&short)
             );
         }
         None => {
             let _ = write!(out, "<td class=\"number none\" title=\"{}\">none</td>", escape(&shown));
         }
+    }
+}
+
+/// A value with all its digits.
+fn exact(value: &Value) -> String {
+    match value {
+        Value::Number { value, unit } => {
+            format!("{} {}", significant(*value, 17), unit_symbol(unit)).trim_end().to_string()
+        }
+        other => value_text(other),
     }
 }
 
@@ -262,8 +306,8 @@ fn script(contents: &Contents, out: &mut String) {
                 out,
                 "<tr><th scope=\"row\">{}</th><td>{}</td><td>{}</td><td>{}</td></tr>",
                 escape(name),
-                escape(&input.used.to_string()),
-                escape(&input.default.to_string()),
+                escape(&exact(&input.used)),
+                escape(&exact(&input.default)),
                 if input.overridden { "yes" } else { "no" }
             );
         }

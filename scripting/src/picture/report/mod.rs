@@ -9,6 +9,7 @@ mod escape;
 mod highlight;
 mod html;
 mod numbers;
+mod sweeps;
 mod thin;
 mod view;
 
@@ -21,6 +22,7 @@ use crate::picture::palette;
 
 pub use contents::{Contents, Held};
 pub use escape::escape;
+pub use sweeps::{HeldPoint, HeldSweep};
 
 /// Version of the plotting library.
 pub const UPLOT_VERSION: &str = "1.6.32";
@@ -33,7 +35,7 @@ const UPLOT_STYLE: &str = include_str!("vendor/uplot/uPlot.min.css");
 const STYLE: &str = include_str!("page/page.css");
 
 /// The page's own script, in the order in which its parts build on each other.
-const SCRIPT: [&str; 9] = [
+const SCRIPT: [&str; 10] = [
     include_str!("page/numbers.js"),
     include_str!("page/words.js"),
     include_str!("page/ticks.js"),
@@ -42,6 +44,7 @@ const SCRIPT: [&str; 9] = [
     include_str!("page/curves.js"),
     include_str!("page/bars.js"),
     include_str!("page/map.js"),
+    include_str!("page/sweeps.js"),
     include_str!("page/page.js"),
 ];
 
@@ -79,6 +82,8 @@ pub struct Page {
     pub rows: Option<usize>,
     /// How many tables have lost rows.
     pub thinned: usize,
+    /// It holds the snapshots of every so many points of a sweep.
+    pub every: usize,
 }
 
 /// The packed part of a page.
@@ -95,27 +100,34 @@ impl Data {
     }
 }
 
+/// What a page holds of an archive.
+#[derive(Clone, Copy, Debug, PartialEq, Eq)]
+struct Part {
+    /// Most rows of a table.
+    rows: usize,
+    /// Of the points of sweeps, the snapshots of every so many.
+    every: usize,
+}
+
+impl Part {
+    /// Everything.
+    const WHOLE: Part = Part { rows: usize::MAX, every: 1 };
+}
+
 /// Makes the page of an archive.
 pub fn page(contents: &Contents, options: Options) -> Page {
-    let rankings: Vec<Vec<thin::Ranking>> = contents
-        .snapshots
-        .iter()
-        .map(|held| held.snapshot().map_or_else(Vec::new, |each| each.tables.iter().map(thin::rank).collect()))
-        .collect();
     let body = html::body(contents);
     let script = format!("\"use strict\";(() => {{\n{}}})();\n", SCRIPT.concat());
     let fixed = body.len() + script.len() + UPLOT.len() + UPLOT_STYLE.len() + STYLE.len() + 4096;
-    let mut longest = 0;
-    for table in contents.whole().flat_map(|snapshot| &snapshot.tables) {
-        longest = longest.max(usize::try_from(table.rows).unwrap_or(usize::MAX));
-    }
-    let (data, rows) = fitted(contents, &rankings, longest, options.size.map(|size| size.saturating_sub(fixed)));
+    let (data, part) = fitted(contents, options.size.map(|size| size.saturating_sub(fixed)));
     let policy = policy(&[UPLOT, &script], &[UPLOT_STYLE, STYLE], options.watching);
     let mut html = String::with_capacity(fixed + data.length());
     html.push_str("<!doctype html>\n<html lang=\"en\"><head><meta charset=\"utf-8\">");
     html.push_str(&format!("<meta http-equiv=\"Content-Security-Policy\" content=\"{}\">", escape(&policy)));
     html.push_str("<meta name=\"viewport\" content=\"width=device-width, initial-scale=1\">");
-    html.push_str("<meta name=\"color-scheme\" content=\"light dark\"><meta name=\"referrer\" content=\"no-referrer\">");
+    html.push_str(
+        "<meta name=\"color-scheme\" content=\"light dark\"><meta name=\"referrer\" content=\"no-referrer\">",
+    );
     html.push_str(&format!("<title>{} \u{b7} Epiloom</title>", escape(&html::title(contents))));
     html.push_str(&format!("<style>{UPLOT_STYLE}</style><style>{STYLE}</style></head>"));
     if options.watching {
@@ -129,44 +141,71 @@ pub fn page(contents: &Contents, options: Options) -> Page {
         html.push_str(&format!("<script type=\"text/plain\" id=\"block{place}\">{block}</script>"));
     }
     html.push_str(&format!("<script>{UPLOT}</script><script>{script}</script></body></html>\n"));
-    Page { html, policy, rows, thinned: data.thinned }
-}
-
-/// The packed part with as many rows as fit into `room` bytes.
-fn fitted(
-    contents: &Contents,
-    rankings: &[Vec<thin::Ranking>],
-    longest: usize,
-    room: Option<usize>,
-) -> (Data, Option<usize>) {
-    let whole = data(contents, rankings, usize::MAX);
-    let Some(room) = room.filter(|room| whole.length() > *room) else { return (whole, None) };
-    // the most rows that fit lie between these
-    let (mut low, mut high) = (FEWEST_ROWS, longest.max(FEWEST_ROWS));
-    let mut best = None;
-    // a first guess by proportion, then halves in between
-    let mut rows = (longest as f64 * room as f64 / whole.length() as f64) as usize;
-    while high > low + low / 16 {
-        rows = rows.clamp(low + 1, high - 1);
-        let trial = data(contents, rankings, rows);
-        if trial.length() <= room {
-            low = rows;
-            best = Some(trial);
-        } else {
-            high = rows;
-        }
-        rows = low.midpoint(high);
+    Page {
+        html,
+        policy,
+        rows: part.map(|part| part.rows),
+        thinned: data.thinned,
+        every: part.map_or(1, |part| part.every),
     }
-    (best.unwrap_or_else(|| data(contents, rankings, low)), Some(low))
 }
 
-fn data(contents: &Contents, rankings: &[Vec<thin::Ranking>], most: usize) -> Data {
+/// The packed part with as much as fits into `room` bytes: rows go first, then snapshots of points.
+fn fitted(contents: &Contents, room: Option<usize>) -> (Data, Option<Part>) {
+    let all = contents.snapshots.iter().chain(&contents.inner);
+    let rank = |held: &Held| {
+        held.snapshot().map_or_else(Vec::new, |each| each.tables.iter().map(thin::rank).collect())
+    };
+    let rankings: Vec<Vec<thin::Ranking>> = all.map(rank).collect();
+    let whole = data(contents, &rankings, Part::WHOLE);
+    let Some(room) = room.filter(|room| whole.length() > *room) else { return (whole, None) };
+    let tables = contents
+        .snapshots
+        .iter()
+        .chain(&contents.inner)
+        .filter_map(Held::snapshot)
+        .flat_map(|each| &each.tables);
+    let longest = tables.map(|table| usize::try_from(table.rows).unwrap_or(usize::MAX)).max().unwrap_or(0);
+    let mut part = Part { rows: FEWEST_ROWS.min(longest), every: 1 };
+    let mut best = data(contents, &rankings, part);
+    while best.length() > room && part.every < contents.inner.len() {
+        part.every *= 2;
+        best = data(contents, &rankings, part);
+    }
+    if best.length() > room {
+        // what is left cannot be thinned
+        return (best, Some(part));
+    }
+    // the most rows that fit lie between these; the length grows nearly in proportion to them
+    let (mut high, mut too_long) = (longest.max(FEWEST_ROWS), whole.length());
+    while high > part.rows + 1 + part.rows / 16 {
+        let share = (room - best.length()) as f64 / (too_long - best.length()).max(1) as f64;
+        let guess = part.rows + (0.97 * share * (high - part.rows) as f64) as usize;
+        let trial = Part { rows: guess.clamp(part.rows + 1, high - 1), ..part };
+        let made = data(contents, &rankings, trial);
+        if made.length() <= room {
+            // a page that is nearly full is full enough
+            let full = made.length() + room / 32 > room;
+            part = trial;
+            best = made;
+            if full {
+                break;
+            }
+        } else {
+            too_long = made.length();
+            high = trial.rows;
+        }
+    }
+    (best, Some(part))
+}
+
+fn data(contents: &Contents, rankings: &[Vec<thin::Ranking>], part: Part) -> Data {
     let mut shared = view::Shared::default();
     let (mut snapshots, mut blocks, mut thinned) = (Vec::new(), Vec::new(), 0);
-    for (held, rankings) in contents.snapshots.iter().zip(rankings) {
+    let mut add = |held: &Held, rankings: &[thin::Ranking]| {
         match held {
             Held::Whole(snapshot) => {
-                let view = view::snapshot(snapshot, rankings, most, &mut shared);
+                let view = view::snapshot(snapshot, rankings, part.rows, &mut shared);
                 snapshots.push(view.json);
                 blocks.push(view.block);
                 thinned += view.thinned;
@@ -176,12 +215,34 @@ fn data(contents: &Contents, rankings: &[Vec<thin::Ranking>], most: usize) -> Da
                 blocks.push(String::new());
             }
         }
+        snapshots.len() - 1
+    };
+    for (held, rankings) in contents.snapshots.iter().zip(rankings) {
+        add(held, rankings);
+    }
+    let inner = &rankings[contents.snapshots.len()..];
+    let mut places = vec![None; contents.inner.len()];
+    for sweep in &contents.sweeps {
+        for point in sweep.points.iter().step_by(part.every) {
+            for at in &point.snapshots {
+                places[*at] = Some(add(&contents.inner[*at], &inner[*at]));
+            }
+        }
+    }
+    let mut sweeps = Vec::new();
+    for sweep in &contents.sweeps {
+        let (mut json, block) = sweep.view(|at| places[at]);
+        json["block"] = json!(blocks.len());
+        blocks.push(block);
+        sweeps.push(json);
     }
     let meta = json!({
         "file": contents.file,
         "finished": contents.finished,
         "palette": { "light": palette::CURVES, "dark": palette::CURVES_ON_DARK },
+        "listed": contents.snapshots.len(),
         "snapshots": snapshots,
+        "sweeps": sweeps,
         "shared": shared.json(),
     });
     Data { meta: numbers::pack(meta.to_string().as_bytes()), blocks, thinned }

@@ -50,7 +50,8 @@ impl Pool {
             for index in (1..bits.len()).rev() {
                 bits[index] = bits[index].wrapping_sub(bits[index - 1]);
             }
-            let folded: Vec<u64> = bits.iter().map(|d| (d << 1) ^ (d.cast_signed() >> 63).cast_unsigned()).collect();
+            let folded: Vec<u64> =
+                bits.iter().map(|d| (d << 1) ^ (d.cast_signed() >> 63).cast_unsigned()).collect();
             let written = planes(&folded);
             let length = trial(&written);
             if length < least {

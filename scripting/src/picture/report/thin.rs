@@ -91,7 +91,8 @@ pub fn rank(table: &Table) -> Ranking {
     } else {
         (0..rows).collect()
     };
-    let scales: Vec<Vec<f64>> = table.columns.iter().flat_map(|column| scales(&column.values, &candidates)).collect();
+    let scales: Vec<Vec<f64>> =
+        table.columns.iter().flat_map(|column| scales(&column.values, &candidates)).collect();
     let along = along(table, &candidates);
     // places of the needed rows among the candidates
     let places: Vec<usize> = needed.iter().filter_map(|row| candidates.binary_search(row).ok()).collect();
@@ -129,7 +130,11 @@ fn steps(values: &[f64]) -> Vec<usize> {
         return Vec::new();
     }
     let found: Vec<usize> = (1..values.len()).filter(|row| values[*row] != values[row - 1]).collect();
-    if found.len() > MOST_STEPS { Vec::new() } else { found.into_iter().flat_map(|row| [row - 1, row]).collect() }
+    if found.len() > MOST_STEPS {
+        Vec::new()
+    } else {
+        found.into_iter().flat_map(|row| [row - 1, row]).collect()
+    }
 }
 
 /// The column from 0 to 1, and the logarithm of its size from 0 to 1 where it spans enough decades.

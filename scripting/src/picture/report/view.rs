@@ -8,7 +8,9 @@ use serde_json::{Value as Json, json};
 use crate::archive::export::csv_names;
 use crate::archive::{Condition, Figure, Ledger, MaterialValue, Snapshot, Stack, Status, Table};
 use crate::figure_text::{percent, significant, unit_symbol};
-use crate::picture::chart::{Axis, Body, Chart, Curves, Histogram, Kind, Map, Panel, Series, Waterfall, si_unit};
+use crate::picture::chart::{
+    Axis, Body, Chart, Curves, Histogram, Kind, Map, Panel, Series, Waterfall, si_unit,
+};
 use crate::picture::charts;
 use crate::record_text::{figure_title, figure_value, value_text};
 
@@ -43,7 +45,13 @@ impl Shared {
         json!({ "stacks": self.stacks, "materials": { "sets": self.sets, "rows": self.rows } })
     }
 
-    fn place<T>(&mut self, kind: char, key: &str, list: impl Fn(&mut Shared) -> &mut Vec<T>, entry: T) -> usize {
+    fn place<T>(
+        &mut self,
+        kind: char,
+        key: &str,
+        list: impl Fn(&mut Shared) -> &mut Vec<T>,
+        entry: T,
+    ) -> usize {
         let key = format!("{kind}{key}");
         if let Some(place) = self.places.get(&key) {
             return *place;
@@ -137,7 +145,7 @@ pub(super) fn snapshot(whole: &Snapshot, rankings: &[Ranking], most: usize, shar
     let charts: Vec<Json> = drawn
         .iter()
         .map(|chart| {
-            let mut json = chart_json(chart, &shown, &mut pool);
+            let mut json = chart_json(chart, Some(&shown), &mut pool);
             if let Some(object) = json.as_object_mut() {
                 object.insert("csv".to_string(), json!(document_of(chart.kind, whole)));
             }
@@ -229,7 +237,7 @@ fn ledger(ledger: &Ledger) -> Json {
 }
 
 /// A chart, its columns by their number in the block.
-pub(super) fn chart_json(chart: &Chart, snapshot: &Snapshot, pool: &mut Pool) -> Json {
+pub(super) fn chart_json(chart: &Chart, snapshot: Option<&Snapshot>, pool: &mut Pool) -> Json {
     let body = match &chart.body {
         Body::Curves(curves) => json!({ "curves": curves_json(curves, snapshot, pool) }),
         Body::Waterfall(waterfall) => json!({ "bars": waterfall_json(waterfall) }),
@@ -257,12 +265,12 @@ fn axis(axis: &Axis) -> Json {
     })
 }
 
-fn curves_json(curves: &Curves, snapshot: &Snapshot, pool: &mut Pool) -> Json {
+fn curves_json(curves: &Curves, snapshot: Option<&Snapshot>, pool: &mut Pool) -> Json {
     let panels: Vec<Json> = curves.panels.iter().map(|panel| panel_json(panel, snapshot, pool)).collect();
     json!({ "x": axis(&curves.x), "panels": panels, "regions": curves.regions })
 }
 
-fn panel_json(panel: &Panel, snapshot: &Snapshot, pool: &mut Pool) -> Json {
+fn panel_json(panel: &Panel, snapshot: Option<&Snapshot>, pool: &mut Pool) -> Json {
     let series: Vec<Json> = panel
         .series
         .iter()
@@ -274,7 +282,7 @@ fn panel_json(panel: &Panel, snapshot: &Snapshot, pool: &mut Pool) -> Json {
                 "y": held(&each.y),
                 "base": held(&each.base),
                 "error": held(&each.error),
-                "own": own(each, snapshot).and_then(held),
+                "own": snapshot.and_then(|snapshot| own(each, snapshot)).and_then(held),
                 "look": each.look,
             })
         })

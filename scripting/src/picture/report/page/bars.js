@@ -11,7 +11,7 @@ const drawnFigure = (chart, { name, csv, draw, legend }) => {
     csv ? el("button", { type: "button", title: csv.title, "data-tool": "csv", on: { click: csv.click } }, "CSV") : null,
     el("button", { type: "button", title: "The drawing as a file", "data-tool": "svg", on: { click: () =>
       download(`${fileName(name)}-${chart.kind}.svg`, svgFile(draw(640, true, () => {})), "image/svg+xml") } }, "SVG"));
-  const notes = el("div", { class: "notes" }, chart.notes.map((note) => el("p", {}, note)));
+  const notes = el("div", { class: "notes" }, chart.notes.map(remarkOf));
   const root = el("figure", { class: "chart", "data-kind": chart.kind }, el("figcaption", {}, el("span", { class: "title" }, chart.title), tools),
     plot, el("div", { class: "printed" }), reading, legend, notes);
   let width = 0;

@@ -87,10 +87,16 @@ const curvesFigure = (chart, columns, { name, csv }) => {
 
   const wholeY = (part) => {
     const { y } = part.panel;
-    if ((y.scale === "Log") === part.log && y.range[0] !== null) return padded(y.range, part.log, 0.03);
+    // the names of layers stand above the curves
+    const room = (range) => {
+      const [low, high] = padded(range, part.log, 0.03);
+      if (regions.length === 0 || part !== parts[0]) return [low, high];
+      return [low, part.log ? high * (high / low) ** 0.08 : high + (high - low) * 0.08];
+    };
+    if ((y.scale === "Log") === part.log && y.range[0] !== null) return room(y.range);
     const shown = part.panel.series.filter((_, i) => !part.hidden.has(i));
     const lists = shown.flatMap((each) => [columns[each.y], each.base === null ? [] : columns[each.base]]);
-    return padded(span(lists, part.log), part.log, 0.03);
+    return room(span(lists, part.log));
   };
 
   const xRange = () => state.x || wholeX();
@@ -409,10 +415,11 @@ const curvesFigure = (chart, columns, { name, csv }) => {
       if (magnitude(part)) list.push(`${y.label}: absolute values are drawn; the reading has the sign`);
       const zeros = part.log ? series.reduce((sum, each) => sum + columns[each.y].reduce((n, v) => n + (v === 0 ? 1 : 0), 0), 0) : 0;
       if (zeros > 0) list.push(`${count(zeros, "value is", "values are")} zero and not on the logarithmic axis`);
-      if (!part.range && part.log) {
+      // in the scale of the chart's own choice its notes tell
+      if (!part.range && part.log && y.scale !== "Log") {
         const [low] = wholeY(part);
         const below = series.reduce((sum, each) => sum + columns[each.y].reduce((n, v) => n + (v !== 0 && Math.abs(v) < low ? 1 : 0), 0), 0);
-        if (below > 0) list.push(`off-scale: ${count(below, "value", "values")} below ${amount(Number(low.toPrecision(2)), y.unit)}`);
+        if (below > 0) list.push(`off-scale: ${count(below, "value", "values")} below ${low.toExponential(1).replace("e+", "e")} ${unitText(y.unit)}`);
       }
     }
     if (state.xlog) {
@@ -420,7 +427,7 @@ const curvesFigure = (chart, columns, { name, csv }) => {
       if (lost > 0) list.push(`${count(lost, "point", "points")} at ${xAxis.label.toLowerCase()} 0 ${lost === 1 ? "is" : "are"} not on the logarithmic axis`);
     }
     if (state.x) list.push(`enlarged: ${xAxis.label.toLowerCase()} from ${Number(state.x[0].toPrecision(4))} to ${amount(Number(state.x[1].toPrecision(4)), xAxis.unit)}`);
-    notes.replaceChildren(...[...new Set(list)].map((text) => el("p", {}, text)));
+    notes.replaceChildren(...[...new Set(list)].map(remarkOf));
   };
 
   const legend = el("ul", { class: "legend" });

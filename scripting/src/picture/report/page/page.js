@@ -5,10 +5,9 @@ let blocks = [];
 let snapshots = [];
 let living = [];
 
-/** The numbers of a snapshot, unpacked once. */
-const numbersOf = async (place) => {
-  blocks[place] ??= unpacked(document.getElementById(`block${place}`).textContent)
-    .then((bytes) => columnsOf(bytes, records.snapshots[place].columns));
+/** The numbers of a block, unpacked once. */
+const blockOf = (place, columns) => {
+  blocks[place] ??= unpacked(document.getElementById(`block${place}`).textContent).then((bytes) => columnsOf(bytes, columns));
   return blocks[place];
 };
 
@@ -122,14 +121,13 @@ const fillSnapshot = async (place, inside) => {
     inside.append(el("p", { class: "trouble" }, record.damaged));
     return;
   }
-  const columns = await numbersOf(place);
+  const columns = await blockOf(place, record.columns);
   const files = csvFiles(record, columns);
   if (record.failed) inside.append(el("p", { class: "trouble" }, `Failed: ${record.failed}. What follows is the last good state.`));
   if (record.figures.length > 0) inside.append(figureList(record.figures));
   const charts = record.charts.map((chart) => figureOf(chart, columns, {
     name: record.name,
     csv: chart.csv === null ? null : files[chart.csv],
-    open: (point) => openPoint(place, point),
   }));
   living.push(...charts);
   const thin = record.tables.filter((table) => table.held < table.rows);
@@ -167,14 +165,15 @@ const buildSnapshots = (opened) => {
   const section = document.getElementById("snapshots");
   section.querySelector("noscript")?.remove();
   for (const old of section.querySelectorAll(".snapshot, .tools")) old.remove();
-  const many = records.snapshots.length > 6;
-  if (records.snapshots.length > 1) {
+  const listed = records.snapshots.slice(0, records.listed);
+  const many = listed.length > 6;
+  if (listed.length > 1) {
     const all = (open) => el("button", { type: "button", on: { click: async () => {
       for (const each of snapshots) await each.set(open);
     } } }, open ? "Open all" : "Close all");
     section.append(el("div", { class: "tools" }, all(true), all(false)));
   }
-  snapshots = records.snapshots.map((record, place) => {
+  snapshots = listed.map((record, place) => {
     const inside = el("div", { class: "inside", hidden: true });
     const button = el("button", { type: "button", "aria-expanded": "false", "aria-controls": `in${place}`, on: { click: () => each.set(inside.hidden) } },
       el("span", { class: "name" }, record.name), " ", el("span", { class: "kind" }, record.kind), record.failed || record.damaged ? el("strong", { class: "bad" }, " failed") : null);
@@ -206,8 +205,6 @@ const follow = async () => {
   await each.set(true);
   each.element.scrollIntoView({ block: "start" });
 };
-
-const openPoint = () => {};
 
 const buildMaterials = () => {
   const section = document.getElementById("materials");
@@ -243,7 +240,7 @@ const shortValue = (text) => text.replace(/ um$/, " \u00b5m");
 const buildAccuracy = () => {
   const section = document.getElementById("accuracy");
   for (const old of section.querySelectorAll(".table, .note.made")) old.remove();
-  const rows = records.snapshots.flatMap((record, place) => (record.figures || []).filter((f) => f.value !== null).map((f) => ({ record, place, f })));
+  const rows = records.snapshots.slice(0, records.listed).flatMap((record, place) => (record.figures || []).filter((f) => f.value !== null).map((f) => ({ record, place, f })));
   if (rows.length === 0) return;
   const relative = ({ f }) => (f.error === null || !f.value ? "" : Math.abs(f.error / f.value));
   const cells = [(r) => r.record.name, (r) => r.f.title, (r) => r.f.value, (r) => r.f.error ?? "", (r) => r.f.symbol, relative,
@@ -253,7 +250,7 @@ const buildAccuracy = () => {
     el("p", { class: "note made" }, "Every figure with all its digits, the estimate of its absolute numerical error, and its value on each of the nested meshes that the estimate comes from."),
     sortedTable({
       name: "figures and their errors",
-      columns: names.map((name, i) => ({ name, number: [2, 3, 5].includes(i) })),
+      columns: names.map((name, i) => ({ name, number: [2, 3, 5].includes(i), unbroken: i === 1 || i === 6 })),
       size: rows.length,
       at: (row, column) => cells[column](rows[row]),
       show: (row, column) => {
@@ -272,9 +269,10 @@ const buildContents = () => {
   const list = document.querySelector("#contents a[href='#snapshots']")?.parentElement;
   if (!list) return;
   list.querySelector(".inner")?.remove();
-  const items = records.snapshots.map((record, place) => el("li", {}, el("a", { href: `#s${place}` }, record.name)));
+  const listed = records.snapshots.slice(0, records.listed);
+  const items = listed.map((record, place) => el("li", {}, el("a", { href: `#s${place}` }, record.name)));
   const names = el("ol", {}, items);
-  const field = records.snapshots.length > 12 ? el("input", { type: "search", placeholder: "find a snapshot", "aria-label": "Find a snapshot", on: { input: () => {
+  const field = listed.length > 12 ? el("input", { type: "search", placeholder: "find a snapshot", "aria-label": "Find a snapshot", on: { input: () => {
     for (const [place, item] of items.entries()) item.hidden = !records.snapshots[place].name.toLowerCase().includes(field.value.toLowerCase());
   } } }) : null;
   list.append(el("div", { class: "inner" }, field, names));
@@ -311,7 +309,7 @@ const start = async (opened) => {
   for (const table of document.querySelectorAll("table.sortable")) enhance(table);
   themeButton();
   buildContents();
-  const ready = buildSnapshots(opened);
+  const ready = Promise.all([buildSnapshots(opened), buildSweeps()]);
   buildAccuracy();
   buildMaterials();
   await ready;

@@ -83,7 +83,7 @@ const sortedTable = ({ name, columns, size, at, show, rowElement, first = 60, cs
     const shown = list.slice(0, state.most);
     body.replaceChildren(...shown.map((row) => (rowElement ? rowElement(row) : el("tr", {}, columns.map((column, index) => {
       const content = show ? show(row, index) : at(row, index);
-      return el("td", { class: column.number ? "number" : null }, typeof content === "number" ? digits(content) : content);
+      return el("td", { class: column.number ? "number" : column.unbroken ? "unbroken" : null }, typeof content === "number" ? digits(content) : content);
     })))));
     for (const [index, heading] of headings.entries()) {
       if (index === state.column) heading.setAttribute("aria-sort", state.down ? "descending" : "ascending");
@@ -96,7 +96,7 @@ const sortedTable = ({ name, columns, size, at, show, rowElement, first = 60, cs
     told.textContent = visible([part, note, bad].filter(Boolean).join("; "));
   };
   fill();
-  const tools = el("div", { class: "tools" }, size > 8 ? field : null, csv, told);
+  const tools = el("div", { class: "tools" }, size > 8 ? field : null, csv, size > 8 || note ? told : null);
   return el("div", { class: "table" }, tools, el("div", { class: "scroll" }, table), more);
 };
 

@@ -62,3 +62,11 @@ const download = (name, text, type) => {
 };
 
 const count = (n, one, many) => `${n} ${n === 1 ? one : many}`;
+
+/** A remark under a plot; a long one is folded. */
+const remarkOf = (text) => {
+  const shown = visible(text);
+  if (shown.length <= 140) return el("p", {}, shown);
+  const cut = shown.lastIndexOf(" ", 60);
+  return el("details", {}, el("summary", {}, `${shown.slice(0, cut)} \u2026`), el("p", {}, shown));
+};
