@@ -1,4 +1,4 @@
-//! Epiloom: the script language, the archive and the command line.
+//! Epiloom: the script language, the archive, pictures and the command line.
 
 pub mod archive;
 pub mod command;
@@ -6,3 +6,4 @@ pub mod diagnostics;
 pub mod figure_text;
 pub mod language;
 pub mod picture;
+pub mod record_text;

@@ -16,10 +16,12 @@ mod recorder;
 mod reference;
 mod replay;
 mod report;
+mod report_page;
 mod script;
 mod show;
 mod sweeps;
 mod trouble;
+mod watch;
 
 // the verb of the same name
 #[path = "run.rs"]
@@ -57,6 +59,10 @@ enum Verb {
     Show(show::Show),
     /// Write a snapshot as CSV, NPZ or JSON
     Export(export::Export),
+    /// Write an archive as one page for a browser, to be kept or sent
+    Report(report_page::Report),
+    /// Show the page of a run that is not over, on this machine only
+    Watch(watch::Watch),
     /// Run an archived script again and compare every number, bit by bit
     Replay(replay::Replay),
     /// List the built-in materials, or the values of one with ranges and sources
@@ -85,6 +91,8 @@ pub fn run() -> Exit {
         Verb::Check(verb) => verb.run(&mut output),
         Verb::Show(verb) => verb.run(&mut output),
         Verb::Export(verb) => verb.run(&mut output),
+        Verb::Report(verb) => verb.run(&mut output),
+        Verb::Watch(verb) => verb.run(&mut output),
         Verb::Replay(verb) => verb.run(&mut output),
         Verb::Materials(verb) => verb.run(&mut output),
         Verb::Explain(verb) => verb.run(&mut output),

@@ -2,15 +2,16 @@
 
 use std::fmt::Write;
 
-use crate::archive::{Condition, Figure, Ledger, Snapshot, Stack, Status, Table, Value};
+use crate::archive::{Condition, Figure, Ledger, Snapshot, Stack, Status, Table};
 
 use super::columns::{Align, columns, wrapped};
-use crate::figure_text::{figure_text, percent, significant, unit_symbol};
+use crate::figure_text::{percent, significant, unit_symbol};
+pub use crate::record_text::{figure_title, figure_value, value_text};
 
 /// Letters of a line that long texts are broken at.
 const LINE: usize = 110;
 
-/// Significant digits of ledger lines and settings.
+/// Significant digits of ledger lines.
 const DIGITS: usize = 6;
 
 /// The stack: its layers in a table, then everything else that belongs to it.
@@ -73,36 +74,6 @@ pub fn warnings_text(warnings: &[String]) -> String {
     warnings.iter().map(|warning| format!("  warning: {warning}\n")).collect()
 }
 
-/// A figure with its error, or why there is none.
-pub fn figure_value(figure: &Figure) -> String {
-    match (figure.value, &figure.reason) {
-        (Some(value), _) if is_share(figure) => {
-            figure_text(100.0 * value, figure.error.map(|e| 100.0 * e), "percent")
-        }
-        (Some(value), _) => figure_text(value, figure.error, &figure.unit),
-        (None, Some(reason)) => format!("none: {reason}"),
-        (None, None) => "none".to_string(),
-    }
-}
-
-/// Fractions that the trade reads in percent.
-fn is_share(figure: &Figure) -> bool {
-    figure.unit.is_empty() && matches!(figure.name.as_str(), "ff" | "fill_factor" | "efficiency")
-}
-
-/// The words of a figure.
-pub fn figure_title(name: &str) -> String {
-    match name {
-        "jsc" => "short-circuit current density (jsc)".to_string(),
-        "voc" => "open-circuit voltage (voc)".to_string(),
-        "ff" => "fill factor (ff)".to_string(),
-        "mpp_voltage" => "voltage at maximum power".to_string(),
-        "mpp_current" | "mpp_current_density" => "current density at maximum power".to_string(),
-        "max_power" => "maximum power".to_string(),
-        other => other.replace('_', " "),
-    }
-}
-
 fn settings_text(settings: &[Condition]) -> String {
     let name_of = |each: &Condition| each.name.replace('_', " ");
     let width = settings.iter().map(|each| name_of(each).chars().count()).max().unwrap_or(0);
@@ -118,16 +89,6 @@ fn settings_text(settings: &[Condition]) -> String {
 
 fn condition_text(condition: &Condition) -> String {
     format!("{} {}", condition.name.replace('_', " "), value_text(&condition.value))
-}
-
-/// A setting with its unit.
-pub fn value_text(value: &Value) -> String {
-    match value {
-        Value::Number { value, unit } if unit.is_empty() => significant(*value, DIGITS + 1),
-        Value::Number { value, unit } => format!("{} {}", significant(*value, DIGITS + 1), unit_symbol(unit)),
-        Value::Text(text) => text.clone(),
-        Value::Flag(flag) => if *flag { "yes" } else { "no" }.to_string(),
-    }
 }
 
 fn ledger_text(ledger: &Ledger) -> String {
@@ -165,7 +126,7 @@ fn table_text(table: &Table) -> String {
 #[cfg(test)]
 mod tests {
     use super::*;
-    use crate::archive::{Column, Label, Layer, LedgerLine};
+    use crate::archive::{Column, Label, Layer, LedgerLine, Value};
 
     /// Source of truth: the layout as it is meant, written by hand.
     #[test]

@@ -17,6 +17,7 @@ pub mod charts;
 mod error;
 pub mod overlay;
 pub mod palette;
+pub mod report;
 pub mod ticks;
 
 pub use chart::{Body, Chart, Kind};

@@ -18,27 +18,51 @@ pub struct CsvDocument {
     pub bytes: Vec<u8>,
 }
 
+/// What one file of an export holds.
+enum Part<'a> {
+    Table(&'a Table),
+    Figures(&'a [Figure]),
+    Ledgers(&'a [Ledger]),
+}
+
+fn parts(snapshot: &Snapshot) -> Vec<Part<'_>> {
+    let mut parts: Vec<Part> = snapshot.tables.iter().map(Part::Table).collect();
+    if !snapshot.figures.is_empty() || parts.is_empty() {
+        parts.push(Part::Figures(&snapshot.figures));
+    }
+    if !snapshot.ledgers.is_empty() {
+        parts.push(Part::Ledgers(&snapshot.ledgers));
+    }
+    parts
+}
+
+/// The names of the files of an export, in order: the tables, then `figures`, then `ledger`, as far as it has them. The
+/// first one stands at the path asked for; the others take theirs as a suffix.
+pub fn csv_names(snapshot: &Snapshot) -> Vec<String> {
+    let mut taken = BTreeSet::new();
+    let names = parts(snapshot).into_iter().map(|part| match part {
+        Part::Table(table) => plain_name(&table.name),
+        Part::Figures(_) => "figures".to_owned(),
+        Part::Ledgers(_) => "ledger".to_owned(),
+    });
+    names.map(|name| unique_name(name, &mut taken)).collect()
+}
+
 /// The tables of the snapshot, then `figures`, then `ledger`, as far as it has them.
 ///
 /// # Errors
 /// [`ArchiveError::Encoding`].
 pub fn csv_documents(snapshot: &Snapshot) -> Result<Vec<CsvDocument>, ArchiveError> {
-    let mut named: Vec<(String, Vec<u8>)> = Vec::new();
-    for table in &snapshot.tables {
-        named.push((plain_name(&table.name), table_bytes(table)?));
-    }
-    if !snapshot.figures.is_empty() || named.is_empty() {
-        named.push(("figures".to_owned(), figure_bytes(&snapshot.figures)?));
-    }
-    if !snapshot.ledgers.is_empty() {
-        named.push(("ledger".to_owned(), ledger_bytes(&snapshot.ledgers)?));
-    }
-    let mut taken = BTreeSet::new();
-    let documents = named.into_iter().enumerate().map(|(place, (name, bytes))| {
-        let name = unique_name(name, &mut taken);
-        CsvDocument { suffix: (place > 0).then_some(name), bytes }
-    });
-    Ok(documents.collect())
+    let named = csv_names(snapshot).into_iter().zip(parts(snapshot)).enumerate();
+    let document = |(place, (name, part))| {
+        let bytes = match part {
+            Part::Table(table) => table_bytes(table)?,
+            Part::Figures(figures) => figure_bytes(figures)?,
+            Part::Ledgers(ledgers) => ledger_bytes(ledgers)?,
+        };
+        Ok(CsvDocument { suffix: (place > 0).then_some(name), bytes })
+    };
+    named.map(document).collect()
 }
 
 fn number(value: f64) -> String {

@@ -6,7 +6,7 @@ mod npz;
 
 use std::path::{Path, PathBuf};
 
-pub use self::csv::{CsvDocument, csv_documents};
+pub use self::csv::{CsvDocument, csv_documents, csv_names};
 pub use self::json::{json_listing, json_snapshot};
 pub use self::npz::npz;
 
@@ -54,7 +54,7 @@ pub fn export(snapshot: &Snapshot, format: Format, path: &Path) -> Result<Vec<Pa
         Format::Json => vec![(path.to_owned(), json_snapshot(snapshot)?)],
     };
     for (file, bytes) in &files {
-        put(file, bytes)?;
+        write_whole(file, bytes)?;
     }
     Ok(files.into_iter().map(|(file, _)| file).collect())
 }
@@ -72,7 +72,11 @@ fn beside(path: &Path, suffix: Option<&str>) -> PathBuf {
     path.with_file_name(name)
 }
 
-fn put(path: &Path, bytes: &[u8]) -> Result<(), ArchiveError> {
+/// Writes a file beside its place and renames it, so that it is never half there.
+///
+/// # Errors
+/// [`ArchiveError::Io`].
+pub fn write_whole(path: &Path, bytes: &[u8]) -> Result<(), ArchiveError> {
     let failed = |source| ArchiveError::Io { action: "write", path: path.to_owned(), source };
     // A pipe or a terminal is written to, not replaced.
     if path.metadata().is_ok_and(|about| !about.is_file()) {
