@@ -222,7 +222,7 @@ impl ArchiveError {
 #[non_exhaustive]
 pub enum ArchiveWarning {
     /// The file was never finished, or its end is gone.
-    #[error("the archive is not finished: it holds {snapshots} whole snapshots{}", if *points == 0 { String::new() } else { format!(" and {points} points of sweeps") })]
+    #[error("the archive is not finished: it holds {snapshots} whole snapshot{}{}", if *snapshots == 1 { "" } else { "s" }, if *points == 0 { String::new() } else { format!(" and {points} points of sweeps") })]
     NotFinished {
         /// How many whole snapshots there are.
         snapshots: usize,

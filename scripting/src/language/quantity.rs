@@ -319,8 +319,14 @@ impl Quantity {
 
 /// The fault of a unit that does not exist.
 pub fn unknown_unit(name: &str) -> Fault {
-    Fault::new(codes::UNKNOWN_UNIT, format!("no unit is called `{name}`"))
-        .candidates(name, super::units::UNITS.iter().map(|u| u.name))
+    let fault = Fault::new(codes::UNKNOWN_UNIT, format!("no unit is called `{name}`"));
+    fault.help(match crate::diagnostics::suggest(name, super::units::UNITS.iter().map(|u| u.name)) {
+        Some(near) => format!("did you mean `{near}`?"),
+        None => {
+            "units are nm, um, per_cm3, ns, cm_per_s, V and so on; `epiloom reference` ends with all of them"
+                .to_string()
+        }
+    })
 }
 
 /// Powers: whole exponents up to 64 by multiplication, so that squares are exact; the rest by `exp` and `ln`.

@@ -8,7 +8,7 @@ use crate::solve::{Drive, Point};
 
 use super::figure::{Absent, Figure, Outcome};
 use super::ladder::{AnalysisError, LARGEST_VOLTAGE, Ladder, MOST, check_voltage};
-use super::results::{CurrentVoltage, JvPoint, Voltages};
+use super::results::{CurrentVoltage, JvPoint, Voltages, Warning};
 
 /// Step of the scan that brackets open circuit and maximum power, V.
 const SCAN: f64 = 0.05;
@@ -330,6 +330,25 @@ fn worst_error(done: &[Curve], last: &Curve) -> f64 {
         .fold(0.0, f64::max)
 }
 
+/// A warning where figures of merit are less accurate than asked for on the finest mesh that is tried.
+fn missed_accuracy(ladder: &Ladder, figures: &[(&str, &Outcome)]) -> Option<Warning> {
+    let asked = ladder.device.stack().accuracy;
+    let missed: Vec<String> = figures
+        .iter()
+        .filter_map(|(name, outcome)| Some((name, outcome.as_ref().ok()?)))
+        .filter(|(_, figure)| figure.error > asked * figure.value.abs())
+        .map(|(name, figure)| format!("{name} to {:.0e}", figure.error / figure.value.abs()))
+        .collect();
+    (!missed.is_empty()).then(|| Warning {
+        code: "W313",
+        message: format!(
+            "the relative accuracy of {asked:e} was not reached on {} meshes: {}",
+            ladder.rungs.len(),
+            missed.join(", ")
+        ),
+    })
+}
+
 fn collect(
     ladder: &Ladder,
     curves: Vec<Curve>,
@@ -386,7 +405,8 @@ fn collect(
         Some(input) => figure("maximum power", &|c| Some(power(c.power.as_ref()?) / input)),
         None => Err(reason(why_none.unwrap_or("the light has no wavelength, so its photons have no energy"))),
     };
-    let warnings = ladder.warnings();
+    let mut warnings = ladder.warnings();
+    warnings.extend(missed_accuracy(ladder, &[("jsc", &jsc), ("voc", &voc), ("max_power", &max_power)]));
     CurrentVoltage {
         points,
         jsc,

@@ -96,6 +96,15 @@ fn lost_edits_have_their_own_help() {
     assert!(fault.help.as_deref().is_some_and(|h| h.contains("return the changed stack")), "{fault:?}");
     fails(&with_cell("fn hot(c) {\n    c.temperature = 350.K; // ~ E113\n    1\n}\nhot(cell);"));
     fails(&with_cell("if true {\n    let base = cell[\"base\"];\n    base.thickness = 2.um; // ~ E113\n}"));
+    // nor does the stack hear of it at the outer level, however much is solved below
+    let fault = fails(&with_cell(
+        "let base = cell[\"base\"];\nbase.thickness = 2.um; // ~ E113\nprint(cell[\"base\"].thickness);",
+    ));
+    assert!(fault.help.as_deref().is_some_and(|h| h.contains("cell[\"window\"]")), "{fault:?}");
+    let lines = printed(&with_cell(
+        "let base = cell[\"base\"]; base.thickness = 2.um; cell[\"base\"] = base; print(cell[\"base\"].thickness);",
+    ));
+    assert_eq!(lines, ["2 um"]);
     // a change is not lost where the script breaks off before its use
     fails(&with_cell("cell.temperature = 350.K;\nlet sum = 3.nm + 1; // ~ E200"));
     fails(&with_cell("cell.layer(\"base\") = 3; // ~ E114"));

@@ -29,6 +29,76 @@ fn inputs_are_overridden_by_name() {
     fails("let a = input(\"a\", [1]); // ~ E107");
 }
 
+/// Source of truth: the rule that an unknown name is told before anything is solved, where the inputs can be known: this script
+/// would solve a curve first. A name that is computed is known too; one that depends on a figure is not, and is let through.
+#[test]
+fn strange_names_of_inputs_are_told_before_solving() {
+    let text = |last: &str| {
+        format!(
+            "let gaas = material(\"GaAs\", #{{ electron_lifetime: 1.ns, hole_lifetime: 1.ns }});\n\
+             let base = input(\"base\", 1.um);\nfor i in [1, 2] {{ let k = input(`step_${{i}}`, 1.0); }}\n\
+             let cell = stack(\"c\", [layer(\"n\", gaas, 100.nm, donors(1e18.per_cm3)), layer(\"p\", gaas, base, acceptors(1e17.per_cm3))]);\n\
+             let j = cell.at(0.5.V, dark()).current_density;\nprint(\"solved\");\n{last}"
+        )
+    };
+    let (outcome, recorder) = set(&text(""), "gaas", "3");
+    assert_eq!(outcome.errors[0].code, codes::UNKNOWN_INPUT);
+    assert!(outcome.errors[0].notes[0].contains("`base`, `step_1`, `step_2`"), "{:?}", outcome.errors[0]);
+    assert!(recorder.lines.is_empty(), "nothing was solved");
+    let (outcome, recorder) = set(&text(""), "step_2", "3");
+    assert!(outcome.errors.is_empty(), "{:?}", outcome.errors);
+    assert_eq!(recorder.lines, ["solved"]);
+    let late = text("if j > 0.mA_per_cm2 { let late = input(\"la\" + \"te\", 1); print(late); }");
+    let (outcome, recorder) = set(&late, "late", "7");
+    assert!(outcome.errors.is_empty(), "{:?}", outcome.errors);
+    assert_eq!(recorder.lines, ["solved", "7"]);
+    let (outcome, _) = set(&late, "later", "7");
+    assert_eq!(outcome.errors[0].code, codes::UNKNOWN_INPUT, "at the end at the latest");
+}
+
+/// Source of truth: data files as instruments and spreadsheets write them; what each fault must tell a person.
+#[test]
+fn data_files_as_they_come() {
+    let root = tempfile::tempdir().expect("a folder");
+    let read = |bytes: &[u8], text: &str| {
+        std::fs::write(root.path().join("f.csv"), bytes).expect("a file");
+        let (outcome, recorder) = in_folder(root.path(), text, &[]);
+        match outcome.errors.first() {
+            Some(error) => {
+                let label = error.labels.first().map_or("", |l| l.text.as_str());
+                let notes = error.notes.join(" ");
+                format!("{} {label} {notes} {}", error.message, error.help.as_deref().unwrap_or_default())
+            }
+            None => recorder.lines.join("\n"),
+        }
+    };
+    let rows = "print(read_csv(\"f.csv\")[1].density);";
+    for good in [
+        "depth_nm,density_per_cm3\n0,3e18\n20,2e18\n",
+        "\"depth_nm\",\"density_per_cm3\"\n\"0\",\"3e18\"\n\"20\",\"2e18\"\n",
+        "depth_nm;density_per_cm3\r\n0;3e18\r\n20;2e18\r\n",
+        "\u{feff}depth_nm\tdensity_per_cm3\n0\t3e18\n20\t2e18",
+    ] {
+        assert_eq!(read(good.as_bytes(), rows), "2e18 cm^-3", "{good:?}");
+    }
+    let utf16: Vec<u8> =
+        [0xff, 0xfe].into_iter().chain("a,b\n1,2".encode_utf16().flat_map(u16::to_le_bytes)).collect();
+    assert!(read(&utf16, rows).contains("UTF-16"));
+    assert!(read(b"depth_nm,density_per_cm3\n0,3e18\n# \xb5m\n", rows).contains("line 3"));
+    let comma = read(b"depth_nm,density_per_cm3\n0,3e18\n20,2,5e18\n", rows);
+    assert!(comma.contains("line 3: 3 fields") && comma.contains("follow a point"), "{comma}");
+    let comma = read(b"depth_nm;density_per_cm3\n0;3e18\n20;2,5e18\n", rows);
+    assert!(comma.contains("`2.5e18`"), "{comma}");
+    assert!(read(b"depth_nm,depth_nm\n0,3e18\n", rows).contains("two columns are called `depth`"));
+    let profile = "donors(graded(read_csv(\"f.csv\")));";
+    let unit = read(b"depth_nn,density_per_cm3\n0,3e18\n20,2e18\n", profile);
+    assert!(unit.contains("no column `depth`") && unit.contains("`nn`") && unit.contains("`nm`"), "{unit}");
+    let name = read(b"depth_nm,conc_per_cm3\n0,3e18\n20,2e18\n", profile);
+    assert!(name.contains("no column `density`") && name.contains("`conc`, `depth`"), "{name}");
+    let bare = read(b"depth,density_per_cm3\n0,3e18\n20,2e18\n", profile);
+    assert!(bare.contains("`depth_nm`"), "{bare}");
+}
+
 fn in_folder(folder: &Path, text: &str, allow: &[&Path]) -> (RunOutcome, Recorder) {
     let mut recorder = Recorder::default();
     let script = Script { folder: Some(folder.to_path_buf()), ..script(text) };

@@ -108,6 +108,19 @@ fn common_mistakes_have_their_own_help() {
     fails("let x = (); x * 2.nm; // ~ E302");
     fails("let x = (); x.voltage; // ~ E302");
     fails("let a = [1]; a.lenght; // ~ E105");
+    let help = |text: &str| fails(text).help.clone().unwrap_or_default();
+    assert_eq!(help("pint(\"a\"); // ~ E102"), "did you mean `print`?");
+    assert_eq!(fails("print(1; // ~ E100").message, "`,` or `)` is missing before this place");
+    assert!(help("let t = 5.\u{b5}m; // ~ E100").contains("`um`"));
+    assert!(help("let t = 5 \u{2212} 3; // ~ E100").contains("`-`"));
+    assert!(help("let t = \u{201c}GaAs\u{201d}; // ~ E100").contains("straight quotes"));
+    assert!(help("().to(\"V\"); // ~ E302").contains(".reason"));
+    assert!(
+        help("let t = 5.qqqqq; // ~ E204").contains("epiloom reference"),
+        "no long list where nothing is near"
+    );
+    // an argument of the wrong kind shows how the function is written
+    assert!(help("ohmic(1e6.cm_per_s); // ~ E107").starts_with("its forms: ohmic()"));
 }
 
 /// Source of truth: a fault in a nested call is at its own line, not at the call's.
@@ -135,6 +148,7 @@ fn rows_of_values_and_what_is_printed() {
         print(linear(20.nm, 100.nm, 5));
         print(logarithmic(1e16.per_cm3, 1e18.per_cm3, 3));
         print(linear(0, 1, 3));
+        print(1.suns);
         print(1.nm == ());
         print(1.nm != ());
         let gaas = material("GaAs");
@@ -147,6 +161,7 @@ fn rows_of_values_and_what_is_printed() {
         "[20 nm, 40 nm, 60 nm, 80 nm, 100 nm]",
         "[1e16 cm^-3, 1e17 cm^-3, 1e18 cm^-3]",
         "[0, 0.5, 1]",
+        "1 sun",
         "false",
         "true",
         "material GaAs",

@@ -186,6 +186,24 @@ let cell = stack("d", [
 cell.temperature = 25.K;
 let jv = cell.jv(dark()); // ~ W203"#;
     expect_diagnostics(cold, checked);
+    // the common coated cell is quiet; an accuracy that no mesh reaches is said
+    let quiet = r#"let gaas = material("GaAs", #{ electron_lifetime: 1.ns, hole_lifetime: 1.ns });
+let cell = stack("d", [
+    layer("n", gaas, 100.nm, donors(1e18.per_cm3)),
+    layer("p", gaas, 1.um, acceptors(1e17.per_cm3)),
+]);
+cell.front_reflectance = coating([film("MgF2", 95.nm), film("ZnS", 50.nm)]);
+let jv = cell.jv(spectrum("AM1.5G"), [0.V]);
+let silicon = stack("s", [layer("s", material("Si", #{ electron_lifetime: 1.us, hole_lifetime: 1.us }), 100.um, donors(1e15.per_cm3))]);
+let bands = silicon.at(0.V, spectrum("AM1.5G"));
+let hard = stack("h", [
+    layer("w", material("AlGaAs", #{ x: graded("linear", 0.2, 0.4), electron_lifetime: 1.ns, hole_lifetime: 1.ns }), 50.nm, donors(graded("erfc", 1e19.per_cm3, 1e15.per_cm3, 5.nm))), // ~ W205
+    layer("n", gaas, 100.nm, donors(1e18.per_cm3)),
+    layer("p", gaas, 1.um, acceptors(1e17.per_cm3)),
+]);
+hard.accuracy = 1e-9;
+let exact = hard.jv(spectrum("AM1.5G"), [0.V]); // ~ W313"#;
+    expect_diagnostics(quiet, RunOptions::default());
     let lit = r#"let gaas = material("GaAs", #{ electron_lifetime: 1.ns, hole_lifetime: 1.ns });
 let cell = stack("d", [
     layer("n", gaas, 100.nm, donors(1e18.per_cm3)), // ~ W303

@@ -259,6 +259,11 @@ fn read_value(name: &str, words: &str, default: &InputValue) -> Result<InputValu
         },
         InputValue::Quantity(default) => {
             let value = read_quantity(words).map_err(|mut fault| {
+                if fault.code == codes::UNKNOWN_UNIT && !default.is_number() {
+                    let units = UNITS.iter().filter(|u| u.dimension == default.dimension).map(|u| u.name);
+                    let units = units.collect::<Vec<_>>().join(", ");
+                    fault = fault.note(format!("units of {}: {units}", default.dimension.family_name()));
+                }
                 fault.message = format!("--set {name}={words}: {}", fault.message);
                 fault.code = codes::BAD_INPUT_VALUE;
                 fault
