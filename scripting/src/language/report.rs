@@ -432,11 +432,8 @@ fn not_found(signature: &str) -> Option<Fault> {
     let forms: Vec<&str> = callable(name).flat_map(|e| e.forms.iter().copied()).collect();
     if forms.is_empty() {
         let fault = Fault::new(codes::UNKNOWN_FUNCTION, format!("no function is called `{name}`"));
-        let names: Vec<&str> = entries()
-            .filter(|e| !matches!(e.sort, super::vocabulary::Sort::Constant))
-            .map(|e| e.name)
-            .chain(PLAIN_WORDS)
-            .collect();
+        let known = entries().filter(|e| !matches!(e.sort, super::vocabulary::Sort::Constant));
+        let names: Vec<&str> = PLAIN_WORDS.into_iter().chain(known.map(|e| e.name)).collect();
         return Some(match crate::diagnostics::suggest(name, names.iter().copied()) {
             Some(near) => {
                 let form = callable(near).next().map_or(near, |e| e.forms[0]);
