@@ -320,6 +320,10 @@ impl Quantity {
 /// The fault of a unit that does not exist.
 pub fn unknown_unit(name: &str) -> Fault {
     let fault = Fault::new(codes::UNKNOWN_UNIT, format!("no unit is called `{name}`"));
+    // a density is easily written as a volume: 1e17.cm3
+    if let Some(inverse) = super::units::UNITS.iter().find(|u| u.name.strip_prefix("per_") == Some(name)) {
+        return fault.help(format!("did you mean `{}`?", inverse.name));
+    }
     fault.help(match crate::diagnostics::suggest(name, super::units::UNITS.iter().map(|u| u.name)) {
         Some(near) => format!("did you mean `{near}`?"),
         None => {

@@ -241,7 +241,13 @@ fn parsing(text: &str, kind: &ParseErrorType, position: Position) -> Fault {
         }
         ParseErrorType::MissingToken(token, _) => {
             let fault = syntax(format!("`{token}` is missing before this place"));
-            if token == ";" { fault.help("end the statement before this place with `;`") } else { fault }
+            match (token == ";").then(|| unit_apart(text, position)) {
+                Some(Some(written)) => {
+                    fault.help(format!("a unit stands behind a point, without a blank: `{written}`"))
+                }
+                Some(None) => fault.help("end the statement before this place with `;`"),
+                None => fault,
+            }
         }
         ParseErrorType::DuplicatedProperty(key) => syntax(format!("the map has two entries `{key}`")),
         ParseErrorType::DuplicatedVariable(name) | ParseErrorType::VariableExists(name) => {
@@ -300,6 +306,32 @@ fn parsing(text: &str, kind: &ParseErrorType, position: Position) -> Fault {
     }
 }
 
+/// What was meant where a number and its unit stand apart, `30 nm`; the position is that of the unit.
+fn unit_apart(text: &str, position: Position) -> Option<String> {
+    let at = offset(text, position)?;
+    let unit = word_from(text, at);
+    super::units::unit(unit)?;
+    let before = text[..at].trim_end_matches(' ');
+    let digits = before.len()
+        - before.trim_end_matches(|c: char| c.is_ascii_digit() || matches!(c, '.' | 'e' | '-')).len();
+    let number = &before[before.len() - digits..];
+    number.parse::<f64>().is_ok().then(|| format!("{number}.{unit}"))
+}
+
+/// The byte that a position names.
+fn offset(text: &str, position: Position) -> Option<usize> {
+    let line = position.line()?;
+    let at = crate::diagnostics::Span::at(text, line, position.position().unwrap_or(0), Some(1)).start;
+    text.is_char_boundary(at).then_some(at)
+}
+
+/// The word that begins at a byte.
+fn word_from(text: &str, at: usize) -> &str {
+    let rest = text.get(at..).unwrap_or_default();
+    let end = rest.find(|c: char| !(c.is_alphanumeric() || c == '_')).unwrap_or(rest.len());
+    &rest[..end]
+}
+
 /// What to write instead of a sign that word processors and keyboards put into scripts.
 fn foreign_sign(words: &str) -> Option<&'static str> {
     Some(match words.chars().next()? {
@@ -344,6 +376,10 @@ const PLAIN_WORDS: [&str; 20] = [
     "reduce",
 ];
 
+/// Words of the engine that begin statements or stand for values.
+const KEYWORDS: [&str; 10] =
+    ["let", "const", "else", "for", "while", "loop", "return", "break", "true", "false"];
+
 /// A name that nothing has defined; a variable of the script where a function asks for it.
 fn unknown_name(text: &str, name: &str, position: Position) -> Fault {
     let defined: Vec<&str> = definitions(text).collect();
@@ -361,10 +397,14 @@ fn unknown_name(text: &str, name: &str, position: Position) -> Fault {
     if defined.contains(&name) {
         return fault.help("it is defined further down, or in a block that has ended");
     }
+    let after = offset(text, position).and_then(|at| text.get(at + name.len()..)).map_or("", str::trim_start);
+    if after.starts_with(':') && !after.starts_with("::") {
+        return fault.help(format!("a map of options begins with `#{{`: #{{ {name}: .. }}"));
+    }
     if entries().any(|e| e.name == name && e.sort == super::vocabulary::Sort::Function) {
         return fault.help(format!("`{name}` is a function: write `{name}(..)`"));
     }
-    let known = defined.into_iter().chain(UNITS.iter().map(|u| u.name));
+    let known = defined.into_iter().chain(UNITS.iter().map(|u| u.name)).chain(KEYWORDS);
     let known: Vec<&str> = known.collect();
     match crate::diagnostics::suggest(name, known.iter().copied()) {
         Some(near) => fault.help(format!("did you mean `{near}`?")),
@@ -421,7 +461,13 @@ fn not_found(signature: &str) -> Option<Fault> {
     }
     if operator {
         let words = kinds.iter().map(|k| with_article(k)).collect::<Vec<_>>().join(" and ");
-        return Some(Fault::new(codes::WRONG_KIND, format!("`{name}` has no meaning for {words}")));
+        let fault = Fault::new(codes::WRONG_KIND, format!("`{name}` has no meaning for {words}"));
+        return Some(match name {
+            ".." | "..=" => {
+                fault.help("a range counts whole numbers, `0..5`; quantities: linear(20.nm, 100.nm, 5)")
+            }
+            _ => fault,
+        });
     }
     if name == "layer" && kinds.first() == Some(&"stack") {
         return Some(
@@ -471,6 +517,11 @@ fn dotted(message: &str) -> Option<Fault> {
             let names: Vec<&str> = entries().filter(|e| e.owner == kind).map(|e| e.name).collect();
             let fault =
                 Fault::new(codes::UNKNOWN_PROPERTY, format!("{} has no property `{property}`", with_article(kind)));
+            if kind == "contact" {
+                return Some(
+                    fault.help("give the stack a new one: cell.front = ohmic(#{ recombination_velocity: 1e6.cm_per_s });"),
+                );
+            }
             Some(if names.is_empty() { fault } else { fault.candidates(property, names.iter().copied()) })
         }
     }

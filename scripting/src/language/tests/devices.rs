@@ -105,6 +105,8 @@ fn lost_edits_have_their_own_help() {
         "let base = cell[\"base\"]; base.thickness = 2.um; cell[\"base\"] = base; print(cell[\"base\"].thickness);",
     ));
     assert_eq!(lines, ["2 um"]);
+    let figure = fails(&with_cell("print(cell.Jsc); // ~ E222"));
+    assert_eq!(figure.help.as_deref(), Some("a figure of merit belongs to a curve: cell.jv(light).jsc"));
     // a change is not lost where the script breaks off before its use
     fails(&with_cell("cell.temperature = 350.K;\nlet sum = 3.nm + 1; // ~ E200"));
     fails(&with_cell("cell.layer(\"base\") = 3; // ~ E114"));

@@ -89,6 +89,8 @@ fn data_files_as_they_come() {
     assert!(comma.contains("line 3: 3 fields") && comma.contains("follow a point"), "{comma}");
     let comma = read(b"depth_nm;density_per_cm3\n0;3e18\n20;2,5e18\n", rows);
     assert!(comma.contains("`2.5e18`"), "{comma}");
+    let large = read(b"depth_nm;density_per_cm3\n0;1e400\n", rows);
+    assert!(large.contains("`1e400` is no number") && !large.contains("point"), "{large}");
     assert!(read(b"depth_nm,depth_nm\n0,3e18\n", rows).contains("two columns are called `depth`"));
     let profile = "donors(graded(read_csv(\"f.csv\")));";
     let unit = read(b"depth_nn,density_per_cm3\n0,3e18\n20,2e18\n", profile);

@@ -114,6 +114,15 @@ fn common_mistakes_have_their_own_help() {
     assert!(help("let t = 5.\u{b5}m; // ~ E100").contains("`um`"));
     assert!(help("let t = 5 \u{2212} 3; // ~ E100").contains("`-`"));
     assert!(help("let t = \u{201c}GaAs\u{201d}; // ~ E100").contains("straight quotes"));
+    assert_eq!(help("let d = 1e17.cm3; // ~ E204"), "did you mean `per_cm3`?");
+    assert_eq!(help("let t = 30 nm; // ~ E100"), "a unit stands behind a point, without a blank: `30.nm`");
+    assert_eq!(help("Let t = 3; // ~ E101"), "did you mean `let`?");
+    assert_eq!(
+        help("material(\"GaAs\", { hole_lifetime: 5.ns }); // ~ E101"),
+        "a map of options begins with `#{`: #{ hole_lifetime: .. }"
+    );
+    assert!(help("ohmic().velocity; // ~ E105").contains("cell.front = ohmic("));
+    assert!(help("for t in 20.nm..30.nm { } // ~ E107").contains("linear(20.nm, 100.nm, 5)"));
     assert!(help("().to(\"V\"); // ~ E302").contains(".reason"));
     assert!(
         help("let t = 5.qqqqq; // ~ E204").contains("epiloom reference"),

@@ -61,8 +61,7 @@ fn not_utf8(name: &str, bytes: &[u8], error: std::str::Utf8Error) -> Fault {
         let line = 1 + bytes[..error.valid_up_to()].iter().filter(|b| **b == b'\n').count();
         format!("the file `{name}` is not text in UTF-8: line {line} holds a character in another encoding")
     };
-    Fault::new(codes::UNREADABLE, message)
-        .help("save it as text in UTF-8; numbers and words without accents or signs are the same in both")
+    Fault::new(codes::UNREADABLE, message).help("save it as text in UTF-8")
 }
 
 /// The fields of a line, apart by the separator; a field may stand in double quotes, which may hold the separator.
@@ -138,7 +137,7 @@ impl Columns {
                     _ => {
                         let fault = fault(line, format!("column `{name}`: `{field}` is no number"));
                         let comma = field.replacen(',', ".", 1);
-                        return Err(if comma.parse::<f64>().is_ok() {
+                        return Err(if field.contains(',') && comma.parse::<f64>().is_ok() {
                             fault.help(format!("the decimals of a number follow a point: `{comma}`"))
                         } else {
                             fault
@@ -306,6 +305,12 @@ pub fn read_quantity(words: &str) -> Result<Quantity, Fault> {
     if name.is_empty() {
         return Ok(Quantity::number(number));
     }
+    if name.starts_with(',') {
+        return Err(Fault::new(
+            codes::BAD_INPUT_VALUE,
+            "the decimals of a number follow a point, not a comma",
+        ));
+    }
     let found = unit(name).or_else(|| UNITS.iter().find(|u| u.symbol == name));
     match found {
         Some(unit) => Ok(Quantity::in_unit(number, unit)),
@@ -336,6 +341,7 @@ mod tests {
         }
         assert_eq!(read_quantity("nm").unwrap_err().code, codes::BAD_INPUT_VALUE);
         assert_eq!(read_quantity("5 nmm").unwrap_err().code, codes::UNKNOWN_UNIT);
+        assert!(read_quantity("5,5nm").unwrap_err().message.contains("follow a point"));
         assert_eq!(read_quantity("1e999").unwrap_err().code, codes::BAD_INPUT_VALUE);
     }
 

@@ -297,11 +297,17 @@ fn no_layer(stack: &StackValue, name: &str) -> Fault {
     {
         return unknown_property("stack", name).help(format!("did you mean `{near}`?"));
     }
-    Fault::new(
+    let fault = Fault::new(
         codes::UNKNOWN_LAYER,
         format!("stack `{}` has neither a layer nor a property `{name}`", stack.stack.name),
-    )
-    .candidates(name, layers.iter().copied())
+    );
+    let figures = ["jsc", "voc", "ff", "efficiency", "max_power", "mpp"];
+    match figures.into_iter().find(|figure| figure.eq_ignore_ascii_case(name)) {
+        Some(figure) if near_layer.is_none() => {
+            fault.help(format!("a figure of merit belongs to a curve: cell.jv(light).{figure}"))
+        }
+        _ => fault.candidates(name, layers.iter().copied()),
+    }
 }
 
 fn build(call: &Call, arguments: &mut [&mut Dynamic]) -> Answer {
