@@ -1,7 +1,7 @@
 //! Epiloom's device solver: physics and numerics of one-dimensional epitaxial photovoltaic stacks.
 //!
 //! Every public interface is in SI units. The solver does no input or output, prints nothing and keeps no global
-//! state. `METHOD.md` beside this crate states the equations; the modules below are floors, whose order `DEVELOPERS.md`
+//! state but tables and a bounded memory of light in stacks, which change no result. `METHOD.md` beside this crate states the equations; the modules below are floors, whose order `DEVELOPERS.md`
 //! lists: each uses only those below it.
 
 #![cfg_attr(

@@ -4,10 +4,10 @@ use crate::device::Device;
 use crate::optics::Light;
 use crate::solve::continuation::hermite;
 use crate::solve::extrapolation::extrapolate;
-use crate::solve::{Drive, Point};
+use crate::solve::{Drive, Point, State};
 
 use super::figure::{Absent, Figure, Outcome};
-use super::ladder::{AnalysisError, LARGEST_VOLTAGE, Ladder, MOST, check_voltage};
+use super::ladder::{AnalysisError, Correction, LARGEST_VOLTAGE, Ladder, MOST, check_voltage};
 use super::results::{CurrentVoltage, JvPoint, Voltages, Warning};
 
 /// Step of the scan that brackets open circuit and maximum power, V.
@@ -24,6 +24,8 @@ struct Curve {
     short: Option<Point>,
     open: Option<Point>,
     power: Option<Point>,
+    /// How fast the slope of the current grows with the voltage about maximum power, 1/V.
+    bending: Option<f64>,
 }
 
 /// A current-voltage curve under `light`, at terminal voltages given or automatic.
@@ -101,7 +103,10 @@ fn coarse_curve(
                 .newton(&guess, Drive::Current(0.0), &tolerances)
                 .or_else(|_| problem.newton(&b.state, Drive::Current(0.0), &tolerances));
             curve.open = open.ok();
-            curve.power = best_power(ladder, &scan[..=k + 1]);
+            if let Some((power, bending)) = best_power(ladder, &scan[..=k + 1]) {
+                curve.power = Some(power);
+                curve.bending = Some(bending);
+            }
         }
     }
     let asked = match voltages {
@@ -161,7 +166,7 @@ fn automatic(ladder: &Ladder, curve: &Curve, photovoltaic: bool) -> Vec<f64> {
 }
 
 /// The point of maximum power from a scan that passes it: the best interval of the whole scan, then the exact root.
-fn best_power(ladder: &mut Ladder, scan: &[Point]) -> Option<Point> {
+fn best_power(ladder: &mut Ladder, scan: &[Point]) -> Option<(Point, f64)> {
     let k = (0..scan.len()).max_by(|&a, &b| power(&scan[a]).total_cmp(&power(&scan[b])))?;
     let (low, high) = (k.saturating_sub(1), (k + 1).min(scan.len() - 1));
     // Keep the two neighbours between which the slope of the power changes sign.
@@ -183,7 +188,7 @@ fn power_slope(p: &Point) -> f64 {
 
 /// The root of [`power_slope`] between two points of a mesh where it changes sign: Newton steps with the curvature of an
 /// exponential through the last two points, kept inside the bracket.
-fn maximum_power(ladder: &mut Ladder, rung: usize, mut a: Point, mut b: Point) -> Option<Point> {
+fn maximum_power(ladder: &mut Ladder, rung: usize, mut a: Point, mut b: Point) -> Option<(Point, f64)> {
     if power_slope(&a) > 0.0 || power_slope(&b) < 0.0 {
         return None;
     }
@@ -191,10 +196,11 @@ fn maximum_power(ladder: &mut Ladder, rung: usize, mut a: Point, mut b: Point) -
     let mut here = if power_slope(&a).abs() < power_slope(&b).abs() { a.clone() } else { b.clone() };
     let mut other = if here.voltage == a.voltage { b.clone() } else { a.clone() };
     for _ in 0..60 {
-        let step = power_step(&here, &other);
+        let bending = bending(&here, &other);
+        let step = power_step(&here, bending);
         let mut next = here.voltage + step;
         if step.abs() <= POWER_STEP {
-            return Some(here);
+            return Some((here, bending));
         }
         let (low, high) = (a.voltage.min(b.voltage), a.voltage.max(b.voltage));
         if !(next > low && next < high) {
@@ -216,13 +222,16 @@ fn maximum_power(ladder: &mut Ladder, rung: usize, mut a: Point, mut b: Point) -
     None
 }
 
-/// Newton step on the power's slope: `J'' = J' ln(J'_1/J'_2)/(V_1 - V_2)` from two points.
-fn power_step(here: &Point, other: &Point) -> f64 {
+/// How fast the slope J' grows with the voltage, as that of an exponential through two points: `ln(J'_1/J'_2)/(V_1 - V_2)`.
+fn bending(here: &Point, other: &Point) -> f64 {
     let distance = here.voltage - other.voltage;
     let ratio = here.conductance / other.conductance;
-    let rate =
-        if ratio > 0.0 && distance != 0.0 { crate::math::elementary::ln(ratio) / distance } else { 0.0 };
-    let slope = 2.0 * here.conductance + here.voltage * here.conductance * rate;
+    if ratio > 0.0 && distance != 0.0 { crate::math::elementary::ln(ratio) / distance } else { 0.0 }
+}
+
+/// Newton step on the power's slope, with `J'' = J'` times the bending.
+fn power_step(here: &Point, bending: f64) -> f64 {
+    let slope = 2.0 * here.conductance + here.voltage * here.conductance * bending;
     -power_slope(here) / slope
 }
 
@@ -233,34 +242,42 @@ fn finer_curve(
     coarse: &Curve,
     stopped: &mut Option<String>,
 ) -> Result<Curve, AnalysisError> {
-    let mut curve = Curve::default();
+    let mut curve = Curve { bending: coarse.bending, ..Curve::default() };
     let drive_of = |ladder: &Ladder, p: &Point| ladder.rungs[rung].problem.drive(p.voltage);
+    let (mut before, mut last): (Option<Correction>, Option<Correction>) = (None, None);
     if let Some(p) = &coarse.short {
         let drive = drive_of(ladder, p);
-        curve.short = Some(ladder.finer(rung, p, drive)?);
+        let interpolated = ladder.prolonged(rung, p);
+        let point = ladder.solve_from(rung, &interpolated, drive, p.voltage)?;
+        last = Some(Correction::new(ladder, rung, p, &interpolated.nodes, &point));
+        curve.short = Some(point);
     }
     if let Some(p) = &coarse.open {
-        curve.open = Some(ladder.finer(rung, p, Drive::Current(0.0))?);
+        let guess = expected(ladder, rung, p, last.as_ref());
+        curve.open = Some(ladder.solve_from(rung, &guess, Drive::Current(0.0), p.voltage)?);
     }
-    if let Some(p) = &coarse.power {
-        curve.power = finer_power(ladder, rung, p)?;
+    if let (Some(p), Some(bending)) = (&coarse.power, coarse.bending) {
+        let guess = expected(ladder, rung, p, last.as_ref());
+        curve.power = finer_power(ladder, rung, p, &guess, bending)?;
     }
-    let mut previous: Option<(&Point, Point)> = None;
     for p in &coarse.points {
-        let mut guess = ladder.prolonged(rung, p);
-        if let Some((coarse_before, fine_before)) = &previous {
-            let base = ladder.prolonged(rung, coarse_before);
-            for ((x, f), b) in guess.nodes.iter_mut().zip(&fine_before.state.nodes).zip(&base.nodes) {
-                for k in 0..3 {
-                    x[k] += f[k] - b[k];
+        let interpolated = ladder.prolonged(rung, p);
+        let known = curve.short.as_ref().filter(|short| short.voltage == p.voltage);
+        let solved = match known {
+            Some(short) => Ok(short.clone()),
+            None => {
+                let mut guess = interpolated.clone();
+                if let Some(last) = &last {
+                    Correction::extend(last, before.as_ref(), p.state.voltage, &mut guess.nodes);
                 }
+                let drive = drive_of(ladder, p);
+                ladder.solve_from(rung, &guess, drive, p.voltage)
             }
-        }
-        let drive = drive_of(ladder, p);
-        match ladder.solve_from(rung, &guess, drive, p.voltage) {
+        };
+        match solved {
             Ok(point) => {
-                curve.points.push(point.clone());
-                previous = Some((p, point));
+                before = last.replace(Correction::new(ladder, rung, p, &interpolated.nodes, &point));
+                curve.points.push(point);
             }
             Err(error) => {
                 stopped.get_or_insert(error.to_string());
@@ -271,19 +288,28 @@ fn finer_curve(
     Ok(curve)
 }
 
-/// Maximum power on a finer mesh, from the coarser mesh's point.
-fn finer_power(ladder: &mut Ladder, rung: usize, coarse: &Point) -> Result<Option<Point>, AnalysisError> {
+/// The state expected on a finer mesh at a coarser mesh's point, with the correction of another point.
+fn expected(ladder: &Ladder, rung: usize, coarse: &Point, correction: Option<&Correction>) -> State {
+    let mut guess = ladder.prolonged(rung, coarse);
+    if let Some(correction) = correction {
+        Correction::extend(correction, None, coarse.state.voltage, &mut guess.nodes);
+    }
+    guess
+}
+
+/// Maximum power on a finer mesh, from the coarser mesh's point with the rate at which its slope grows.
+fn finer_power(
+    ladder: &mut Ladder,
+    rung: usize,
+    coarse: &Point,
+    guess: &State,
+    bending: f64,
+) -> Result<Option<Point>, AnalysisError> {
     let drive = ladder.rungs[rung].problem.drive(coarse.voltage);
-    let mut here = ladder.finer(rung, coarse, drive)?;
-    // A second point a little way off gives the curvature.
+    let mut here = ladder.solve_from(rung, guess, drive, coarse.voltage)?;
     let tolerances = ladder.tolerances;
-    let aim = coarse.voltage * 0.995;
-    let mut other = match ladder.rungs[rung].problem.advance(None, &here, aim, &tolerances) {
-        Ok(point) => point,
-        Err(_) => return Ok(None),
-    };
     for _ in 0..20 {
-        let step = power_step(&here, &other);
+        let step = power_step(&here, bending);
         if !step.is_finite() {
             return Ok(None);
         }
@@ -291,8 +317,8 @@ fn finer_power(ladder: &mut Ladder, rung: usize, coarse: &Point) -> Result<Optio
             return Ok(Some(here));
         }
         let aim = here.voltage + step.clamp(-SCAN, SCAN);
-        match ladder.rungs[rung].problem.advance(Some(&other), &here, aim, &tolerances) {
-            Ok(point) => other = std::mem::replace(&mut here, point),
+        match ladder.rungs[rung].problem.advance(None, &here, aim, &tolerances) {
+            Ok(point) => here = point,
             Err(_) => return Ok(None),
         }
     }

@@ -1,9 +1,12 @@
 //! A device under a light on nested meshes: what every analysis climbs.
 
+use std::sync::Arc;
+
 use crate::device::Device;
 use crate::discretise::Coefficients;
 use crate::mesh::{Grading, Mesh};
 use crate::optics::{Illumination, Light, LitStack, OpticsError};
+use crate::solve::continuation::{hermite_weights, usable};
 use crate::solve::{Drive, Point, Problem, SolveError, State, Tolerances, Work};
 
 use super::results::Warning;
@@ -70,7 +73,7 @@ pub fn check_voltage(voltage: f64) -> Result<f64, AnalysisError> {
 /// One rung: a mesh, the light on it, the equations.
 pub(crate) struct Rung {
     pub mesh: Mesh,
-    pub illumination: Illumination<f64>,
+    pub illumination: Arc<Illumination<f64>>,
     pub problem: Problem,
 }
 
@@ -78,6 +81,8 @@ pub(crate) struct Rung {
 pub(crate) struct Ladder<'a> {
     pub device: &'a Device,
     pub lit: LitStack<'a, f64, Device>,
+    /// The key under which what the light does is remembered, if it can be.
+    light: Option<Arc<Vec<u64>>>,
     pub rungs: Vec<Rung>,
     pub tolerances: Tolerances,
     pub grading: Grading,
@@ -92,6 +97,7 @@ impl<'a> Ladder<'a> {
         let lit = LitStack::new(device.stack(), device, light)?;
         let mut ladder = Ladder {
             device,
+            light: lit.key(),
             lit,
             rungs: Vec::new(),
             tolerances: Tolerances::default(),
@@ -107,7 +113,7 @@ impl<'a> Ladder<'a> {
     pub fn refine(&mut self) -> Result<(), AnalysisError> {
         let mesh = Mesh::new(self.device, &self.grading, self.rungs.len() as u32);
         let coefficients = Coefficients::new(self.device, &mesh);
-        let illumination = self.lit.illuminate(&layer_positions(&coefficients))?;
+        let illumination = self.lit.illuminate_known(self.light.as_ref(), &layer_positions(&coefficients))?;
         let circuit = &self.device.stack().circuit;
         let problem = Problem::new(
             coefficients,
@@ -190,21 +196,29 @@ impl<'a> Ladder<'a> {
 
     /// A state of the mesh before, interpolated to this one.
     pub fn prolonged(&self, rung: usize, coarse: &Point) -> State {
+        let nodes = self.interpolated(rung, &coarse.state.nodes);
+        let remainders = vec![[0.0; 2]; nodes.len()];
+        State { nodes, remainders, voltage: coarse.state.voltage, light: coarse.state.light }
+    }
+
+    /// Values at the nodes of the mesh before, interpolated to this one.
+    pub fn interpolated(&self, rung: usize, coarse: &[[f64; 3]]) -> Vec<[f64; 3]> {
         let c = &self.rungs[rung].problem.coefficients;
-        let fine_first: Vec<usize> = c.first.iter().enumerate().map(|(l, e)| e - l.min(c.layers())).collect();
         let mut nodes = vec![[0.0; 3]; c.nodes()];
         let mut base = 0;
         for layer in 0..c.layers() {
+            let first = c.first[layer] - layer;
             let cells = (c.first[layer + 1] - c.first[layer] - 1) / 2;
-            let from = &coarse.state.nodes[base..=base + cells];
-            let to = &mut nodes[fine_first[layer]..=fine_first[layer] + 2 * cells];
+            let from = &coarse[base..=base + cells];
+            let to = &mut nodes[first..=first + 2 * cells];
             for j in 0..=cells {
                 to[2 * j] = from[j];
             }
             for j in 0..cells {
                 // Cubic through the four nearest nodes of the layer, which are equally spaced in the map's coordinate.
-                to[2 * j + 1] = std::array::from_fn(|k| {
-                    if cells < 3 {
+                let to = &mut to[2 * j + 1];
+                for (k, to) in to.iter_mut().enumerate() {
+                    *to = if cells < 3 {
                         0.5 * (from[j][k] + from[j + 1][k])
                     } else if j == 0 {
                         (5.0 * from[0][k] + 15.0 * from[1][k] - 5.0 * from[2][k] + from[3][k]) / 16.0
@@ -214,13 +228,12 @@ impl<'a> Ladder<'a> {
                             / 16.0
                     } else {
                         (9.0 * (from[j][k] + from[j + 1][k]) - from[j - 1][k] - from[j + 2][k]) / 16.0
-                    }
-                });
+                    };
+                }
             }
             base += cells;
         }
-        let remainders = vec![[0.0; 2]; nodes.len()];
-        State { nodes, remainders, voltage: coarse.state.voltage, light: coarse.state.light }
+        nodes
     }
 
     /// Warnings that hold whatever the bias: of the device, and light outside the tables.
@@ -257,6 +270,61 @@ impl<'a> Ladder<'a> {
             });
         }
         warnings
+    }
+}
+
+/// What a finer mesh's solution adds to the interpolated one of the mesh before it, at one point of a curve.
+pub(crate) struct Correction {
+    voltage: f64,
+    value: Vec<[f64; 3]>,
+    /// Derivative by the voltage across the device, per V.
+    slope: Vec<[f64; 3]>,
+}
+
+/// Most that a correction is extrapolated to differ from the one before, kT/q.
+const MOST_CHANGE: f64 = 1.0;
+/// How far a correction is followed along its slope, V.
+const ALONG_SLOPE: f64 = 0.1;
+
+impl Correction {
+    /// The correction at a point that both meshes have solved: `interpolated` is the coarser one's state on the finer mesh.
+    pub fn new(
+        ladder: &Ladder,
+        rung: usize,
+        coarse: &Point,
+        interpolated: &[[f64; 3]],
+        fine: &Point,
+    ) -> Self {
+        let tangent: Vec<[f64; 3]> = coarse.tangent.iter().map(|t| [t.x, t.y, t.z]).collect();
+        let mut slope = ladder.interpolated(rung, &tangent);
+        for (slope, own) in slope.iter_mut().zip(&fine.tangent) {
+            *slope = [own.x - slope[0], own.y - slope[1], own.z - slope[2]];
+        }
+        let difference = |(a, b): (&[f64; 3], &[f64; 3])| [a[0] - b[0], a[1] - b[1], a[2] - b[2]];
+        let value = fine.state.nodes.iter().zip(interpolated).map(difference).collect();
+        Correction { voltage: coarse.state.voltage, value, slope }
+    }
+
+    /// Adds to interpolated values at another voltage the correction expected there: the cubic through the last two and their
+    /// slopes where it reaches so far, otherwise the last one, near by along its slope.
+    pub fn extend(last: &Self, before: Option<&Self>, voltage: f64, nodes: &mut [[f64; 3]]) {
+        let before = before.filter(|b| usable(b.voltage, last.voltage, voltage));
+        let weights = match before {
+            Some(b) => hermite_weights(b.voltage, last.voltage, voltage),
+            None if (voltage - last.voltage).abs() <= ALONG_SLOPE => [0.0, 1.0, 0.0, voltage - last.voltage],
+            None => [0.0, 1.0, 0.0, 0.0],
+        };
+        let earlier = before.unwrap_or(last);
+        for (i, x) in nodes.iter_mut().enumerate() {
+            for (k, x) in x.iter_mut().enumerate() {
+                let value = last.value[i][k];
+                let expected = weights[0] * earlier.value[i][k]
+                    + weights[1] * value
+                    + weights[2] * earlier.slope[i][k]
+                    + weights[3] * last.slope[i][k];
+                *x += value + (expected - value).clamp(-MOST_CHANGE, MOST_CHANGE);
+            }
+        }
     }
 }
 

@@ -9,7 +9,7 @@ use crate::math::lanes::Width;
 use super::coefficients::Coefficients;
 use super::columns::Columns;
 use super::contact::{Carrier, sloped_surface_flux};
-use super::kernels::{Condition, Work};
+use super::kernels::{Condition, Results, Work};
 
 /// The linearised discrete equations at a state.
 #[derive(Clone, Debug)]
@@ -35,6 +35,125 @@ pub struct System {
     work: Work,
     /// How many neighbours the kernels take at a time; every width gives the same bits.
     pub width: Width,
+}
+
+/// What one side of a node brings to its rows besides fluxes: charge and net recombination.
+#[derive(Clone, Copy, Default)]
+struct Source {
+    residual: Triple,
+    block: Block,
+    net: f64,
+    gradient: Triple,
+}
+
+impl Source {
+    #[inline(always)]
+    fn of(results: &Results<'_>, e: usize) -> Self {
+        let ([charge, by_psi, by_n, by_p], [net, net_by_psi, net_by_n, net_by_p]) =
+            (results.charge, results.net);
+        let gradient = Triple::new(net_by_psi[e], net_by_n[e], net_by_p[e]);
+        let block = Block::new(
+            by_psi[e],
+            by_n[e],
+            by_p[e],
+            -gradient.x,
+            -gradient.y,
+            -gradient.z,
+            gradient.x,
+            gradient.y,
+            gradient.z,
+        );
+        Source { residual: Triple::new(charge[e], -net[e], net[e]), block, net: net[e], gradient }
+    }
+    fn and(&self, other: &Source) -> Self {
+        Source {
+            residual: self.residual + other.residual,
+            block: self.block + other.block,
+            net: self.net + other.net,
+            gradient: self.gradient + other.gradient,
+        }
+    }
+}
+
+/// Derivatives of a cell's two carrier fluxes by the potential and their levels at one of its ends.
+#[derive(Clone, Copy, Default)]
+struct End {
+    psi: f64,
+    phi: f64,
+    hole_psi: f64,
+    hole_phi: f64,
+}
+
+/// A cell's fluxes with their derivatives.
+#[derive(Clone, Copy, Default)]
+struct CellRows {
+    /// Displacement, electrons, holes.
+    flux: Triple,
+    /// The displacement's derivative by the potential at the right end.
+    displacement: f64,
+    left: End,
+    right: End,
+}
+
+impl CellRows {
+    #[inline(always)]
+    fn of(results: &Results<'_>, displacements: &[f64], cell: usize) -> Self {
+        let [[electrons, left_psi, left_phi, right_psi, right_phi], holes] = results.carriers;
+        let [holes, hole_left_psi, hole_left_phi, hole_right_psi, hole_right_phi] = holes;
+        CellRows {
+            flux: Triple::new(results.displacement[cell], electrons[cell], holes[cell]),
+            displacement: displacements[cell],
+            left: End {
+                psi: left_psi[cell],
+                phi: left_phi[cell],
+                hole_psi: hole_left_psi[cell],
+                hole_phi: hole_left_phi[cell],
+            },
+            right: End {
+                psi: right_psi[cell],
+                phi: right_phi[cell],
+                hole_psi: hole_right_psi[cell],
+                hole_phi: hole_right_phi[cell],
+            },
+        }
+    }
+}
+
+impl End {
+    /// The coupling to a neighbour through the cell.
+    #[inline(always)]
+    fn coupling(&self, displacement: f64, sign: f64) -> Block {
+        let z = 0.0;
+        Block::new(
+            displacement,
+            z,
+            z,
+            sign * self.psi,
+            sign * self.phi,
+            z,
+            sign * self.hole_psi,
+            z,
+            sign * self.hole_phi,
+        )
+    }
+    /// Adds the fluxes through the cell to the right to a node's own block.
+    #[inline(always)]
+    fn give(&self, own: &mut Block, displacement: f64) {
+        own.m11 -= displacement;
+        own.m21 += self.psi;
+        own.m22 += self.phi;
+        own.m31 += self.hole_psi;
+        own.m33 += self.hole_phi;
+    }
+    /// Takes the fluxes through the cell to the left from a node's own block.
+    #[inline(always)]
+    fn take(&self, own: &mut Block, displacement: f64) {
+        own.m11 -= displacement;
+        own.m21 -= self.psi;
+        own.m22 -= self.phi;
+        own.m31 -= self.hole_psi;
+        own.m33 -= self.hole_phi;
+    }
 }
 
 /// Replaces a node's row by `unknown = value`.
@@ -67,81 +186,51 @@ impl System {
         }
     }
 
-    /// Charge and recombination of every node: sets residual, column sums, net recombination and its gradient.
-    fn sources(&mut self, c: &Coefficients<f64>) {
-        let w = &self.work;
-        let sums = &mut self.jacobian.sums;
+    /// Puts sources and fluxes together into the rows of every node, contacts included as if they were none.
+    fn rows(&mut self, c: &Coefficients<f64>) {
+        let n = c.nodes();
+        let System { residual, jacobian, columns, work, net, net_gradient, electron_flux, hole_flux, .. } =
+            self;
+        let BlockTridiagonal { lower, diagonal, upper, sums } = jacobian;
+        // A caller that eliminates by rows has taken the sums away.
+        sums.resize(n, Block::zeros());
+        let entries = columns.entries();
+        let results = work.results();
+        let displacements = &columns.displacement[..entries];
+        // What the front side of an interface node brings, and the cell to the left of the node in hand.
+        let (mut front, mut left) = (Source::default(), CellRows::default());
         for layer in 0..c.layers() {
-            let entries = c.first[layer]..c.first[layer + 1];
-            for e in entries.clone() {
-                let i = e - layer;
-                let gradient = Triple::new(w.net_by[0][e], w.net_by[1][e], w.net_by[2][e]);
-                let residual = Triple::new(w.charge[e], -w.net[e], w.net[e]);
-                let sum = Block::new(
-                    w.charge_by[0][e],
-                    w.charge_by[1][e],
-                    w.charge_by[2][e],
-                    -gradient.x,
-                    -gradient.y,
-                    -gradient.z,
-                    gradient.x,
-                    gradient.y,
-                    gradient.z,
-                );
+            let (first, end) = (c.first[layer], c.first[layer + 1].min(entries));
+            for e in first..end {
+                let (mut own, i) = (Source::of(&results, e), e - layer);
                 // The first entry of a later layer shares its node with the last entry of the layer before.
-                if e > entries.start || layer == 0 {
-                    self.residual[i] = residual;
-                    sums[i] = sum;
-                    self.net[i] = w.net[e];
-                    self.net_gradient[i] = gradient;
-                } else {
-                    self.residual[i] += residual;
-                    sums[i] += sum;
-                    self.net[i] += w.net[e];
-                    self.net_gradient[i] += gradient;
+                if e == first && layer > 0 {
+                    own = front.and(&own);
                 }
+                if e + 1 == end && i + 1 < n {
+                    front = own;
+                    continue;
+                }
+                net[i] = own.net;
+                net_gradient[i] = own.gradient;
+                sums[i] = own.block;
+                if i > 0 {
+                    lower[i] = left.left.coupling(left.displacement, -1.0);
+                    left.right.take(&mut own.block, left.displacement);
+                    own.residual -= left.flux;
+                }
+                if i + 1 < n {
+                    left = CellRows::of(&results, displacements, e);
+                    upper[i] = left.right.coupling(left.displacement, 1.0);
+                    left.left.give(&mut own.block, left.displacement);
+                    own.residual += left.flux;
+                    electron_flux[i] = left.flux.y;
+                    hole_flux[i] = left.flux.z;
+                }
+                diagonal[i] = own.block;
+                residual[i] = own.residual;
             }
         }
-    }
-
-    /// Displacement and carrier fluxes of every cell: sets the couplings, adds to the residual and makes the diagonal.
-    fn fluxes(&mut self, c: &Coefficients<f64>) {
-        let System { residual, jacobian, columns, work, electron_flux, hole_flux, .. } = self;
-        let (electrons, holes) = (&work.electrons, &work.holes);
-        let mut own = jacobian.sums[0];
-        for layer in 0..c.layers() {
-            for left in c.first[layer]..c.first[layer + 1] - 1 {
-                let k = left - layer;
-                let e = columns.displacement[left];
-                let (left_psi, left_phi) = (electrons.left_psi[left], electrons.left_phi[left]);
-                let (right_psi, right_phi) = (electrons.right_psi[left], electrons.right_phi[left]);
-                let (hole_left_psi, hole_left_phi) = (holes.left_psi[left], holes.left_phi[left]);
-                let (hole_right_psi, hole_right_phi) = (holes.right_psi[left], holes.right_phi[left]);
-                let z = 0.0;
-                jacobian.upper[k] =
-                    Block::new(e, z, z, right_psi, right_phi, z, hole_right_psi, z, hole_right_phi);
-                jacobian.lower[k + 1] =
-                    Block::new(e, z, z, -left_psi, -left_phi, z, -hole_left_psi, z, -hole_left_phi);
-                own.m11 -= e;
-                own.m21 += left_psi;
-                own.m22 += left_phi;
-                own.m31 += hole_left_psi;
-                own.m33 += hole_left_phi;
-                jacobian.diagonal[k] = own;
-                own = jacobian.sums[k + 1];
-                own.m11 -= e;
-                own.m21 -= right_psi;
-                own.m22 -= right_phi;
-                own.m31 -= hole_right_psi;
-                own.m33 -= hole_right_phi;
-                let flux = Triple::new(work.displacement[left], electrons.value[left], holes.value[left]);
-                residual[k] += flux;
-                residual[k + 1] -= flux;
-                electron_flux[k] = flux.y;
-                hole_flux[k] = flux.z;
-            }
-        }
-        jacobian.diagonal[c.nodes() - 1] = own;
     }
 
     /// Evaluates residual and Jacobian at `state`, whose quasi-Fermi potentials hold `remainders` besides, with the rear contact's level at `rear` (kT/q) and the pairs
@@ -158,11 +247,22 @@ impl System {
         self.work.spread(c, state, remainders);
         let shifts = [rear * c.reference[0], rear * c.reference[1]];
         self.work.run(self.width, c, &self.columns, &Condition { shifts, generation, light });
-        // A caller that eliminates by rows has taken the sums away.
-        self.jacobian.sums.resize(c.nodes(), Block::zeros());
-        self.sources(c);
-        self.fluxes(c);
+        self.rows(c);
         self.apply_contacts(c, state, remainders, rear);
+    }
+
+    /// Charge of each node and its derivative by the potential, at potentials and flat levels of 0: `[nodes]`.
+    pub fn charges(&mut self, c: &Coefficients<f64>, psi: &[f64]) -> Vec<[f64; 2]> {
+        self.work.run_charges(self.width, c, &self.columns, psi);
+        let mut sums = vec![[0.0; 2]; c.nodes()];
+        for layer in 0..c.layers() {
+            for e in c.first[layer]..c.first[layer + 1] {
+                let sum = &mut sums[e - layer];
+                sum[0] += self.work.charge[e];
+                sum[1] += self.work.charge_by[0][e];
+            }
+        }
+        sums
     }
 
     fn apply_contacts(

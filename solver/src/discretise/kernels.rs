@@ -63,10 +63,32 @@ pub struct CellFlux {
 }
 
 impl CellFlux {
+    fn cut(&self, count: usize) -> [&[f64]; 5] {
+        [
+            &self.value[..count],
+            &self.left_psi[..count],
+            &self.left_phi[..count],
+            &self.right_psi[..count],
+            &self.right_phi[..count],
+        ]
+    }
     fn columns(&mut self) -> [&mut Vec<f64>; 5] {
         let CellFlux { value, left_psi, left_phi, right_psi, right_phi } = self;
         [value, left_psi, left_phi, right_psi, right_phi]
     }
+}
+
+/// What the kernels wrote, cut to the entries: for a loop over them without checks.
+#[derive(Clone, Copy)]
+pub struct Results<'a> {
+    /// Charge and its derivatives by psi, phi_n and phi_p.
+    pub charge: [&'a [f64]; 4],
+    /// Recombination less generation and its derivatives by psi, phi_n and phi_p.
+    pub net: [&'a [f64]; 4],
+    /// Displacement.
+    pub displacement: &'a [f64],
+    /// Electrons and holes: the flux and its derivatives by psi and phi at the left and at the right end.
+    pub carriers: [[&'a [f64]; 5]; 2],
 }
 
 /// The bias and the light of an assembly.
@@ -102,6 +124,25 @@ fn ends<L: Lanes>(column: &[f64], e: usize) -> (L, L) {
 fn rise<L: Lanes>(level: &[f64], remainder: &[f64], e: usize) -> L {
     let ((left, right), (low_left, low_right)) = (ends::<L>(level, e), ends::<L>(remainder, e));
     (right - left) + (low_right - low_left)
+}
+
+/// Calls a kernel of `Work`, generic over lanes, at a width; at the widest through its twin that is compiled for it.
+macro_rules! at_width {
+    ($width:expr, $work:ident, $over:ident, $wide:ident, ($($argument:expr),*)) => {
+        match $width {
+            #[cfg(target_arch = "x86_64")]
+            Width::Four => $work.$over::<Double<Two>>($($argument),*),
+            #[cfg(target_arch = "x86_64")]
+            Width::Eight if $width.available() => {
+                // The feature was just found on this machine, which is all that the call needs to be sound.
+                #[allow(unsafe_code)]
+                unsafe {
+                    $work.$wide($($argument),*);
+                }
+            }
+            _ => $work.$over::<f64>($($argument),*),
+        }
+    };
 }
 
 impl Work {
@@ -151,6 +192,27 @@ impl Work {
         work
     }
 
+    /// What the kernels wrote.
+    pub fn results(&self) -> Results<'_> {
+        let count = self.charge.len();
+        Results {
+            charge: [
+                &self.charge[..count],
+                &self.charge_by[0][..count],
+                &self.charge_by[1][..count],
+                &self.charge_by[2][..count],
+            ],
+            net: [
+                &self.net[..count],
+                &self.net_by[0][..count],
+                &self.net_by[1][..count],
+                &self.net_by[2][..count],
+            ],
+            displacement: &self.displacement[..count],
+            carriers: [self.electrons.cut(count), self.holes.cut(count)],
+        }
+    }
+
     /// Copies the state of the nodes to their entries.
     pub fn spread(&mut self, c: &Coefficients<f64>, state: &[[f64; 3]], remainders: &[[f64; 2]]) {
         for layer in 0..c.layers() {
@@ -168,27 +230,30 @@ impl Work {
         }
     }
 
-    /// Runs both kernels over all entries and cells at a width that the machine has.
+    /// Runs the kernels over all entries and cells at a width that the machine has.
     pub fn run(&mut self, width: Width, c: &Coefficients<f64>, columns: &Columns, at: &Condition<'_>) {
-        match width {
-            #[cfg(target_arch = "x86_64")]
-            Width::Four => self.run_over::<Double<Two>>(c, columns, at),
-            #[cfg(target_arch = "x86_64")]
-            Width::Eight if width.available() => {
-                // The feature was just found on this machine, which is all that the call needs to be sound.
-                #[allow(unsafe_code)]
-                unsafe {
-                    self.run_wide(c, columns, at);
-                }
-            }
-            _ => self.run_over::<f64>(c, columns, at),
+        at_width!(width, self, run_over, run_wide, (c, columns, at));
+    }
+
+    /// Runs the kernel of charge alone, at the potentials of the nodes and flat levels of 0.
+    pub fn run_charges(&mut self, width: Width, c: &Coefficients<f64>, columns: &Columns, psi: &[f64]) {
+        for layer in 0..c.layers() {
+            let entries = c.first[layer]..c.first[layer + 1];
+            self.psi[entries.clone()].copy_from_slice(&psi[entries.start - layer..entries.end - layer]);
         }
+        at_width!(width, self, charges_over, charges_wide, (columns));
     }
 
     #[cfg(target_arch = "x86_64")]
     #[target_feature(enable = "avx2")]
     fn run_wide(&mut self, c: &Coefficients<f64>, columns: &Columns, at: &Condition<'_>) {
         self.run_over::<Double<Four>>(c, columns, at);
+    }
+
+    #[cfg(target_arch = "x86_64")]
+    #[target_feature(enable = "avx2")]
+    fn charges_wide(&mut self, columns: &Columns) {
+        self.charges_over::<Double<Four>>(columns);
     }
 
     #[inline(always)]
@@ -215,6 +280,37 @@ impl Work {
         for e in whole..cells {
             self.cell::<f64>(columns, e);
         }
+    }
+
+    #[inline(always)]
+    fn charges_over<L: Lanes>(&mut self, columns: &Columns) {
+        let entries = columns.entries();
+        let whole = entries - entries % L::WIDTH;
+        for e in (0..whole).step_by(L::WIDTH) {
+            self.flat_charge::<L>(columns, e);
+        }
+        for e in whole..entries {
+            self.flat_charge::<f64>(columns, e);
+        }
+    }
+
+    /// Charge of the entries from `e` on at flat levels of 0.
+    #[inline(always)]
+    fn flat_charge<L: Lanes>(&mut self, columns: &Columns, e: usize) {
+        let (entry, flat) = (columns.entry::<L>(e), L::constant(0.0));
+        let side = sloped_side(columns.statistics, &entry, L::load(&self.psi, e), flat, flat);
+        let (n, p) = (side.ln_n.exp(), side.ln_p.exp());
+        self.charge::<L>(&entry, e, [n, p], [n * side.electron_slope, p * side.hole_slope]);
+    }
+
+    /// Stores the charge of the entries from `e` on with its derivatives.
+    #[inline(always)]
+    fn charge<L: Lanes>(&mut self, entry: &Entry<L>, e: usize, [n, p]: [L; 2], [slope_n, slope_p]: [L; 2]) {
+        let v = entry.volume;
+        (v * (p - n + entry.doping)).store(&mut self.charge, e);
+        (-v * (slope_p + slope_n)).store(&mut self.charge_by[0], e);
+        (v * slope_n).store(&mut self.charge_by[1], e);
+        (v * slope_p).store(&mut self.charge_by[2], e);
     }
 
     /// Carriers, charge and recombination of the entries from `e` on, with recombination at an interface besides.
@@ -259,11 +355,7 @@ impl Work {
         (-k_n - x_n - x_s).store(&mut self.net_by[1], e);
         (k_p + x_p + x_s).store(&mut self.net_by[2], e);
 
-        let v = entry.volume;
-        (v * (p - n + entry.doping)).store(&mut self.charge, e);
-        (-v * (slope_p + slope_n)).store(&mut self.charge_by[0], e);
-        (v * slope_n).store(&mut self.charge_by[1], e);
-        (v * slope_p).store(&mut self.charge_by[2], e);
+        self.charge::<L>(&entry, e, [n, p], [slope_n, slope_p]);
     }
 
     /// Fluxes through the cells to the right of the entries from `e` on.

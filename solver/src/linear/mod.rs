@@ -2,8 +2,10 @@
 
 pub mod assembled;
 pub mod block_tridiagonal;
+pub mod factors;
 
-pub use block_tridiagonal::{BlockTridiagonal, Factors, Singular};
+pub use block_tridiagonal::BlockTridiagonal;
+pub use factors::{Factors, Singular};
 
 /// A 3 x 3 block.
 pub type Block = nalgebra::Matrix3<f64>;

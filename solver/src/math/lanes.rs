@@ -239,6 +239,26 @@ parameter!([] Two);
 #[cfg(target_arch = "x86_64")]
 parameter!([] Four);
 
+/// Two numbers, one of each of two chains of operations.
+#[cfg(target_arch = "x86_64")]
+pub type Pair = Two;
+/// Two numbers, one of each of two chains of operations.
+#[cfg(not(target_arch = "x86_64"))]
+pub type Pair = Double<f64>;
+
+impl Double<f64> {
+    /// Two numbers.
+    #[inline(always)]
+    pub fn pair(first: f64, second: f64) -> Self {
+        Double(first, second)
+    }
+    /// The two numbers.
+    #[inline(always)]
+    pub fn split(self) -> [f64; 2] {
+        [self.0, self.1]
+    }
+}
+
 #[cfg(target_arch = "x86_64")]
 pub use vectors::{Four, Two};
 
@@ -414,6 +434,19 @@ mod vectors {
         #[inline(always)]
         fn select(mask: TwoMask, yes: Two, no: Two) -> Two {
             unsafe { Two(_mm_or_pd(_mm_and_pd(mask.0, yes.0), _mm_andnot_pd(mask.0, no.0))) }
+        }
+
+        impl Two {
+            /// Two numbers.
+            #[inline(always)]
+            pub fn pair(first: f64, second: f64) -> Self {
+                unsafe { Two(_mm_set_pd(second, first)) }
+            }
+            /// The two numbers.
+            #[inline(always)]
+            pub fn split(self) -> [f64; 2] {
+                self.array()
+            }
         }
 
         impl elementary::Binary for Two {

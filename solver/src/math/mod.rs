@@ -1,6 +1,7 @@
 //! Floor 0: numbers, elementary and special functions, sums. Everything above is written over these.
 
 pub mod bernoulli;
+pub(crate) mod cache;
 pub mod dual;
 pub mod elementary;
 pub mod fermi_dirac;

@@ -59,6 +59,13 @@ pub trait Num:
     /// The derivative of the given order of a piecewise polynomial at `self`, clamped to its domain.
     fn piecewise(self, table: &Piecewise, order: usize) -> Self;
 
+    /// Replaces each of many numbers by its [`Num::exp_m1`].
+    fn exp_m1_all(values: &mut [Self]) {
+        for value in values {
+            *value = value.exp_m1();
+        }
+    }
+
     /// [`Num::piecewise`] of two successive orders, with the same bits.
     #[inline(always)]
     fn piecewise_pair(self, table: &Piecewise, order: usize) -> (Self, Self) {

@@ -58,6 +58,9 @@ impl Num for f64 {
     fn piecewise(self, table: &Piecewise, order: usize) -> Self {
         table.evaluate(self, order)
     }
+    fn exp_m1_all(values: &mut [Self]) {
+        super::slices::exp_m1(values);
+    }
     #[inline(always)]
     fn piecewise_pair(self, table: &Piecewise, order: usize) -> (Self, Self) {
         table.evaluate_pair(self, order)

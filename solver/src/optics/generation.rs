@@ -296,7 +296,7 @@ impl<P: Scalar> Pass<P> {
                 Absorption::Uniform(values) => match values.get(w) {
                     Some(&alpha) if !plain::<P>() || alpha.value() != 0.0 => {
                         for (a, &h) in out.iter_mut().zip(widths) {
-                            *a = -(h * alpha).exp_m1();
+                            *a = h * alpha;
                         }
                         true
                     }
@@ -309,13 +309,19 @@ impl<P: Scalar> Pass<P> {
                             alphas.get(c).copied().unwrap_or(zero)
                         };
                         for (c, (a, &h)) in out.iter_mut().zip(widths).enumerate() {
-                            *a = -(h * alpha(c)).exp_m1();
+                            *a = h * alpha(c);
                         }
                         true
                     }
                     None => false,
                 },
             };
+            if *active {
+                P::exp_m1_all(out);
+                for a in out {
+                    *a = -*a;
+                }
+            }
         }
     }
 

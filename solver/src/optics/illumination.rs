@@ -116,16 +116,16 @@ pub struct Illumination<P> {
 pub struct LitStack<'a, P, M> {
     stack: &'a Stack<P>,
     materials: &'a M,
-    samples: Samples<P>,
-    faces: Faces<P>,
+    pub(super) samples: Samples<P>,
+    pub(super) faces: Faces<P>,
     /// Whether the tables of the lit face cover each wavelength.
-    face_covered: Vec<bool>,
-    /// Reflectance of the lit face by wavelength, 0 where the flux is what enters.
-    absorbers: Vec<Absorber<P>>,
+    pub(super) face_covered: Vec<bool>,
+    /// How each layer absorbs.
+    pub(super) absorbers: Vec<Absorber<P>>,
 }
 
 /// How a layer absorbs, as far as it is known without a mesh.
-enum Absorber<P> {
+pub(super) enum Absorber<P> {
     Inert,
     Uniform(Vec<P>, Vec<bool>),
     Graded,
@@ -231,11 +231,17 @@ impl<'a, P: Scalar, M: LayerMaterials<P>> LitStack<'a, P, M> {
         Ok((GenerationOperator::new(&layers, &self.faces), covered))
     }
 
-    /// The layers on a mesh as the light sees them, and whether each layer's table covers each wavelength.
-    fn layers(&self, nodes: &[Vec<P>]) -> Result<(Vec<OpticalLayer<P>>, Vec<Vec<bool>>), OpticsError> {
+    /// Refuses nodes that do not fit the stack.
+    pub(super) fn fits(&self, nodes: &[Vec<P>]) -> Result<(), OpticsError> {
         if nodes.len() != self.stack.layers.len() || nodes.iter().any(|n| n.len() < 2) {
             return Err(OpticsError::Nodes { layers: self.stack.layers.len(), lists: nodes.len() });
         }
+        Ok(())
+    }
+
+    /// The layers on a mesh as the light sees them, and whether each layer's table covers each wavelength.
+    fn layers(&self, nodes: &[Vec<P>]) -> Result<(Vec<OpticalLayer<P>>, Vec<Vec<bool>>), OpticsError> {
+        self.fits(nodes)?;
         let mut covered = Vec::with_capacity(nodes.len());
         let layers: Vec<OpticalLayer<P>> = nodes
             .iter()

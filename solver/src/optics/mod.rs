@@ -7,6 +7,7 @@ pub mod generation;
 pub mod illumination;
 pub mod light;
 pub mod reflectance;
+mod remembered;
 pub mod samples;
 pub mod spectra;
 

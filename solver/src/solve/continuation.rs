@@ -56,7 +56,8 @@ const MARGIN: f64 = 20.0;
 impl Problem {
     /// The dark equilibrium: Poisson's equation with flat levels (the continuity rows vanish exactly).
     pub fn equilibrium(&mut self, tolerances: &Tolerances) -> Result<Point, SolveError> {
-        let start = self.neutral_state();
+        let neutral = self.neutral_state();
+        let start = self.flat_levels(neutral);
         let patient = Tolerances { most_iterations: 400, ..*tolerances };
         self.newton(&start, Drive::Device(0.0), &patient)
             .map_err(|stalled| SolveError::new(&stalled, 0.0, "at dark equilibrium", None))
@@ -231,7 +232,7 @@ impl Problem {
 }
 
 /// A cubic extrapolates well up to about twice the interval that it was made from.
-fn usable(old: f64, here: f64, target: f64) -> bool {
+pub(crate) fn usable(old: f64, here: f64, target: f64) -> bool {
     let interval = here - old;
     interval != 0.0 && {
         let reach = (target - here) / interval;
@@ -239,13 +240,17 @@ fn usable(old: f64, here: f64, target: f64) -> bool {
     }
 }
 
+/// Weights of two values and their two slopes in the cubic Hermite polynomial through them, at `x`.
+pub(crate) fn hermite_weights(a: f64, b: f64, x: f64) -> [f64; 4] {
+    let h = b - a;
+    let s = (x - a) / h;
+    let (s2, s3) = (s * s, s * s * s);
+    [2.0 * s3 - 3.0 * s2 + 1.0, -2.0 * s3 + 3.0 * s2, (s3 - 2.0 * s2 + s) * h, (s3 - s2) * h]
+}
+
 /// The cubic Hermite polynomial through two solved points and their tangents, at a voltage across the device.
 pub fn hermite(a: &Point, b: &Point, voltage: f64) -> State {
-    let h = b.state.voltage - a.state.voltage;
-    let s = (voltage - a.state.voltage) / h;
-    let (s2, s3) = (s * s, s * s * s);
-    let (w_a, w_b) = (2.0 * s3 - 3.0 * s2 + 1.0, -2.0 * s3 + 3.0 * s2);
-    let (t_a, t_b) = ((s3 - 2.0 * s2 + s) * h, (s3 - s2) * h);
+    let [w_a, w_b, t_a, t_b] = hermite_weights(a.state.voltage, b.state.voltage, voltage);
     let nodes: Vec<[f64; 3]> = (0..a.state.nodes.len())
         .map(|i| {
             let (x, y) = (&a.state.nodes[i], &b.state.nodes[i]);

@@ -2,6 +2,7 @@
 
 pub mod continuation;
 pub mod damping;
+mod equilibrium;
 pub mod extrapolation;
 pub mod newton;
 pub mod problem;

@@ -26,7 +26,7 @@ pub struct Tolerances {
     pub update: f64,
     /// Most iterations before a step is called failed.
     pub most_iterations: usize,
-    /// Whether a point gets one more iteration after the update has become that small. Without it the state errs by the
+    /// Whether a point gets iterations until the last update leaves nothing but rounding. Without it the state errs by the
     /// square of the last update, the current (corrected by its gradient) likewise, and slopes by the update itself.
     pub polish: bool,
 }
@@ -69,8 +69,10 @@ pub struct Stalled {
     pub update: f64,
 }
 
-/// A last update this small, kT/q, leaves nothing that rounding does not.
-const SETTLED: f64 = 1e-7;
+/// A last update this small, kT/q, leaves nothing that rounding does not: about half its square, 5e-14.
+const SETTLED: f64 = 3e-7;
+/// After an update this small, kT/q, the next one may be the last.
+const NEARING: f64 = 1e-3;
 
 /// A step in time is given up where its updates are this many times the first one (or one kT/q) ...
 const LOST: f64 = 1e3;
@@ -78,7 +80,7 @@ const LOST: f64 = 1e3;
 const MOST_LOST: usize = 3;
 
 /// Most that a potential moves in one iteration, kT/q: damped updates reach it where the linear equations ask for 1100.
-const LARGEST_RISE: f64 = 8.0;
+pub(super) const LARGEST_RISE: f64 = 8.0;
 
 /// How far outside those bounds quasi-Fermi potentials may stray, kT/q.
 const OUTSIDE: f64 = 40.0;
@@ -205,27 +207,24 @@ impl Problem {
             // go on for as long as updates shrink.
             let settled = size <= SETTLED || size > 0.5 * smallest || !tolerances.polish;
             smallest = smallest.min(size);
-            if size <= tolerances.update {
-                if let (true, true, Some((tangent, device_current, device_conductance))) =
+            if size <= tolerances.update
+                && let (true, true, Some((tangent, device_current, device_conductance))) =
                     (last, settled, border)
-                {
-                    let slope = device_conductance + self.shunt_conductance;
-                    let current = device_current + self.shunt_conductance * state.voltage;
-                    return Ok(Point {
-                        device_current,
-                        device_conductance,
-                        tangent,
-                        voltage: state.voltage + self.series_resistance * current,
-                        current,
-                        conductance: slope / (1.0 + self.series_resistance * slope),
-                        last_update: size,
-                        state,
-                    });
-                }
-                polishing = true;
-            } else {
-                polishing = false;
+            {
+                let slope = device_conductance + self.shunt_conductance;
+                let current = device_current + self.shunt_conductance * state.voltage;
+                return Ok(Point {
+                    device_current,
+                    device_conductance,
+                    tangent,
+                    voltage: state.voltage + self.series_resistance * current,
+                    current,
+                    conductance: slope / (1.0 + self.series_resistance * slope),
+                    last_update: size,
+                    state,
+                });
             }
+            polishing = size <= NEARING;
         }
         Err(worst)
     }

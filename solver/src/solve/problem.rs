@@ -162,6 +162,11 @@ impl Problem {
         &self.system
     }
 
+    /// Makes assemblies take so many neighbours at a time: for measuring and comparing; the results are the same.
+    pub fn set_width(&mut self, width: crate::math::lanes::Width) {
+        self.system.width = width;
+    }
+
     /// The assembled equations of the last call.
     pub fn system(&self) -> &System {
         &self.system

@@ -10,6 +10,7 @@ mod tests;
 use std::sync::Arc;
 
 use crate::math::Scalar;
+use crate::math::cache::Cache;
 use crate::quantity::constants::{ELEMENTARY_CHARGE, LIGHT_SPEED, PLANCK};
 
 use super::material::{Material, MaterialBase, MaterialError};
@@ -87,9 +88,30 @@ pub struct Absorber<P> {
     gap: P,
     tables: Vec<Shifted<P>>,
     tail: Option<IndirectTail<P>>,
+    /// Whether the tables are the library's, which live as long as the program.
+    library: bool,
 }
 
+/// All that an absorption spectrum of library tables depends on: where the tables lie in memory, for ever, and the bits of
+/// every number.
+type SpectrumKey = (Vec<usize>, Vec<u64>);
+
+/// Spectra of a few hundred layers, of some 30 kB each.
+static SPECTRA: Cache<SpectrumKey, Vec<Absorption<f64>>> = Cache::new(256);
+
 impl<P: Scalar> Absorber<P> {
+    /// The key of this absorber's spectrum; `None` where it may not be remembered.
+    fn key(&self, wavelengths: &[f64]) -> Option<SpectrumKey> {
+        let plain = size_of::<P>() == size_of::<f64>();
+        if !plain || !self.library || self.tables.is_empty() || self.number.is_some() {
+            return None;
+        }
+        let tables = self.tables.iter().map(|t| Arc::as_ptr(&t.table).addr()).collect();
+        let tail = self.tail.iter().flat_map(|t| [t.strength, t.edge.value()]);
+        let numbers = self.tables.iter().flat_map(|t| [t.shift.value(), t.share.value()]).chain(tail);
+        Some((tables, numbers.chain(wavelengths.iter().copied()).map(f64::to_bits).collect()))
+    }
+
     /// The absorption coefficient at a vacuum wavelength, m.
     ///
     /// A single number acts at photon energies from the gap up. Outside its table a material is taken as transparent and
@@ -100,8 +122,17 @@ impl<P: Scalar> Absorber<P> {
 
     /// The same at many vacuum wavelengths, m; fastest where they increase or decrease.
     pub fn spectrum(&self, wavelengths: &[f64]) -> Vec<Absorption<P>> {
-        let mut hints = [0, 0];
-        wavelengths.iter().map(|&w| self.evaluate(w, &mut hints)).collect()
+        let evaluate = || {
+            let mut hints = [0, 0];
+            wavelengths.iter().map(move |&w| self.evaluate(w, &mut hints))
+        };
+        let Some(key) = self.key(wavelengths) else { return evaluate().collect() };
+        // Only numbers without derivatives have a key.
+        let plain = |a: Absorption<P>| Absorption { coefficient: a.coefficient.value(), covered: a.covered };
+        let known = SPECTRA.get(key, || evaluate().map(plain).collect());
+        let lift =
+            |a: &Absorption<f64>| Absorption { coefficient: P::constant(a.coefficient), covered: a.covered };
+        known.iter().map(lift).collect()
     }
 
     fn evaluate(&self, wavelength: f64, hints: &mut [usize; 2]) -> Absorption<P> {
@@ -173,7 +204,7 @@ impl<P: Scalar> Material<P> {
             }
             (None, MaterialBase::Custom(_)) => number = number.or(Some(zero)),
         }
-        Ok(Absorber { number, gap, tables, tail })
+        Ok(Absorber { number, gap, tables, tail, library: self.optical.is_none() })
     }
 
     /// The absorption coefficient at a vacuum wavelength, m; see [`Material::absorber`], which serves many wavelengths.
