@@ -188,6 +188,20 @@ impl Column {
 }
 
 impl Table {
+    /// A table that no sweep gave.
+    pub fn of_columns(name: &str, rows: usize, columns: Vec<Column>) -> Table {
+        Table {
+            name: name.to_string(),
+            points: Vec::new(),
+            rows,
+            columns,
+            coordinates: 0,
+            plan: None,
+            failures: Arc::default(),
+            extent: Extent::Whole,
+        }
+    }
+
     /// The column of this name.
     ///
     /// # Errors

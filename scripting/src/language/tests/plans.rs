@@ -377,6 +377,8 @@ fn what_is_no_plan_is_refused() {
     fails("grid(#{ x: [1, 2] }).sizes; // ~ E105");
     fails("grid(#{ x: [1, 2] }).run(\"a\", 5); // ~ E107");
     fails("grid(#{ x: [1, 2] }).run(\" \", |p| p.x); // ~ E122");
+    fails("table([#{ a: 1 }, #{ b: 1 }]); // ~ E107");
+    fails("table(3); // ~ E107");
     fails("let t = grid(#{ x: [1, 2] }).run(\"a\", || 1); // ~ E330");
     fails("let t = grid(#{ x: [1, 2] }).run(\"a\", |p| #{ x: 3 }); // ~ E330");
     fails("let t = grid(#{ x: [1, 2] }).run(\"a\", |p| #{ y: [1] }); // ~ E330");

@@ -11,8 +11,8 @@ use crate::language::quantity::Quantity;
 use crate::language::sweep;
 use crate::language::table::fit::{Estimate, fit};
 use crate::language::table::{Column, Extent, Numbers, Table, TableValue, statistics};
-use crate::language::value::{Unknown, any_quantity, described, quantity, take, text};
-use crate::language::vocabulary::{Call, caller, topic};
+use crate::language::value::{Unknown, any_quantity, array, described, map, quantity, take, text};
+use crate::language::vocabulary::{Answer, Call, caller, function, topic};
 
 use super::plans::closure;
 
@@ -22,6 +22,12 @@ topic! {
      in `failures` and count in no statistics. Numbers keep their units and numerical errors. `print(table)` shows its first rows, \
      and `store(\"name\", table)` keeps a table that was filtered, grouped or otherwise derived (a sweep's own is kept anyway).";
 
+    Function "table" {
+        forms: ["table([#{ name: value, .. }, ..])"],
+        doc: "A table of rows that the script made itself, maps with the same names; `()` where a row has no value.",
+        example: "let yields = table([#{ lot: \"A\", share: 91.percent }, #{ lot: \"B\", share: 87.percent }]);\nprint(yields.best(\"share\").lot);",
+        register: |engine, session| function(engine, session, "table", 1..=1, |_, arguments| made(arguments[0])),
+    }
     Property "len" of "table" {
         forms: ["table.len", "table.len()"],
         doc: "How many rows it has: points that failed are not among them.",
@@ -184,6 +190,35 @@ topic! {
         example: "let hill = grid(#{ x: linear(0, 1, 11) }).run(\"hill\", |p| #{ height: p.x * (1 - p.x) });\nprint(hill.fit(\"x\", \"height\", \"parabola\").extremum_at);",
         register: |engine, session| caller::<TableValue>(engine, session, "fit", 3..=3, |call, a| of(call, a, fitted)),
     }
+}
+
+/// A table of the rows of an array.
+fn made(given: &Dynamic) -> Answer {
+    let rows = array(given, "the rows of a table").map_err(|f| f.at(Place::Argument(0)))?;
+    let mut columns: Vec<(ImmutableString, Vec<Dynamic>)> = Vec::new();
+    for (index, row) in rows.iter().enumerate() {
+        let row = map(row, &format!("row {index} of the table")).map_err(|f| f.at(Place::Argument(0)))?;
+        let known = |name: &str| columns.iter().any(|(column, _)| column == name);
+        let strange = row.keys().find(|name| index > 0 && !known(name.as_str()));
+        let missing = columns.iter().find(|(name, _)| !row.contains_key(name.as_str()));
+        if let Some(name) = strange.map(|name| name.as_str()).or(missing.map(|(name, _)| name.as_str())) {
+            return Err(Fault::new(
+                codes::WRONG_KIND,
+                format!("row {index} of the table has other names than the first: `{name}`"),
+            )
+            .at(Place::Argument(0))
+            .into());
+        }
+        for (name, value) in row {
+            match columns.iter_mut().find(|(column, _)| column == name.as_str()) {
+                Some((_, values)) => values.push(value.flatten()),
+                None => columns.push((name.as_str().into(), vec![value.flatten()])),
+            }
+        }
+    }
+    let columns: Result<Vec<Column>, Fault> =
+        columns.into_iter().map(|(name, values)| Column::of_values(name, values)).collect();
+    Ok(give(Table::of_columns("table", rows.len(), columns.map_err(|f| f.at(Place::Argument(0)))?)))
 }
 
 /// What is asked of a table: its receiver and the arguments, the table itself being the first.
@@ -416,16 +451,8 @@ fn group(call: &Call, table: &Table, arguments: &[&mut Dynamic]) -> Outcome<Dyna
         values.resize(rows, Dynamic::UNIT);
         columns.push(Column::of_values(key, values).map_err(|f| f.at(Place::Argument(1)))?);
     }
-    Ok(give(Table {
-        name: table.name.clone(),
-        points: Vec::new(),
-        rows,
-        columns,
-        coordinates: 1,
-        plan: None,
-        failures: Arc::default(),
-        extent: table.extent,
-    }))
+    let grouped = Table::of_columns(&table.name, rows, columns);
+    Ok(give(Table { coordinates: 1, extent: table.extent, ..grouped }))
 }
 
 fn pivot(call: &Call, table: &Table, arguments: &[&mut Dynamic]) -> Outcome<Dynamic> {
