@@ -1,10 +1,10 @@
-//! What a sweep costs beside its solutions: the script of a point, plans, tables, threads.
+//! What a sweep costs beside its solutions: the script of a point, plans, tables, threads. Least times of a few runs, and
+//! ratios of times of one run, which load changes least.
 
 use std::collections::BTreeMap;
 use std::hint::black_box;
 use std::time::{Duration, Instant};
 
-use criterion::{Criterion, criterion_group, criterion_main};
 use epiloom::archive::{Point, Snapshot, SweepStart};
 use epiloom::diagnostics::Diagnostic;
 use epiloom::language::{DataFile, InputRecord, RunOptions, Script, Sink, run};
@@ -80,45 +80,48 @@ fn least(runs: usize, mut f: impl FnMut()) -> Duration {
     (0..runs).map(|_| once(&mut f)).min().unwrap_or_default()
 }
 
-/// Shares and ratios from one run, where load changes least.
-fn ratios(_: &mut Criterion) {
+/// Prints a least time.
+fn timed(name: &str, text: &str, threads: usize) {
+    println!("{:>10.2?}  {name}", least(5, || script(text, threads)));
+}
+
+/// The script's share of a point, and what a second thread brings.
+fn ratios() {
     let empty = least(5, || script(CELL, 1));
     let unsolved = least(5, || script(&sweep(4000, UNSOLVED), 1)).saturating_sub(empty) / 4000;
     let one = least(3, || script(&sweep(60, SOLVED), 1)).saturating_sub(empty) / 60;
     let two = least(3, || script(&sweep(60, SOLVED), 2)).saturating_sub(empty) / 60;
-    println!("point that solves nothing: {unsolved:.2?}; with figures of merit: {one:.2?}");
-    println!("share of the script in a point: {:.3} %", 100.0 * unsolved.as_secs_f64() / one.as_secs_f64());
-    println!("two threads over one: {:.2}", one.as_secs_f64() / two.as_secs_f64());
+    println!("{unsolved:>10.2?}  a point that edits the cell and solves nothing");
+    println!("{one:>10.2?}  a point with figures of merit");
+    println!("{:>8.3} %  the script's share of a point", 100.0 * unsolved.as_secs_f64() / one.as_secs_f64());
+    println!("{:>10.2}  two threads over one", one.as_secs_f64() / two.as_secs_f64());
 }
 
-fn plans(criterion: &mut Criterion) {
+fn plans() {
     let points = |plan: &str| format!("let plan = {plan};\nfor k in range(0, 10000) {{ plan.point(k); }}");
     let grid = points("grid(#{ a: linear(0, 1, 100), b: linear(0, 1, 100), c: linear(0, 1, 100) })");
-    criterion.bench_function("10,000 points of a grid", |b| b.iter(|| script(&grid, 1)));
+    timed("10,000 points of a grid, asked for by a script", &grid, 1);
     for filling in ["random", "latin_hypercube", "low_discrepancy"] {
-        let text =
-            points(&format!("{filling}(#{{ a: normal(1, 2), b: uniform(1, 2), c: normal(1, 3) }}, 10000)"));
-        criterion.bench_function(format!("10,000 points, {filling}"), |b| b.iter(|| script(&text, 1)));
+        let plan = format!("{filling}(#{{ a: normal(1, 2), b: uniform(1, 2), c: normal(1, 3) }}, 10000)");
+        timed(&format!("the same, {filling}"), &points(&plan), 1);
     }
 }
 
-fn tables(criterion: &mut Criterion) {
+fn tables() {
     const MADE: &str = "let t = grid(#{ a: range(0, 100), b: range(0, 1000) }).run(\"t\", |p| #{ c: p.a * p.b, d: p.a + p.b });\n";
     for (name, rest) in [
-        ("a sweep of 100,000 points that solves nothing", ""),
+        ("a sweep of 100,000 points that solves nothing, two threads", ""),
         ("the same and ten statistics", "for i in range(0, 10) { t.statistics(\"c\"); }"),
         ("the same and a filter by a closure", "t.filter(|r| r.c > 5000);"),
         ("the same and a sort", "t.sort(\"c\");"),
         ("the same, grouped", "t.group(\"a\", |part| #{ m: part.mean(\"c\") });"),
     ] {
-        let text = format!("{MADE}{rest}");
-        criterion.bench_function(name, |b| b.iter(|| script(&text, 2)));
+        timed(name, &format!("{MADE}{rest}"), 2);
     }
 }
 
-criterion_group! {
-    name = sweeps;
-    config = Criterion::default().sample_size(10).warm_up_time(Duration::from_millis(500)).measurement_time(Duration::from_secs(3));
-    targets = ratios, plans, tables
+fn main() {
+    ratios();
+    plans();
+    tables();
 }
-criterion_main!(sweeps);
