@@ -143,7 +143,8 @@ fn address(inner: &Dynamic) -> usize {
     std::ptr::from_ref(inner) as usize
 }
 
-fn in_use() -> Fault {
-    Fault::new(codes::WRONG_KIND, "the closure captures the variable that it is given to")
-        .help("use a copy inside the closure: `let all = plan;` above, and `all` in it")
+/// The fault of a closure that captures the variable whose method it is given to: the engine holds it during the call.
+pub fn in_use() -> Fault {
+    Fault::new(codes::WRONG_KIND, "a closure uses the variable whose method it is given to")
+        .help("take a copy above, `let all = map;`, and use that: map.filter(|r| r.voc > all.mean(\"voc\"))")
 }

@@ -60,7 +60,7 @@ pub(super) fn constants() -> impl Iterator<Item = (String, Dynamic)> {
 
 /// Functions whose names scripts may use for variables of their own: such a variable hides nothing, since functions are
 /// called with brackets.
-const COMMON_NOUNS: &[&str] = &["grid", "list", "zip", "random", "normal", "uniform", "triangular"];
+const COMMON_NOUNS: &[&str] = &["grid", "list", "zip", "random", "normal", "uniform", "triangular", "table"];
 
 /// Words that a script cannot define as variables.
 fn reserved_names() -> Vec<&'static str> {

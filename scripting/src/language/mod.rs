@@ -87,7 +87,10 @@ pub fn run(script: &Script, options: RunOptions, sink: &mut dyn Sink) -> RunOutc
         };
         listen(&receiver, sink);
         outcome.errors = match thread.join() {
-            Ok(errors) => errors,
+            Ok((errors, waits_for)) => {
+                outcome.waits_for = waits_for;
+                errors
+            }
             Err(panic) => vec![internal(panic_words(&*panic))],
         };
     });
@@ -97,30 +100,35 @@ pub fn run(script: &Script, options: RunOptions, sink: &mut dyn Sink) -> RunOutc
     errors.sort_by_key(|d| d.span());
     outcome.errors = errors;
     outcome.warnings = std::mem::take(&mut state.warnings);
-    outcome.waits_for = state.waits_for.take();
     outcome.interrupted = outcome.errors.iter().any(|e| e.code == codes::INTERRUPTED);
     outcome.stored = session.stored.load(std::sync::atomic::Ordering::Relaxed) as usize;
     outcome
 }
 
-/// Reads and runs the script of a session.
-fn evaluate(session: &std::sync::Arc<Session>) -> Vec<Diagnostic> {
+/// Reads and runs the script of a session: its errors, and the sweep whose table it waits for where it ended well.
+fn evaluate(session: &std::sync::Arc<Session>) -> (Vec<Diagnostic>, Option<String>) {
     point::allow(session.options.limits.operations);
     let mut engine = engine::build(session);
     let ast = match engine::compile(&mut engine, &session.source.text) {
         Ok(ast) => ast,
-        Err(error) => return vec![report::parse_diagnostic(session, &error)],
+        Err(error) => return (vec![report::parse_diagnostic(session, &error)], None),
     };
     let redefined = engine::redefined(&session.source.text, &ast);
     if !redefined.is_empty() {
-        return redefined;
+        return (redefined, None);
     }
     if let Some(strange) = strange_inputs(session) {
-        return strange;
+        return (strange, None);
     }
     match engine::run(&engine, &ast, session) {
-        Ok(()) => unknown_inputs(session, &declared_inputs(session)),
-        Err(error) => report::diagnostics(session, &error),
+        Ok(()) => (unknown_inputs(session, &declared_inputs(session)), None),
+        Err(error) => {
+            let waits_for = match report::stop(&error) {
+                Some(sandbox::Stop::Share(sweep)) => Some(sweep),
+                _ => None,
+            };
+            (report::diagnostics(session, &error), waits_for)
+        }
     }
 }
 

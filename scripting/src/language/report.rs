@@ -79,7 +79,10 @@ fn faults(session: &Arc<Session>, error: &EvalAltResult) -> Vec<(Fault, Position
             None => one(Fault::new(codes::THROWN, thrown(value))),
         },
         EvalAltResult::ErrorTerminated(value, _)
-            if matches!(value.clone().try_cast::<Stop>(), Some(Stop::Fault | Stop::Share | Stop::Halted)) =>
+            if matches!(
+                value.clone().try_cast::<Stop>(),
+                Some(Stop::Fault | Stop::Share(_) | Stop::Halted)
+            ) =>
         {
             Vec::new()
         }
@@ -125,6 +128,9 @@ fn faults(session: &Arc<Session>, error: &EvalAltResult) -> Vec<(Fault, Position
         EvalAltResult::ErrorFor(_) => {
             one(Fault::new(codes::WRONG_KIND, "`for` goes through an array, a range or a text")
                 .help("for t in [20.nm, 30.nm] { .. }"))
+        }
+        EvalAltResult::ErrorDataRace(name, _) if name.starts_with("argument") => {
+            one(super::captured::in_use())
         }
         EvalAltResult::ErrorDataRace(name, _) => one(Fault::new(
             codes::WRONG_KIND,

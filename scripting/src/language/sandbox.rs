@@ -23,8 +23,8 @@ pub(super) enum Stop {
     Operations,
     /// Another point of the sweep has stopped the script.
     Halted,
-    /// It reads a table of which this run has a share only.
-    Share,
+    /// It reads the table of this sweep, of which this run has a share only.
+    Share(String),
 }
 
 /// Operations between two looks at the memory in use.

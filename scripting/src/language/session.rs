@@ -220,7 +220,6 @@ pub(super) struct State {
     pub faults: Vec<Diagnostic>,
     pub warnings: Vec<Diagnostic>,
     pub step: u64,
-    pub waits_for: Option<String>,
 }
 
 /// One run of one script, as its functions see it.

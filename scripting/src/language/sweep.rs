@@ -534,9 +534,3 @@ fn reason(session: &Session, faults: &[Diagnostic]) -> String {
         .collect();
     if words.is_empty() { "the script ended the point".to_string() } else { words.join("\n") }
 }
-
-/// Ends the script where it reads a table of which this run has a share only.
-pub fn wait_for(session: &Session, table: &Table, position: rhai::Position) -> Stopped {
-    session.state().waits_for = Some(table.name.clone());
-    report::stopped(Stop::Share, position)
-}

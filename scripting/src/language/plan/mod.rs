@@ -213,6 +213,9 @@ impl Plan {
     }
 
     /// The points for which the closure holds; indices stay those of the whole.
+    ///
+    /// # Errors
+    /// What the closure captures cannot be copied.
     pub fn filtered(whole: &Arc<Plan>, closure: &FnPtr) -> Result<Plan, Fault> {
         Ok(Plan {
             coordinates: whole.coordinates.clone(),

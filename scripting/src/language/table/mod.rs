@@ -3,17 +3,19 @@
 use std::collections::BTreeMap;
 use std::sync::Arc;
 
-use rhai::{Dynamic, ImmutableString, Map};
+use rhai::{Array, Dynamic, EvalAltResult, ImmutableString, Map, Position};
 
 use crate::archive::{Cell, Point, Status};
 use crate::diagnostics::codes;
 
 use super::cells::of_unit;
 use super::dimension::Dimension;
-use super::fault::Fault;
+use super::fault::{Fault, Outcome};
 use super::plan::Plan;
 use super::quantity::Quantity;
+use super::sandbox::Stop;
 use super::units::Unit;
+use super::value::{Unknown, any_quantity};
 
 pub mod builder;
 pub mod fit;
@@ -188,6 +190,25 @@ impl Column {
 }
 
 impl Table {
+    /// A table that no sweep gave.
+    pub fn of_columns(name: &str, rows: usize, columns: Vec<Column>) -> Table {
+        Table {
+            name: name.to_string(),
+            points: Vec::new(),
+            rows,
+            columns,
+            coordinates: 0,
+            plan: None,
+            failures: Arc::default(),
+            extent: Extent::Whole,
+        }
+    }
+
+    /// What ends the script, well, where it reads this table, of which the run has a share only.
+    pub fn waited_for(&self, position: Position) -> Box<EvalAltResult> {
+        super::report::stopped(Stop::Share(self.name.clone()), position)
+    }
+
     /// The column of this name.
     ///
     /// # Errors
@@ -304,6 +325,37 @@ impl Table {
             (a, b) => a.is_none().cmp(&b.is_none()),
         });
         Ok(rows)
+    }
+}
+
+/// The value with all numbers unknown.
+pub fn veiled(value: Dynamic) -> Dynamic {
+    if let Some(q) = any_quantity(&value) {
+        return Dynamic::from(Quantity { unknown: true, ..q });
+    }
+    if value.is_bool() {
+        return Dynamic::from(Unknown);
+    }
+    if let Some(list) = value.read_lock::<Array>() {
+        return list.iter().cloned().map(veiled).collect::<Array>().into();
+    }
+    if let Some(map) = value.read_lock::<Map>() {
+        return map.iter().map(|(key, value)| (key.clone(), veiled(value.clone()))).collect::<Map>().into();
+    }
+    value
+}
+
+/// Rows one after the other, as a loop of a script takes them.
+impl IntoIterator for TableValue {
+    type Item = Outcome<Dynamic>;
+    type IntoIter = Box<dyn Iterator<Item = Outcome<Dynamic>>>;
+    fn into_iter(self) -> Self::IntoIter {
+        let table = self.0;
+        match table.extent {
+            Extent::Share => Box::new(std::iter::once(Err(table.waited_for(Position::NONE)))),
+            Extent::Checked => Box::new(std::iter::once(Ok(veiled(table.row(0).into())))),
+            Extent::Whole => Box::new((0..table.rows).map(move |row| Ok(table.row(row).into()))),
+        }
     }
 }
 

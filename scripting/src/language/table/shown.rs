@@ -1,7 +1,6 @@
 //! A table as text.
 
 use super::super::plan::plain_words;
-use super::super::quantity::Quantity;
 use super::{Data, Extent, Table};
 
 /// Rows that a text shows.
@@ -62,12 +61,8 @@ impl Table {
                     let convert = |v: f64| numbers.unit.map_or(v, |unit| unit.from_si(v));
                     let error = q.error.map(convert);
                     let text = crate::figure_text::figure_text(convert(q.value), error, unit);
-                    let bare = Quantity::number(convert(q.value));
                     // the unit stands in the head, the error in what is printed of one value
-                    match error {
-                        Some(_) => text.split(' ').next().unwrap_or_default().to_string(),
-                        None => super::super::display::significant(bare.value, 7),
-                    }
+                    text.split(' ').next().unwrap_or_default().to_string()
                 }
                 None => "-".to_string(),
             },

@@ -377,6 +377,13 @@ fn what_is_no_plan_is_refused() {
     fails("grid(#{ x: [1, 2] }).sizes; // ~ E105");
     fails("grid(#{ x: [1, 2] }).run(\"a\", 5); // ~ E107");
     fails("grid(#{ x: [1, 2] }).run(\" \", |p| p.x); // ~ E122");
+    fails("table([#{ a: 1 }, #{ b: 1 }]); // ~ E107");
+    fails("table(3); // ~ E107");
+    let outcome = run_text("let plan = grid(#{ x: [1, 2] }); plan.run(\"a\", |p| plan.size);").0;
+    assert!(
+        outcome.errors[0].code == codes::WRONG_KIND
+            && outcome.errors[0].help.as_ref().is_some_and(|h| h.contains("copy"))
+    );
     fails("let t = grid(#{ x: [1, 2] }).run(\"a\", || 1); // ~ E330");
     fails("let t = grid(#{ x: [1, 2] }).run(\"a\", |p| #{ x: 3 }); // ~ E330");
     fails("let t = grid(#{ x: [1, 2] }).run(\"a\", |p| #{ y: [1] }); // ~ E330");
@@ -409,7 +416,12 @@ fn tables_answer() {
         print(t.yield(|r| r.v > 0.V));
         print(t.quantile("v", 0.5));
         print(abs(t.filter(|r| r.b == "n").fit("a", "v", "line").slope - 10.mV) < 1e-12.mV);
-        let n = 0; for row in t.rows { n += row.a; } print(n);
+        let n = 0; for row in t.rows { n += row.a; } for row in t { n += row.a; } print(n / 2);
+        let all = t;
+        print(t.filter(|r| r.v > all.mean("v") && all.len == 6).len);
+        let seen = 0; t.filter(|r| { seen += 1; true }); print(seen);
+        let plan = grid(#{ x: [1, 2] });
+        print(plan.run("own", |p| all.len + t.len).sum("value"));
         store("derived", t.group("b", |part| #{ mean: part.mean("v") }));
         "#,
     );
@@ -433,6 +445,9 @@ fn tables_answer() {
             "-0.005 V",
             "true",
             "12",
+            "3",
+            "6",
+            "24",
         ]
     );
     let t = "let t = grid(#{ a: [1, 2], b: [1, 2] }).run(\"t\", |p| #{ v: p.a, w: \"x\", none: () });\n";

@@ -8,11 +8,10 @@ use crate::diagnostics::codes;
 use crate::language::dimension::Dimension;
 use crate::language::fault::{Fault, Outcome, Place};
 use crate::language::quantity::Quantity;
-use crate::language::sweep;
 use crate::language::table::fit::{Estimate, fit};
-use crate::language::table::{Column, Extent, Numbers, Table, TableValue, statistics};
-use crate::language::value::{Unknown, any_quantity, described, quantity, take, text};
-use crate::language::vocabulary::{Call, caller, topic};
+use crate::language::table::{Column, Extent, Numbers, Table, TableValue, statistics, veiled};
+use crate::language::value::{Unknown, array, described, map, quantity, take, text};
+use crate::language::vocabulary::{Answer, Call, caller, function, topic};
 
 use super::plans::closure;
 
@@ -22,12 +21,19 @@ topic! {
      in `failures` and count in no statistics. Numbers keep their units and numerical errors. `print(table)` shows its first rows, \
      and `store(\"name\", table)` keeps a table that was filtered, grouped or otherwise derived (a sweep's own is kept anyway).";
 
+    Function "table" {
+        forms: ["table([#{ name: value, .. }, ..])"],
+        doc: "A table of rows that the script made itself, maps with the same names; `()` where a row has no value.",
+        example: "let yields = table([#{ lot: \"A\", share: 91.percent }, #{ lot: \"B\", share: 87.percent }]);\nprint(yields.best(\"share\").lot);",
+        register: |engine, session| function(engine, session, "table", 1..=1, |_, arguments| made(arguments[0])),
+    }
     Property "len" of "table" {
         forms: ["table.len", "table.len()"],
         doc: "How many rows it has: points that failed are not among them.",
         example: "print(grid(#{ x: [1, 2, 3] }).run(\"squares\", |p| #{ square: p.x * p.x }).len);",
         register: |engine, session| {
             engine.register_type_with_name::<TableValue>("table");
+            engine.register_iterator_result::<TableValue, Dynamic>();
             for name in ["get$len", "len"] {
                 caller::<TableValue>(engine, session, name, 0..=0, |call, a| of(call, a, |_, table, _| Ok((table.rows as INT).into())));
             }
@@ -44,9 +50,9 @@ topic! {
         },
     }
     Property "rows" of "table" {
-        forms: ["table.rows", "table[index]"],
+        forms: ["table.rows", "for row in table { .. }", "table[index]"],
         doc: "Its rows, maps of coordinates and figures, in the order of the plan; one of them by its index (from 0, or from -1 backwards).",
-        example: "let squares = grid(#{ x: [1, 2, 3] }).run(\"squares\", |p| #{ square: p.x * p.x });\nfor row in squares.rows { print(`${row.x}: ${row.square}`); }\nprint(squares[-1].square);",
+        example: "let squares = grid(#{ x: [1, 2, 3] }).run(\"squares\", |p| #{ square: p.x * p.x });\nfor row in squares { print(`${row.x}: ${row.square}`); }\nprint(squares[-1].square);",
         register: |engine, session| {
             caller::<TableValue>(engine, session, "get$rows", 0..=0, |call, a| of(call, a, |call, table, _| {
                 fits(call, table.rows)?;
@@ -186,6 +192,35 @@ topic! {
     }
 }
 
+/// A table of the rows of an array.
+fn made(given: &Dynamic) -> Answer {
+    let rows = array(given, "the rows of a table").map_err(|f| f.at(Place::Argument(0)))?;
+    let mut columns: Vec<(ImmutableString, Vec<Dynamic>)> = Vec::new();
+    for (index, row) in rows.iter().enumerate() {
+        let row = map(row, &format!("row {index} of the table")).map_err(|f| f.at(Place::Argument(0)))?;
+        let known = |name: &str| columns.iter().any(|(column, _)| column == name);
+        let strange = row.keys().find(|name| index > 0 && !known(name.as_str()));
+        let missing = columns.iter().find(|(name, _)| !row.contains_key(name.as_str()));
+        if let Some(name) = strange.map(|name| name.as_str()).or(missing.map(|(name, _)| name.as_str())) {
+            return Err(Fault::new(
+                codes::WRONG_KIND,
+                format!("row {index} of the table has other names than the first: `{name}`"),
+            )
+            .at(Place::Argument(0))
+            .into());
+        }
+        for (name, value) in row {
+            match columns.iter_mut().find(|(column, _)| column == name.as_str()) {
+                Some((_, values)) => values.push(value.flatten()),
+                None => columns.push((name.as_str().into(), vec![value.flatten()])),
+            }
+        }
+    }
+    let columns: Result<Vec<Column>, Fault> =
+        columns.into_iter().map(|(name, values)| Column::of_values(name, values)).collect();
+    Ok(give(Table::of_columns("table", rows.len(), columns.map_err(|f| f.at(Place::Argument(0)))?)))
+}
+
 /// What is asked of a table: its receiver and the arguments, the table itself being the first.
 type Question = fn(&Call, &Table, &[&mut Dynamic]) -> Outcome<Dynamic>;
 
@@ -193,27 +228,10 @@ type Question = fn(&Call, &Table, &[&mut Dynamic]) -> Outcome<Dynamic>;
 fn of(call: &Call, arguments: &mut [&mut Dynamic], question: Question) -> Outcome<Dynamic> {
     let table = take::<TableValue>(arguments[0], "the table", "a table")?.0;
     match table.extent {
-        Extent::Share => Err(sweep::wait_for(call.session, &table, call.position)),
+        Extent::Share => Err(table.waited_for(call.position)),
         Extent::Whole => question(call, &table, arguments),
         Extent::Checked => question(call, &table, arguments).map(veiled),
     }
-}
-
-/// The value with all numbers unknown.
-fn veiled(value: Dynamic) -> Dynamic {
-    if let Some(q) = any_quantity(&value) {
-        return Dynamic::from(Quantity { unknown: true, ..q });
-    }
-    if value.is_bool() {
-        return Dynamic::from(Unknown);
-    }
-    if let Some(list) = value.read_lock::<Array>() {
-        return list.iter().cloned().map(veiled).collect::<Array>().into();
-    }
-    if let Some(map) = value.read_lock::<Map>() {
-        return map.iter().map(|(key, value)| (key.clone(), veiled(value.clone()))).collect::<Map>().into();
-    }
-    value
 }
 
 fn give(table: Table) -> Dynamic {
@@ -374,14 +392,14 @@ fn group(call: &Call, table: &Table, arguments: &[&mut Dynamic]) -> Outcome<Dyna
     let name = column_name(arguments[1])?;
     let groups = table.groups(&name).map_err(|f| f.at(Place::Argument(0)))?;
     fits(call, groups.len())?;
-    let Some(given) = arguments.get(2) else {
+    if arguments.len() < 3 {
         let list = groups.into_iter().map(|(value, rows)| {
             let part = table.picked(&rows);
             Dynamic::from(Map::from([("value".into(), value), ("table".into(), give(part))]))
         });
         return Ok(list.collect::<Array>().into());
-    };
-    let closure = closure(given, 1)?;
+    }
+    let closure = closure(arguments[2], 1)?;
     let mut values = Vec::new();
     let mut made: Vec<(ImmutableString, Vec<Dynamic>)> = Vec::new();
     for (at, (value, rows)) in groups.into_iter().enumerate() {
@@ -416,16 +434,8 @@ fn group(call: &Call, table: &Table, arguments: &[&mut Dynamic]) -> Outcome<Dyna
         values.resize(rows, Dynamic::UNIT);
         columns.push(Column::of_values(key, values).map_err(|f| f.at(Place::Argument(1)))?);
     }
-    Ok(give(Table {
-        name: table.name.clone(),
-        points: Vec::new(),
-        rows,
-        columns,
-        coordinates: 1,
-        plan: None,
-        failures: Arc::default(),
-        extent: table.extent,
-    }))
+    let grouped = Table::of_columns(&table.name, rows, columns);
+    Ok(give(Table { coordinates: 1, extent: table.extent, ..grouped }))
 }
 
 fn pivot(call: &Call, table: &Table, arguments: &[&mut Dynamic]) -> Outcome<Dynamic> {
@@ -475,7 +485,7 @@ fn number(
 ) -> Outcome<Dynamic> {
     let table = take::<TableValue>(arguments[0], "the table", "a table")?.0;
     if table.extent == Extent::Share {
-        return Err(sweep::wait_for(call.session, &table, call.position));
+        return Err(table.waited_for(call.position));
     }
     let (values, numbers) = existing(&table, arguments[1])?;
     let found = if table.extent == Extent::Checked { Some(1.0) } else { statistic(&values) };
