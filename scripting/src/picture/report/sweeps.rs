@@ -153,7 +153,7 @@ impl HeldSweep {
                     "" => format!("{}{extra}", column.name),
                     unit => format!("{}{extra}_{unit}", column.name),
                 };
-                let mut json = json!({ "name": full(""), "unit": si_unit(&column.unit), "varied": varied });
+                let mut json = json!({ "name": full(""), "label": column.name.replace('_', " "), "unit": si_unit(&column.unit), "varied": varied });
                 if all_numbers(&cells) {
                     json["at"] = json!(pool.add(&values(&cells)));
                     let errors = errors(&cells);
