@@ -217,9 +217,8 @@ impl HeldSweep {
 
 /// Whether every cell that is there is a number, and one is.
 fn all_numbers(cells: &[Option<&Cell>]) -> bool {
-    let number = |cell: &&Cell| matches!(cell, Cell::Number { .. });
     let there = || cells.iter().flatten().filter(|cell| !matches!(cell, Cell::Absent { .. }));
-    there().all(|cell| number(cell)) && there().next().is_some()
+    there().all(|cell| matches!(cell, Cell::Number { .. })) && there().next().is_some()
 }
 
 fn values(cells: &[Option<&Cell>]) -> Vec<f64> {
