@@ -16,6 +16,9 @@ const sweepColumns = (sweep, columns) => {
   return made;
 };
 
+/** The point of each sweep that a person looks at, by its index. */
+const chosenPoints = new Map();
+
 const fillSweep = async (sweep, inside) => {
   const columns = await blockOf(sweep.block, sweep.packed);
   const table = sweepColumns(sweep, columns);
@@ -33,6 +36,7 @@ const fillSweep = async (sweep, inside) => {
     living = living.filter((each) => !closing.includes(each));
     const before = living.length;
     const point = sweep.points[row];
+    chosenPoints.set(sweep.name, point.index);
     const outputs = table.filter((column) => !column.isError && !["point", "reason"].includes(column.name));
     panel.replaceChildren(
       el("h4", {}, `Point ${point.index}`),
@@ -90,6 +94,9 @@ const fillSweep = async (sweep, inside) => {
     first: 25,
     csv: el("button", { type: "button", title: csv.title, "data-tool": "csv", on: { click: csv.click } }, "CSV"),
   }));
+  // a page that renews itself shows the same point again
+  const again = sweep.points.findIndex((point) => point.index === chosenPoints.get(sweep.name));
+  if (again >= 0) await open(again);
 };
 
 const buildSweeps = () => {
