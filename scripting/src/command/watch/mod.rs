@@ -23,6 +23,9 @@ const LOOK: Duration = Duration::from_millis(200);
 /// How long a browser has, after the end of the run, to come for the last state; it asks once a second.
 const LAST_CALL: Duration = Duration::from_secs(4);
 
+/// Making pages takes at most one part in so many of the time, so that the run keeps its cores.
+const SPARING: u32 = 10;
+
 /// `epiloom watch FILE`.
 #[derive(clap::Args, Debug)]
 #[command(after_help = "\
@@ -43,6 +46,8 @@ struct Made {
     version: u64,
     html: Arc<str>,
     policy: Arc<str>,
+    /// When it was made, and how long that took.
+    at: Option<(Instant, Duration)>,
 }
 
 /// What the server and the watching loop share.
@@ -136,7 +141,10 @@ impl Watched {
             "/state" => {
                 // whether it runs is read first: a version read after the end is the last one
                 let running = self.running.load(Ordering::SeqCst);
-                let version = self.version.load(Ordering::SeqCst);
+                let newest = self.version.load(Ordering::SeqCst);
+                let made = self.made.lock().unwrap_or_else(PoisonError::into_inner);
+                let rests = made.at.is_some_and(|(at, took)| at.elapsed() < took * SPARING);
+                let version = if running && rests { made.version } else { newest };
                 Some(http::Answer::json(format!("{{\"version\":{version},\"running\":{running}}}")))
             }
             _ => None,
@@ -145,6 +153,7 @@ impl Watched {
 
     /// The page of what the file holds now; a file that is being moved is looked for once more.
     fn make(&self, version: u64) -> Made {
+        let begun = Instant::now();
         let look = || {
             let running = self.running.load(Ordering::SeqCst);
             let both = [&self.finished, &self.unfinished];
@@ -160,7 +169,12 @@ impl Watched {
             contents
         });
         let made = page(&contents, Options { watching: true, version, ..Options::default() });
-        Made { version, html: made.html.into(), policy: made.policy.into() }
+        Made {
+            version,
+            html: made.html.into(),
+            policy: made.policy.into(),
+            at: Some((Instant::now(), begun.elapsed())),
+        }
     }
 
     /// Waits until a browser that has come has the last state, or has had time to ask for it.

@@ -153,7 +153,7 @@ impl HeldSweep {
                     "" => format!("{}{extra}", column.name),
                     unit => format!("{}{extra}_{unit}", column.name),
                 };
-                let mut json = json!({ "name": full(""), "unit": si_unit(&column.unit), "varied": varied });
+                let mut json = json!({ "name": full(""), "label": column.name.replace('_', " "), "unit": si_unit(&column.unit), "varied": varied });
                 if all_numbers(&cells) {
                     json["at"] = json!(pool.add(&values(&cells)));
                     let errors = errors(&cells);
@@ -217,9 +217,8 @@ impl HeldSweep {
 
 /// Whether every cell that is there is a number, and one is.
 fn all_numbers(cells: &[Option<&Cell>]) -> bool {
-    let number = |cell: &&Cell| matches!(cell, Cell::Number { .. });
     let there = || cells.iter().flatten().filter(|cell| !matches!(cell, Cell::Absent { .. }));
-    there().all(|cell| number(cell)) && there().next().is_some()
+    there().all(|cell| matches!(cell, Cell::Number { .. })) && there().next().is_some()
 }
 
 fn values(cells: &[Option<&Cell>]) -> Vec<f64> {

@@ -62,6 +62,8 @@ let figures = 0;
  */
 const curvesFigure = (chart, columns, { name, csv }) => {
   const { x: xAxis, panels, regions } = chart.body.curves;
+  // where several panels hold several curves each, a name alone does not tell which is meant
+  const nameOf = (panel, each) => unitText(panels.length > 1 && panel.series.length > 1 ? `${panel.y.label}: ${each.name}` : each.name);
   figures += 1;
   const key = `figure${figures}`;
   const state = { xlog: xAxis.scale === "Log", x: null, at: null };
@@ -442,7 +444,7 @@ const curvesFigure = (chart, columns, { name, csv }) => {
         press(button, !hide);
         part.plot?.setSeries(i + 1, { show: !hide });
         redraw();
-      } } }, swatch(each.look, false), el("span", {}, each.name));
+      } } }, swatch(each.look, false), el("span", {}, nameOf(part.panel, each)));
       legend.append(el("li", {}, button, output));
     }
   }
@@ -551,7 +553,7 @@ const curvesFigure = (chart, columns, { name, csv }) => {
     for (const part of parts) {
       for (const [i, each] of part.panel.series.entries()) {
         if (part.hidden.has(i)) continue;
-        const text = fitText(visible(each.name), inner - 40, 12);
+        const text = fitText(visible(nameOf(part.panel, each)), inner - 40, 12);
         const wide = 32 + textWidth(text, 12) + 18;
         if (at + wide > width && at > left) {
           at = left;

@@ -4,6 +4,7 @@ let records = null;
 let blocks = [];
 let snapshots = [];
 let living = [];
+let sections = 0;
 
 /** The numbers of a block, unpacked once. */
 const blockOf = (place, columns) => {
@@ -114,12 +115,12 @@ const figureOf = (chart, columns, context) => {
   return histogramFigure(chart, columns, context);
 };
 
-/** Fills the section of a snapshot. */
+/** Fills the section of a snapshot; gives its figures. */
 const fillSnapshot = async (place, inside) => {
   const record = records.snapshots[place];
   if (record.damaged) {
     inside.append(el("p", { class: "trouble" }, record.damaged));
-    return;
+    return [];
   }
   const columns = await blockOf(place, record.columns);
   const files = csvFiles(record, columns);
@@ -155,6 +156,7 @@ const fillSnapshot = async (place, inside) => {
   }
   inside.append(el("div", { class: "tools" }, el("span", { class: "told" }, "CSV, as epiloom export writes it:"), files.map((file, index) =>
     el("button", { type: "button", title: file.title, "data-file": index, on: { click: file.click } }, `${record.files[index]}${file.part}`))));
+  return charts;
 };
 
 /** The short line beside the name of a snapshot that is closed. */
@@ -164,7 +166,9 @@ const lead = (record) => (record.figures || []).filter((f) => f.value !== null).
 const buildSnapshots = (opened) => {
   const section = document.getElementById("snapshots");
   section.querySelector("noscript")?.remove();
-  for (const old of section.querySelectorAll(".snapshot, .tools")) old.remove();
+  for (const old of section.querySelectorAll(":scope > .snapshot, :scope > .tools")) old.remove();
+  // what a run has stored never changes: what is built stays as it is, zoomed and unfolded
+  const built = new Map(snapshots.filter((each) => each.charts).map((each) => [each.name, each]));
   const listed = records.snapshots.slice(0, records.listed);
   const many = listed.length > 6;
   if (listed.length > 1) {
@@ -174,21 +178,28 @@ const buildSnapshots = (opened) => {
     section.append(el("div", { class: "tools" }, all(true), all(false)));
   }
   snapshots = listed.map((record, place) => {
-    const inside = el("div", { class: "inside", hidden: true });
-    const button = el("button", { type: "button", "aria-expanded": "false", "aria-controls": `in${place}`, on: { click: () => each.set(inside.hidden) } },
+    const there = built.get(record.name);
+    if (there) {
+      there.element.id = `s${place}`;
+      section.append(there.element);
+      return there;
+    }
+    sections += 1;
+    const inside = el("div", { class: "inside", hidden: true, id: `in${sections}` });
+    const button = el("button", { type: "button", "aria-expanded": "false", "aria-controls": inside.id, on: { click: () => each.set(inside.hidden) } },
       el("span", { class: "name" }, record.name), " ", el("span", { class: "kind" }, record.kind), record.failed || record.damaged ? el("strong", { class: "bad" }, " failed") : null);
-    inside.id = `in${place}`;
     const element = el("article", { class: "snapshot", id: `s${place}` }, el("h3", {}, button), el("p", { class: "lead" }, lead(record)), inside);
     let filled = null;
     const each = {
       element,
       name: record.name,
+      charts: null,
       open: () => !inside.hidden,
       set: async (open) => {
         inside.hidden = !open;
         element.classList.toggle("open", open);
         button.setAttribute("aria-expanded", open ? "true" : "false");
-        if (open) await (filled ??= fillSnapshot(place, inside));
+        if (open) each.charts = await (filled ??= fillSnapshot(place, inside));
       },
     };
     section.append(element);
@@ -301,8 +312,9 @@ const repaint = () => {
 };
 
 const start = async (opened) => {
-  for (const each of living) each.end();
-  living = [];
+  const kept = new Set(snapshots.flatMap((each) => each.charts ?? []));
+  for (const each of living) if (!kept.has(each)) each.end();
+  living = [...kept];
   blocks = [];
   records = JSON.parse(new TextDecoder().decode(await unpacked(document.getElementById("records").textContent)));
   palette = records.palette;

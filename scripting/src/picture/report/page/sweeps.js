@@ -5,16 +5,19 @@ const sweepColumns = (sweep, columns) => {
   const made = [{ name: "point", number: true, at: (row) => sweep.points[row].index }];
   for (const column of sweep.columns) {
     if (column.texts) {
-      made.push({ name: column.name, number: false, at: (row) => column.texts[row] });
+      made.push({ name: column.name, label: column.label, unit: "", number: false, at: (row) => column.texts[row] });
       continue;
     }
     const number = (at) => (row) => (Number.isNaN(columns[at][row]) ? "" : columns[at][row]);
-    made.push({ name: column.name, number: true, at: number(column.at), error: column.error ? columns[column.error.at] : null });
+    made.push({ name: column.name, label: column.label, unit: column.unit, number: true, at: number(column.at), error: column.error ? columns[column.error.at] : null });
     if (column.error) made.push({ name: column.error.name, number: true, at: number(column.error.at), isError: true });
   }
   made.push({ name: "reason", number: false, at: (row) => sweep.points[row].reason });
   return made;
 };
+
+/** The point of each sweep that a person looks at, by its index. */
+const chosenPoints = new Map();
 
 const fillSweep = async (sweep, inside) => {
   const columns = await blockOf(sweep.block, sweep.packed);
@@ -33,13 +36,14 @@ const fillSweep = async (sweep, inside) => {
     living = living.filter((each) => !closing.includes(each));
     const before = living.length;
     const point = sweep.points[row];
+    chosenPoints.set(sweep.name, point.index);
     const outputs = table.filter((column) => !column.isError && !["point", "reason"].includes(column.name));
     panel.replaceChildren(
       el("h4", {}, `Point ${point.index}`),
       pairs(outputs.map((column) => {
         const v = column.at(row);
         const error = column.error ? column.error[row] : NaN;
-        return [column.name.replaceAll("_", " "), (typeof v === "number" ? digits(v) : v || "none") + (Number.isFinite(error) ? ` \u00b1 ${digits(error)}` : "")];
+        return [column.label, (typeof v === "number" ? amount(v, column.unit) : v || "none") + (Number.isFinite(error) ? ` \u00b1 ${digits(error)}` : "")];
       })),
       ...(point.reason ? [el("p", { class: point.failed ? "trouble" : "note" }, point.failed ? `Failed: ${point.reason}` : point.reason)] : []),
       ...point.warnings.map((text) => el("p", { class: "note" }, `warning: ${text}`)),
@@ -56,7 +60,13 @@ const fillSweep = async (sweep, inside) => {
     closing = living.slice(before);
   };
 
-  const charts = sweep.charts.map((chart) => figureOf(chart, columns, {
+  const titled = (chart) => {
+    const { map, curves } = chart.body;
+    if (map) return `${map.z.label} over ${map.x.label.toLowerCase()} and ${map.y.label.toLowerCase()}`;
+    if (curves) return `Along ${curves.x.label.toLowerCase()}`;
+    return chart.title;
+  };
+  const charts = sweep.charts.map((chart) => figureOf({ ...chart, title: titled(chart) }, columns, {
     name: sweep.name,
     csv,
     open: async (row) => {
@@ -84,6 +94,9 @@ const fillSweep = async (sweep, inside) => {
     first: 25,
     csv: el("button", { type: "button", title: csv.title, "data-tool": "csv", on: { click: csv.click } }, "CSV"),
   }));
+  // a page that renews itself shows the same point again
+  const again = sweep.points.findIndex((point) => point.index === chosenPoints.get(sweep.name));
+  if (again >= 0) await open(again);
 };
 
 const buildSweeps = () => {
