@@ -148,7 +148,8 @@ fn a_large_sweep_keeps_every_point_and_some_of_the_curves() {
     let records = records(&made);
     let points = records["sweeps"][0]["points"].as_array().expect("points");
     assert_eq!(points.len(), 600);
-    let with = points.iter().filter(|point| !point["snapshots"].as_array().expect("a list").is_empty()).count();
+    let with =
+        points.iter().filter(|point| !point["snapshots"].as_array().expect("a list").is_empty()).count();
     assert_eq!(with, 600_usize.div_ceil(made.every));
     assert!(points.iter().all(|point| point["stored"] == 1));
 }
