@@ -416,7 +416,7 @@ fn tables_answer() {
         print(t.yield(|r| r.v > 0.V));
         print(t.quantile("v", 0.5));
         print(abs(t.filter(|r| r.b == "n").fit("a", "v", "line").slope - 10.mV) < 1e-12.mV);
-        let n = 0; for row in t.rows { n += row.a; } for row in t { n += row.a; } print(n / 2);
+        let n = 0; for row in t.rows { n += row.a; } for row in t { n += row.a; } print(n);
         let all = t;
         print(t.filter(|r| r.v > all.mean("v") && all.len == 6).len);
         let seen = 0; t.filter(|r| { seen += 1; true }); print(seen);
@@ -444,7 +444,7 @@ fn tables_answer() {
             "50 %",
             "-0.005 V",
             "true",
-            "12",
+            "24",
             "3",
             "6",
             "24",
