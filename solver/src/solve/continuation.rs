@@ -1,5 +1,7 @@
 //! Reaching a light and a bias from equilibrium: predictors, step halving with rollback, light ramps.
 
+use std::borrow::Cow;
+
 use super::newton::{Drive, Point, Stalled, Tolerances};
 use super::problem::{Problem, State};
 
@@ -130,8 +132,9 @@ impl Problem {
     ) -> Result<Point, SolveError> {
         let begun = self.work.newton_iterations;
         self.grant();
-        let mut before = earlier.cloned();
-        let mut here = from.clone();
+        // Points are copied only where the way has steps between.
+        let mut before = earlier.map(Cow::Borrowed);
+        let mut here = Cow::Borrowed(from);
         let mut step = (target - here.voltage).clamp(-LARGEST_STEP, LARGEST_STEP);
         // The step below which a failing one is tried through time: all of them once that was needed.
         let mut relaxed = RELAXED_STEP;
@@ -142,11 +145,11 @@ impl Problem {
             if step.abs() >= remaining.abs() * (1.0 - 1e-12) {
                 aim = target;
             }
-            let guess = self.predict(before.as_ref(), &here, aim);
+            let guess = self.predict(before.as_deref(), &here, aim);
             match self.newton(&guess, self.drive(aim), tolerances) {
                 Ok(point) if aim == target => return Ok(point),
                 Ok(point) => {
-                    before = Some(std::mem::replace(&mut here, point));
+                    before = Some(std::mem::replace(&mut here, Cow::Owned(point)));
                     step *= 2.0;
                     step = step.clamp(-LARGEST_STEP, LARGEST_STEP);
                 }
@@ -164,7 +167,7 @@ impl Problem {
                             if let Ok(point) = self.newton(&point.state, self.drive(target), tolerances) {
                                 return Ok(point);
                             }
-                            here = point;
+                            here = Cow::Owned(point);
                             relaxed = f64::INFINITY;
                             step = (target - here.voltage).clamp(-LARGEST_STEP, LARGEST_STEP);
                             continue;
