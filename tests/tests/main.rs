@@ -3,8 +3,11 @@
 mod archives;
 mod browser;
 mod catalogue;
+#[cfg(unix)]
+mod cluster;
 mod floors;
 mod report;
 mod runs;
 mod scenarios;
 mod support;
+mod sweeps;

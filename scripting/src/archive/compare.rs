@@ -1,5 +1,7 @@
 //! Comparing two snapshots to the last bit, for `epiloom replay`.
 
+use super::sweep::{Cell, Point};
+
 use super::model::{Condition, Figure, Ledger, MaterialValue, Snapshot, Stack, Table, Value};
 
 /// One place where two snapshots differ.
@@ -26,6 +28,26 @@ pub fn compare_bits(a: &Snapshot, b: &Snapshot) -> Vec<Difference> {
     out.list("ledgers", &a.ledgers, &b.ledgers, Differences::ledger);
     out.stack(&a.stack, &b.stack);
     out.list("material values", &a.materials, &b.materials, Differences::material);
+    out.list("warnings", &a.warnings, &b.warnings, |out, a, b| out.text("warning", a, b));
+    out.0
+}
+
+/// Every place where the point `b` differs from `a`, numbers compared by their bits; not what they stored.
+pub fn compare_point(a: &Point, b: &Point) -> Vec<Difference> {
+    let mut out = Differences(Vec::new());
+    out.text("status", &format!("{:?}", a.status), &format!("{:?}", b.status));
+    let mut place = 0;
+    out.list("coordinates", &a.coordinates, &b.coordinates, |out, a, b| {
+        out.cell(&format!("coordinate {place}"), a, b);
+        place += 1;
+    });
+    out.list("outputs", &a.outputs, &b.outputs, |out, a, b| {
+        let place = format!("output {}", a.column.name);
+        out.text(&format!("{place}, name"), &a.column.name, &b.column.name);
+        out.text(&format!("{place}, unit"), &a.column.unit, &b.column.unit);
+        out.cell(&place, &a.cell, &b.cell);
+    });
+    out.list("printed lines", &a.printed, &b.printed, |out, a, b| out.text("printed line", a, b));
     out.list("warnings", &a.warnings, &b.warnings, |out, a, b| out.text("warning", a, b));
     out.0
 }
@@ -66,6 +88,17 @@ impl Differences {
             (Some(a), Some(b)) => self.number(place, a, b),
             (None, None) => {}
             _ => self.push(place, show(a), show(b)),
+        }
+    }
+
+    fn cell(&mut self, place: &str, a: &Cell, b: &Cell) {
+        match (a, b) {
+            (Cell::Number { value: x, error: e }, Cell::Number { value: y, error: f }) => {
+                self.number(place, *x, *y);
+                self.optional(&format!("{place}, error"), *e, *f);
+            }
+            _ if a == b => {}
+            _ => self.push(place, format!("{a:?}"), format!("{b:?}")),
         }
     }
 

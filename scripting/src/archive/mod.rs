@@ -22,6 +22,7 @@ mod compare;
 mod encoding;
 mod error;
 pub mod export;
+mod gather;
 mod layout;
 mod reader;
 mod resume;
@@ -35,8 +36,9 @@ mod writer;
 #[cfg(test)]
 mod tests;
 
-pub use compare::{Difference, compare_bits};
+pub use compare::{Difference, compare_bits, compare_point};
 pub use error::{ArchiveError, ArchiveWarning};
+pub use gather::{NotParts, Parts};
 pub use model::{
     Column, Condition, DataFile, Figure, Input, Label, Layer, Ledger, LedgerLine, MaterialValue, MeshValue,
     OrderKey, RunHeader, Snapshot, Stack, Status, Table, Value,

@@ -35,6 +35,18 @@ record! {
 
 impl Eq for SweepColumn {}
 
+impl PartialOrd for SweepColumn {
+    fn partial_cmp(&self, other: &Self) -> Option<std::cmp::Ordering> {
+        Some(self.cmp(other))
+    }
+}
+
+impl Ord for SweepColumn {
+    fn cmp(&self, other: &Self) -> std::cmp::Ordering {
+        (&self.name, &self.unit).cmp(&(&other.name, &other.unit))
+    }
+}
+
 record! {
     /// One of equal shares of every plan: the points whose index leaves `number - 1` when divided by `of`.
     pub struct Share {

@@ -4,6 +4,7 @@ mod damage;
 mod exports;
 mod format_page;
 mod other_readers;
+mod power_cut;
 mod round_trip;
 mod sample;
 mod sweeps;

@@ -400,8 +400,18 @@ impl<'a> Writer<'a> {
             return Err(ArchiveError::NameTaken { name: start.name.clone() });
         }
         let run = sections(Kind::Run, "the description of the run", &self.known)?.body_digest();
-        let record = SweepRecord { start: start.clone(), share: self.share, run, left_out: None };
-        let known = self.sweeps.iter().position(|each| each.sweep.name == start.name);
+        self.begin(SweepRecord { start: start.clone(), share: self.share, run, left_out: None })
+    }
+
+    /// Begins a sweep as another archive of the same run describes it.
+    pub(crate) fn adopt_sweep(&mut self, record: &SweepRecord) -> Result<EarlierPoints, ArchiveError> {
+        self.check()?;
+        self.settle()?;
+        self.begin(record.clone())
+    }
+
+    fn begin(&mut self, record: SweepRecord) -> Result<EarlierPoints, ArchiveError> {
+        let known = self.sweeps.iter().position(|each| each.sweep.name == record.start.name);
         let same = |each: &WrittenSweep| {
             !each.sweep.in_doubt && each.sweep.record().is_some_and(|known| known.same_points(&record))
         };

@@ -33,9 +33,13 @@ pub const TABLE: &[(Exit, u8, &str)] = &[
     (
         Exit::Archive,
         3,
-        "an archive is damaged, cut off, unfinished, foreign or newer; what is whole was shown",
+        "an archive is damaged, cut off, unfinished, foreign or newer; what is whole was shown; or parts make no whole",
     ),
-    (Exit::Differs, 4, "a replay gave other numbers"),
+    (
+        Exit::Differs,
+        4,
+        "a replay gave other numbers, or archives that were compared differ beyond numerical error",
+    ),
     (Exit::File, 5, "a file cannot be read or written"),
     (Exit::Internal, 6, "a fault of Epiloom itself"),
     (Exit::Interrupted, 130, "stopped from the keyboard; what was finished is kept"),
@@ -63,6 +67,7 @@ impl Exit {
             | codes::UNKNOWN_CODE
             | codes::UNKNOWN_MATERIAL => Exit::Usage,
             codes::REPLAY_DIFFERS => Exit::Differs,
+            codes::NOT_PARTS => Exit::Archive,
             codes::INTERRUPTED => Exit::Interrupted,
             codes::INTERNAL => Exit::Internal,
             _ => Exit::Fault,

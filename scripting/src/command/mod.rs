@@ -2,14 +2,18 @@
 //!
 //! [`run`] is all that `main` calls. Results go to standard output, everything else to standard error.
 
+mod archived;
 mod check;
 mod columns;
+mod compare;
 mod completions;
 mod exit;
 mod explain;
 mod export;
+mod gather;
 mod holder;
 mod inputs;
+mod job;
 mod materials;
 mod output;
 mod recorder;
@@ -20,6 +24,7 @@ mod report_page;
 mod script;
 mod show;
 mod sweeps;
+mod table;
 mod trouble;
 mod watch;
 
@@ -55,9 +60,9 @@ enum Verb {
     Run(run_script::Run),
     /// Look for all faults of a script and solve nothing
     Check(check::Check),
-    /// Show what an archive holds, or one snapshot of it
+    /// Show what an archive holds, one snapshot, one sweep or one point of it
     Show(show::Show),
-    /// Write a snapshot as CSV, NPZ or JSON
+    /// Write a snapshot or a sweep as CSV, NPZ, JSON or Parquet
     Export(export::Export),
     /// Write an archive as one page for a browser, to be kept or sent
     Report(report_page::Report),
@@ -65,6 +70,12 @@ enum Verb {
     Watch(watch::Watch),
     /// Run an archived script again and compare every number, bit by bit
     Replay(replay::Replay),
+    /// Compare two archives: inputs, materials and numbers, and what moved beyond its numerical error
+    Compare(compare::Compare),
+    /// Make one archive of the parts of a run
+    Gather(gather::Gather),
+    /// Print a script that runs the parts of a run on a cluster with Slurm
+    Job(job::Job),
     /// List the built-in materials, or the values of one with ranges and sources
     Materials(materials::Materials),
     /// Explain a code such as E210
@@ -94,6 +105,9 @@ pub fn run() -> Exit {
         Verb::Report(verb) => verb.run(&mut output),
         Verb::Watch(verb) => verb.run(&mut output),
         Verb::Replay(verb) => verb.run(&mut output),
+        Verb::Compare(verb) => verb.run(&mut output),
+        Verb::Gather(verb) => verb.run(&mut output),
+        Verb::Job(verb) => verb.run(&mut output),
         Verb::Materials(verb) => verb.run(&mut output),
         Verb::Explain(verb) => verb.run(&mut output),
         Verb::Reference(verb) => verb.run(&mut output),

@@ -1,16 +1,19 @@
 //! `epiloom replay`: runs an archived script again and compares bit by bit.
 
-use std::collections::{BTreeMap, BTreeSet};
-use std::path::{Path, PathBuf};
+use std::collections::BTreeSet;
+use std::path::PathBuf;
 
-use crate::archive::{Archive, Difference, RunHeader, Snapshot, compare_bits};
+use crate::archive::{
+    Archive, ArchiveError, Difference, Point, Share, Snapshot, SweepStart, compare_bits, compare_point,
+};
 use crate::diagnostics::{Diagnostic, SourceText, codes};
-use crate::language::{self, InputRecord, RunOptions, Script, Sink};
+use crate::language::{self, InputRecord, Part, RunOptions, Sink, StoredPoints};
 
+use super::archived::{archived_script, overrides};
 use super::exit::Exit;
-use super::inputs;
 use super::output::Output;
 use super::show::{condition, open, tell};
+use super::sweeps::Tally;
 
 /// Differences that are written out.
 const SHOWN: usize = 20;
@@ -37,7 +40,12 @@ struct Comparison<'a> {
     extra: Vec<String>,
     damaged: Vec<String>,
     numbers: usize,
+    points: u64,
+    /// The first differences, and how many there are.
     differences: Vec<(String, Difference)>,
+    different: usize,
+    share: Option<Share>,
+    tally: Tally,
 }
 
 impl Replay {
@@ -57,18 +65,18 @@ impl Replay {
                 format!("the archive was written by version {}, this is {version}", run.program_version);
             output.diagnostic(&Diagnostic::new(codes::OTHER_VERSION, message), None);
         }
-        let files = match self.data_files(run) {
-            Ok(files) => files,
+        let script = match archived_script(run, self.data.as_deref(), &self.file, &self.allow_read) {
+            Ok(script) => script,
             Err(fault) => {
                 output.diagnostic(&fault, None);
                 return Exit::of(fault.code);
             }
         };
-        let script =
-            Script { name: run.script_name.clone(), text: run.script_text.clone(), folder: None, files };
-        let set = run.inputs.iter().filter(|(_, input)| input.overridden);
+        // a part is replayed as that part
+        let share = archive.sweeps().iter().find_map(|sweep| sweep.record()?.share);
         let options = RunOptions {
-            set: set.map(|(name, input)| (name.clone(), inputs::typed(&input.used))).collect(),
+            set: overrides(run),
+            part: share.map(|share| Part { number: share.number, of: share.of }),
             ..RunOptions::default()
         };
         output.show_progress();
@@ -79,10 +87,14 @@ impl Replay {
             extra: Vec::new(),
             damaged: Vec::new(),
             numbers: 0,
+            points: 0,
             differences: Vec::new(),
+            different: 0,
+            share,
+            tally: Tally::default(),
         };
         let outcome = language::run(&script, options, &mut comparison);
-        let Comparison { seen, extra, damaged, numbers, differences, .. } = comparison;
+        let Comparison { seen, extra, damaged, numbers, points, differences, different, .. } = comparison;
         output.end_progress();
         let source =
             SourceText::new(format!("{} in {}", script.name, self.file.display()), script.text.clone());
@@ -90,35 +102,35 @@ impl Replay {
         for error in &outcome.errors {
             output.diagnostic(error, Some(&source));
         }
-        let missing: Vec<&str> = archive
-            .entries()
-            .iter()
-            .map(|e| e.label.name.as_str())
+        let snapshots = archive.entries().iter().map(|e| e.label.name.as_str());
+        let missing: Vec<&str> = snapshots
+            .chain(archive.sweeps().iter().map(|sweep| sweep.name.as_str()))
             .filter(|name| !seen.contains(*name))
             .collect();
         for name in &missing {
-            output.remark(&format!("snapshot `{name}` did not come again"));
+            output.remark(&format!("`{name}` did not come again"));
         }
         for name in extra.iter().filter(|_| archive.is_finished()) {
-            output.remark(&format!("snapshot `{name}` is new: the archive does not hold it"));
+            output.remark(&format!("`{name}` is new: the archive does not hold it"));
         }
-        for (name, difference) in differences.iter().take(SHOWN) {
+        for (name, difference) in &differences {
             let Difference { place, first, second } = difference;
             output.result(&format!("`{name}`, {place}: archived {first}, now {second}\n"));
         }
-        if differences.len() > SHOWN {
-            output.result(&format!("and {} differences more\n", differences.len() - SHOWN));
+        if different > differences.len() {
+            output.result(&format!("and {} differences more\n", different - differences.len()));
         }
-        let differs =
-            !differences.is_empty() || !missing.is_empty() || (archive.is_finished() && !extra.is_empty());
-        let compared = seen.len() - damaged.len();
-        let verdict = match compared {
+        let differs = different > 0 || !missing.is_empty() || (archive.is_finished() && !extra.is_empty());
+        let sweeps = archive.sweeps().iter().filter(|sweep| seen.contains(&sweep.name)).count();
+        let compared = seen.len() - sweeps - damaged.len();
+        let verdict = match compared as u64 + points {
             _ if differs => "differs",
             0 => "nothing could be compared",
             _ => "every number is identical to the bit",
         };
+        let points = if points > 0 { format!("{points} points, ") } else { String::new() };
         output.result(&format!(
-            "{}: {verdict} ({compared} snapshots, {numbers} numbers)\n",
+            "{}: {verdict} ({compared} snapshots, {points}{numbers} numbers)\n",
             self.file.display()
         ));
         match () {
@@ -129,43 +141,57 @@ impl Replay {
             () => condition(&archive),
         }
     }
-
-    /// The script's data files as they were, by their digests.
-    fn data_files(&self, run: &RunHeader) -> Result<BTreeMap<String, Vec<u8>>, Box<Diagnostic>> {
-        let folder = match (&self.data, self.file.parent()) {
-            (Some(folder), _) => folder.clone(),
-            (None, Some(parent)) if !parent.as_os_str().is_empty() => parent.to_path_buf(),
-            _ => PathBuf::from("."),
-        };
-        let mut files = BTreeMap::new();
-        for (name, recorded) in &run.data_files {
-            let fault = |why: &str| {
-                Diagnostic::new(codes::REPLAY_INPUT, format!("the data file `{name}` {why}")).help(
-                    "give the script's folder, --data DIR, and other folders it was given, --allow-read DIR",
-                )
-            };
-            let path = inside(&folder, &self.allow_read, name)
-                .ok_or_else(|| fault("is not in the folder of data files"))?;
-            let length = path.metadata().map(|m| m.len()).ok();
-            if length != Some(recorded.length) {
-                return Err(Box::new(fault("is not as long as it was")));
-            }
-            let bytes = std::fs::read(&path).map_err(|e| fault(&format!("cannot be read: {e}")))?;
-            if blake3::hash(&bytes).to_hex().as_str() != recorded.blake3 {
-                return Err(Box::new(fault("has changed since the archive was written")));
-            }
-            files.insert(name.clone(), bytes);
-        }
-        Ok(files)
-    }
 }
 
-/// The regular file of this name, below the folder or one that was opened; an archive from elsewhere reaches no other.
-fn inside(folder: &Path, allowed: &[PathBuf], name: &str) -> Option<PathBuf> {
-    let path = folder.join(name).canonicalize().ok()?;
-    let open = |folder: &Path| folder.canonicalize().is_ok_and(|folder| path.starts_with(folder));
-    let found = open(folder) || allowed.iter().any(|folder| open(folder));
-    (found && path.is_file()).then_some(path)
+impl Comparison<'_> {
+    /// Counts differences and keeps the first ones.
+    fn keep(&mut self, name: &str, differences: Vec<Difference>) {
+        self.different += differences.len();
+        let room = SHOWN.saturating_sub(self.differences.len());
+        self.differences.extend(differences.into_iter().take(room).map(|each| (name.to_string(), each)));
+    }
+
+    /// Compares a point and what it stored with the archive's.
+    fn point(&mut self, sweep: &str, point: &Point) {
+        let name = format!("{sweep}/{}", point.index);
+        let archived = match self.archive.point(sweep, point.index) {
+            Ok(archived) => archived,
+            // an unfinished archive or a part holds some of the points only
+            Err(ArchiveError::NoSuchPoint { .. }) if !self.whole(sweep) => return,
+            Err(ArchiveError::NoSuchPoint { .. }) => return self.extra.push(name),
+            Err(error) => {
+                if !self.damaged.contains(&sweep.to_string()) {
+                    tell(&error, self.output);
+                    self.damaged.push(sweep.to_string());
+                }
+                return;
+            }
+        };
+        self.points += 1;
+        let cells = archived.point.coordinates.iter().chain(archived.point.outputs.iter().map(|o| &o.cell));
+        self.numbers += cells.filter(|cell| cell.number().is_some()).count();
+        self.keep(&name, compare_point(&archived.point, point));
+        for snapshot in &point.snapshots {
+            let found = archived.snapshots.iter().find(|place| place.label.name == snapshot.name());
+            match found.map(|place| self.archive.point_snapshot(place)) {
+                None => self.extra.push(snapshot.name().to_string()),
+                Some(Ok(stored)) => {
+                    self.numbers += numbers(&stored);
+                    self.keep(snapshot.name(), compare_bits(&stored, snapshot));
+                }
+                Some(Err(error)) => {
+                    tell(&error, self.output);
+                    self.damaged.push(snapshot.name().to_string());
+                }
+            }
+        }
+    }
+
+    /// Whether the archive holds all points of the sweep's plan.
+    fn whole(&self, sweep: &str) -> bool {
+        let record = self.archive.sweep(sweep).ok().and_then(|sweep| sweep.record());
+        record.is_some_and(|record| record.left_out.is_some() && record.share.is_none())
+    }
 }
 
 /// Numbers of a snapshot that are compared.
@@ -200,8 +226,7 @@ impl Sink for Comparison<'_> {
         match self.archive.snapshot(&name) {
             Ok(archived) => {
                 self.numbers += numbers(&archived);
-                let differences = compare_bits(&archived, &snapshot);
-                self.differences.extend(differences.into_iter().map(|difference| (name.clone(), difference)));
+                self.keep(&name, compare_bits(&archived, &snapshot));
             }
             Err(error) => {
                 tell(&error, self.output);
@@ -210,5 +235,45 @@ impl Sink for Comparison<'_> {
         }
         self.seen.insert(name);
         Ok(())
+    }
+
+    fn sweep(&mut self, sweep: &SweepStart) -> Result<StoredPoints, String> {
+        match self.archive.sweep(&sweep.name) {
+            Ok(archived) => {
+                self.seen.insert(sweep.name.clone());
+                if let Some(record) = archived.record().filter(|record| record.start != *sweep) {
+                    let difference = Difference {
+                        place: "plan".to_string(),
+                        first: record.start.plan.clone(),
+                        second: sweep.plan.clone(),
+                    };
+                    self.keep(&sweep.name, vec![difference]);
+                }
+            }
+            Err(_) => self.extra.push(sweep.name.clone()),
+        }
+        let total = self.share.map_or(sweep.points, |share| share.count(sweep.points));
+        self.output.sweep_begins(&sweep.name, total, 0);
+        self.tally = Tally::default();
+        Ok(Box::new(std::iter::empty()))
+    }
+
+    fn points(&mut self, sweep: &SweepStart, points: Vec<Point>) -> Result<(), String> {
+        for point in &points {
+            self.tally.count(point);
+            if self.seen.contains(&sweep.name) {
+                self.point(&sweep.name, point);
+            }
+        }
+        self.output.sweep_goes_on(self.tally.done, self.tally.failed);
+        Ok(())
+    }
+
+    fn sweep_done(&mut self, sweep: &SweepStart, _left_out: u64) {
+        self.output.sweep_ends();
+        let archived = self.archive.sweep(&sweep.name).map_or(0, |sweep| sweep.count());
+        if self.tally.done < archived {
+            self.extra.push(format!("{}: fewer points", sweep.name));
+        }
     }
 }

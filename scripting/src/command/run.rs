@@ -101,6 +101,11 @@ impl Run {
             output.diagnostic(error, Some(&source));
         }
         end(output, writer, &header, &path, &outcome, self.quiet)?;
+        if let (Some(share), Some(sweep)) = (self.part, &outcome.waits_for) {
+            output.remark(&format!(
+                "part {share} ends where the script reads the table of the sweep `{sweep}`: `epiloom gather` goes on from there with all parts"
+            ));
+        }
         Ok(ending(&outcome, failed))
     }
 
@@ -183,7 +188,7 @@ pub fn claim_error(error: &ArchiveError, path: &Path) -> Diagnostic {
 }
 
 /// How the run ended for the shell.
-fn ending(outcome: &language::RunOutcome, failed: usize) -> Exit {
+pub fn ending(outcome: &language::RunOutcome, failed: usize) -> Exit {
     let worst = outcome.errors.iter().map(|error| match Exit::of(error.code) {
         exit @ (Exit::Internal | Exit::Interrupted) => exit,
         _ if error.code == codes::UNWRITABLE => Exit::File,
@@ -198,7 +203,10 @@ fn ending(outcome: &language::RunOutcome, failed: usize) -> Exit {
 }
 
 /// Refuses to replace anything but an earlier archive of the same script.
-fn may_replace(path: &Path, script: &str) -> Result<(), Box<Diagnostic>> {
+///
+/// # Errors
+/// What stands there instead.
+pub fn may_replace(path: &Path, script: &str) -> Result<(), Box<Diagnostic>> {
     if !path.try_exists().unwrap_or(false) {
         return Ok(());
     }
@@ -226,7 +234,7 @@ fn kept(error: &ArchiveError, path: &Path) -> Diagnostic {
 }
 
 /// A flag that Ctrl-C raises; a second Ctrl-C ends the process at once, which loses nothing that is stored.
-fn stop_on_interrupt(output: &mut Output) -> Arc<AtomicBool> {
+pub fn stop_on_interrupt(output: &mut Output) -> Arc<AtomicBool> {
     let flag = Arc::new(AtomicBool::new(false));
     let raised = Arc::clone(&flag);
     let set = ctrlc::set_handler(move || {

@@ -3,26 +3,46 @@
 use std::fmt::Write;
 use std::path::{Path, PathBuf};
 
-use crate::archive::export::{json_listing, json_snapshot};
+use crate::archive::export::{Sheet, json_listing, json_point, json_sheet, json_snapshot};
 use crate::archive::{Archive, ArchiveError, RunHeader, Status};
+use crate::diagnostics::{Diagnostic, codes};
 
 use super::columns::{Align, columns};
 use super::exit::Exit;
 use super::output::Output;
 use super::report::{snapshot_text, stack_text, value_text, warnings_text};
-use super::trouble::{archive_error, archive_warning};
+use super::table::{FIRST_ROWS, point_of, point_text, sheet_text, sweep_line};
+use super::trouble::{archive_error, archive_warning, damage};
 
 /// `epiloom show FILE [SNAPSHOT]`.
 #[derive(clap::Args, Debug)]
+#[command(after_help = "\
+`map/12` is point 12 of the sweep `map`, and `map/12/bands` what that point stored as `bands`: one point of a million is
+read without the others. `--table map` shows the sweep, a row a point, numbers to the place of their numerical error.")]
 pub struct Show {
     /// The archive
     #[arg(value_hint = clap::ValueHint::FilePath)]
     pub file: PathBuf,
-    /// The snapshot; without one all are listed
+    /// The snapshot, or a point of a sweep such as map/12; without one all are listed
     pub snapshot: Option<String>,
-    /// Print JSON, with every number of the snapshot
+    /// Print JSON, with every number of the snapshot, the point or the table
     #[arg(long)]
     pub json: bool,
+    /// The sweep to show as a table
+    #[arg(long, value_name = "SWEEP", conflicts_with = "snapshot")]
+    pub table: Option<String>,
+    /// Order the table by this column, points without a value last
+    #[arg(long, value_name = "COLUMN", requires = "table")]
+    pub sort: Option<String>,
+    /// The largest first
+    #[arg(long, requires = "sort")]
+    pub descending: bool,
+    /// Show all rows of the table, not the first ones only
+    #[arg(long, requires = "table", conflicts_with = "rows")]
+    pub all: bool,
+    /// Rows of the table to show
+    #[arg(long, value_name = "N", requires = "table", default_value_t = FIRST_ROWS)]
+    pub rows: usize,
 }
 
 impl Show {
@@ -32,19 +52,32 @@ impl Show {
             Ok(archive) => archive,
             Err(exit) => return exit,
         };
+        if let Some(name) = &self.table {
+            return self.table(&archive, name, output);
+        }
         let mut all_whole = true;
         let text = match (&self.snapshot, self.json) {
             (None, json) => {
                 all_whole = tell_damaged(&archive, output);
                 if json { json_listing(&archive) } else { Ok(listing(&archive).into_bytes()) }
             }
+            (Some(name), json) if let Some((sweep, index)) = point_of(&archive, name) => {
+                archive.point(&sweep.name, index).and_then(|point| {
+                    if json { json_point(sweep, &point) } else { Ok(point_text(sweep, &point).into_bytes()) }
+                })
+            }
             (Some(name), json) => archive.snapshot(name).and_then(|snapshot| {
                 if json {
                     return json_snapshot(&snapshot);
                 }
-                let stack = stack_text(&snapshot.stack);
+                // figures that a script put together itself belong to no stack
+                let stack = if snapshot.stack.layers.is_empty() {
+                    String::new()
+                } else {
+                    format!("{}\n", stack_text(&snapshot.stack))
+                };
                 let warnings = warnings_text(&snapshot.warnings);
-                Ok(format!("{stack}\n{}{warnings}", snapshot_text(&snapshot)).into_bytes())
+                Ok(format!("{stack}{}{warnings}", snapshot_text(&snapshot)).into_bytes())
             }),
         };
         match text {
@@ -57,16 +90,55 @@ impl Show {
     }
 }
 
-/// Reads every snapshot, names the damaged ones, and says whether all are whole.
+impl Show {
+    /// Shows a sweep as a table.
+    fn table(&self, archive: &Archive, name: &str, output: &mut Output) -> Exit {
+        let sheet = match archive.sweep(name).and_then(|sweep| Sheet::of(archive, sweep)) {
+            Ok(sheet) => sheet,
+            Err(error) => return tell(&error, output),
+        };
+        if self.json {
+            return match json_sheet(&sheet) {
+                Ok(text) => {
+                    output.result(&String::from_utf8_lossy(&text));
+                    condition(archive)
+                }
+                Err(error) => tell(&error, output),
+            };
+        }
+        let order = match sheet.order_by(self.sort.as_deref().unwrap_or("point"), self.descending) {
+            Ok(order) => order,
+            Err(names) => {
+                let wanted = self.sort.as_deref().unwrap_or_default();
+                let fault = Diagnostic::new(
+                    codes::UNKNOWN_SNAPSHOT,
+                    format!("the sweep `{name}` has no column `{wanted}`"),
+                );
+                output.diagnostic(&fault.help(format!("there is point, {}", names.join(", "))), None);
+                return Exit::Usage;
+            }
+        };
+        let most = if self.all { usize::MAX } else { self.rows };
+        output.result(&sheet_text(&sheet, &order, most));
+        condition(archive)
+    }
+}
+
+/// Reads every snapshot and every point, names the damaged ones, and says whether all are whole.
 fn tell_damaged(archive: &Archive, output: &mut Output) -> bool {
-    let mut all_whole = true;
-    for index in 0..archive.entries().len() {
-        if let Err(error) = archive.snapshot_at(index) {
+    match archive.verify() {
+        Ok(damaged) => {
+            // what was found on opening is told already
+            for warning in damaged.iter().filter(|each| !archive.warnings().contains(each)) {
+                output.diagnostic(&damage(warning), None);
+            }
+            damaged.is_empty()
+        }
+        Err(error) => {
             tell(&error, output);
-            all_whole = false;
+            false
         }
     }
-    all_whole
 }
 
 /// Opens an archive and says what is amiss in it.
@@ -109,7 +181,17 @@ fn listing(archive: &Archive) -> String {
         };
         rows.push(vec![entry.label.name.clone(), entry.label.kind.clone(), status]);
     }
-    text.push_str(&columns(&rows, &[], 0));
+    if rows.len() > 1 || archive.sweeps().is_empty() {
+        text.push_str(&columns(&rows, &[], 0));
+    }
+    if !archive.sweeps().is_empty() {
+        if rows.len() > 1 {
+            text.push('\n');
+        }
+        let mut rows = vec![vec!["sweep".to_string(), "points".to_string(), "plan".to_string()]];
+        rows.extend(archive.sweeps().iter().map(sweep_line));
+        text.push_str(&columns(&rows, &[], 0));
+    }
     text
 }
 

@@ -34,6 +34,11 @@ pub fn writing_error(error: &ArchiveError) -> Diagnostic {
     }
 }
 
+/// Damage that was found by reading, which is an error for whoever wants that part.
+pub fn damage(warning: &ArchiveWarning) -> Diagnostic {
+    diagnostic(codes::DAMAGED_FRAME, warning.to_string(), None)
+}
+
 /// An archive's warning for a person.
 pub fn archive_warning(warning: &ArchiveWarning) -> Diagnostic {
     let code = match warning {

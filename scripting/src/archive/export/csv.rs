@@ -5,6 +5,7 @@
 
 use std::collections::BTreeSet;
 
+use super::sheet::{Sheet, SheetCells};
 use super::{plain_name, unique_name};
 use crate::archive::error::ArchiveError;
 use crate::archive::model::{Figure, Ledger, Snapshot, Table};
@@ -65,7 +66,8 @@ pub fn csv_documents(snapshot: &Snapshot) -> Result<Vec<CsvDocument>, ArchiveErr
     named.map(document).collect()
 }
 
-fn number(value: f64) -> String {
+/// A number as the shortest decimal that reads back as the same bits.
+pub(super) fn number(value: f64) -> String {
     let size = value.abs();
     if value.is_nan() {
         "NaN".to_owned()
@@ -87,6 +89,51 @@ fn written(fill: impl FnOnce(&mut Lines) -> csv::Result<()>) -> Result<Vec<u8>, 
     let mut lines = csv::Writer::from_writer(Vec::new());
     fill(&mut lines).map_err(|error| failed(error.to_string()))?;
     lines.into_inner().map_err(|error| failed(error.to_string()))
+}
+
+/// A sweep: the index of each point, its columns with units in their names and errors beside them, and the reason.
+///
+/// # Errors
+/// [`ArchiveError::Encoding`].
+pub fn csv_sheet(sheet: &Sheet) -> Result<Vec<u8>, ArchiveError> {
+    written(|lines| {
+        let mut taken = BTreeSet::new();
+        let mut heading = vec![unique_name("point".to_owned(), &mut taken)];
+        for column in &sheet.columns {
+            heading.push(unique_name(column.title(), &mut taken));
+            if matches!(&column.cells, SheetCells::Numbers { errors, .. } if !errors.is_empty()) {
+                heading.push(unique_name(column.error_title(), &mut taken));
+            }
+        }
+        heading.push(unique_name("reason".to_owned(), &mut taken));
+        lines.write_record(&heading)?;
+        for (row, index) in sheet.indices.iter().enumerate() {
+            lines.write_field(index.to_string())?;
+            for column in &sheet.columns {
+                match &column.cells {
+                    SheetCells::Numbers { values, errors } => {
+                        lines.write_field(optional(values[row]))?;
+                        if let Some(error) = errors.get(row) {
+                            lines.write_field(optional(*error))?;
+                        }
+                    }
+                    SheetCells::Flags(flags) => {
+                        lines.write_field(match flags[row] {
+                            Some(true) => "yes",
+                            Some(false) => "no",
+                            None => "",
+                        })?;
+                    }
+                    SheetCells::Texts(texts) => {
+                        lines.write_field(texts[row].as_deref().unwrap_or_default())?
+                    }
+                }
+            }
+            lines.write_field(&sheet.reasons[row])?;
+            lines.write_record(None::<&[u8]>)?;
+        }
+        Ok(())
+    })
 }
 
 fn table_bytes(table: &Table) -> Result<Vec<u8>, ArchiveError> {

@@ -9,6 +9,10 @@ use crate::archive::model::{
     Snapshot, Stack, Status, Table, Value,
 };
 use crate::archive::reader::{Archive, Entry};
+use crate::archive::stored::Sweep;
+use crate::archive::sweep::{Cell, StoredPoint, SweepColumn};
+
+use super::sheet::{Sheet, SheetCells, SheetColumn};
 
 /// The snapshot as JSON, ended by a line feed.
 ///
@@ -26,9 +30,162 @@ pub fn json_listing(archive: &Archive) -> Result<Vec<u8>, ArchiveError> {
     text(&ListingView {
         run: archive.run().ok().map(RunView::of),
         snapshots: archive.entries().iter().map(EntryView::of).collect(),
+        sweeps: archive.sweeps().iter().map(SweepView::of).collect(),
         finished: archive.is_finished(),
         warnings: archive.warnings().iter().map(ToString::to_string).collect(),
     })
+}
+
+/// A sweep as JSON: its points' indices, its columns with units, errors and reasons, ended by a line feed.
+///
+/// # Errors
+/// [`ArchiveError::Encoding`].
+pub fn json_sheet(sheet: &Sheet) -> Result<Vec<u8>, ArchiveError> {
+    text(&SheetView {
+        sweep: &sheet.name,
+        points: &sheet.indices,
+        columns: sheet.columns.iter().map(SheetColumnView::of).collect(),
+        reasons: &sheet.reasons,
+    })
+}
+
+/// One point as JSON: coordinates, outputs, status, lines, warnings and the names of what it stored.
+///
+/// # Errors
+/// [`ArchiveError::Encoding`].
+pub fn json_point(sweep: &Sweep, stored: &StoredPoint) -> Result<Vec<u8>, ArchiveError> {
+    let point = &stored.point;
+    let unnamed = SweepColumn::default();
+    let columns = sweep.record().map(|record| record.start.coordinates.as_slice()).unwrap_or_default();
+    let coordinate = |(place, cell)| CellView(columns.get(place).unwrap_or(&unnamed), cell);
+    text(&PointView {
+        sweep: &sweep.name,
+        point: point.index,
+        failed: match &point.status {
+            Status::Solved => None,
+            Status::Failed { reason } => Some(reason),
+        },
+        coordinates: point.coordinates.iter().enumerate().map(coordinate).collect(),
+        outputs: point.outputs.iter().map(|output| CellView(&output.column, &output.cell)).collect(),
+        printed: &point.printed,
+        warnings: &point.warnings,
+        snapshots: stored.snapshots.iter().map(|place| place.label.name.as_str()).collect(),
+    })
+}
+
+#[derive(Serialize)]
+struct PointView<'a> {
+    sweep: &'a str,
+    point: u64,
+    failed: Option<&'a String>,
+    coordinates: Vec<CellView<'a>>,
+    outputs: Vec<CellView<'a>>,
+    printed: &'a [String],
+    warnings: &'a [String],
+    snapshots: Vec<&'a str>,
+}
+
+struct CellView<'a>(&'a SweepColumn, &'a Cell);
+
+impl Serialize for CellView<'_> {
+    fn serialize<S: Serializer>(&self, serializer: S) -> Result<S::Ok, S::Error> {
+        let mut map = serializer.serialize_map(None)?;
+        map.serialize_entry("name", &self.0.name)?;
+        map.serialize_entry("unit", &self.0.unit)?;
+        match self.1 {
+            Cell::Number { value, error } => {
+                put_number(&mut map, Some(*value), None)?;
+                map.serialize_entry("numerical_error", error)?;
+            }
+            Cell::Text(text) => map.serialize_entry("value", text)?,
+            Cell::Flag(flag) => map.serialize_entry("value", flag)?,
+            Cell::Absent { reason } => put_number(&mut map, None, Some(reason))?,
+        }
+        map.end()
+    }
+}
+
+#[derive(Serialize)]
+struct SheetView<'a> {
+    sweep: &'a str,
+    points: &'a [u64],
+    columns: Vec<SheetColumnView<'a>>,
+    /// Why a point failed, or has no value in a column; empty where there is nothing to say.
+    reasons: &'a [String],
+}
+
+#[derive(Serialize)]
+struct SheetColumnView<'a> {
+    name: &'a str,
+    unit: &'a str,
+    coordinate: bool,
+    #[serde(flatten)]
+    cells: CellsView<'a>,
+}
+
+#[derive(Serialize)]
+#[serde(untagged)]
+enum CellsView<'a> {
+    Numbers {
+        values: &'a [Option<f64>],
+        #[serde(skip_serializing_if = "<[_]>::is_empty")]
+        numerical_errors: &'a [Option<f64>],
+        #[serde(skip_serializing_if = "Vec::is_empty")]
+        not_numbers: Vec<NoNumber>,
+    },
+    Flags {
+        values: &'a [Option<bool>],
+    },
+    Texts {
+        values: &'a [Option<String>],
+    },
+}
+
+impl<'a> SheetColumnView<'a> {
+    fn of(column: &'a SheetColumn) -> Self {
+        let cells = match &column.cells {
+            SheetCells::Numbers { values, errors } => CellsView::Numbers {
+                values,
+                numerical_errors: errors,
+                not_numbers: values
+                    .iter()
+                    .enumerate()
+                    .filter_map(|(row, value)| {
+                        value.and_then(no_number).map(|reason| NoNumber { row, reason })
+                    })
+                    .collect(),
+            },
+            SheetCells::Flags(values) => CellsView::Flags { values },
+            SheetCells::Texts(values) => CellsView::Texts { values },
+        };
+        SheetColumnView { name: &column.name, unit: &column.unit, coordinate: column.coordinate, cells }
+    }
+}
+
+#[derive(Serialize)]
+struct SweepView<'a> {
+    name: &'a str,
+    step: u64,
+    plan: Option<&'a str>,
+    indices: Option<u64>,
+    points: u64,
+    failed: u64,
+    part: Option<String>,
+}
+
+impl<'a> SweepView<'a> {
+    fn of(sweep: &'a Sweep) -> Self {
+        let record = sweep.record();
+        SweepView {
+            name: &sweep.name,
+            step: sweep.step,
+            plan: record.map(|record| record.start.plan.as_str()),
+            indices: record.map(|record| record.start.points),
+            points: sweep.count(),
+            failed: sweep.failed(),
+            part: record.and_then(|record| record.share).map(|share| share.to_string()),
+        }
+    }
 }
 
 fn text(view: &impl Serialize) -> Result<Vec<u8>, ArchiveError> {
@@ -359,6 +516,7 @@ impl<'a> RunView<'a> {
 struct ListingView<'a> {
     run: Option<RunView<'a>>,
     snapshots: Vec<EntryView<'a>>,
+    sweeps: Vec<SweepView<'a>>,
     finished: bool,
     warnings: Vec<String>,
 }

@@ -3,12 +3,16 @@
 mod csv;
 mod json;
 mod npz;
+#[cfg(feature = "parquet")]
+mod parquet;
+mod sheet;
 
 use std::path::{Path, PathBuf};
 
-pub use self::csv::{CsvDocument, csv_documents, csv_names};
-pub use self::json::{json_listing, json_snapshot};
-pub use self::npz::npz;
+pub use self::csv::{CsvDocument, csv_documents, csv_names, csv_sheet};
+pub use self::json::{json_listing, json_point, json_sheet, json_snapshot};
+pub use self::npz::{npz, npz_sheet};
+pub use self::sheet::{Sheet, SheetCells, SheetColumn};
 
 use super::error::ArchiveError;
 use super::model::Snapshot;
@@ -23,12 +27,14 @@ pub enum Format {
     Npz,
     /// Everything, as JSON.
     Json,
+    /// Apache Parquet: sweeps only, and only where the program was built with the feature `parquet`.
+    Parquet,
 }
 
 impl Format {
     /// Every form with the word that names it.
-    pub const ALL: [(&'static str, Format); 3] =
-        [("csv", Format::Csv), ("npz", Format::Npz), ("json", Format::Json)];
+    pub const ALL: [(&'static str, Format); 4] =
+        [("csv", Format::Csv), ("npz", Format::Npz), ("json", Format::Json), ("parquet", Format::Parquet)];
 
     /// The form of that name.
     pub fn named(name: &str) -> Option<Format> {
@@ -52,11 +58,36 @@ pub fn export(snapshot: &Snapshot, format: Format, path: &Path) -> Result<Vec<Pa
         }
         Format::Npz => vec![(path.to_owned(), npz(snapshot)?)],
         Format::Json => vec![(path.to_owned(), json_snapshot(snapshot)?)],
+        Format::Parquet => {
+            let reason = "it takes sweeps; CSV, NPZ and JSON take snapshots".to_owned();
+            return Err(ArchiveError::Encoding { what: "a snapshot as Parquet".to_owned(), reason });
+        }
     };
     for (file, bytes) in &files {
         write_whole(file, bytes)?;
     }
     Ok(files.into_iter().map(|(file, _)| file).collect())
+}
+
+/// Writes the sweep in that form to one file, beside its place and renamed.
+///
+/// # Errors
+/// [`ArchiveError::Io`], [`ArchiveError::Encoding`].
+pub fn export_sheet(sheet: &Sheet, format: Format, path: &Path) -> Result<(), ArchiveError> {
+    let bytes = match format {
+        Format::Csv => csv_sheet(sheet)?,
+        Format::Npz => npz_sheet(sheet)?,
+        Format::Json => json_sheet(sheet)?,
+        #[cfg(feature = "parquet")]
+        Format::Parquet => self::parquet::parquet(sheet)?,
+        #[cfg(not(feature = "parquet"))]
+        Format::Parquet => {
+            let reason =
+                "this program was built without it: cargo build --release --features parquet".to_owned();
+            return Err(ArchiveError::Encoding { what: "Parquet".to_owned(), reason });
+        }
+    };
+    write_whole(path, &bytes)
 }
 
 /// `path` with a suffix before its ending.

@@ -11,6 +11,7 @@ use std::io::{Cursor, Write};
 use zip::write::SimpleFileOptions;
 use zip::{CompressionMethod, DateTime, ZipWriter};
 
+use super::sheet::{Sheet, SheetCells};
 use super::{plain_name, unique_name};
 use crate::archive::error::ArchiveError;
 use crate::archive::model::{Snapshot, Value};
@@ -63,6 +64,43 @@ pub fn npz(snapshot: &Snapshot) -> Result<Vec<u8>, ArchiveError> {
         arrays.numbers("conditions.value", &shown.iter().map(|(_, value, _)| *value).collect::<Vec<_>>())?;
         arrays.texts("conditions.unit", shown.iter().map(|(.., unit)| *unit))?;
     }
+    Ok(arrays.zip.finish().map_err(failed)?.into_inner())
+}
+
+/// The sweep as the bytes of an NPZ file: `point`, one array a column under its name with its unit (`bsf_nm`) and one
+/// for its errors (`voc_error_V`), `reason`. Absent numbers are NaN, flags `|b1` with `NAME_known` beside them where some
+/// are absent.
+///
+/// # Errors
+/// [`ArchiveError::Encoding`].
+pub fn npz_sheet(sheet: &Sheet) -> Result<Vec<u8>, ArchiveError> {
+    let mut arrays = Arrays { zip: ZipWriter::new(Cursor::new(Vec::new())), taken: BTreeSet::new() };
+    let indices: Vec<u8> = sheet.indices.iter().flat_map(|index| index.to_le_bytes()).collect();
+    arrays.put("point", "<u8", sheet.rows(), &indices)?;
+    let or_nan = |list: &[Option<f64>]| -> Vec<f64> { list.iter().map(|v| v.unwrap_or(f64::NAN)).collect() };
+    for column in &sheet.columns {
+        match &column.cells {
+            SheetCells::Numbers { values, errors } => {
+                arrays.numbers(&column.title(), &or_nan(values))?;
+                if !errors.is_empty() {
+                    arrays.numbers(&column.error_title(), &or_nan(errors))?;
+                }
+            }
+            SheetCells::Flags(flags) => {
+                let bytes: Vec<u8> = flags.iter().map(|flag| u8::from(*flag == Some(true))).collect();
+                arrays.put(&column.title(), "|b1", flags.len(), &bytes)?;
+                if flags.contains(&None) {
+                    let known: Vec<u8> = flags.iter().map(|flag| u8::from(flag.is_some())).collect();
+                    arrays.put(&format!("{}_known", column.name), "|b1", flags.len(), &known)?;
+                }
+            }
+            SheetCells::Texts(texts) => {
+                arrays
+                    .texts(&column.title(), texts.iter().map(|text| text.as_deref().unwrap_or_default()))?;
+            }
+        }
+    }
+    arrays.texts("reason", sheet.reasons.iter().map(String::as_str))?;
     Ok(arrays.zip.finish().map_err(failed)?.into_inner())
 }
 

@@ -97,7 +97,8 @@ fn an_export_leaves_the_files_it_names_and_no_others() {
     let folder = tempfile::tempdir().unwrap();
     let snapshot = sample::snapshot("light J-V", 1);
     let mut expected = Vec::new();
-    for (word, format) in Format::ALL {
+    // Parquet takes sweeps alone
+    for (word, format) in Format::ALL.into_iter().filter(|(_, format)| *format != Format::Parquet) {
         let path = folder.path().join(format!("out.{word}"));
         std::fs::write(&path, "an older export").unwrap();
         expected.extend(export(&snapshot, Format::named(word).unwrap(), &path).unwrap());

@@ -4,6 +4,7 @@
 use std::path::Path;
 
 use super::sample;
+use crate::archive::gather::ranges;
 use crate::archive::*;
 
 /// The points of a sweep as they are read, with their snapshots.
@@ -120,7 +121,7 @@ fn many_point(index: u64, extra: usize) -> Point {
 fn the_finished_bytes_do_not_depend_on_batches_or_order() {
     let folder = tempfile::tempdir().unwrap();
     for (extra, blocks) in [(1, 3), (9000, 6)] {
-        let first = write_many(folder.path(), 1, extra);
+        let first = write_many(folder.path(), 97, extra);
         for batch in [64, 1000, 2500] {
             assert!(write_many(folder.path(), batch, extra) == first, "batches of {batch}");
         }
@@ -292,4 +293,85 @@ fn names_and_points_that_do_not_fit_are_refused() {
     writer.append_points("map", point(|_| {})).unwrap();
     let archive = Archive::open(&writer.abandon().unwrap()).unwrap();
     assert_eq!((archive.sweep("map").unwrap().count(), archive.is_damaged()), (1, false));
+}
+
+/// The archives of the two halves of the sample's sweep, with its snapshots left to the gathering.
+fn halves(folder: &Path) -> Vec<(std::path::PathBuf, Archive)> {
+    (1..=2)
+        .map(|number| {
+            let share = Share { number, of: 2 };
+            let path = folder.join(format!("half-{number}.epiloom"));
+            let mut writer = Writer::resume(&path, &sample::run(), Some(share)).unwrap();
+            let _ = writer.begin_sweep(&sample::sweep_start()).unwrap();
+            let points: Vec<Point> =
+                sample::points().into_iter().filter(|point| share.holds(point.index)).collect();
+            // of nine indices 1 and 4 are left out by the filter: one in each half
+            let left_out = share.count(9) - points.len() as u64;
+            writer.append_points("map", points).unwrap();
+            writer.finish_sweep("map", left_out).unwrap();
+            let file = writer.finish(&sample::run()).unwrap();
+            let archive = Archive::open(&file).unwrap();
+            (file, archive)
+        })
+        .collect()
+}
+
+/// A single run is the source of truth: its bytes and those gathered of parts are the same.
+#[test]
+fn gathered_parts_give_the_bytes_of_a_single_run() {
+    let folder = tempfile::tempdir().unwrap();
+    let whole = std::fs::read(sample::write_swept_finished(folder.path())).unwrap();
+    let path = folder.path().join("gathered.epiloom");
+    let parts = Parts::of(halves(folder.path())).unwrap();
+    assert_eq!((parts.run(), parts.count()), (&sample::run(), 2));
+    assert_eq!(parts.copy_into(&path).unwrap(), 7);
+    assert_eq!(parts.copy_into(&path).unwrap(), 0, "what is there is not copied again");
+    let mut writer = Writer::resume(&path, &sample::run(), None).unwrap();
+    writer.append(&sample::snapshot("light J-V", 0)).unwrap();
+    assert_eq!(writer.begin_sweep(&sample::sweep_start()).unwrap().count(), 7);
+    writer.finish_sweep("map", 2).unwrap();
+    writer.append(&sample::failed("bands", 2)).unwrap();
+    writer.finish(&sample::run()).unwrap();
+    assert!(std::fs::read(path).unwrap() == whole);
+}
+
+/// What is wrong with parts is named: made wrong one way each.
+#[test]
+fn parts_that_make_no_whole_are_named() {
+    let folder = tempfile::tempdir().unwrap();
+    let refused = |archives: Vec<(std::path::PathBuf, Archive)>| Parts::of(archives).unwrap_err().what;
+    let again = |path: &Path| (path.to_owned(), Archive::open(path).unwrap());
+    let mut one = halves(folder.path());
+    let second = one.pop().unwrap().0;
+    let first = one[0].0.clone();
+    assert_eq!(refused(one), "part 2 of 2 is missing");
+    assert!(refused(vec![again(&first), again(&second), again(&first)]).contains("part 1/2 is there twice"));
+    let whole = sample::write_swept_finished(folder.path());
+    assert!(refused(vec![again(&first), again(&whole)]).contains("is no part"));
+    let unfinished = sample::write_swept_unfinished(folder.path());
+    assert!(refused(vec![again(&first), again(&unfinished)]).contains("is not finished"));
+    assert!(refused(vec![again(&sample::write_finished(folder.path()))]).contains("holds no sweep"));
+
+    let made = |share: Share, header: &RunHeader, left_out: Option<u64>| {
+        let path = folder.path().join("made.epiloom");
+        let mut writer = Writer::resume(&path, header, Some(share)).unwrap();
+        let _ = writer.begin_sweep(&sample::sweep_start()).unwrap();
+        if let Some(left_out) = left_out {
+            writer.finish_sweep("map", left_out).unwrap();
+        }
+        writer.finish(header).unwrap()
+    };
+    let (half, third) = (Share { number: 2, of: 2 }, Share { number: 2, of: 3 });
+    for (share, version, left_out, word) in [
+        (half, "9", Some(4), "versions 9 and 0.1.0"),
+        (third, "0.1.0", Some(3), "is part 2/3"),
+        (half, "0.1.0", Some(3), "does not hold all its points"),
+        (half, "0.1.0", None, "does not hold all its points"),
+    ] {
+        let header = RunHeader { program_version: version.to_owned(), ..sample::run() };
+        let file = made(share, &header, left_out);
+        let why = refused(vec![again(&first), again(&file)]);
+        assert!(why.contains(word), "{why}");
+    }
+    assert_eq!(ranges(&[1, 3, 4, 7, 8, 9, 12]), "1, 3, 4, 7 to 9, 12");
 }

@@ -24,6 +24,10 @@ super::rows! {
         "The unfinished archive is locked by a run that is still going on. Wait for it, or give this run another \
          name.",
         "epiloom run cell.rhai --out cell_second.epiloom";
+    NOT_PARTS = "E406", "archives that are not the parts of one run",
+        "`epiloom gather` takes the archives of `epiloom run --part K/N`: all N of them, each once, each finished, of \
+         one script with the same inputs, data files and version. The message names what is missing or different.",
+        "epiloom gather map.part-*-of-64.epiloom -o map.epiloom";
     NOT_AN_ARCHIVE = "E410", "not an archive",
         "The file does not begin as an archive of Epiloom does. It may be another kind of file, or its beginning may \
          be destroyed.",
