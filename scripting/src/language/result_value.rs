@@ -2,7 +2,7 @@
 
 use std::sync::Arc;
 
-use epiloom_solver::analysis::{BiasPoint, CurrentVoltage, Figure, Outcome, SpectralResponse};
+use epiloom_solver::analysis::{BiasPoint, Capacitance, CurrentVoltage, Figure, Outcome, SpectralResponse};
 use epiloom_solver::device::{Device, Stack};
 use rhai::Dynamic;
 
@@ -35,6 +35,10 @@ pub struct StateValue(pub Arc<Solved<BiasPoint>>);
 /// A spectral response.
 #[derive(Clone, Debug)]
 pub struct ResponseValue(pub Arc<Solved<SpectralResponse>>);
+
+/// Capacitance against voltage.
+#[derive(Clone, Debug)]
+pub struct CapacitanceValue(pub Arc<Solved<Capacitance>>);
 
 /// A figure of the solver as a quantity shown in a unit.
 pub fn figure(figure: &Figure, dimension: Dimension, unit: &str) -> Quantity {

@@ -1,7 +1,8 @@
 //! From results to snapshots of the archive: the words and units that a person reads, chosen once.
 
 use epiloom_solver::analysis::{
-    BiasPoint, CurrentVoltage, LedgerPart, Outcome, Profiles, SpectralResponse, Warning,
+    BiasPoint, Capacitance, CapacitancePoint, CurrentVoltage, LedgerPart, Outcome, Profiles,
+    SpectralResponse, Warning,
 };
 use epiloom_solver::optics::Shares;
 use epiloom_solver::quantity::constants::{BOLTZMANN, ELEMENTARY_CHARGE};
@@ -157,6 +158,28 @@ pub fn response(
         Column::new("escaped_share", "", share(|s| s.escaped)),
     ]);
     snapshot.tables.push(Table::new("response", columns));
+    snapshot
+}
+
+/// Capacitance against voltage.
+pub fn capacitance(name: &str, step: u64, solved: &Solved<Capacitance>, result: &Capacitance) -> Snapshot {
+    let mut snapshot = begin(name, "C-V", step, solved, &result.warnings);
+    nodes_condition(&mut snapshot, &result.nodes);
+    let column = |name: &str, unit: &str, f: fn(&CapacitancePoint) -> f64| {
+        let values = result.points.iter().map(|p| in_unit(f(p), unit)).collect();
+        Column::new(format!("{name}_{unit}"), unit, values)
+    };
+    snapshot.tables.push(Table::new(
+        "capacitance",
+        vec![
+            column("voltage", "V", |p| p.voltage),
+            column("capacitance", "nF_per_cm2", |p| p.capacitance.value),
+            column("capacitance_error", "nF_per_cm2", |p| p.capacitance.error),
+            column("stored", "nF_per_cm2", |p| p.stored.value),
+            column("stored_error", "nF_per_cm2", |p| p.stored.error),
+            column("conductance", "mS_per_cm2", |p| p.conductance),
+        ],
+    ));
     snapshot
 }
 

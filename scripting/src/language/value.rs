@@ -12,7 +12,7 @@ use super::fault::{Fault, Faults, Place};
 use super::light_value::LightValue;
 use super::plan::{PlanValue, SpreadValue};
 use super::quantity::Quantity;
-use super::result_value::{CurveValue, ResponseValue, StateValue};
+use super::result_value::{CapacitanceValue, CurveValue, ResponseValue, StateValue};
 use super::session::Session;
 use super::table::TableValue;
 
@@ -61,6 +61,7 @@ pub const KINDS: &[(&str, &str)] = &[
     ("plan", "plan"),
     ("spread", "spread"),
     ("table", "table"),
+    ("C-V curve", "C-V curve"),
 ];
 
 /// "a layer", "an array".
@@ -291,6 +292,7 @@ pub fn register(engine: &mut Engine, session: &Arc<Session>) {
     shown::<PlanValue>(engine, |p| format!("plan: {}, {} points", p.0.words(), p.0.size));
     shown::<SpreadValue>(engine, |s| s.0.words());
     shown::<TableValue>(engine, |t| t.0.words());
+    shown::<CapacitanceValue>(engine, |c| format!("C-V curve of `{}`", c.0.stack.name));
     shown::<ResponseValue>(engine, |r| format!("spectral response of `{}`", r.0.stack.name));
     let words = |faults: &mut Faults| -> String {
         let messages: Vec<&str> = faults.0.iter().map(|f| f.message.as_str()).collect();

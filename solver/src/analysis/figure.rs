@@ -27,6 +27,13 @@ impl Figure {
         let e = crate::solve::extrapolation::extrapolate(&levels);
         Figure { value: e.value, error: e.error, levels }
     }
+    /// The grid convergence index of the last three meshes, which halve the spacing; `None` with fewer or without an order.
+    pub fn grid_convergence(&self) -> Option<crate::solve::GridConvergence> {
+        match self.levels[..] {
+            [.., coarse, middle, fine] => crate::solve::grid_convergence(fine, middle, coarse, 2.0),
+            _ => None,
+        }
+    }
     /// The order of accuracy that the last three meshes show; NaN where they are fewer or their differences vanish.
     pub fn observed_order(&self) -> f64 {
         crate::solve::extrapolation::extrapolate(&self.levels).order

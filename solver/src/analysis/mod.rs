@@ -1,6 +1,7 @@
 //! The top floor: what a person asks of a device.
 
 pub mod bias_point;
+pub mod capacitance;
 pub mod collection;
 pub mod current_voltage;
 pub mod figure;
@@ -12,11 +13,15 @@ pub mod spectral_response;
 
 pub use crate::solve::Work as WorkCounts;
 pub use bias_point::{bias_point, equilibrium};
+pub use capacitance::capacitance;
 pub use current_voltage::current_voltage;
 pub use figure::{Absent, Figure, Outcome};
 pub use ladder::{AnalysisError, LARGEST_VOLTAGE};
 pub use ledger::{Ledger, LedgerLine, LedgerPart};
-pub use results::{BiasPoint, CurrentVoltage, JvPoint, Profiles, SpectralResponse, Voltages, Warning};
+pub use results::{
+    BiasPoint, Capacitance, CapacitancePoint, CurrentVoltage, JvPoint, Profiles, SpectralResponse, Voltages,
+    Warning,
+};
 pub use spectral_response::spectral_response;
 
 #[cfg(test)]

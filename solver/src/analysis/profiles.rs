@@ -68,8 +68,15 @@ pub(crate) fn profiles(problem: &Problem, point: &Point, collection: &[f64]) -> 
             (None, None) => 0.0,
         };
         let nodes = &point.state.nodes;
-        out.field
-            .push(mean(&|k| -(nodes[k + 1][0] - nodes[k][0]) / c.cells[k].width * volt / scales::LENGTH));
+        let on_edge = mean(&|k| -(nodes[k + 1][0] - nodes[k][0]) / c.cells[k].width);
+        // At a layer's ends the field is that of the edge and what the half volume's charge adds up to the node (Gauss).
+        let charge = local.side.p - local.side.n + entry.doping;
+        let field = match (left, right) {
+            (Some(a), None) => on_edge + 0.5 * charge / c.cells[a].displacement,
+            (None, Some(b)) => on_edge - 0.5 * charge / c.cells[b].displacement,
+            _ => on_edge,
+        };
+        out.field.push(field * volt / scales::LENGTH);
         out.electron_current.push(mean(&|k| sense * system.electron_flux[k]));
         out.hole_current.push(mean(&|k| sense * system.hole_flux[k]));
         out.shockley_read_hall.push(local.rates[0] * rate);

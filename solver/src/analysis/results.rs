@@ -174,6 +174,32 @@ pub struct SpectralResponse {
     pub warnings: Vec<Warning>,
 }
 
+/// The capacitance at one voltage.
+#[derive(Clone, Debug)]
+pub struct CapacitancePoint {
+    /// Terminal voltage, V.
+    pub voltage: f64,
+    /// Capacitance per area as the frequency goes to zero, F/m^2.
+    pub capacitance: Figure,
+    /// Derivative of the stored charge by the voltage, F/m^2.
+    pub stored: Figure,
+    /// Slope dJ/dV at the terminals on the finest mesh, S/m^2.
+    pub conductance: f64,
+}
+
+/// Capacitance against voltage.
+#[derive(Clone, Debug)]
+pub struct Capacitance {
+    /// The points, in the order asked for.
+    pub points: Vec<CapacitancePoint>,
+    /// Nodes of each nested mesh, coarsest first.
+    pub nodes: Vec<usize>,
+    /// Work done on all meshes.
+    pub counts: WorkCounts,
+    /// Warnings.
+    pub warnings: Vec<Warning>,
+}
+
 /// Which voltages a current-voltage curve visits.
 #[derive(Clone, Debug, PartialEq)]
 pub enum Voltages {

@@ -24,6 +24,8 @@ pub struct Terminal {
     pub sense: f64,
     /// False where the current had to be taken from the edges themselves (both ends pin the same carrier).
     pub from_rows: bool,
+    /// Then, how each edge's current counts, with the sign of the terminal's: `[nodes - 1]`; otherwise empty.
+    pub edge_weights: Vec<f64>,
 }
 
 impl Terminal {
@@ -101,6 +103,7 @@ impl Terminal {
             magnitude,
             sense: sign,
             from_rows: true,
+            edge_weights: Vec::new(),
         }
     }
 
@@ -125,9 +128,9 @@ impl Terminal {
         let total: f64 = (0..n - 1).map(|k| 1.0 / conductance(k)).sum();
         let sign = -c.polarity;
         let mut gradient = vec![Triple::zeros(); n];
+        let edge_weights: Vec<f64> = (0..n - 1).map(|k| sign / (conductance(k) * total)).collect();
         let (mut current, mut magnitude) = (0.0, 0.0);
-        for k in 0..n - 1 {
-            let weight = sign / (conductance(k) * total);
+        for (k, &weight) in edge_weights.iter().enumerate() {
             current += weight * (system.electron_flux[k] + system.hole_flux[k]);
             magnitude += weight.abs() * (system.electron_flux[k].abs() + system.hole_flux[k].abs());
             // Rows of node k hold +flux of edge k, those of node k + 1 hold -flux.
@@ -148,6 +151,7 @@ impl Terminal {
             magnitude,
             sense: 0.0,
             from_rows: false,
+            edge_weights,
         }
     }
 }

@@ -18,7 +18,8 @@ pub use library::names;
 pub use listing::{Listing, Provenance, library, listing};
 pub use material::{Material, MaterialBase, MaterialError, Values};
 pub use optical::{
-    Absorber, Absorption, AbsorptionBasis, OpticalConstants, Refraction, film_constants, film_names,
+    Absorber, Absorption, AbsorptionBasis, OpticalConstants, Refraction, equilibrium_emission,
+    film_constants, film_names,
 };
 pub use parameter::{Kind, Parameter};
 pub use record::Origin;

@@ -4,10 +4,12 @@ pub mod continuation;
 pub mod damping;
 mod equilibrium;
 pub mod extrapolation;
+pub mod grid_convergence;
 pub mod newton;
 pub mod problem;
 mod relaxation;
 
 pub use continuation::SolveError;
+pub use grid_convergence::{GridConvergence, grid_convergence};
 pub use newton::{Drive, Point, Tolerances};
 pub use problem::{Problem, State, Work};

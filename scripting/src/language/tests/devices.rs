@@ -175,6 +175,10 @@ fn a_check_finds_all_faults_of_a_device() {
     check(&with_cell(
         "let a = cell.jv(dark(), 0.V, 1.V, -0.1.V); // ~ E228\nlet b = cell.eqe(900.nm, 300.nm, 5.nm); // ~ E227\nlet c = cell.jv(dark(), []); // ~ E228",
     ));
+    check(&with_cell(
+        "let cv = cell.capacitance(dark(), [0.V, -1.V]);\nprint(1.0 / (cv.points[0].capacitance * cv.points[0].capacitance));\nstore(\"c\", cv);\n\
+         let a = cell.capacitance(dark(), []); // ~ E228\nlet b = cell.capacitance(dark()); // ~ E104\nlet c = cell.capacitance([0.V], dark()); // ~ E107",
+    ));
     check(
         "let bare = material(\"GaAs\");\nlet cell = stack(\"a\", [\n    layer(\"base\", bare, 1.um, acceptors(1e17.per_cm3)), // ~ W201\n]);\nlet jv = cell.jv(dark());",
     );

@@ -106,13 +106,23 @@ fn every_form_of_asking_works() {
         print(cell["p"].thickness);
         let response = d.eqe([500.nm, 600.nm], #{ voltage: 0.1.V, bias_light: light });
         print(response.points.len());
+        let cv = cell.capacitance(dark(), -1.V, 0.V, 0.5.V).points;
+        print(cv[0].voltage == -1.V && cv[0].capacitance < cv[2].capacitance);
+        print(abs(cv[0].stored / cv[0].capacitance - 1) < 1e-3 && cv[0].conductance > 0.mS_per_cm2);
+        store("capacitance", cell.capacitance(dark(), [-0.5.V]));
         store("figures", #{ jsc: jv.jsc, note: 0.5 });
         store("table", [#{ v: 0.1.V, j: 1.mA_per_cm2 }, #{ v: 0.2.V, j: 2.mA_per_cm2 }]);
         "#;
     let (outcome, recorder) = run_text(text);
     assert!(outcome.errors.is_empty(), "{}", shown(text, &outcome.errors));
-    assert_eq!(recorder.lines, ["true", "true", "true", "true", "true", "true", "1", "1 um", "2"]);
-    let table = recorder.snapshots[1].table("table").expect("a table");
+    assert_eq!(
+        recorder.lines,
+        ["true", "true", "true", "true", "true", "true", "1", "1 um", "2", "true", "true"]
+    );
+    let points = recorder.snapshots[0].table("capacitance").expect("the points of a C-V curve");
+    assert_eq!(points.columns[1].name, "capacitance_nF_per_cm2");
+    assert!(points.columns[1].values[0] > 0.0);
+    let table = recorder.snapshots[2].table("table").expect("a table");
     let names: Vec<&str> = table.columns.iter().map(|c| c.name.as_str()).collect();
     assert_eq!(names, ["j_mA_per_cm2", "v_V"]);
     fails("store(\"x\", 3); // ~ E107");

@@ -7,9 +7,8 @@ use crate::language::vocabulary::{entries, topics};
 #[test]
 fn every_example_is_a_valid_script() {
     for entry in entries() {
-        let solves = [".jv(", ".figures(", ".at(", ".eqe(", ".equilibrium("]
-            .iter()
-            .any(|word| entry.example.contains(word));
+        let solving = [".jv(", ".figures(", ".at(", ".eqe(", ".equilibrium(", ".capacitance("];
+        let solves = solving.iter().any(|word| entry.example.contains(word));
         let options = RunOptions { check_only: solves, ..RunOptions::default() };
         let (outcome, _) = run_with(entry.example, options);
         assert!(outcome.errors.is_empty(), "{}:\n{}", entry.name, shown(entry.example, &outcome.errors));

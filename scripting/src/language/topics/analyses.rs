@@ -13,7 +13,7 @@ use crate::language::fault::{Fault, Faults, Place};
 use crate::language::light_value::LightValue;
 use crate::language::lower;
 use crate::language::quantity::Quantity;
-use crate::language::result_value::{CurveValue, ResponseValue, Solved, StateValue};
+use crate::language::result_value::{CapacitanceValue, CurveValue, ResponseValue, Solved, StateValue};
 use crate::language::solver_faults::{analysis_fault, device_fault};
 use crate::language::value::{Options, array, quantity, take};
 use crate::language::vocabulary::{Answer, Call, OptionRow, method, topic};
@@ -89,6 +89,17 @@ topic! {
             method::<StackValue>(engine, session, "eqe", 1..=4, eqe);
         },
     }
+    Method "capacitance" of "stack" {
+        forms: ["cell.capacitance(light, from, to, step)", "cell.capacitance(light, [voltage, ..])"],
+        doc: "Capacitance per area against voltage: what a small alternating voltage meets as its frequency goes to zero, and the \
+              derivative of the stored charge by the voltage. The two are the same in reverse; in forward the first counts what is \
+              stored on its way by the share that comes back to the terminals.",
+        example: "let gaas = material(\"GaAs\", #{ electron_lifetime: 20.ns, hole_lifetime: 20.ns });\nlet cell = stack(\"diode\", [layer(\"emitter\", gaas, 100.nm, donors(2e18.per_cm3)), layer(\"base\", gaas, 2.um, acceptors(1e17.per_cm3))]);\nfor p in cell.capacitance(dark(), [-2.V, -1.V, 0.V]).points { print(`${p.voltage} ${p.capacitance}`); }",
+        register: |engine, session| {
+            engine.register_type_with_name::<CapacitanceValue>("C-V curve");
+            method::<StackValue>(engine, session, "capacitance", 2..=4, capacitance);
+        },
+    }
 }
 
 /// Checks the stack, solves unless checking, tells warnings.
@@ -137,24 +148,8 @@ fn jv(call: &Call, arguments: &mut [&mut Dynamic]) -> Answer {
     let mut unknown = false;
     let voltages = match arguments.len() {
         2 => Voltages::Automatic,
-        3 => {
-            let list = array(arguments[2], "the voltages").map_err(|f| f.at(Place::Argument(1)))?;
-            let mut given = Vec::new();
-            for entry in &list {
-                let voltage = quantity(entry, "a voltage of the list", Dimension::VOLTAGE)
-                    .map_err(|f| f.at(Place::Argument(1)))?;
-                unknown |= voltage.unknown;
-                given.push(voltage.value);
-            }
-            if given.is_empty() {
-                return Err(Fault::new(codes::VOLTAGES, "the list of voltages is empty")
-                    .at(Place::Argument(1))
-                    .into());
-            }
-            Voltages::Given(given)
-        }
-        5 => {
-            let (given, not_known) = steps(call, &arguments[2..5], 1, Dimension::VOLTAGE, codes::VOLTAGES)?;
+        3 | 5 => {
+            let (given, not_known) = given_voltages(call, arguments)?;
             unknown |= not_known;
             Voltages::Given(given)
         }
@@ -184,6 +179,49 @@ fn curve(call: &Call, stack: &StackValue, light: LightValue, unknown: bool, volt
         }
     }
     Ok(Dynamic::from(CurveValue(Arc::new(solved))))
+}
+
+/// The voltages after the light: a list of them, or from, to and step; and whether they are not known.
+fn given_voltages(call: &Call, arguments: &[&mut Dynamic]) -> Result<(Vec<f64>, bool), Faults> {
+    if arguments.len() == 5 {
+        return Ok(steps(call, &arguments[2..5], 1, Dimension::VOLTAGE, codes::VOLTAGES)?);
+    }
+    let list = array(arguments[2], "the voltages").map_err(|f| f.at(Place::Argument(1)))?;
+    let mut unknown = false;
+    let mut given = Vec::new();
+    for entry in &list {
+        let voltage = quantity(entry, "a voltage of the list", Dimension::VOLTAGE)
+            .map_err(|f| f.at(Place::Argument(1)))?;
+        unknown |= voltage.unknown;
+        given.push(voltage.value);
+    }
+    if given.is_empty() {
+        return Err(Fault::new(codes::VOLTAGES, "the list of voltages is empty")
+            .at(Place::Argument(1))
+            .into());
+    }
+    Ok((given, unknown))
+}
+
+fn capacitance(call: &Call, arguments: &mut [&mut Dynamic]) -> Answer {
+    let stack = stacks::of(arguments[0])?;
+    let light = light(arguments[1], 0)?;
+    if !matches!(arguments.len(), 3 | 5) {
+        return Err(Fault::new(codes::WRONG_ARGUMENTS, "`capacitance` is called in a form it does not have")
+            .help(
+                "its forms: cell.capacitance(light, from, to, step); cell.capacitance(light, [voltage, ..])",
+            )
+            .into());
+    }
+    let (voltages, unknown) = given_voltages(call, arguments)?;
+    too_many(call, voltages.len(), codes::VOLTAGES)?;
+    let solved = solve(call, &stack, light, unknown, "capacitance", |device, light| {
+        analysis::capacitance(device, light, &voltages)
+    })?;
+    if let Some(result) = &solved.result {
+        result.warnings.iter().for_each(|w| warn(call, &stack, w));
+    }
+    Ok(Dynamic::from(CapacitanceValue(Arc::new(solved))))
 }
 
 fn eqe(call: &Call, arguments: &mut [&mut Dynamic]) -> Answer {

@@ -9,7 +9,7 @@ use crate::language::fault::{Fault, Place};
 use crate::language::point;
 use crate::language::quantity::Quantity;
 use crate::language::result_value::{
-    CurveValue, FIGURES, ResponseValue, Solved, StateValue, figure, outcome,
+    CapacitanceValue, CurveValue, FIGURES, ResponseValue, Solved, StateValue, figure, outcome,
 };
 use crate::language::snapshot;
 use crate::language::table::{Extent, TableValue};
@@ -100,6 +100,25 @@ topic! {
                 };
                 let reason = curve.0.result.as_ref().and_then(|r| row.3(r).as_ref().err().map(|absent| absent.reason.clone()));
                 Ok(reason.map_or(Dynamic::UNIT, Dynamic::from))
+            });
+        },
+    }
+    Property "points" of "C-V curve" {
+        forms: ["cv.points"],
+        doc: "Its points, maps with `voltage`, `capacitance` (as the frequency goes to zero) and `stored` (the derivative of the stored \
+              charge), both per area with their numerical error, and `conductance` (dJ/dV).",
+        example: "let gaas = material(\"GaAs\", #{ electron_lifetime: 20.ns, hole_lifetime: 20.ns });\nlet cell = stack(\"diode\", [layer(\"emitter\", gaas, 100.nm, donors(2e18.per_cm3)), layer(\"base\", gaas, 2.um, acceptors(1e17.per_cm3))]);\nfor p in cell.capacitance(dark(), -3.V, 0.V, 1.V).points { print(`${p.voltage} ${1.0 / (p.capacitance * p.capacitance)}`); }",
+        register: |engine, session| {
+            getter::<CapacitanceValue>(engine, session, "points", |_, arguments| {
+                let curve: CapacitanceValue = take(arguments[0], "the curve", "a C-V curve")?;
+                Ok(match &curve.0.result {
+                    None => Dynamic::from(Unknown),
+                    Some(result) => result.points.iter().map(capacitance_point).collect::<Array>().into(),
+                })
+            });
+            index_getter::<CapacitanceValue>(engine, session, |_, arguments| {
+                let name = text(arguments[1], "a property")?;
+                Err(unknown_property("C-V curve", &name).candidates(&name, ["points"]).into())
             });
         },
     }
@@ -248,6 +267,16 @@ fn point_map(point: &analysis::JvPoint) -> Dynamic {
     );
     map.insert("conductance".into(), give(Quantity::si(point.conductance, Dimension::AREA_CONDUCTANCE)));
     Dynamic::from(map)
+}
+
+fn capacitance_point(point: &analysis::CapacitancePoint) -> Dynamic {
+    let mut map = Map::new();
+    map.insert("voltage".into(), give(Quantity::si(point.voltage, Dimension::VOLTAGE)));
+    let dimension = Dimension::CAPACITANCE_DENSITY;
+    map.insert("capacitance".into(), give(figure(&point.capacitance, dimension, "nF_per_cm2")));
+    map.insert("stored".into(), give(figure(&point.stored, dimension, "nF_per_cm2")));
+    map.insert("conductance".into(), give(Quantity::si(point.conductance, Dimension::AREA_CONDUCTANCE)));
+    map.into()
 }
 
 fn response_points(response: &SpectralResponse) -> Array {
@@ -415,11 +444,13 @@ fn store(call: &Call, arguments: &mut [&mut Dynamic]) -> Answer {
         response.0.result.as_ref().map(|result| snapshot::response(&name, step, &response.0, result))
     } else if let Some(table) = arguments[1].read_lock::<TableValue>() {
         (table.0.extent == Extent::Whole).then(|| table.0.snapshot(&name, "table", step))
+    } else if let Some(curve) = arguments[1].read_lock::<CapacitanceValue>() {
+        curve.0.result.as_ref().map(|result| snapshot::capacitance(&name, step, &curve.0, result))
     } else if arguments[1].is_array() || arguments[1].is_map() {
         let built = snapshot::figures(&name, step, arguments[1]).map_err(|f| f.at(Place::Argument(1)))?;
         (!session.checking()).then_some(built)
     } else {
-        take::<CurveValue>(arguments[1], "what is stored", "a result (`cell.jv(..)`, `cell.at(..)`, `cell.eqe(..)`), a map of figures or an array of such maps")
+        take::<CurveValue>(arguments[1], "what is stored", "a result (`cell.jv(..)`, `cell.at(..)`, `cell.eqe(..)`, `cell.capacitance(..)`), a map of figures or an array of such maps")
             .map_err(|f| f.at(Place::Argument(1)))?;
         None
     };

@@ -1,6 +1,7 @@
 //! How strongly a material absorbs, and its refractive index: tables moved to the gap wanted, analytic edges, single numbers.
 
 mod constants;
+mod emission;
 mod films;
 mod models;
 mod table;
@@ -18,6 +19,7 @@ use super::parameter::Parameter;
 use super::record::{OpticalModel, Origin};
 
 pub use constants::OpticalConstants;
+pub use emission::equilibrium_emission;
 pub use films::{film_constants, film_names};
 use table::Table;
 
