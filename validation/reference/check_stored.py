@@ -1,16 +1,19 @@
-"""Recomputes what is quick among the reference solutions and compares it with the stored JSON files; exits 1 on a difference.
+"""Runs every generator of the reference numbers and compares what it makes with the stored JSON files; exits 1 on a difference.
 
-Everything of fermi_dirac_points and detailed_balance, every current of discrete_cell and dark_diode_50_digits in double precision, one
-current of each problem again in 50 digits, one point of each collocation device, the refinement of the discrete equations towards the
-continuous currents of reference_cases.json, and the manufactured solution's own checks.
+Whole: fermi_dirac_points, detailed_balance, closed_forms, manufactured, and every current of discrete_cell and dark_diode_50_digits in
+double precision. Of what takes minutes, a part: one current of two problems again in 50 digits (every one without --quick, with the
+diodes at a few millivolts), one point of each collocation device (with --quick at a looser tolerance of the collocation), and the
+refinement of the discrete equations towards the continuous currents of reference_cases.json (with --quick of one case).
 
-Run: python check_stored.py [TABLE.csv]   (a few minutes; the table of ASTM G173-03 is looked for in the solver's data if not given)
+Run: python check_stored.py [--quick] [TABLE.csv]   (--quick: about a minute; without it a few; the table of ASTM G173-03 is looked for in
+the solver's data if not given)
 """
 
 import sys
 
 import mpmath as mp
 
+import closed_forms
 import collocation_devices
 import dark_diode_50_digits
 import detailed_balance
@@ -22,6 +25,7 @@ import problems
 from constants import HERE, read
 
 FAULTS = []
+QUICK_COLLOCATION = (1e-4, 1e-5)
 
 
 def report(what, worst, bound):
@@ -63,7 +67,12 @@ def check_tables(table):
     report("detailed balance", worst_difference(detailed_balance.compute(table), read("detailed_balance.json")), 1e-9)
 
 
-def check_discrete():
+def check_closed_forms():
+    # Ten and fifteen digits are stored; the collocation is solved to 1e-12.
+    report("slabs and the parabolic edge", worst_difference(closed_forms.compute(), read("closed_forms.json")), 2e-9)
+
+
+def check_discrete(quick):
     stored = read("discrete_cell.json")["problems"]
     fresh = discrete_cell.compute(with_digits=False)["problems"]
     for name, p in stored.items():
@@ -85,27 +94,28 @@ def check_discrete():
         parts = p["points"][0]["split_A_per_m2"]
         total = sum(sum(v.values()) if isinstance(v, dict) else v for key, v in parts.items() if key != "generation") - parts["generation"]
         report(f"{name}, the split adds up to the current", relative(total, p["points"][0]["digits"]), 1e-11)
-    for name in ("R1", "window_n_on_p"):
+    for name in ("R1",) if quick else ("R1", "window_n_on_p"):
         p, point = stored[name], stored[name]["points"][1]
         voltage, state, _ = discrete_cell.Discrete(p).sweep([point["voltage_V"]])[0]
         report(f"{name} at {voltage} V, 50 digits again", relative(discrete_equations.solve(p, voltage, state), point["digits"]), 1e-18)
 
 
-def check_dark_diode():
+def check_dark_diode(quick):
     for name, p in read("dark_diode_50_digits.json")["problems"].items():
         again = problems.wide_gap_diode(*dark_diode_50_digits.VARIANTS[name])
         assert again["nodes_m"] == p["nodes_m"] and again["layers"] == p["layers"]
         sweep = discrete_cell.Discrete(p).sweep([q["voltage_V"] for q in p["points"]])
         # Rounding of quasi-Fermi levels near 40 kT/q limits a double at 1 mV to about 1e-12.
         report(f"{name}, double against stored 50 digits", max(relative(s[2], q["current_density_A_per_m2"]) for s, q in zip(sweep, p["points"])), 1e-10)
-        if p["statistics"] == "boltzmann":
+        if p["statistics"] == "boltzmann" and not quick:
             voltage, state, _ = sweep[0]
             report(f"{name} at {voltage} V, 50 digits again", relative(discrete_equations.solve(p, voltage, state), p["points"][0]["current_density_A_per_m2"]), 1e-18)
 
 
-def check_refinement():
+def check_refinement(quick):
     """The discrete equations converge to the continuous currents: two halvings of the stored mesh, extrapolated."""
-    for name, counts in (("R1", ((200, 1.03), (300, 1.025))), ("R3", ((20, 1.1), (80, 1.1), (100, 1.1), (20, 1.1)))):
+    cases = (("R3", ((20, 1.1), (80, 1.1), (100, 1.1), (20, 1.1))), ("R1", ((200, 1.03), (300, 1.025))))
+    for name, counts in cases[:1] if quick else cases:
         p = problems.reference_case(name, counts)
         stored = read("reference_cases.json")["cases"][name]["results"]
         chosen = [v for v in stored["V"] if v in ((0.7, 1.0) if name == "R1" else (0.0, 0.8, 1.0))]
@@ -122,13 +132,14 @@ def check_refinement():
         report(f"{name} refined towards the continuous currents", worst, 3e-7)
 
 
-def check_collocation():
+def check_collocation(quick):
     stored = read("collocation_devices.json")["devices"]
     for name, kind, voltage in (("homojunction_n_on_p", "lit", 0.0), ("heterojunction_with_window", "lit", 0.0)):
         point = next(p for p in stored[name][kind] if p["voltage_V"] == voltage)
         device = read(f"devices/{name}.json")
-        again = collocation_devices.device_currents(device, kind == "lit", [voltage], lambda text: None)[0]
-        report(f"{name} by collocation", relative(again["current_density_A_per_m2"], point["current_density_A_per_m2"]), 1e-8)
+        tolerances = QUICK_COLLOCATION if quick else None
+        again = collocation_devices.device_currents(device, kind == "lit", [voltage], lambda text: None, tolerances)[0]
+        report(f"{name} by collocation", relative(again["current_density_A_per_m2"], point["current_density_A_per_m2"]), 1e-7 if quick else 1e-8)
     # In the dark at 0.2 V recombination sits in a layer of a few nm, which limits the extrapolated finite volumes to about 1e-6.
     for name, device in stored.items():
         rows = device["dark"] + device["lit"]
@@ -145,17 +156,21 @@ def check_manufactured():
 
 if __name__ == "__main__":
     mp.mp.dps = 30  # strings of 20 digits are read in full
-    if len(sys.argv) > 1:
-        table = sys.argv[1]
+    arguments = sys.argv[1:]
+    quick = "--quick" in arguments
+    tables = [a for a in arguments if a != "--quick"]
+    if tables:
+        table = tables[0]
     else:
         found = sorted((HERE.parent.parent / "solver" / "src").glob("**/astm_g173_03.csv"))
         if not found:
             sys.exit("the table of ASTM G173-03 was not found; give its path")
         table = found[0]
     check_tables(table)
-    check_discrete()
-    check_dark_diode()
-    check_refinement()
-    check_collocation()
+    check_closed_forms()
     check_manufactured()
+    check_discrete(quick)
+    check_dark_diode(quick)
+    check_refinement(quick)
+    check_collocation(quick)
     sys.exit(1 if FAULTS else 0)

@@ -185,8 +185,8 @@ TOLERANCES = (1e-6, 1e-8)
 TOLERANCES_WITH_WINDOW_LIT = (1e-5, 1e-6)
 
 
-def device_currents(device, lit, voltages, log):
-    tolerances = TOLERANCES_WITH_WINDOW_LIT if lit and len(device["layers"]) > 2 else TOLERANCES
+def device_currents(device, lit, voltages, log, tolerances=None):
+    tolerances = tolerances or (TOLERANCES_WITH_WINDOW_LIT if lit and len(device["layers"]) > 2 else TOLERANCES)
     meshes = [Discrete(finite_volumes(device, lit, r)) for r in range(3)]
     sweeps = [m.sweep(voltages) for m in meshes]
     results = []

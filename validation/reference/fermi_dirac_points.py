@@ -112,6 +112,10 @@ def compute_in_present_precision():
                 other = mp.re(-mp.polylog(order, -mp.exp(mp.mpf(eta))))
                 worst = max(worst, abs(value / other - 1))
         points.append({"eta": eta, "half": digits(half), "minus_half": digits(minus_half), "ln_half_minus_eta": digits(mp.log(half) - mp.mpf(eta))})
+    whole = []
+    for eta in range(-4, 21):
+        half, minus_half = fermi_pair(eta)
+        whole.append({"eta": float(eta), "half": digits(half), "minus_half": digits(minus_half)})
     inverse = []
     for k in range(101):
         value = float(f"{10 ** (-13 + 15.85 * k / 100):.6e}")
@@ -130,6 +134,7 @@ def compute_in_present_precision():
         "tool": "mpmath, 40 digits, 20 kept",
         "largest_difference_from_polylogarithm": mp.nstr(worst, 3),
         "fermi_dirac": points,
+        "whole": whole,
         "inverse_half": inverse,
         "bernoulli": [{"x": x, "value": digits(bernoulli(x))} for x in sorted(bernoulli_points)],
         "interval_flux": flux,

@@ -9,6 +9,38 @@ pub enum Tolerance {
     Relative(f64),
     /// In the unit of the number.
     Absolute(f64),
+    /// Not above the reference.
+    AtMost,
+    /// Not below the reference.
+    AtLeast,
+}
+
+/// Where a reference is from. Only what stands in a source that was looked at is called published.
+#[derive(Clone, Copy, Debug, PartialEq, Eq)]
+pub enum Source {
+    /// In a paper, standard or textbook that was looked at.
+    Published(&'static str),
+    /// Worked out by another program: tool and digits, and the script in `reference/` where there is one.
+    Computed(&'static str),
+    /// A closed form or an identity that algebra gives from the model's own equations.
+    Algebra(&'static str),
+    /// In the literature, as remembered.
+    Memory(&'static str),
+    /// A fact of the trade: common practice, no source.
+    Trade(&'static str),
+}
+
+impl std::fmt::Display for Source {
+    fn fmt(&self, f: &mut std::fmt::Formatter<'_>) -> std::fmt::Result {
+        match self {
+            Source::Published(text) => write!(f, "published: {text}"),
+            Source::Computed(text) => write!(f, "computed: {text}"),
+            Source::Algebra(text) => write!(f, "algebra: {text}"),
+            Source::Memory(text) => write!(f, "from memory: {text}"),
+            Source::Trade("") => write!(f, "common practice, no source"),
+            Source::Trade(text) => write!(f, "common practice, no source: {text}"),
+        }
+    }
 }
 
 /// One check.
@@ -19,7 +51,7 @@ pub struct Check {
     /// What is compared, with its unit.
     pub what: String,
     /// Where the reference is from.
-    pub source: &'static str,
+    pub source: Source,
     /// The reference.
     pub reference: f64,
     /// Our number.
@@ -38,6 +70,10 @@ impl Check {
             Tolerance::Relative(_) if apart == 0.0 => 0.0,
             Tolerance::Relative(_) => apart / self.reference.abs(),
             Tolerance::Absolute(_) => apart,
+            // How far on the wrong side; a number that is none is on it.
+            Tolerance::AtMost if self.ours <= self.reference => 0.0,
+            Tolerance::AtLeast if self.ours >= self.reference => 0.0,
+            Tolerance::AtMost | Tolerance::AtLeast => apart,
         }
     }
 
@@ -45,6 +81,7 @@ impl Check {
     pub fn allowed(&self) -> f64 {
         match self.tolerance {
             Tolerance::Relative(t) | Tolerance::Absolute(t) => t,
+            Tolerance::AtMost | Tolerance::AtLeast => 0.0,
         }
     }
 
@@ -60,6 +97,7 @@ impl Check {
             Tolerance::Relative(t) => t,
             Tolerance::Absolute(t) if size > 0.0 => t / size,
             Tolerance::Absolute(_) => return 2,
+            Tolerance::AtMost | Tolerance::AtLeast => return 4,
         };
         ((-log10(relative)).ceil() + 1.0).clamp(2.0, 14.0) as usize
     }
@@ -68,18 +106,18 @@ impl Check {
 /// The checks of one topic against one source, as they are collected.
 pub struct Checks {
     topic: &'static str,
-    source: &'static str,
+    source: Source,
     list: Vec<Check>,
 }
 
 impl Checks {
     /// No checks yet.
-    pub fn new(topic: &'static str, source: &'static str) -> Self {
+    pub fn new(topic: &'static str, source: Source) -> Self {
         Checks { topic, source, list: Vec::new() }
     }
 
     /// From here on, another source.
-    pub fn source(&mut self, source: &'static str) -> &mut Self {
+    pub fn source(&mut self, source: Source) -> &mut Self {
         self.source = source;
         self
     }
@@ -121,6 +159,16 @@ impl Checks {
         self.add(what, reference, ours, Tolerance::Absolute(difference), reason);
     }
 
+    /// One number that may not be above the reference.
+    pub fn at_most(&mut self, what: impl Into<String>, reference: f64, ours: f64, reason: &'static str) {
+        self.add(what, reference, ours, Tolerance::AtMost, reason);
+    }
+
+    /// One number that may not be below the reference.
+    pub fn at_least(&mut self, what: impl Into<String>, reference: f64, ours: f64, reason: &'static str) {
+        self.add(what, reference, ours, Tolerance::AtLeast, reason);
+    }
+
     /// Many numbers of a kind under one tolerance: the one that is furthest off stands for all. `parts` are what it is,
     /// the reference and ours.
     pub fn worst(
@@ -160,7 +208,15 @@ mod tests {
     use super::*;
 
     fn check(reference: f64, ours: f64, tolerance: Tolerance) -> Check {
-        Check { topic: "t", what: "w".into(), source: "s", reference, ours, tolerance, reason: "r" }
+        Check {
+            topic: "t",
+            what: "w".into(),
+            source: Source::Trade(""),
+            reference,
+            ours,
+            tolerance,
+            reason: "r",
+        }
     }
 
     /// Truth: arithmetic by hand. A comparison that let NaN or infinity through would hide a broken solver.
@@ -178,12 +234,16 @@ mod tests {
             assert!(!check(1.0, broken, Absolute(1.0)).passes());
         }
         assert_eq!(check(3.0, 3.0, Relative(1e-6)).digits(), 7);
+        assert!(check(2.0, 2.0, AtMost).passes() && check(2.0, 1.0, AtMost).passes());
+        assert!(check(2.0, 2.0, AtLeast).passes() && check(2.0, 3.0, AtLeast).passes());
+        assert!(!check(2.0, 2.1, AtMost).passes() && !check(2.0, 1.9, AtLeast).passes());
+        assert!(!check(2.0, f64::NAN, AtMost).passes() && !check(2.0, f64::NAN, AtLeast).passes());
     }
 
     /// Truth: by hand; a number that is not finite outranks every other.
     #[test]
     fn the_worst_stands_for_all() {
-        let mut checks = Checks::new("t", "s");
+        let mut checks = Checks::new("t", Source::Trade(""));
         let part = |name: &str, ours: f64| (name.to_string(), 1.0, ours);
         checks.worst("a", &[part("x", 1.1), part("y", 1.3), part("z", 1.2)], Tolerance::Relative(0.5), "r");
         checks.worst(

@@ -3,6 +3,7 @@
 //! Each mutant is the solver with one thing wrong in its coefficients; the checks of the discrete cells see the mutant as they
 //! would see a wrong program.
 
+use epiloom_solver::device::Statistics;
 use epiloom_solver::discretise::Coefficients;
 
 use crate::stored::StoredProblem;
@@ -24,6 +25,28 @@ const MUTANTS: &[(&str, Change)] = &[
     ("Auger of holes off", |c| c.entries.iter_mut().for_each(|e| e.hole_auger = 0.0)),
     ("front surface ignored", |c| c.contacts[0].velocity = Some(0.0)),
     ("rear surface ignored", |c| c.contacts[1].velocity = Some(0.0)),
+    ("permittivity +1 %", |c| c.cells.iter_mut().for_each(|cell| cell.displacement *= 1.01)),
+    ("affinity +1 meV in the second layer", |c| {
+        let (first, end) = (c.first[1], c.first[2]);
+        let shift = 1e-3 / c.thermal_voltage;
+        for e in &mut c.entries[first..end] {
+            (e.affinity, e.affinity_and_gap) = (e.affinity + shift, e.affinity_and_gap + shift);
+        }
+    }),
+    ("gap +1 meV in the last layer", |c| {
+        let (first, shift) = (c.first[c.first.len() - 2], 1e-3 / c.thermal_voltage);
+        c.entries[first..].iter_mut().for_each(|e| e.affinity_and_gap += shift);
+    }),
+    ("density of states of the conduction band +1 %", |c| {
+        c.entries.iter_mut().for_each(|e| e.ln_conduction += 0.01);
+    }),
+    ("doping +0.1 %", |c| c.entries.iter_mut().for_each(|e| e.doping *= 1.001)),
+    ("trap level 1 kT off", |c| {
+        for e in &mut c.entries {
+            (e.level.n1, e.level.p1) = (e.level.n1 * 2.7, e.level.p1 / 2.7);
+        }
+    }),
+    ("Boltzmann statistics", |c| c.statistics = Statistics::Boltzmann),
 ];
 
 fn failures(problem: &StoredProblem, change: &dyn Fn(&mut Coefficients<f64>)) -> (usize, usize) {

@@ -2,14 +2,14 @@
 
 use std::collections::BTreeMap;
 
-use epiloom_solver::device::{Contact, Device, Layer, LayerOptics, Profile, Stack, Statistics};
+use epiloom_solver::device::{Contact, Device, Layer, Stack, Statistics};
 use epiloom_solver::discretise::Coefficients;
-use epiloom_solver::materials::{Material, Parameter};
 use epiloom_solver::mesh::Mesh;
 use epiloom_solver::optics::{Light, LitStack};
-use epiloom_solver::quantity::constants::ELEMENTARY_CHARGE;
 use epiloom_solver::solve::{Point, Problem, Tolerances};
 use serde::Deserialize;
+
+use crate::bulk::{Bulk, device};
 
 /// What went wrong before there was a number to compare.
 pub type Failure = Box<dyn std::error::Error>;
@@ -161,40 +161,24 @@ pub fn problems(text: &str) -> Result<BTreeMap<String, StoredProblem>, Failure> 
     Ok(serde_json::from_str::<File>(text)?.problems)
 }
 
-/// Material values in the units of the trade or SI, as a custom material.
+/// A stored layer in the solver's own terms.
 pub fn layer(l: &StoredLayer) -> Layer {
-    use Parameter::*;
-    let values: BTreeMap<Parameter, f64> = [
-        (Gap, l.gap * ELEMENTARY_CHARGE),
-        (Affinity, l.affinity * ELEMENTARY_CHARGE),
-        (Permittivity, l.permittivity),
-        (ConductionDensity, l.nc),
-        (ValenceDensity, l.nv),
-        (ElectronMobility, l.electron_mobility),
-        (HoleMobility, l.hole_mobility),
-        (ElectronLifetime, l.electron_lifetime.unwrap_or(f64::INFINITY)),
-        (HoleLifetime, l.hole_lifetime.unwrap_or(f64::INFINITY)),
-        (RadiativeCoefficient, l.radiative),
-        (ElectronAuger, l.electron_auger),
-        (HoleAuger, l.hole_auger),
-        (Absorption, l.absorption),
-    ]
-    .into();
-    Layer {
-        name: l.name.clone(),
-        material: Material::custom(&l.name, values),
-        thickness: l.thickness,
-        donors: Profile::Constant(l.donors),
-        acceptors: Profile::Constant(l.acceptors),
-        composition: None,
-        optics: LayerOptics::Absorbing,
-    }
-}
-
-/// A stack that passed the solver's checks, or its faults as one failure.
-pub fn device(stack: Stack) -> Result<Device, Failure> {
-    Device::new(stack)
-        .map_err(|faults| faults.iter().map(ToString::to_string).collect::<Vec<_>>().join("; ").into())
+    let bulk = Bulk {
+        gap: l.gap,
+        affinity: l.affinity,
+        permittivity: l.permittivity,
+        nc: l.nc,
+        nv: l.nv,
+        electron_mobility: l.electron_mobility,
+        hole_mobility: l.hole_mobility,
+        electron_lifetime: l.electron_lifetime.unwrap_or(f64::INFINITY),
+        hole_lifetime: l.hole_lifetime.unwrap_or(f64::INFINITY),
+        radiative: l.radiative,
+        electron_auger: l.electron_auger,
+        hole_auger: l.hole_auger,
+        absorption: l.absorption,
+    };
+    bulk.layer(&l.name, l.thickness, l.donors, l.acceptors)
 }
 
 impl StoredProblem {

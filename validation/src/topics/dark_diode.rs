@@ -1,6 +1,6 @@
 //! The dark current of a diode of 1.9 eV at a few millivolts, against the same discrete equations in 50 digits.
 
-use crate::check::{Check, Checks};
+use crate::check::{Check, Checks, Source};
 use crate::stored::{Failure, StoredProblem, problems, unchanged, visit};
 
 const STORED: &str = include_str!("../../reference/dark_diode_50_digits.json");
@@ -22,7 +22,10 @@ fn problem_checks(name: &str, stored: &StoredProblem, checks: &mut Checks) -> Re
 
 /// J at 1 to 50 mV, four diodes.
 pub fn checks() -> Result<Vec<Check>, Failure> {
-    let mut checks = Checks::new("dark diode", "same discrete equations, 50 digits (mpmath)");
+    let mut checks = Checks::new(
+        "dark diode",
+        Source::Computed("same discrete equations, 50 digits (mpmath, dark_diode_50_digits.py)"),
+    );
     for (name, stored) in &problems(STORED)? {
         problem_checks(name, stored, &mut checks)?;
     }

@@ -1,20 +1,19 @@
 //! The detailed-balance limit under the global standard spectrum: photon currents above a gap, and a cell that reaches the limit.
 
-use std::collections::BTreeMap;
-
 use epiloom_solver::analysis::{Voltages, current_voltage};
-use epiloom_solver::device::{Contact, Device, Layer, LayerOptics, Profile, Stack, Statistics};
-use epiloom_solver::materials::{Material, Parameter};
+use epiloom_solver::device::Device;
 use epiloom_solver::math::elementary::exp;
 use epiloom_solver::optics::{Light, LitStack, Spectrum};
 use epiloom_solver::quantity::constants::{BOLTZMANN, ELEMENTARY_CHARGE};
 use serde::Deserialize;
 
-use crate::check::{Check, Checks};
-use crate::stored::{Failure, device};
+use crate::bulk::{Bulk, device, stack};
+use crate::check::{Check, Checks, Source};
+use crate::stored::Failure;
 
 const STORED: &str = include_str!("../../reference/detailed_balance.json");
-const SOURCE: &str = "detailed balance, 30 digits (mpmath), same table of ASTM G173-03";
+const SOURCE: Source =
+    Source::Computed("detailed balance, 30 digits (mpmath, detailed_balance.py), same table of ASTM G173-03");
 const RULE: &str =
     "photons by the trapezoid rule on the table, the reference exact for straight lines between its points";
 const CELL: &str = "the trapezoid rule for photons; a layer of very high mobility conducts without loss";
@@ -36,6 +35,12 @@ struct Row {
     efficiency_by_table_integral: f64,
 }
 
+impl Row {
+    fn cell(&self) -> Result<Device, Failure> {
+        limit_cell(self.gap, self.temperature, self.j0 * 10.0, 0.0)
+    }
+}
+
 #[derive(Deserialize)]
 struct TableFacts {
     #[serde(rename = "integral_W_per_m2")]
@@ -51,47 +56,37 @@ struct File {
 }
 
 const THICKNESS: f64 = 1e-6;
-const BAND_DENSITY: f64 = 1e25;
+/// Density of states of either band, m^-3.
+pub const BAND_DENSITY: f64 = 1e25;
+/// Doping of either side, m^-3.
+pub const DOPING: f64 = 1e23;
 
 /// A junction that absorbs every photon above its gap and recombines radiatively alone, at the rate that its faces emit:
 /// q B ni^2 times the thickness is the emission of the table.
-fn limit_cell(row: &Row) -> Result<Device, Failure> {
-    use Parameter::*;
-    let kt = BOLTZMANN * row.temperature / ELEMENTARY_CHARGE;
+///
+/// `j0` in A/m2; every contact but for `surface` (m/s, front) holds its minority carriers back.
+pub fn limit_cell(gap: f64, temperature: f64, j0: f64, surface: f64) -> Result<Device, Failure> {
+    let kt = BOLTZMANN * temperature / ELEMENTARY_CHARGE;
     // Without degeneracy and with ni^2 = Nc Nv e^(-gap/kT), the rate at equilibrium fixes B.
-    let intrinsic_square = BAND_DENSITY * BAND_DENSITY * exp(-row.gap / kt);
-    let radiative = row.j0 * 10.0 / (ELEMENTARY_CHARGE * THICKNESS * intrinsic_square);
-    let values: BTreeMap<Parameter, f64> = [
-        (Gap, row.gap * ELEMENTARY_CHARGE),
-        (Affinity, 4.0 * ELEMENTARY_CHARGE),
-        (Permittivity, 13.0),
-        (ConductionDensity, BAND_DENSITY),
-        (ValenceDensity, BAND_DENSITY),
-        (ElectronMobility, 1e3),
-        (HoleMobility, 1e3),
-        (ElectronLifetime, f64::INFINITY),
-        (HoleLifetime, f64::INFINITY),
-        (RadiativeCoefficient, radiative),
-        (ElectronAuger, 0.0),
-        (HoleAuger, 0.0),
-        (Absorption, 1e9),
-    ]
-    .into();
-    let half = |name: &str, donors: f64, acceptors: f64| Layer {
-        name: name.to_string(),
-        material: Material::custom("limit", values.clone()),
-        thickness: 0.5 * THICKNESS,
-        donors: Profile::Constant(donors),
-        acceptors: Profile::Constant(acceptors),
-        composition: None,
-        optics: LayerOptics::Absorbing,
+    let intrinsic_square = BAND_DENSITY * BAND_DENSITY * exp(-gap / kt);
+    let bulk = Bulk {
+        gap,
+        affinity: 4.0,
+        permittivity: 13.0,
+        nc: BAND_DENSITY,
+        nv: BAND_DENSITY,
+        electron_mobility: 1e3,
+        hole_mobility: 1e3,
+        radiative: j0 / (ELEMENTARY_CHARGE * THICKNESS * intrinsic_square),
+        absorption: 1e9,
+        ..Bulk::default()
     };
-    let mut stack = Stack::new("limit", vec![half("n side", 1e23, 0.0), half("p side", 0.0, 1e23)]);
-    stack.statistics = Statistics::Boltzmann;
-    stack.temperature = row.temperature;
-    // No minority carrier recombines at a contact.
-    stack.front = Contact { recombination_velocity: Some(0.0) };
-    stack.rear = Contact { recombination_velocity: Some(0.0) };
+    let layers = vec![
+        bulk.layer("n side", 0.5 * THICKNESS, DOPING, 0.0),
+        bulk.layer("p side", 0.5 * THICKNESS, 0.0, DOPING),
+    ];
+    let mut stack = stack(layers, [Some(surface), Some(0.0)]);
+    stack.temperature = temperature;
     device(stack)
 }
 
@@ -117,14 +112,11 @@ pub fn checks() -> Result<Vec<Check>, Failure> {
     );
     let sun = Light::Spectrum { spectrum, suns: 1.0 };
     for row in stored.rows.iter().filter(|r| r.sides == 1) {
-        let ours = absorbed(&limit_cell(row)?, &sun)?;
+        let ours = absorbed(&row.cell()?, &sun)?;
         checks.relative(format!("{} eV, photon current, A/m2", row.gap), row.jsc * 10.0, ours, 1e-5, RULE);
     }
     for row in stored.rows.iter().chain(&stored.rows_300) {
-        if ![1.12, 1.424].contains(&row.gap) {
-            continue;
-        }
-        let jv = current_voltage(&limit_cell(row)?, &sun, &Voltages::Given(Vec::new()))?;
+        let jv = current_voltage(&row.cell()?, &sun, &Voltages::Given(Vec::new()))?;
         let at = format!(
             "{} eV, {} K, {} emitting",
             row.gap,

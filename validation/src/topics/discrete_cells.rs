@@ -7,14 +7,15 @@ use epiloom_solver::discretise::side::{Side, side};
 use epiloom_solver::discretise::{Coefficients, scales};
 use epiloom_solver::solve::{Point, Problem};
 
-use crate::check::{Check, Checks, Tolerance};
+use crate::check::{Check, Checks, Source, Tolerance};
 use crate::stored::{
     Failure, StoredPoint, StoredProblem, StoredSplit, StoredState, problems, unchanged, visit,
 };
 
 const STORED: &str = include_str!("../../reference/discrete_cell.json");
-const DIGITS: &str = "same discrete equations, 50 digits (mpmath)";
-const DOUBLE: &str = "same discrete equations, another program in double precision";
+const DIGITS: Source = Source::Computed("same discrete equations, 50 digits (mpmath, discrete_equations.py)");
+const DOUBLE: Source =
+    Source::Computed("same discrete equations in double precision (numpy, discrete_cell.py)");
 const ROUNDING: &str = "rounding alone: the same equations on the same nodes";
 
 /// The stored problems.

@@ -1,44 +1,34 @@
 //! Handbook numbers, each with the inputs of its own source: densities of states, intrinsic densities, gaps, spectra.
 
-use std::collections::BTreeMap;
-
-use epiloom_solver::device::{Layer, LayerOptics, Profile, Stack};
+use epiloom_solver::device::Stack;
 use epiloom_solver::discretise::{Coefficients, scales};
-use epiloom_solver::materials::{Material, Parameter};
+use epiloom_solver::materials::Material;
 use epiloom_solver::mesh::Mesh;
 use epiloom_solver::optics::Spectrum;
 use epiloom_solver::quantity::constants::{ELEMENTARY_CHARGE, LIGHT_SPEED, PLANCK};
 
-use crate::check::{Check, Checks};
-use crate::stored::{Failure, device};
+use crate::bulk::{Bulk, device};
+use crate::check::{Check, Checks, Source};
+use crate::stored::Failure;
 
-const TEXTBOOK: &str = "B. Van Zeghbroeck, Principles of Semiconductor Devices (open textbook), 300 K";
-const SZE: &str = "S. M. Sze and K. K. Ng, Physics of Semiconductor Devices, from memory, 300 K";
+const TEXTBOOK: Source =
+    Source::Published("B. Van Zeghbroeck, Principles of Semiconductor Devices (open textbook), 300 K");
+const SZE: Source = Source::Memory("S. M. Sze and K. K. Ng, Physics of Semiconductor Devices, 300 K");
+const NSM: Source = Source::Published("NSM archive of semiconductor parameters (Ioffe Institute), 300 K");
 const ROUNDED: &str = "the source's digits";
 
 /// The intrinsic density that the solver's recombination uses, m^-3, for given densities of states (cm^-3) and gap (eV).
 fn intrinsic(nc: f64, nv: f64, gap: f64) -> Result<f64, Failure> {
-    use Parameter::*;
-    let values: BTreeMap<Parameter, f64> = [
-        (Gap, gap * ELEMENTARY_CHARGE),
-        (Affinity, 4.0 * ELEMENTARY_CHARGE),
-        (Permittivity, 12.0),
-        (ConductionDensity, nc * 1e6),
-        (ValenceDensity, nv * 1e6),
-        (ElectronMobility, 0.1),
-        (HoleMobility, 0.1),
-    ]
-    .into();
-    let layer = Layer {
-        name: "bulk".to_string(),
-        material: Material::custom("bulk", values),
-        thickness: 1e-6,
-        donors: Profile::Constant(1e21),
-        acceptors: Profile::Constant(0.0),
-        composition: None,
-        optics: LayerOptics::Inert,
+    let bulk = Bulk {
+        gap,
+        permittivity: 12.0,
+        nc: nc * 1e6,
+        nv: nv * 1e6,
+        electron_lifetime: 1e-9,
+        hole_lifetime: 1e-9,
+        ..Bulk::default()
     };
-    let mut stack = Stack::new("bulk", vec![layer]);
+    let mut stack = Stack::new("bulk", vec![bulk.layer("bulk", 1e-6, 1e21, 0.0)]);
     stack.temperature = 300.0;
     let coefficients = Coefficients::new(&device(stack)?, &Mesh::from_fractions(vec![vec![0.0, 1.0]]));
     Ok(coefficients.entries[0].level.n1 * scales::DENSITY)
@@ -71,7 +61,7 @@ fn densities(checks: &mut Checks) -> Result<(), Failure> {
         6e-2,
         mixed,
     );
-    checks.source("NSM archive of semiconductor parameters (Ioffe Institute), 300 K");
+    checks.source(NSM);
     checks.relative("InP, intrinsic density, m^-3", 1.3e13, intrinsic(5.7e17, 1.1e19, 1.344)?, 2e-2, ROUNDED);
     checks.source(SZE);
     checks.relative(
@@ -95,7 +85,7 @@ fn gaps(checks: &mut Checks) -> Result<(), Failure> {
         let edge = PLANCK * LIGHT_SPEED / ours * 1e9;
         checks.relative(format!("{name}, wavelength of the gap, nm"), wavelength, edge, 8e-3, laws);
     }
-    checks.source("S. Adachi, J. Appl. Phys. 58, R1 (1985), from memory");
+    checks.source(Source::Memory("S. Adachi, J. Appl. Phys. 58, R1 (1985)"));
     checks.absolute(
         "AlGaAs, x where the gap turns indirect",
         0.45,
@@ -123,9 +113,9 @@ fn crossover() -> Result<f64, Failure> {
 fn spectra(checks: &mut Checks) -> Result<(), Failure> {
     let digits = "the standard's digits; the trapezoid rule on the standard's own grid";
     for (name, source, total) in [
-        ("AM1.5G", "ASTM G173-03, total of the table", 1000.37),
-        ("AM1.5D", "ASTM G173-03, total of the table", 900.14),
-        ("AM0", "ASTM E490-00a, solar constant", 1366.1),
+        ("AM1.5G", Source::Published("ASTM G173-03, total of the table"), 1000.37),
+        ("AM1.5D", Source::Published("ASTM G173-03, total of the table"), 900.14),
+        ("AM0", Source::Published("ASTM E490-00a, solar constant"), 1366.1),
     ] {
         checks.source(source);
         let ours = Spectrum::standard(name)?.integral();

@@ -6,17 +6,18 @@ use std::collections::BTreeMap;
 use epiloom_solver::analysis::{
     CurrentVoltage, Figure, LedgerPart, Outcome, Voltages, bias_point, current_voltage,
 };
-use epiloom_solver::device::{Contact, Device, Layer, LayerOptics, Profile, Stack, Statistics};
-use epiloom_solver::materials::{Material, Parameter};
+use epiloom_solver::device::{Contact, Device, Layer, Stack, Statistics};
 use epiloom_solver::optics::Light;
-use epiloom_solver::quantity::constants::ELEMENTARY_CHARGE;
 use serde::Deserialize;
 
-use crate::check::{Check, Checks, Tolerance};
-use crate::stored::{Failure, device};
+use crate::bulk::{Bulk, device};
+use crate::check::{Check, Checks, Source, Tolerance};
+use crate::stored::Failure;
 
 const STORED: &str = include_str!("../../reference/reference_cases.json");
-const SOURCE: &str = "collocation, agreeing with extrapolated finite volumes of another program to 1e-10";
+const SOURCE: Source = Source::Computed(
+    "collocation (SciPy), agreeing with extrapolated finite volumes of another program to 1e-10",
+);
 const ASKED: &str = "asked of the extrapolation";
 const ORDER: &str = "a scheme of second order on nested meshes; 0.1 for the fourth-order term still there";
 const SPLIT: &str = "lines are asked for a hundredth of the current's accuracy";
@@ -140,32 +141,22 @@ pub fn cases() -> Result<BTreeMap<String, StoredCase>, Failure> {
 }
 
 fn layer(l: &StoredLayer, absorption: f64) -> Layer {
-    use Parameter::*;
-    let values: BTreeMap<Parameter, f64> = [
-        (Gap, l.gap * ELEMENTARY_CHARGE),
-        (Affinity, l.affinity * ELEMENTARY_CHARGE),
-        (Permittivity, l.eps_r),
-        (ConductionDensity, l.nc * 1e6),
-        (ValenceDensity, l.nv * 1e6),
-        (ElectronMobility, l.mu_n * 1e-4),
-        (HoleMobility, l.mu_p * 1e-4),
-        (ElectronLifetime, l.tau_n),
-        (HoleLifetime, l.tau_p),
-        (RadiativeCoefficient, l.radiative * 1e-6),
-        (ElectronAuger, l.electron_auger * 1e-12),
-        (HoleAuger, l.hole_auger * 1e-12),
-        (Absorption, if l.absorbs { absorption * 100.0 } else { 0.0 }),
-    ]
-    .into();
-    Layer {
-        name: l.name.clone(),
-        material: Material::custom(&l.name, values),
-        thickness: l.thickness_um * 1e-6,
-        donors: Profile::Constant(l.donors * 1e6),
-        acceptors: Profile::Constant(l.acceptors * 1e6),
-        composition: None,
-        optics: LayerOptics::Absorbing,
-    }
+    let bulk = Bulk {
+        gap: l.gap,
+        affinity: l.affinity,
+        permittivity: l.eps_r,
+        nc: l.nc * 1e6,
+        nv: l.nv * 1e6,
+        electron_mobility: l.mu_n * 1e-4,
+        hole_mobility: l.mu_p * 1e-4,
+        electron_lifetime: l.tau_n,
+        hole_lifetime: l.tau_p,
+        radiative: l.radiative * 1e-6,
+        electron_auger: l.electron_auger * 1e-12,
+        hole_auger: l.hole_auger * 1e-12,
+        absorption: if l.absorbs { absorption * 100.0 } else { 0.0 },
+    };
+    bulk.layer(&l.name, l.thickness_um * 1e-6, l.donors * 1e6, l.acceptors * 1e6)
 }
 
 impl StoredCase {
@@ -252,7 +243,7 @@ fn currents(name: &str, case: &StoredCase, checks: &mut Checks) -> Result<(), Fa
             order(what, figure);
         }
     }
-    checks.source("order of the scheme");
+    checks.source(Source::Algebra("order of the scheme"));
     checks.worst(&format!("{name}, observed order"), &orders, Tolerance::Absolute(0.1), ORDER);
     Ok(())
 }

@@ -5,12 +5,14 @@ use epiloom::diagnostics::Diagnostic;
 use epiloom::language::{DataFile, InputRecord, RunOptions, Script, Sink, run};
 use epiloom_solver::analysis::Figure;
 
-use crate::check::{Check, Checks, Tolerance};
+use crate::check::{Check, Checks, Source, Tolerance};
 use crate::stored::Failure;
 
 use super::reference_cases::{StoredCase, StoredSplit, cases, ledger_line};
 
-const SOURCE: &str = "collocation, agreeing with extrapolated finite volumes of another program to 1e-10";
+const SOURCE: Source = Source::Computed(
+    "collocation (SciPy), agreeing with extrapolated finite volumes of another program to 1e-10",
+);
 const ASKED: &str = "asked of the extrapolation";
 const SCRIPTS: [(&str, &str); 2] = [
     ("R1", include_str!("../../scripts/reference_r1.rhai")),
@@ -33,7 +35,8 @@ impl Sink for Keeper {
     }
 }
 
-fn snapshots(name: &str, text: &str) -> Result<Vec<Snapshot>, Failure> {
+/// Runs a script and gives back what it stored.
+pub fn snapshots(name: &str, text: &str) -> Result<Vec<Snapshot>, Failure> {
     let script = Script { name: format!("{name}.rhai"), text: text.to_string(), ..Script::default() };
     let mut keeper = Keeper::default();
     let outcome = run(&script, RunOptions::default(), &mut keeper);
@@ -43,7 +46,8 @@ fn snapshots(name: &str, text: &str) -> Result<Vec<Snapshot>, Failure> {
     }
 }
 
-fn column<'a>(snapshot: &'a Snapshot, table: &str, name: &str) -> &'a [f64] {
+/// A column of a table of a snapshot; empty where there is none.
+pub fn column<'a>(snapshot: &'a Snapshot, table: &str, name: &str) -> &'a [f64] {
     let found = snapshot.table(table).and_then(|t| t.columns.iter().find(|c| c.name == name));
     found.map_or(&[], |c| &c.values)
 }
@@ -79,7 +83,7 @@ fn curve(name: &str, case: &StoredCase, snapshot: &Snapshot, checks: &mut Checks
     }
     if !orders.is_empty() {
         let reason = "a scheme of second order on nested meshes; 0.1 for the fourth-order term still there";
-        checks.source("order of the scheme");
+        checks.source(Source::Algebra("order of the scheme"));
         checks.worst(&format!("{name}, observed order"), &orders, Tolerance::Absolute(0.1), reason);
         checks.source(SOURCE);
     }
