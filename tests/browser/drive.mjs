@@ -59,7 +59,8 @@ const withBrowser = async (act, { colorScheme = "light", viewport = { width: 120
     if (!/^(file|blob|data):/.test(request.url())) seen.requests.push(request.url());
   });
   const page = context.pages()[0] ?? (await context.newPage());
-  page.setDefaultTimeout(60000);
+  // a machine that does much else must not fail a test
+  page.setDefaultTimeout(120000);
   page.on("console", (message) => {
     if (message.type() === "error") seen.console.push(message.text());
   });

@@ -194,7 +194,7 @@ fn the_page_is_used_without_a_pointer() {
     assert!(places[2].contains(&format!("Voltage {last} V")), "{} is not the end, {last}", places[2]);
     assert_eq!(told["log"], "true");
     assert!(text(&told, "zoomed").contains("enlarged"), "{}", told["zoomed"]);
-    assert_eq!(told["hidden"].as_str().is_some(), true);
+    assert!(told["hidden"].is_string(), "the curve's button says whether it is shown: {}", told["hidden"]);
     assert_eq!(told["unfolded"], true);
 }
 

@@ -238,7 +238,7 @@ const curvesFigure = (chart, columns, { name, csv }) => {
     part.plot = new uPlot({
       width,
       height: height(part, width) + (last ? 0 : -20),
-      padding: [10, 14, 0, 0],
+      padding: [10, 22, 0, 0],
       legend: { show: false },
       scales: {
         x: { time: false, distr: state.xlog ? 3 : 1, range: () => xRange() },
@@ -480,7 +480,7 @@ const curvesFigure = (chart, columns, { name, csv }) => {
     });
     const left = Math.max(...yMade.map((made) => roomFor(made.labels)));
     const [from, to] = xRange();
-    const inner = width - left - 16;
+    const inner = width - left - 24;
     const xTicks = ticksOf(state.xlog, from, to, Math.max(Math.floor(inner / 80), 3));
     items.push(label(left, 14, fitText(visible(title), inner, 13), { "font-size": 13, "font-weight": 600, fill: colours.ink }));
     for (const [p, part] of parts.entries()) {
