@@ -28,6 +28,7 @@ pub fn bias_point(device: &Device, light: &Light, voltage: f64) -> Result<BiasPo
         }
         ladder.refine()?;
     }
+    ladder.not_stopped()?;
     Ok(collect(&mut ladder, voltage, points, ledgers))
 }
 

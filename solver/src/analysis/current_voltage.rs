@@ -65,6 +65,7 @@ pub fn current_voltage(
     }
     curves.push(curve);
 
+    ladder.not_stopped()?;
     Ok(collect(&ladder, curves, asked, lit, junction, stopped))
 }
 

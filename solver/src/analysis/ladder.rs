@@ -39,6 +39,9 @@ pub enum AnalysisError {
         /// The last voltage that was solved, V, if any.
         last_good_voltage: Option<f64>,
     },
+    /// The flag that stops the device's analyses was raised.
+    #[error("stopped before the solution was found")]
+    Stopped,
     /// A number asked for is not finite or out of range.
     #[error("{quantity} is {value:e} {unit}; it must be {range}")]
     BadRequest {
@@ -106,6 +109,7 @@ impl<'a> Ladder<'a> {
         for _ in 0..FEWEST {
             ladder.refine()?;
         }
+        ladder.not_stopped()?;
         Ok(ladder)
     }
 
@@ -115,14 +119,20 @@ impl<'a> Ladder<'a> {
         let coefficients = Coefficients::new(self.device, &mesh);
         let illumination = self.lit.illuminate_known(self.light.as_ref(), &layer_positions(&coefficients))?;
         let circuit = &self.device.stack().circuit;
-        let problem = Problem::new(
+        let mut problem = Problem::new(
             coefficients,
             &illumination.generation,
             circuit.series_resistance,
             circuit.shunt_resistance.map_or(0.0, |r| 1.0 / r),
         );
+        problem.stop = self.device.stop_flag().cloned();
         self.rungs.push(Rung { mesh, illumination, problem });
         Ok(())
+    }
+
+    /// An error where the device's flag has been raised: what was found since may be less than what there is.
+    pub fn not_stopped(&self) -> Result<(), AnalysisError> {
+        if self.device.is_stopped() { Err(AnalysisError::Stopped) } else { Ok(()) }
     }
 
     pub fn nodes(&self) -> Vec<usize> {
@@ -138,6 +148,9 @@ impl<'a> Ladder<'a> {
 
     /// The error of a person from the error of a mesh.
     pub fn located(&self, rung: usize, error: SolveError) -> AnalysisError {
+        if self.device.is_stopped() {
+            return AnalysisError::Stopped;
+        }
         let c = &self.rungs[rung].problem.coefficients;
         let (entry, layer, _) = c.places().find(|(_, _, node)| *node == error.node).unwrap_or((0, 0, 0));
         AnalysisError::NotConverged {

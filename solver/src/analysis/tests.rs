@@ -1,6 +1,7 @@
 //! Reference devices and invariants.
 
 mod odd_ends;
+mod stops;
 mod survey;
 
 use std::collections::BTreeMap;

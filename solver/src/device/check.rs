@@ -5,6 +5,7 @@ use std::collections::BTreeSet;
 use crate::materials::{Material, OpticalConstants, TEMPERATURE_LIMITS};
 use crate::math::Scalar;
 use crate::optics::Reflectance;
+use crate::quantity::constants::BOLTZMANN;
 
 use super::fault::{Fault, Place, TableProblem};
 use super::profile::Profile;
@@ -18,6 +19,9 @@ pub const HIGHEST_DOPING: f64 = 1e28;
 pub const HIGHEST_VELOCITY: f64 = 1e12;
 /// Relative accuracies that can be asked for.
 pub const ACCURACY_LIMITS: (f64, f64) = (1e-9, 1e-1);
+/// Largest gap over kT: beyond, densities of minority carriers leave the range of a double (e^-707), and with them what
+/// ties their levels.
+pub const LARGEST_REDUCED_GAP: f64 = 600.0;
 /// Most layers in a stack.
 pub const MOST_LAYERS: usize = 1000;
 /// Wavelengths of tables, m.
@@ -25,6 +29,8 @@ const WAVELENGTH_LIMITS: (f64, f64) = (1e-9, 1e-3);
 
 struct Checker {
     faults: Vec<Fault>,
+    /// The lowest temperature at which every layer's gap keeps below the largest, K.
+    coldest: f64,
 }
 
 impl Checker {
@@ -150,19 +156,28 @@ impl Checker {
         if !(kelvin >= TEMPERATURE_LIMITS.0 && kelvin <= TEMPERATURE_LIMITS.1) {
             return;
         }
-        let x = match &layer.composition {
+        let compositions = match &layer.composition {
             Some(_) if !layer.material.is_alloy() => return,
             Some(profile) => {
                 let (low, high) = profile.extremes();
                 if !(low >= 0.0 && high <= 1.0) {
                     return;
                 }
-                Some(P::constant(low))
+                vec![Some(low), Some(high)]
             }
-            None => None,
+            None => vec![None],
         };
-        if let Err(error) = layer.material.values(x, temperature, P::constant(0.0)) {
-            self.faults.push(wrap(error));
+        for x in compositions {
+            match layer.material.values(x.map(P::constant), temperature, P::constant(0.0)) {
+                Ok(values) => {
+                    let coldest = values.gap.value() / (BOLTZMANN * LARGEST_REDUCED_GAP);
+                    self.coldest = self.coldest.max(coldest);
+                }
+                Err(error) => {
+                    self.faults.push(wrap(error));
+                    break;
+                }
+            }
         }
     }
 
@@ -210,7 +225,7 @@ impl Checker {
 impl<P: Scalar> Stack<P> {
     /// All faults of the stack at once: from the layers (front first), then interfaces, contacts, optics, circuit, the rest.
     pub fn faults(&self) -> Vec<Fault> {
-        let mut check = Checker { faults: Vec::new() };
+        let mut check = Checker { faults: Vec::new(), coldest: 0.0 };
         if self.layers.is_empty() {
             check.faults.push(Fault::NoLayers);
         }
@@ -258,7 +273,9 @@ impl<P: Scalar> Stack<P> {
         if let Some(shunt) = self.circuit.shunt_resistance {
             check.range(&stack, "shunt_resistance", shunt, (1e-18, f64::INFINITY), "ohm m^2");
         }
-        check.range(&stack, "temperature", self.temperature, TEMPERATURE_LIMITS, "K");
+        // Up to the next whole kelvin, so that what the message says is accepted.
+        let coldest = TEMPERATURE_LIMITS.0.max(check.coldest.ceil());
+        check.range(&stack, "temperature", self.temperature, (coldest, TEMPERATURE_LIMITS.1), "K");
         check.range(&stack, "accuracy", self.accuracy, ACCURACY_LIMITS, "");
         check.faults
     }

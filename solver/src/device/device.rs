@@ -1,5 +1,8 @@
 //! A stack that has passed every check.
 
+use std::sync::Arc;
+use std::sync::atomic::{AtomicBool, Ordering};
+
 use crate::materials::{AbsorptionBasis, MaterialBase, Origin, Parameter};
 use crate::math::Scalar;
 
@@ -11,6 +14,7 @@ use super::stack::{Layer, LayerOptics, Stack};
 #[derive(Clone, Debug)]
 pub struct Device<P = f64> {
     stack: Stack<P>,
+    stop: Option<Arc<AtomicBool>>,
 }
 
 impl<P: Scalar> Device<P> {
@@ -20,7 +24,23 @@ impl<P: Scalar> Device<P> {
     /// All faults of the stack, front to rear.
     pub fn new(stack: Stack<P>) -> Result<Self, Vec<Fault>> {
         let faults = stack.faults();
-        if faults.is_empty() { Ok(Device { stack }) } else { Err(faults) }
+        if faults.is_empty() { Ok(Device { stack, stop: None }) } else { Err(faults) }
+    }
+
+    /// The same, its analyses given up as soon as `flag` is raised (by another thread, or a signal).
+    pub fn stopped_by(mut self, flag: Arc<AtomicBool>) -> Self {
+        self.stop = Some(flag);
+        self
+    }
+
+    /// The flag that stops its analyses.
+    pub fn stop_flag(&self) -> Option<&Arc<AtomicBool>> {
+        self.stop.as_ref()
+    }
+
+    /// Whether its analyses are to stop.
+    pub fn is_stopped(&self) -> bool {
+        self.stop.as_ref().is_some_and(|flag| flag.load(Ordering::Relaxed))
     }
 
     /// The stack it was made from.

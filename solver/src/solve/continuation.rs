@@ -105,7 +105,7 @@ impl Problem {
                 Err(stalled) => {
                     self.work.rejected_steps += 1;
                     rise = rise.sqrt();
-                    if rise < SMALLEST_RISE {
+                    if rise < SMALLEST_RISE || self.is_over() {
                         return Err(SolveError::new(&stalled, 0.0, "raising the light", Some(&good)));
                     }
                     light = if good.state.light > 0.0 {
@@ -177,7 +177,7 @@ impl Problem {
                     }
                     step = 0.5 * (aim - here.voltage);
                     let spent = self.work.newton_iterations - begun;
-                    if step.abs() < SMALLEST_STEP || spent > MOST_ITERATIONS {
+                    if step.abs() < SMALLEST_STEP || spent > MOST_ITERATIONS || self.is_over() {
                         return Err(SolveError::new(&stalled, aim, "stepping the bias", Some(&here)));
                     }
                 }

@@ -133,7 +133,7 @@ impl Problem {
         let (mut first, mut lost) = (0.0_f64, 0);
         let mut worst = Stalled { node: 0, unknown: 0, update: f64::INFINITY };
         for _ in 0..tolerances.most_iterations {
-            if self.work.newton_iterations >= self.budget {
+            if self.is_over() {
                 break;
             }
             self.assemble(&state);

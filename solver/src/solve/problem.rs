@@ -1,5 +1,8 @@
 //! A device on a mesh under given light, ready to be solved at any bias.
 
+use std::sync::Arc;
+use std::sync::atomic::{AtomicBool, Ordering};
+
 use crate::discretise::contact::neutral_potential;
 use crate::discretise::{Coefficients, System, scales};
 use crate::linear::{Factors, Triple};
@@ -57,6 +60,8 @@ pub struct Problem {
     pub shunt_conductance: f64,
     /// Work done so far.
     pub work: Work,
+    /// Raised from outside to give up: every way to a point ends at once, without a solution.
+    pub stop: Option<Arc<AtomicBool>>,
     /// Newton iterations, counted from the problem's beginning, after which the way to a point under way is given up.
     pub(super) budget: usize,
     /// Whether to eliminate by rows, with their rounding, instead of by column sums.
@@ -91,6 +96,7 @@ impl Problem {
             series_resistance,
             shunt_conductance,
             work: Work::default(),
+            stop: None,
             budget: MOST_WORK,
             system,
             factors: Factors::default(),
@@ -105,6 +111,12 @@ impl Problem {
     /// Grants the work that the way to one more point may take.
     pub(crate) fn grant(&mut self) {
         self.budget = self.work.newton_iterations + MOST_WORK;
+    }
+
+    /// Whether the way under way is to be given up: its work is spent, or it was stopped from outside.
+    pub(super) fn is_over(&self) -> bool {
+        self.work.newton_iterations >= self.budget
+            || self.stop.as_ref().is_some_and(|flag| flag.load(Ordering::Relaxed))
     }
 
     /// Whether any light is absorbed.

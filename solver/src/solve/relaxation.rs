@@ -204,7 +204,7 @@ impl Problem {
                         length *= 0.1;
                         good = 0.0;
                     }
-                    if length < SHORTEST || self.work.newton_iterations >= self.budget {
+                    if length < SHORTEST || self.is_over() {
                         return Err(failure);
                     }
                 }

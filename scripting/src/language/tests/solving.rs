@@ -193,7 +193,7 @@ let jv = cell.jv(dark());"#;
 let cell = stack("d", [
     layer("n", gaas, 100.nm, donors(1e18.per_cm3)),
 ]);
-cell.temperature = 25.K;
+cell.temperature = 40.K;
 let jv = cell.jv(dark()); // ~ W203"#;
     expect_diagnostics(cold, checked);
     // the common coated cell is quiet; an accuracy that no mesh reaches is said
