@@ -64,6 +64,7 @@ impl Exit {
             }
             codes::UNKNOWN_SNAPSHOT
             | codes::NOT_EXPORTABLE
+            | codes::NO_PICTURE
             | codes::UNKNOWN_CODE
             | codes::UNKNOWN_MATERIAL => Exit::Usage,
             codes::REPLAY_DIFFERS => Exit::Differs,

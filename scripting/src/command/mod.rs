@@ -16,6 +16,9 @@ mod inputs;
 mod job;
 mod materials;
 mod output;
+mod overview;
+mod pictures;
+mod plot;
 mod recorder;
 mod reference;
 mod replay;
@@ -68,6 +71,8 @@ enum Verb {
     Report(report_page::Report),
     /// Show the page of a run that is not over, on this machine only
     Watch(watch::Watch),
+    /// Draw a snapshot, or several laid over each other, as SVG, PNG or PDF
+    Plot(plot::Plot),
     /// Run an archived script again and compare every number, bit by bit
     Replay(replay::Replay),
     /// Compare two archives: inputs, materials and numbers, and what moved beyond its numerical error
@@ -104,6 +109,7 @@ pub fn run() -> Exit {
         Verb::Export(verb) => verb.run(&mut output),
         Verb::Report(verb) => verb.run(&mut output),
         Verb::Watch(verb) => verb.run(&mut output),
+        Verb::Plot(verb) => verb.run(&mut output),
         Verb::Replay(verb) => verb.run(&mut output),
         Verb::Compare(verb) => verb.run(&mut output),
         Verb::Gather(verb) => verb.run(&mut output),

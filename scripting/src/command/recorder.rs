@@ -8,10 +8,11 @@ use crate::archive::{
     Condition, DataFile, Earlier, Point, RunHeader, Share, Snapshot, Stack, Status, SweepStart, Value, Writer,
 };
 use crate::diagnostics::{Diagnostic, SourceText};
-use crate::language::{self, InputRecord, Script, Sink, StoredPoints};
+use crate::language::{self, InputRecord, PictureRefused, Script, Sink, StoredPoints};
 
 use super::inputs;
 use super::output::Output;
+use super::pictures::write_below;
 use super::report::{snapshot_text, stack_text, warnings_text};
 use super::sweeps::Tally;
 
@@ -206,6 +207,18 @@ impl Sink for Recorder<'_> {
             let text = tally_of(&self.tally).summary(sweep, left_out);
             self.output.result(&text);
         }
+    }
+
+    fn picture(&mut self, name: &str, bytes: &[u8]) -> Result<(), PictureRefused> {
+        let folder = match self.writer.unfinished().parent() {
+            Some(parent) if !parent.as_os_str().is_empty() => parent.to_path_buf(),
+            _ => std::path::PathBuf::from("."),
+        };
+        write_below(&folder, name, bytes)?;
+        if !self.quiet {
+            self.output.result(&format!("picture {}\n", folder.join(name).display()));
+        }
+        Ok(())
     }
 }
 

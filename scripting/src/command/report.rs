@@ -57,7 +57,7 @@ pub fn snapshot_text(snapshot: &Snapshot) -> String {
 }
 
 /// The figures, one a line; where none exists, all for one reason, that is said once.
-fn figures_text(figures: &[Figure]) -> String {
+pub fn figures_text(figures: &[Figure]) -> String {
     if let [first, second, ..] = figures
         && second.reason.is_some()
         && figures.iter().all(|each| each.value.is_none() && each.reason == first.reason)

@@ -10,6 +10,7 @@ use crate::diagnostics::{Diagnostic, codes};
 use super::columns::{Align, columns};
 use super::exit::Exit;
 use super::output::Output;
+use super::overview::{Look, overview, small_plot, stack_picture};
 use super::report::{snapshot_text, stack_text, value_text, warnings_text};
 use super::table::{FIRST_ROWS, point_of, point_text, sheet_text, sweep_line};
 use super::trouble::{archive_error, archive_warning, damage};
@@ -43,6 +44,9 @@ pub struct Show {
     /// Rows of the table to show
     #[arg(long, value_name = "N", requires = "table", default_value_t = FIRST_ROWS)]
     pub rows: usize,
+    /// Print no drawings, for logs
+    #[arg(long)]
+    pub plain: bool,
 }
 
 impl Show {
@@ -55,11 +59,12 @@ impl Show {
         if let Some(name) = &self.table {
             return self.table(&archive, name, output);
         }
+        let look = Look { plain: self.plain, width: output.width() };
         let mut all_whole = true;
         let text = match (&self.snapshot, self.json) {
             (None, json) => {
                 all_whole = tell_damaged(&archive, output);
-                if json { json_listing(&archive) } else { Ok(listing(&archive).into_bytes()) }
+                if json { json_listing(&archive) } else { Ok(listing(&archive, look).into_bytes()) }
             }
             (Some(name), json) if let Some((sweep, index)) = point_of(&archive, name) => {
                 archive.point(&sweep.name, index).and_then(|point| {
@@ -71,13 +76,17 @@ impl Show {
                     return json_snapshot(&snapshot);
                 }
                 // figures that a script put together itself belong to no stack
-                let stack = if snapshot.stack.layers.is_empty() {
-                    String::new()
-                } else {
-                    format!("{}\n", stack_text(&snapshot.stack))
-                };
+                let mut text = String::new();
+                if !snapshot.stack.layers.is_empty() {
+                    text = format!("{}\n", stack_text(&snapshot.stack));
+                    if !look.plain {
+                        text.push_str(&format!("{}\n", stack_picture(&snapshot.stack, look)));
+                    }
+                }
+                let plot = small_plot(&snapshot, look);
                 let warnings = warnings_text(&snapshot.warnings);
-                Ok(format!("{stack}{}{warnings}", snapshot_text(&snapshot)).into_bytes())
+                text.push_str(&format!("{}{plot}{warnings}", snapshot_text(&snapshot)));
+                Ok(text.into_bytes())
             }),
         };
         match text {
@@ -166,12 +175,13 @@ pub fn tell(error: &ArchiveError, output: &mut Output) -> Exit {
 }
 
 /// The run and the list of snapshots.
-fn listing(archive: &Archive) -> String {
+fn listing(archive: &Archive, look: Look) -> String {
     let mut text = match archive.run() {
         Ok(run) => run_text(run),
         // said among the archive's warnings
         Err(_) => String::new(),
     };
+    text.push_str(&overview(archive, look));
     let mut rows = vec![vec!["snapshot".to_string(), "kind".to_string(), String::new()]];
     for (index, entry) in archive.entries().iter().enumerate() {
         let status = match (&entry.label.status, archive.snapshot_at(index)) {

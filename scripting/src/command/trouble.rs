@@ -2,6 +2,7 @@
 
 use crate::archive::{ArchiveError, ArchiveWarning};
 use crate::diagnostics::{Code, Diagnostic, codes};
+use crate::picture::PictureError;
 
 /// An archive's fault for a person.
 pub fn archive_error(error: &ArchiveError) -> Diagnostic {
@@ -37,6 +38,19 @@ pub fn writing_error(error: &ArchiveError) -> Diagnostic {
 /// Damage that was found by reading, which is an error for whoever wants that part.
 pub fn damage(warning: &ArchiveWarning) -> Diagnostic {
     diagnostic(codes::DAMAGED_FRAME, warning.to_string(), None)
+}
+
+/// Why there is no picture, for a person.
+pub fn picture_error(error: &PictureError) -> Diagnostic {
+    let code = match error {
+        PictureError::Conversion { .. } => codes::INTERNAL,
+        _ => codes::NO_PICTURE,
+    };
+    let diagnostic = Diagnostic::new(code, error.to_string());
+    match error.help() {
+        Some(help) => diagnostic.help(help),
+        None => diagnostic,
+    }
 }
 
 /// An archive's warning for a person.

@@ -40,7 +40,8 @@ pub use dimension::Dimension;
 pub use quantity::Quantity;
 pub use reference::reference;
 pub use session::{
-    DataFile, InputRecord, InputValue, Limits, Part, RunOptions, RunOutcome, Script, Sink, StoredPoints,
+    DataFile, InputRecord, InputValue, Limits, Part, PictureRefused, RunOptions, RunOutcome, Script, Sink,
+    StoredPoints,
 };
 pub use units::{UNITS, Unit, unit};
 
@@ -218,6 +219,9 @@ fn hand_over(event: Event, sink: &mut dyn Sink) {
             let _ = reply.send(sink.points(&sweep, points));
         }
         Event::SweepDone(sweep, left_out) => sink.sweep_done(&sweep, left_out),
+        Event::Picture(name, bytes, reply) => {
+            let _ = reply.send(sink.picture(&name, &bytes));
+        }
     }
 }
 

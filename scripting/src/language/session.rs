@@ -1,6 +1,6 @@
 //! One run of one script: its limits, its inputs, what it has stored and warned of, and the line to whoever runs it.
 
-use std::collections::BTreeMap;
+use std::collections::{BTreeMap, BTreeSet};
 use std::path::PathBuf;
 use std::sync::atomic::{AtomicBool, AtomicU64, Ordering};
 use std::sync::mpsc::{Sender, channel};
@@ -175,6 +175,23 @@ pub trait Sink {
     /// `left_out` counts the indices of this run's share that the plan's filter leaves out: they are no points and
     /// nothing is handed over for them, so that a share is complete when its points and they add up to it.
     fn sweep_done(&mut self, _sweep: &SweepStart, _left_out: u64) {}
+    /// The script made a picture: its name below the output folder, and the bytes of its file. Who keeps no files
+    /// passes it by.
+    ///
+    /// # Errors
+    /// It would lie outside the folder, or cannot be written.
+    fn picture(&mut self, _name: &str, _bytes: &[u8]) -> Result<(), PictureRefused> {
+        Ok(())
+    }
+}
+
+/// Why a picture of a script was not written.
+#[derive(Clone, Debug, PartialEq, Eq)]
+pub enum PictureRefused {
+    /// A link leads out of the output folder.
+    Outside,
+    /// The file system refuses it.
+    Unwritable(String),
 }
 
 /// Points that are stored already, one after the other, so that a million need no memory.
@@ -207,6 +224,7 @@ pub(super) enum Event {
     Sweep(Arc<SweepStart>, Sender<Result<StoredPoints, String>>),
     Points(Arc<SweepStart>, Vec<Point>, Sender<Result<(), String>>),
     SweepDone(Arc<SweepStart>, u64),
+    Picture(String, Vec<u8>, Sender<Result<(), PictureRefused>>),
     Done,
 }
 
@@ -220,6 +238,7 @@ pub(super) struct State {
     pub faults: Vec<Diagnostic>,
     pub warnings: Vec<Diagnostic>,
     pub step: u64,
+    pub pictures: BTreeSet<String>,
 }
 
 /// One run of one script, as its functions see it.
@@ -317,6 +336,13 @@ impl Session {
             Ok(Err(message)) => Err(Fault::new(codes::UNWRITABLE, message)),
             Err(_) => Err(Fault::new(codes::INTERNAL, "what was told was not taken")),
         }
+    }
+
+    /// Hands a picture to the sink and waits until it is written.
+    pub(super) fn write_picture(&self, name: String, bytes: Vec<u8>) -> Result<(), PictureRefused> {
+        let (reply, answer) = channel();
+        self.tell(Event::Picture(name, bytes, reply));
+        answer.recv().unwrap_or_else(|_| Err(PictureRefused::Unwritable("it was not taken".to_string())))
     }
 
     /// Tells what is being worked on; points of a sweep are told by their number alone.

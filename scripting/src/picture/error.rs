@@ -2,6 +2,8 @@
 
 use thiserror::Error;
 
+use crate::diagnostics::suggest;
+
 use super::chart::Kind;
 
 /// Why there is no picture.
@@ -67,7 +69,7 @@ pub enum PictureError {
         reason: String,
     },
     /// No format has that ending.
-    #[error("a picture ends in .svg, .png or .pdf, not in `{ending}`")]
+    #[error("{}", ending_text(.ending))]
     UnknownEnding {
         /// The ending; empty when the name has none.
         ending: String,
@@ -82,28 +84,46 @@ pub enum PictureError {
     },
 }
 
+fn ending_text(ending: &str) -> String {
+    if ending.is_empty() {
+        return "the name of a picture needs an ending".to_string();
+    }
+    format!("no picture ends in `.{ending}`")
+}
+
 fn reason_text(reason: &str) -> String {
     if reason.is_empty() { String::new() } else { format!(": {reason}") }
 }
 
 impl PictureError {
-    /// What would serve, by name, for suggestions; empty where nothing can be listed.
-    pub fn candidates(&self) -> Vec<String> {
-        let words = |kinds: &[Kind]| kinds.iter().map(|kind| kind.word().to_string()).collect();
+    /// What would serve; none where nothing can be said.
+    pub fn help(&self) -> Option<String> {
+        let list =
+            |words: &[String]| words.iter().map(|word| format!("`{word}`")).collect::<Vec<_>>().join(", ");
+        let words = |kinds: &[Kind]| kinds.iter().map(|kind| kind.word().to_string()).collect::<Vec<_>>();
+        let near = |name: &str, known: &[String]| {
+            suggest(name, known.iter().map(String::as_str)).map(|near| format!("did you mean `{near}`? "))
+        };
         match self {
-            PictureError::NoSuchChart { gives, .. } => words(gives),
-            PictureError::UnknownChart { .. } => words(Kind::ALL),
-            PictureError::NoSuchColumn { columns, .. } => columns.clone(),
-            _ => Vec::new(),
-        }
-    }
-
-    /// The name that was asked for and is not there, if that is what is wrong.
-    pub fn wanted(&self) -> Option<&str> {
-        match self {
-            PictureError::NoSuchChart { wanted, .. } => Some(wanted.word()),
-            PictureError::UnknownChart { word } => Some(word),
-            PictureError::NoSuchColumn { column, .. } => Some(column),
+            PictureError::NoSuchChart { gives, .. } if !gives.is_empty() => {
+                Some(format!("it gives {}", list(&words(gives))))
+            }
+            PictureError::UnknownChart { word } => {
+                let known = words(Kind::ALL);
+                let near = near(word, &known).unwrap_or_default();
+                Some(format!("{near}there are {}", list(&known)))
+            }
+            PictureError::NoSuchColumn { column, columns, .. } => {
+                let near = near(column, columns).unwrap_or_default();
+                Some(format!("{near}it has {}", list(columns)))
+            }
+            PictureError::UnknownEnding { .. } => Some("end the name in .svg, .png or .pdf".to_string()),
+            PictureError::Nothing { .. } => {
+                Some("curves, responses, bias points and tables can be drawn".to_string())
+            }
+            PictureError::NotTogether { .. } => {
+                Some("draw them one by one, or choose one --chart".to_string())
+            }
             _ => None,
         }
     }

@@ -14,11 +14,22 @@
 
 pub mod chart;
 pub mod charts;
+pub mod convert;
+pub mod draw;
 mod error;
+mod font;
 pub mod overlay;
 pub mod palette;
 pub mod report;
+mod svg;
+pub mod terminal;
+mod thin;
 pub mod ticks;
 
+#[cfg(test)]
+mod tests;
+
 pub use chart::{Body, Chart, Kind};
+pub use convert::Format;
+pub use draw::{Drawing, View, draw};
 pub use error::PictureError;

@@ -41,6 +41,11 @@ fn merge(whole: &mut Chart, chart: Chart, index: usize) -> Result<(), PictureErr
         return Err(refuse(whole, &chart, &reason));
     }
     let name = chart.snapshots.first().cloned().unwrap_or_default();
+    if let [first] = whole.snapshots.as_slice() {
+        for note in &mut whole.notes {
+            *note = format!("{first}: {note}");
+        }
+    }
     for note in chart.notes {
         whole.notes.push(format!("{name}: {note}"));
     }

@@ -7,8 +7,8 @@ use epiloom_solver::math::elementary::{log10, pow};
 pub struct Ticks {
     /// The places, increasing.
     pub values: Vec<f64>,
-    /// Decimals behind the point.
-    pub decimals: usize,
+    /// Decimals behind the point; with a minus the places before it that are always zero.
+    pub decimals: i32,
     /// The step between two.
     pub step: f64,
 }
@@ -52,7 +52,7 @@ pub fn linear(from: f64, to: f64, most: usize) -> Ticks {
         values.push(at(k) + 0.0);
         k += 1.0;
     }
-    Ticks { values, decimals: usize::try_from(-power).unwrap_or(0), step }
+    Ticks { values, decimals: -power, step }
 }
 
 /// Powers of ten inside a range, every so many that at most `most` remain.

@@ -16,6 +16,10 @@ super::rows! {
         "The file could not be created or written: the folder does not exist, may not be written, or the disk is \
          full. Nothing that was there before has been changed.",
         "epiloom run cell.rhai --out results/cell.epiloom";
+    OUTSIDE_OUTPUT = "E406", "a picture outside the output folder",
+        "A script writes pictures into the folder of its archive and below, nowhere else: no absolute path, no `..`, no \
+         link that leads out. Folders must be there already.",
+        "picture(\"bands.svg\", cell.equilibrium());";
     OTHER_ARCHIVE = "E404", "the archive belongs to another script",
         "A run replaces the earlier archive of the same script, and never another's. The file that would be \
          replaced holds the results of a script of another name, or is no archive at all.",
@@ -50,6 +54,11 @@ super::rows! {
     NOT_EXPORTABLE = "E415", "the snapshot cannot be written in this format",
         "The format holds columns of numbers, and the snapshot has none. JSON takes every snapshot.",
         "epiloom export cell.epiloom \"note\" --to json -o note.json";
+    NO_PICTURE = "E416", "no such picture",
+        "The snapshot does not hold what the chart shows, the table has no such column, a scale or range does not fit \
+         the data, snapshots of different kinds were to be laid over each other, or the file's ending is not .svg, \
+         .png or .pdf. The message says which, and what there is.",
+        "epiloom plot window_and_bsf.epiloom \"light J-V\" -o light.svg";
     REPLAY_DIFFERS = "E420", "the replay differs",
         "The archived script was run again and gave other numbers. With the same version of Epiloom that must not \
          happen on any machine; with another version the difference shows what changed. The message lists the first \

@@ -4,6 +4,7 @@ mod attacks;
 mod devices;
 mod files;
 mod numbers;
+mod pictures;
 mod plans;
 mod solving;
 mod temperature_models;

@@ -10,6 +10,7 @@ mod layers;
 mod light;
 mod materials;
 mod numbers;
+mod pictures;
 mod plans;
 mod results;
 mod stacks;
@@ -27,6 +28,7 @@ pub(super) static ALL: &[&Topic] = &[
     &light::TOPIC,
     &analyses::TOPIC,
     &results::TOPIC,
+    &pictures::TOPIC,
     &plans::TOPIC,
     &tables::TOPIC,
 ];

@@ -3,6 +3,7 @@
 use epiloom_solver::analysis::{self, BiasPoint, LedgerPart, SpectralResponse};
 use rhai::{Array, Dynamic, Map};
 
+use crate::archive::Snapshot;
 use crate::diagnostics::codes;
 use crate::language::dimension::Dimension;
 use crate::language::fault::{Fault, Place};
@@ -436,24 +437,8 @@ fn store(call: &Call, arguments: &mut [&mut Dynamic]) -> Answer {
         return Err(twice().into());
     }
     let name = format!("{prefix}{name}");
-    let built = if let Some(curve) = arguments[1].read_lock::<CurveValue>() {
-        curve.0.result.as_ref().map(|result| snapshot::curve(&name, step, &curve.0, result))
-    } else if let Some(state) = arguments[1].read_lock::<StateValue>() {
-        state.0.result.as_ref().map(|result| snapshot::state(&name, step, &state.0, result))
-    } else if let Some(response) = arguments[1].read_lock::<ResponseValue>() {
-        response.0.result.as_ref().map(|result| snapshot::response(&name, step, &response.0, result))
-    } else if let Some(table) = arguments[1].read_lock::<TableValue>() {
-        (table.0.extent == Extent::Whole).then(|| table.0.snapshot(&name, "table", step))
-    } else if let Some(curve) = arguments[1].read_lock::<CapacitanceValue>() {
-        curve.0.result.as_ref().map(|result| snapshot::capacitance(&name, step, &curve.0, result))
-    } else if arguments[1].is_array() || arguments[1].is_map() {
-        let built = snapshot::figures(&name, step, arguments[1]).map_err(|f| f.at(Place::Argument(1)))?;
-        (!session.checking()).then_some(built)
-    } else {
-        take::<CurveValue>(arguments[1], "what is stored", "a result (`cell.jv(..)`, `cell.at(..)`, `cell.eqe(..)`, `cell.capacitance(..)`), a map of figures or an array of such maps")
-            .map_err(|f| f.at(Place::Argument(1)))?;
-        None
-    };
+    let built = snapshot_of(&name, step, arguments[1]).map_err(|f| f.at(Place::Argument(1)))?;
+    let built = built.filter(|_| !session.checking());
     let Some(mut built) = built else { return Ok(Dynamic::UNIT) };
     built.label.order.point = index;
     let mut built = Some(built);
@@ -467,4 +452,35 @@ fn store(call: &Call, arguments: &mut [&mut Dynamic]) -> Answer {
         session.store(built)?;
     }
     Ok(Dynamic::UNIT)
+}
+
+/// What a script hands over to be stored or drawn, as a snapshot; none where it is not solved yet.
+///
+/// # Errors
+/// What is no result, and what is wrong with a table.
+pub fn snapshot_of(name: &str, step: u64, value: &Dynamic) -> Result<Option<Snapshot>, Fault> {
+    if let Some(curve) = value.read_lock::<CurveValue>() {
+        return Ok(curve.0.result.as_ref().map(|result| snapshot::curve(name, step, &curve.0, result)));
+    }
+    if let Some(state) = value.read_lock::<StateValue>() {
+        return Ok(state.0.result.as_ref().map(|result| snapshot::state(name, step, &state.0, result)));
+    }
+    if let Some(response) = value.read_lock::<ResponseValue>() {
+        return Ok(response
+            .0
+            .result
+            .as_ref()
+            .map(|result| snapshot::response(name, step, &response.0, result)));
+    }
+    if let Some(table) = value.read_lock::<TableValue>() {
+        return Ok((table.0.extent == Extent::Whole).then(|| table.0.snapshot(name, "table", step)));
+    }
+    if let Some(curve) = value.read_lock::<CapacitanceValue>() {
+        return Ok(curve.0.result.as_ref().map(|result| snapshot::capacitance(name, step, &curve.0, result)));
+    }
+    if value.is_array() || value.is_map() {
+        return snapshot::figures(name, step, value).map(Some);
+    }
+    let wanted = "a result (`cell.jv(..)`, `cell.at(..)`, `cell.eqe(..)`, `cell.capacitance(..)`), a map of figures or an array of such maps";
+    take::<CurveValue>(value, "what is stored or drawn", wanted).map(|_| None)
 }

@@ -4,13 +4,13 @@ use crate::archive::{Snapshot, Table};
 use crate::picture::chart::{Body, Curves, Dash, Kind, Look, Marker, Panel, Role, Series};
 
 use super::numbers;
-use super::range::{extent, linear, logarithmic};
+use super::range::{extent, linear, logarithmic, size};
 
 /// Share of the short-circuit current above zero beyond which a curve in light is off-scale.
 const ABOVE_ZERO: f64 = 0.25;
 
 /// Decades of a dark curve that are shown.
-const DARK_DECADES: f64 = 16.0;
+const DARK_DECADES: f64 = 40.0;
 
 /// Local idealities beyond this are off-scale: they tell of series resistance or of no diode at all.
 const MOST_IDEALITY: f64 = 6.0;
@@ -55,7 +55,8 @@ fn light(snapshot: &Snapshot, points: &Table, voltage: &[f64], notes: &mut Vec<S
     let figure = |name: &str| snapshot.figure(name).and_then(|figure| figure.value);
     let jsc = figure("jsc");
     if let Some(jsc) = jsc.filter(|jsc| *jsc > 0.0 && y.range.1 > ABOVE_ZERO * jsc) {
-        notes.push(format!("off-scale: current density up to {:.3e} mA/cm2 beyond open circuit", y.range.1));
+        let most = size(y.range.1, &y.unit);
+        notes.push(format!("off-scale: current density up to {most} beyond open circuit"));
         y.range.1 = ABOVE_ZERO * jsc;
     }
     if jsc.is_some() {
@@ -94,7 +95,7 @@ fn power(snapshot: &Snapshot, points: &Table, voltage: &[f64], notes: &mut Vec<S
     let mut y = linear("Delivered power", "mW_per_cm2", values);
     let most = y.range.1;
     if most > 0.0 && y.range.0 < -0.1 * most {
-        notes.push(format!("off-scale: delivered power down to {:.3e} mW/cm2", y.range.0));
+        notes.push(format!("off-scale: delivered power down to {}", size(y.range.0, &y.unit)));
         y.range.0 = -0.1 * most;
     }
     let figure = |name: &str| snapshot.figure(name).and_then(|figure| figure.value);

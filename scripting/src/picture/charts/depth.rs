@@ -4,7 +4,7 @@ use crate::archive::{Snapshot, Table};
 use crate::picture::chart::{Axis, Body, Curves, Dash, Kind, Look, Panel, Region, Role, Scale, Series};
 
 use super::numbers;
-use super::range::{linear, logarithmic};
+use super::range::{linear, logarithmic, size};
 
 /// Decades of carrier densities that are shown.
 const CARRIER_DECADES: f64 = 40.0;
@@ -78,11 +78,12 @@ pub(super) fn body(snapshot: &Snapshot, table: &Table, kind: Kind, notes: &mut V
         _ => logarithmic("Rate", "per_cm3_s", &all, RATE_DECADES, notes),
     };
     let panels = vec![Panel { y, series, markers: Vec::new(), share: 1.0 }];
-    Some(Body::Curves(Curves { x: depth_axis(depth, &regions), panels, regions }))
+    let x = depth_axis(depth, &regions, notes);
+    Some(Body::Curves(Curves { x, panels, regions }))
 }
 
 /// The axis of depth: logarithmic where a layer would be too thin to be seen.
-fn depth_axis(depth: &[f64], regions: &[Region]) -> Axis {
+fn depth_axis(depth: &[f64], regions: &[Region], notes: &mut Vec<String>) -> Axis {
     let mut axis = linear("Depth", "um", depth);
     axis.can_be_log = depth.iter().any(|d| *d > 0.0);
     let whole = axis.range.1;
@@ -91,6 +92,7 @@ fn depth_axis(depth: &[f64], regions: &[Region]) -> Axis {
     if axis.can_be_log && front < whole && thinnest < THIN * whole && front <= 0.1 * whole {
         axis.scale = Scale::Log;
         axis.range.0 = front * FRONT;
+        notes.push(format!("off-scale: depths below {}", size(axis.range.0, "um")));
     }
     axis
 }

@@ -140,12 +140,8 @@ fn stage(
     } else if !small.is_empty() {
         let sum: f64 = small.iter().map(|(_, value)| value).sum();
         fall(format!("{} smaller losses", small.len()), sum, &mut bars);
-        let names: Vec<&str> = small.iter().map(|(name, _)| name.as_str()).collect();
-        notes.push(format!(
-            "{}: the smaller losses summed up are {}",
-            title.to_lowercase(),
-            names.join("; ")
-        ));
+        let below = 100.0 * least / income.max(f64::MIN_POSITIVE);
+        notes.push(format!("{}: losses of at most {below:.2} % each are summed up", title.to_lowercase()));
     }
     bars.push(Bar {
         name: last.to_string(),

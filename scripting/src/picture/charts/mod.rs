@@ -5,6 +5,7 @@ mod depth;
 mod ledger;
 mod range;
 mod response;
+pub mod sweep;
 pub mod table;
 
 use crate::archive::{Snapshot, Status, Table, Value};
@@ -48,6 +49,21 @@ pub fn kinds(snapshot: &Snapshot) -> Vec<Kind> {
         }
     }
     found
+}
+
+/// The kind that tells most of a snapshot.
+///
+/// # Errors
+/// A snapshot without data for any.
+pub fn first(snapshot: &Snapshot) -> Result<Kind, PictureError> {
+    kinds(snapshot).first().copied().ok_or_else(|| PictureError::Nothing {
+        snapshot: snapshot.name().to_string(),
+        of: snapshot.label.kind.clone(),
+        reason: match &snapshot.label.status {
+            Status::Failed { reason } => format!("it failed: {reason}"),
+            Status::Solved => String::new(),
+        },
+    })
 }
 
 /// The chart of that kind of a snapshot; `choice` names columns where the chart is of a table.

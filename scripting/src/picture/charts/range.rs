@@ -2,7 +2,7 @@
 
 use epiloom_solver::math::elementary::log10;
 
-use crate::picture::chart::{Axis, Scale};
+use crate::picture::chart::{Axis, Scale, si_unit};
 
 /// Least and greatest of the finite numbers.
 pub(super) fn extent<'a>(numbers: impl IntoIterator<Item = &'a f64>) -> Option<(f64, f64)> {
@@ -44,6 +44,7 @@ pub(super) fn logarithmic<'a>(
     notes: &mut Vec<String>,
 ) -> Axis {
     let all = extent(numbers.clone());
+    let zeros = numbers.clone().into_iter().filter(|v| **v == 0.0).count();
     let Some((least, most)) = magnitudes(numbers) else { return linear(label, unit, []) };
     let span = log10(most) - log10(least);
     let floor = if span > decades {
@@ -52,7 +53,16 @@ pub(super) fn logarithmic<'a>(
         least
     };
     if floor > least {
-        notes.push(format!("off-scale: {} below {floor:.1e}, down to {least:.1e}", label.to_lowercase()));
+        notes.push(format!(
+            "off-scale: {} below {}, down to {}",
+            label.to_lowercase(),
+            size(floor, unit),
+            size(least, unit)
+        ));
+    }
+    if zeros > 0 {
+        let values = if zeros == 1 { "1 value".to_string() } else { format!("{zeros} values") };
+        notes.push(format!("not on a logarithmic scale: {} of zero ({values})", label.to_lowercase()));
     }
     Axis {
         label: label.to_string(),
@@ -62,6 +72,17 @@ pub(super) fn logarithmic<'a>(
         magnitude: all.is_some_and(|(low, _)| low < 0.0),
         range: (floor, most),
     }
+}
+
+/// A number with its unit for a note, `1.4 x 10^10 cm^-3`.
+pub(super) fn size(value: f64, unit: &str) -> String {
+    let text = format!("{value:.2e}");
+    let (digits, power) = text.split_once('e').unwrap_or((&text, "0"));
+    let number = match power {
+        "0" | "1" | "2" | "3" => crate::figure_text::significant(value, 4),
+        _ => format!("{digits} \u{d7} 10^{power}"),
+    };
+    format!("{number} {}", si_unit(unit)).trim_end().to_string()
 }
 
 /// Whether positive numbers span so much that equal ratios show them better.

@@ -27,14 +27,14 @@ pub(super) fn body(table: &Table) -> Option<Body> {
     }
     // stacked downwards from one: shaded by the grid, reflected, absorbed in the coating
     let mut top = vec![1.0; wavelength.len()];
-    for (column, name) in [
-        ("shaded_share", "shaded by the grid"),
-        ("reflected_share", "reflected"),
-        ("coating_share", "absorbed in the coating"),
+    for (column, name, dash) in [
+        ("shaded_share", "shaded by the grid", Dash::Solid),
+        ("reflected_share", "reflected", Dash::Long),
+        ("coating_share", "absorbed in the coating", Dash::Short),
     ] {
         let Some(values) = numbers(table, column).filter(|v| v.iter().any(|v| *v > 0.0)) else { continue };
         let below: Vec<f64> = top.iter().zip(values).map(|(t, v)| t - v).collect();
-        let look = Look { colour: None, dash: Dash::Solid, filled: true, marks: false };
+        let look = Look { colour: None, dash, filled: true, marks: false };
         add(name.to_string(), Role::Lost, top, below.clone(), Vec::new(), look);
         top = below;
     }

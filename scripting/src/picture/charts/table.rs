@@ -117,6 +117,14 @@ fn full_name(column: &Numbers) -> String {
 
 /// A name as a person reads it.
 fn words(name: &str) -> String {
+    match name {
+        "jsc" => return "Short-circuit current density".to_string(),
+        "voc" => return "Open-circuit voltage".to_string(),
+        "ff" => return "Fill factor".to_string(),
+        // a letter is a symbol
+        one if one.chars().count() == 1 => return one.to_string(),
+        _ => {}
+    }
     let text = name.replace('_', " ");
     let mut letters = text.chars();
     match letters.next() {
