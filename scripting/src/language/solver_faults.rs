@@ -28,6 +28,9 @@ pub fn analysis_fault(error: &AnalysisError) -> Fault {
                 None => fault.help("check lifetimes, mobilities and dopings for a slip in a power of ten"),
             }
         }
+        AnalysisError::Stopped => {
+            Fault::new(codes::INTERRUPTED, "the run was interrupted").label("stopped here, while solving")
+        }
         AnalysisError::BadRequest { .. } => Fault::new(codes::VOLTAGES, error.to_string()),
         other => Fault::new(codes::STACK, other.to_string()),
     }

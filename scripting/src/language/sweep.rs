@@ -125,6 +125,11 @@ impl Sweep<'_> {
             _ => None,
         };
         let gathered = entered.leave();
+        // an analysis that was broken off is no point that failed: it is solved when the run goes on
+        let whole = matches!(found, Ok(Ok(_))) && gathered.faults.is_empty();
+        if self.session.interrupted() && !whole {
+            return Err(report::stopped(Stop::Interrupted, self.context.call_position()));
+        }
         let values = self.plan.values(index);
         let mut point = Point {
             index,

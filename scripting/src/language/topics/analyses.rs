@@ -116,7 +116,8 @@ fn solve<T>(
         return Ok(Solved { result: None, device: None, stack: Arc::clone(&stack.stack), light });
     };
     let device = Device::new(plain)
-        .map_err(|faults| Faults(faults.iter().map(|fault| device_fault(fault, stack)).collect()))?;
+        .map_err(|faults| Faults(faults.iter().map(|fault| device_fault(fault, stack)).collect()))?
+        .stopped_by(Arc::clone(&call.session.options.interrupt));
     if call.session.checking() {
         for warning in device.warnings() {
             warn(call, stack, &analysis::Warning::of_device(&warning));
