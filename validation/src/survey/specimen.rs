@@ -6,7 +6,7 @@ use epiloom_solver::device::{Contact, Interface, Layer, LayerOptics, Profile, Si
 use epiloom_solver::materials::{Material, Parameter, names};
 use epiloom_solver::math::elementary;
 use epiloom_solver::optics::{Light, Spectrum};
-use epiloom_solver::quantity::constants::ELEMENTARY_CHARGE;
+use epiloom_solver::quantity::constants::{BOLTZMANN, ELEMENTARY_CHARGE};
 
 /// Uniform random numbers from a seed (the finaliser of a 64-bit counter).
 pub struct Random(u64);

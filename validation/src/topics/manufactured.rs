@@ -258,9 +258,9 @@ impl File {
         let last = c.nodes() - 1;
         let ends =
             (self.exact(0, 0.0).fluxes, self.exact(c.layers() - 1, c.depths[c.entries.len() - 1]).fluxes);
-        for row in 0..3 {
-            rows[0][row] -= ends.0[row];
-            rows[last][row] += ends.1[row];
+        for (row, (front, rear)) in ends.0.into_iter().zip(ends.1).enumerate() {
+            rows[0][row] -= front;
+            rows[last][row] += rear;
         }
         let charge = ELEMENTARY_CHARGE * scales::DENSITY * scales::LENGTH;
         rows.iter()

@@ -96,7 +96,7 @@ fn radiative_efficiency(checks: &mut Checks) -> Result<(), Failure> {
         let jv = current_voltage(&cell, &light, &Voltages::Given(Vec::new()))?;
         let voltage = jv.voc.map_err(|absent| absent.reason)?.value;
         let point = bias_point(&cell, &light, voltage)?;
-        let lines = || point.ledger.part(LedgerPart::Carriers).filter(|l| !l.source && l.place != "");
+        let lines = || point.ledger.part(LedgerPart::Carriers).filter(|l| !l.source && !l.place.is_empty());
         let all: f64 = lines().map(|l| l.value).sum();
         let radiative: f64 = lines().filter(|l| l.channel == "radiative").map(|l| l.value).sum();
         Ok((voltage, radiative / all))

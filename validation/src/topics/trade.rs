@@ -94,8 +94,12 @@ fn good_cell(checks: &mut Checks) -> Result<(), Failure> {
     let mut stack = Stack::new("good GaAs cell", layers);
     stack.temperature = 300.0;
     let point = open_circuit(stack, 1.0)?;
-    let all: f64 =
-        point.ledger.part(LedgerPart::Carriers).filter(|l| !l.source && l.place != "").map(|l| l.value).sum();
+    let all: f64 = point
+        .ledger
+        .part(LedgerPart::Carriers)
+        .filter(|l| !l.source && !l.place.is_empty())
+        .map(|l| l.value)
+        .sum();
     let radiative = channel(&point, "base", "radiative") + channel(&point, "emitter", "radiative");
     let auger = channel(&point, "base", "Auger") + channel(&point, "emitter", "Auger");
     checks.source(TRADE);
