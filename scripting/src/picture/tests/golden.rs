@@ -83,7 +83,9 @@ fn parts(svg: &str) -> Vec<Result<f64, String>> {
             out.push(text.parse().map_err(|_| text));
         }
         // numbers of a path stand apart by blanks or signs
-        if !letter.is_whitespace() {
+        if letter == '-' {
+            number.push(letter);
+        } else if !letter.is_whitespace() {
             word.push(letter);
         }
     }
