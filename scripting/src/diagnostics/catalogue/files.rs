@@ -16,7 +16,7 @@ super::rows! {
         "The file could not be created or written: the folder does not exist, may not be written, or the disk is \
          full. Nothing that was there before has been changed.",
         "epiloom run cell.rhai --out results/cell.epiloom";
-    OUTSIDE_OUTPUT = "E406", "a picture outside the output folder",
+    OUTSIDE_OUTPUT = "E407", "a picture outside the output folder",
         "A script writes pictures into the folder of its archive and below, nowhere else: no absolute path, no `..`, no \
          link that leads out. Folders must be there already.",
         "picture(\"bands.svg\", cell.equilibrium());";

@@ -50,9 +50,9 @@ fn a_script_draws_what_it_solved() {
 #[test]
 fn wrong_pictures_are_told_at_their_place() {
     for line in [
-        "picture(\"../bands.svg\", state); // ~ E406",
-        "picture(\"/tmp/bands.svg\", state); // ~ E406",
-        "picture(\"a\\\\b.svg\", state); // ~ E406",
+        "picture(\"../bands.svg\", state); // ~ E407",
+        "picture(\"/tmp/bands.svg\", state); // ~ E407",
+        "picture(\"a\\\\b.svg\", state); // ~ E407",
         "picture(\"bands.gif\", state); // ~ E416",
         "picture(\"bands\", state); // ~ E416",
         "picture(\"b.svg\", state, #{ chart: \"band\" }); // ~ E416",
