@@ -1,6 +1,6 @@
 //! Residual and Jacobian for plain numbers: the hot loop.
 //!
-//! [`super::kernels`] computes carriers, sources and fluxes by columns, several neighbours at a time; here they become the
+//! `kernels` computes carriers, sources and fluxes by columns, several neighbours at a time; here they become the
 //! rows and blocks of the nodes, and the contacts' laws take the rows that are theirs.
 
 use crate::linear::{Block, BlockTridiagonal, Triple};

@@ -6,7 +6,7 @@
 //! scripts, come from the `libm` crate: pure Rust, its version pinned, its architecture-dependent code switched off.
 //!
 //! `f64` has inherent methods of the same names that call the platform's library. Do not use them: their last
-//! bits differ between platforms. Inside a function generic over [`Num`](super::Num) the trait's methods are meant.
+//! bits differ between platforms. Inside a function generic over [`Num`] the trait's methods are meant.
 
 use super::number::Num;
 use super::piecewise::Piecewise;
