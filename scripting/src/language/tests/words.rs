@@ -49,6 +49,7 @@ fn every_code_has_a_test() {
         include_str!("devices.rs"),
         include_str!("files.rs"),
         include_str!("numbers.rs"),
+        include_str!("pictures.rs"),
         include_str!("plans.rs"),
         include_str!("solving.rs"),
         include_str!("../solver_faults.rs"),
