@@ -21,6 +21,7 @@ store(\"light J-V\", cell.jv(lamp));
 store(\"dark J-V\", cell.jv(dark(), 0.V, 1.V, 50.mV));
 store(\"at 0.5 V\", cell.at(0.5.V, lamp));
 store(\"response\", cell.eqe(400.nm, 850.nm, 10.nm));
+store(\"between two decimals\", [#{{ row: 1, tie: 1930444431351087.25 }}, #{{ row: 2, tie: 1.00000762939453125 }}, #{{ row: 3, tie: -6e-05 }}]);
 store(`{HOSTILE}`, #{{ voc: cell.jv(lamp, [0.V]).voc, share: 0.25 }});
 "
     )
@@ -49,7 +50,7 @@ fn a_page_holds_no_markup_but_its_own() {
             block.split_once('>').and_then(|(_, rest)| rest.split_once("</script>")).expect("an end").0;
         assert!(inside.bytes().all(|b| b.is_ascii_alphanumeric() || b"+/=".contains(&b)));
     }
-    assert_eq!(own + 1 + 5, scripts.len(), "records, five snapshots, and no other");
+    assert_eq!(own + 1 + 6, scripts.len(), "records, six snapshots, and no other");
     assert!(!page.contains("<img") && !page.contains("javascript:"));
     assert!(
         page.contains("&lt;script&gt;alert(2)&lt;/script&gt; &amp; &quot;what&quot;"),

@@ -27,6 +27,22 @@ const columnsOf = (bytes, columns) => {
   });
 };
 
+/**
+ * Where two shortest decimals lie equally near to a number, the browser takes the even one and the archive's export the
+ * greater: this gives the greater one's digits, as `toExponential` would write them; otherwise the text as it is.
+ * Such numbers have few binary places, so that their multiple of 2^40 is whole.
+ */
+const greaterOfTwo = (size, text) => {
+  const [mantissa, power] = text.split("e");
+  const figures = mantissa.replace(".", "");
+  const places = figures.length - 1 - Number(power);
+  if (places <= 0 || places > 60 || figures.length < 15 || !Number.isInteger(size * 2 ** 40)) return text;
+  const whole = BigInt(figures);
+  if (2n * BigInt(size * 2 ** 40) * 10n ** BigInt(places) !== (2n * whole + 1n) << 40n) return text;
+  const next = String(whole + 1n);
+  return `${next[0]}.${next.slice(1)}e${power}`;
+};
+
 /** A number as `epiloom export --to csv` writes it: the shortest decimal that reads back as the same bits. */
 const digits = (value) => {
   if (value === null || value === undefined) return "";
@@ -36,7 +52,15 @@ const digits = (value) => {
   if (value === -Infinity) return "-inf";
   if (value === 0) return Object.is(value, -0) ? "-0" : "0";
   const size = Math.abs(value);
-  return size >= 1e-4 && size < 1e15 ? String(value) : value.toExponential().replace("e+", "e");
+  const sign = value < 0 ? "-" : "";
+  const text = size.toExponential();
+  const best = greaterOfTwo(size, text);
+  if (size < 1e-4 || size >= 1e15) return sign + best.replace("e+", "e");
+  if (best === text) return String(value);
+  const [mantissa, power] = best.split("e");
+  const figures = mantissa.replace(".", "");
+  const before = Number(power) + 1;
+  return sign + (before > 0 ? `${figures.slice(0, before)}.${figures.slice(before)}` : `0.${"0".repeat(-before)}${figures}`);
 };
 
 /** A cell of a CSV file: in quotes where it must be. */
