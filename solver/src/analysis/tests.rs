@@ -2,7 +2,6 @@
 
 mod odd_ends;
 mod stops;
-mod survey;
 
 use std::collections::BTreeMap;
 
