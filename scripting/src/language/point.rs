@@ -17,6 +17,8 @@ pub struct Gathered {
     pub step: u64,
     /// The point's index in its plan; in a sweep inside a sweep that of the outermost point.
     pub index: u64,
+    /// Names of its coordinates, for whoever mistypes one.
+    pub coordinates: Vec<String>,
     /// Lines that the script printed.
     pub printed: Vec<String>,
     /// Warnings, each once.
@@ -51,6 +53,11 @@ pub fn inside() -> bool {
 /// Does something with what the innermost point of this thread gathers; nothing outside a point.
 pub fn with<R>(f: impl FnOnce(&mut Gathered) -> R) -> Option<R> {
     POINTS.with_borrow_mut(|points| points.last_mut().map(f))
+}
+
+/// Names of the coordinates of this thread's innermost point; none outside a point.
+pub fn coordinates() -> Vec<String> {
+    with(|point| point.coordinates.clone()).unwrap_or_default()
 }
 
 /// Keeps a change that was lost in the point of this thread; false outside a point.

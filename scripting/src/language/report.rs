@@ -101,7 +101,17 @@ fn faults(session: &Arc<Session>, error: &EvalAltResult) -> Vec<(Fault, Position
         }
         EvalAltResult::ErrorDotExpr(message, _) => dotted(message).map_or_else(Vec::new, one),
         EvalAltResult::ErrorPropertyNotFound(name, _) => {
-            one(Fault::new(codes::NO_SUCH_ENTRY, format!("the map has no entry `{name}`")))
+            let mut fault = Fault::new(codes::NO_SUCH_ENTRY, format!("the map has no entry `{name}`"));
+            let coordinates = super::point::coordinates();
+            if !coordinates.is_empty() {
+                let all: Vec<String> = coordinates.iter().map(|name| format!("`{name}`")).collect();
+                fault = fault.note(format!("the point itself has {}", all.join(", ")));
+                if let Some(near) = crate::diagnostics::suggest(name, coordinates.iter().map(String::as_str))
+                {
+                    fault = fault.help(format!("did you mean `{near}`?"));
+                }
+            }
+            one(fault)
         }
         EvalAltResult::ErrorIndexNotFound(index, _) => one(Fault::new(
             codes::NO_SUCH_ENTRY,

@@ -114,6 +114,7 @@ impl Sweep<'_> {
             prefix: format!("{}{index}/", self.prefix),
             step: self.start.step,
             index: outermost,
+            coordinates: self.names(),
             ..Gathered::default()
         });
         let found = catch_unwind(AssertUnwindSafe(|| self.evaluate(index)));
@@ -163,6 +164,11 @@ impl Sweep<'_> {
         };
         point.status = Status::Failed { reason };
         Ok(Some(point))
+    }
+
+    /// Names of the plan's coordinates.
+    fn names(&self) -> Vec<String> {
+        self.start.coordinates.iter().map(|column| column.name.clone()).collect()
     }
 
     /// The outputs of a point; nothing where a filter leaves it out.
@@ -423,16 +429,21 @@ impl Sweep<'_> {
         let size = self.plan.size;
         let last = (size > 1).then(|| size - 1);
         for index in std::iter::once(0).chain(last) {
-            let entered = point::enter(Gathered::default());
+            let entered = point::enter(Gathered { coordinates: self.names(), ..Gathered::default() });
             let found = self.evaluate(index);
+            // while the point is still entered, so that its coordinates are named
+            if let Err(error) = &found
+                && !report::is_stop(error)
+            {
+                report::keep(self.session, error);
+            }
             drop(entered.leave());
             match found {
                 Ok(Some(outputs)) if index == 0 => {
                     builder.push(&Point { index, outputs, ..Point::default() });
                 }
-                Ok(_) => {}
                 Err(error) if report::is_stop(&error) => return Err(error),
-                Err(error) => report::keep(self.session, &error),
+                Ok(_) | Err(_) => {}
             }
         }
         if builder.solved() == 0 {

@@ -13,7 +13,6 @@ use crate::quantity::constants::ELEMENTARY_CHARGE;
 use super::*;
 
 /// A layer of a custom material, in the units of the reference cases: um, eV, cm^-3, cm^2/Vs, s, cm^3/s, cm^6/s, cm^-1.
-#[allow(clippy::too_many_arguments)]
 pub(crate) fn layer(
     name: &str,
     thickness: f64,

@@ -530,3 +530,15 @@ fn a_million_points_stay_small() {
     assert!(outcome.errors.is_empty(), "{}", shown(text, &outcome.errors));
     assert_eq!(sink.0, 1_000_000);
 }
+
+/// Source of truth: the coordinates that the script itself gives: a mistyped one is told with its neighbour, by a run and by a
+/// check.
+#[test]
+fn a_mistyped_coordinate_is_told_with_those_there_are() {
+    let text = "let t = grid(#{ base: [1, 2], na: 3 }).run(\"t\", |p| p.bas); // ~ E330";
+    let told = fails(text).notes.join("\n");
+    assert!(told.contains("[E115] the map has no entry `bas`; the point itself has `base`, `na`"), "{told}");
+    let checked = RunOptions { check_only: true, ..RunOptions::default() };
+    let outcome = expect_diagnostics(&text.replace("E330", "E115"), checked);
+    assert_eq!(outcome.errors[0].help.as_deref(), Some("did you mean `base`?"));
+}
