@@ -70,7 +70,7 @@ fn reference_cell_with(statistics: Statistics) -> Device {
         ],
     );
     stack.statistics = statistics;
-    let contact = Contact { recombination_velocity: Some(1e5) };
+    let contact = Contact::Ohmic { recombination_velocity: Some(1e5) };
     (stack.front, stack.rear) = (contact, contact);
     Device::new(stack).unwrap_or_else(|faults| panic!("{faults:?}"))
 }
@@ -161,8 +161,8 @@ fn library_cell() -> Device {
             layer("buffer", "GaAs", None, 0.3, -5e18),
         ],
     );
-    stack.front = Contact { recombination_velocity: Some(1e4) };
-    stack.rear = Contact { recombination_velocity: Some(1e5) };
+    stack.front = Contact::Ohmic { recombination_velocity: Some(1e4) };
+    stack.rear = Contact::Ohmic { recombination_velocity: Some(1e5) };
     Device::new(stack).unwrap_or_else(|faults| panic!("{faults:?}"))
 }
 

@@ -102,8 +102,8 @@ pub fn stack(layers: Vec<Layer>, velocities: [Option<f64>; 2]) -> Stack {
     let mut stack = Stack::new("closed form", layers);
     stack.temperature = TEMPERATURE;
     stack.statistics = Statistics::Boltzmann;
-    stack.front = Contact { recombination_velocity: velocities[0] };
-    stack.rear = Contact { recombination_velocity: velocities[1] };
+    stack.front = Contact::Ohmic { recombination_velocity: velocities[0] };
+    stack.rear = Contact::Ohmic { recombination_velocity: velocities[1] };
     stack
 }
 

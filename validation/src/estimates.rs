@@ -150,7 +150,7 @@ pub fn cell(seed: u64) -> Result<(Stack, Light), Failure> {
     let mut stack = Stack::new("cell", layers);
     for contact in [&mut stack.front, &mut stack.rear] {
         let recombination_velocity = if r.chance(0.2) { None } else { Some(r.decade(1.0, 1e5)) };
-        *contact = Contact { recombination_velocity };
+        *contact = Contact::Ohmic { recombination_velocity };
     }
     stack.temperature = if r.chance(0.5) { 298.15 } else { r.between(220.0, 400.0) };
     stack.statistics = if r.chance(0.3) { Statistics::Boltzmann } else { Statistics::FermiDirac };

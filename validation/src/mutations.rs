@@ -4,12 +4,19 @@
 //! would see a wrong program.
 
 use epiloom_solver::device::Statistics;
-use epiloom_solver::discretise::Coefficients;
+use epiloom_solver::discretise::{Coefficients, ContactLaw};
 
 use crate::stored::StoredProblem;
 use crate::topics::discrete_cells::{problem_checks, stored};
 
 type Change = fn(&mut Coefficients<f64>);
+
+/// Stops the carrier that a contact takes at a velocity.
+fn passes_nothing(contact: &mut ContactLaw<f64>) {
+    for carrier in &mut contact.carriers {
+        carrier.velocity = carrier.velocity.map(|_| 0.0);
+    }
+}
 
 /// Name and change of each mutant.
 const MUTANTS: &[(&str, Change)] = &[
@@ -23,8 +30,8 @@ const MUTANTS: &[(&str, Change)] = &[
     ("radiative off", |c| c.entries.iter_mut().for_each(|e| e.radiative = 0.0)),
     ("Auger of electrons off", |c| c.entries.iter_mut().for_each(|e| e.electron_auger = 0.0)),
     ("Auger of holes off", |c| c.entries.iter_mut().for_each(|e| e.hole_auger = 0.0)),
-    ("front surface ignored", |c| c.contacts[0].velocity = Some(0.0)),
-    ("rear surface ignored", |c| c.contacts[1].velocity = Some(0.0)),
+    ("front surface ignored", |c| passes_nothing(&mut c.contacts[0])),
+    ("rear surface ignored", |c| passes_nothing(&mut c.contacts[1])),
     ("permittivity +1 %", |c| c.cells.iter_mut().for_each(|cell| cell.displacement *= 1.01)),
     ("affinity +1 meV in the second layer", |c| {
         let (first, end) = (c.first[1], c.first[2]);

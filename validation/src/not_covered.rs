@@ -7,8 +7,9 @@ pub const NOT_COVERED: [&str; 14] = [
      device whose radiative coefficient is set to the emission of its faces: that tests transport and bookkeeping, not emission.",
     "Time and frequency: capacitance is checked as the frequency goes to zero; admittance at a frequency, transients and \
      photoluminescence decay are not in the model.",
-    "Thermionic emission, tunnelling and Schottky contacts: not in the model. Interfaces are checked with continuous \
-     quasi-Fermi levels, contacts as ohmic ones with a recombination velocity.",
+    "Thermionic emission at interfaces and tunnelling: not in the model. Interfaces are checked with continuous quasi-Fermi \
+     levels, contacts as ohmic ones with a recombination velocity; Schottky and selective contacts by the solver's own tests \
+     against the law of thermionic emission.",
     "Incomplete ionisation, band-gap narrowing, fields that saturate velocities, traps that hold charge: not in the model.",
     "Several junctions in one stack: equations and ledgers are checked by the solver's own tests, no outside solution is.",
     "Coatings and rear reflection: the solver's own tests hold them to Fresnel's formulas and to closed sums; no measured \

@@ -191,8 +191,8 @@ impl StoredProblem {
             other => return Err(format!("unknown statistics {other}").into()),
         };
         stack.temperature = self.temperature;
-        stack.front = Contact { recombination_velocity: self.left_velocity };
-        stack.rear = Contact { recombination_velocity: self.right_velocity };
+        stack.front = Contact::Ohmic { recombination_velocity: self.left_velocity };
+        stack.rear = Contact::Ohmic { recombination_velocity: self.right_velocity };
         device(stack)
     }
 

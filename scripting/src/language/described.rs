@@ -1,6 +1,6 @@
 //! The device of a snapshot: its stack in words, and every material value used with its source.
 
-use epiloom_solver::device::{Device, LayerOptics, Profile, Stack};
+use epiloom_solver::device::{Barrier, Contact, Device, LayerOptics, Profile, Stack};
 use epiloom_solver::materials::Parameter;
 use epiloom_solver::optics::Reflectance;
 
@@ -104,11 +104,34 @@ fn profile_words(profile: &Profile<Quantity>) -> String {
     }
 }
 
-fn contact(contact: &epiloom_solver::device::Contact<Quantity>) -> Value {
-    match &contact.recombination_velocity {
-        Some(velocity) => Value::text(format!("ohmic, recombination velocity {velocity}")),
-        None => Value::text("ohmic, recombination without limit"),
-    }
+fn contact(contact: &Contact<Quantity>) -> Value {
+    let of = |velocity: &Option<Quantity>, none: &str| {
+        velocity.as_ref().map_or_else(|| none.to_string(), Quantity::to_string)
+    };
+    Value::text(match contact {
+        Contact::Ohmic { recombination_velocity: Some(velocity) } => {
+            format!("ohmic, recombination velocity {velocity}")
+        }
+        Contact::Ohmic { recombination_velocity: None } => "ohmic, recombination without limit".to_string(),
+        Contact::Selective { electron_velocity, hole_velocity } => format!(
+            "selective, velocity of electrons {}, of holes {}",
+            of(electron_velocity, "without limit"),
+            of(hole_velocity, "without limit")
+        ),
+        Contact::Schottky { barrier, electron_emission_velocity, hole_emission_velocity } => {
+            let barrier = match barrier {
+                Barrier::Electrons(height) => format!("barrier for electrons {height}"),
+                Barrier::Holes(height) => format!("barrier for holes {height}"),
+                Barrier::WorkFunction(energy) => format!("work function {energy}"),
+            };
+            let thermal = "by the density of states";
+            format!(
+                "Schottky, {barrier}, emission velocity of electrons {}, of holes {}",
+                of(electron_emission_velocity, thermal),
+                of(hole_emission_velocity, thermal)
+            )
+        }
+    })
 }
 
 fn reflectance(reflectance: &Reflectance<Quantity>) -> Value {

@@ -2,7 +2,7 @@
 
 use std::cell::Cell;
 
-use epiloom_solver::device::{Circuit, Contact, Interface, Layer, Profile, Stack, StackOptics};
+use epiloom_solver::device::{Circuit, Interface, Layer, Profile, Stack, StackOptics};
 use epiloom_solver::materials::Material;
 use epiloom_solver::optics::{Film, Reflectance};
 
@@ -14,8 +14,8 @@ pub fn stack<P, R>(stack: &Stack<P>, f: &impl Fn(&P) -> R) -> Stack<R> {
         name: stack.name.clone(),
         layers: stack.layers.iter().map(|l| layer(l, f)).collect(),
         interfaces: stack.interfaces.iter().map(|i| i.as_ref().map(|i| interface(i, f))).collect(),
-        front: contact(&stack.front, f),
-        rear: contact(&stack.rear, f),
+        front: stack.front.map(f),
+        rear: stack.rear.map(f),
         optics: StackOptics {
             lit_from: stack.optics.lit_from,
             front_reflectance: reflectance(&stack.optics.front_reflectance, f),
@@ -76,10 +76,6 @@ fn interface<P, R>(interface: &Interface<P>, f: &impl Fn(&P) -> R) -> Interface<
         electron_recombination_velocity: f(&interface.electron_recombination_velocity),
         hole_recombination_velocity: f(&interface.hole_recombination_velocity),
     }
-}
-
-fn contact<P, R>(contact: &Contact<P>, f: &impl Fn(&P) -> R) -> Contact<R> {
-    Contact { recombination_velocity: contact.recombination_velocity.as_ref().map(f) }
 }
 
 fn reflectance<P, R>(reflectance: &Reflectance<P>, f: &impl Fn(&P) -> R) -> Reflectance<R> {

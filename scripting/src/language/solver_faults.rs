@@ -102,6 +102,11 @@ pub fn device_fault(fault: &DeviceFault, stack: &StackValue) -> Fault {
             };
             Fault::new(codes::PROFILE, fault.to_string()).at(at)
         }
+        DeviceFault::BlockingContact { place } => {
+            Fault::new(codes::BARRIER, format!("{place} passes neither electrons nor holes"))
+                .label("both its velocities are zero")
+                .help("give one carrier a velocity above zero, or leave it out: then it passes without limit")
+        }
         other => Fault::new(codes::STACK, other.to_string()),
     }
 }
@@ -115,6 +120,7 @@ fn limits_of(quantity: &str) -> (Code, Dimension) {
         "series_resistance" | "shunt_resistance" => (codes::RESISTANCE, Dimension::AREA_RESISTANCE),
         "accuracy" => (codes::ACCURACY, Dimension::NONE),
         "x" | "composition" => (codes::COMPOSITION, Dimension::NONE),
+        "electron_barrier" | "hole_barrier" | "work_function" => (codes::BARRIER, Dimension::ENERGY),
         q if q.ends_with("velocity") => (codes::VELOCITY, Dimension::VELOCITY),
         q if q.ends_with("reflectance") || q.ends_with("shading") => (codes::SHARE, Dimension::NONE),
         _ => (codes::STACK, Dimension::NONE),

@@ -122,34 +122,51 @@ fn photon_lines(
     ledger.add(part, "", "transmitted", account.transmitted * unit, false);
 }
 
-/// Minority particle flux into a contact and the splitting there: the surface law, or the reaction of a pinned row.
-fn contact_recombination(problem: &Problem, which: usize, local: &Local) -> (f64, f64) {
+/// What a contact takes: pairs, and free energy with each carrier.
+struct Taken {
+    /// Particle flux of the carrier that the terminal current is summed with (the minority carrier, where there is one).
+    rate: f64,
+    /// Free energy that it loses there, per particle.
+    energy: f64,
+    /// Free energy lost by the other carrier, per area and time; `None` where it is pinned to the contact.
+    other: Option<f64>,
+}
+
+/// What a contact takes: by its law, or by the reaction of a pinned row.
+fn contact_account(problem: &Problem, point: &Point, which: usize, local: &Local) -> Taken {
     let c = &problem.coefficients;
     let system = problem.system();
     let contact = &c.contacts[which];
     let node = if which == 0 { 0 } else { c.nodes() - 1 };
-    if contact.recombining().is_some() {
-        return (system.surface[which].0, local.splitting);
-    }
-    let minority = match (contact.majority, c.terminal_pair()) {
-        (Majority::Electron, _) => Carrier::Hole,
-        (Majority::Hole, _) | (Majority::Both, None) => Carrier::Electron,
-        // A contact that pins both takes part with the carrier that the terminal current is summed with.
-        (Majority::Both, Some((front, rear))) => {
-            if which == 0 {
-                front
-            } else {
-                rear
-            }
-        }
+    // A contact takes part with the carrier that the terminal current is summed with.
+    let own = match (c.terminal_pair(), contact.majority) {
+        (Some((front, _)), _) if which == 0 => front,
+        (Some((_, rear)), _) => rear,
+        (None, Majority::Electron) => Carrier::Hole,
+        (None, _) => Carrier::Electron,
     };
+    let other = if own == Carrier::Electron { Carrier::Hole } else { Carrier::Electron };
+    // Free energy over the contact's: of electrons E_Fn - E_F, of holes E_F - E_Fp.
+    let over = |carrier: Carrier| {
+        let k = carrier as usize;
+        let rear = problem.rear_level(point.state.voltage);
+        let level = point.state.nodes[node][1 + k]
+            + rear * (c.reference[k] - which as f64)
+            + point.state.remainders[node][k];
+        if carrier == Carrier::Electron { -level } else { level }
+    };
+    let by_other = (!contact.pins(other)).then(|| system.surface[which][other as usize].0 * over(other));
+    if !contact.pins(own) {
+        let energy = if contact.pins(other) { local.splitting } else { over(own) };
+        return Taken { rate: system.surface[which][own as usize].0, energy, other: by_other };
+    }
     let edge = if which == 0 { 0 } else { c.nodes() - 2 };
     // Leaving along the flux at the front for electrons and at the rear for holes, else against it; the half-cell's
     // own recombination is not the contact's.
-    let along = (minority == Carrier::Electron) == (which == 0);
-    let flux =
-        if minority == Carrier::Electron { system.electron_flux[edge] } else { system.hole_flux[edge] };
-    ((if along { flux } else { -flux }) - system.net[node], 0.0)
+    let along = (own == Carrier::Electron) == (which == 0);
+    let flux = if own == Carrier::Electron { system.electron_flux[edge] } else { system.hole_flux[edge] };
+    let rate = (if along { flux } else { -flux }) - system.net[node];
+    Taken { rate, energy: 0.0, other: by_other }
 }
 
 /// Rounding of the current of one edge: its fluxes are right relative to themselves (the differences of the levels are
@@ -216,8 +233,8 @@ pub(crate) fn ledger(
         })
         .collect();
     let surfaces = [
-        contact_recombination(problem, 0, &locals[0]),
-        contact_recombination(problem, 1, &locals[locals.len() - 1]),
+        contact_account(problem, point, 0, &locals[0]),
+        contact_account(problem, point, 1, &locals[locals.len() - 1]),
     ];
 
     // Carriers.
@@ -234,8 +251,8 @@ pub(crate) fn ledger(
     for (l, rate, _) in &interfaces {
         ledger.add(part, &between(*l), "interface recombination", rate * current, false);
     }
-    for (name, (rate, _)) in ["front contact", "rear contact"].into_iter().zip(&surfaces) {
-        ledger.add(part, name, "surface recombination", rate * current, false);
+    for (name, taken) in ["front contact", "rear contact"].into_iter().zip(&surfaces) {
+        ledger.add(part, name, "surface recombination", taken.rate * current, false);
     }
     // Pairs that part to the two contacts; where both ends pin the same carrier, current takes none.
     let delivered = if terminal.from_rows { -terminal.sense * terminal.current } else { 0.0 };
@@ -259,9 +276,13 @@ pub(crate) fn ledger(
         ledger.add(part, &between(*l), "interface recombination", energy * power, false);
         balance.add(-energy);
     }
-    for (name, (rate, splitting)) in ["front contact", "rear contact"].into_iter().zip(&surfaces) {
-        ledger.add(part, name, "surface recombination", rate * splitting * power, false);
-        balance.add(-(rate * splitting));
+    for (name, taken) in ["front contact", "rear contact"].into_iter().zip(&surfaces) {
+        ledger.add(part, name, "surface recombination", taken.rate * taken.energy * power, false);
+        balance.add(-(taken.rate * taken.energy));
+        if let Some(energy) = taken.other {
+            ledger.add(part, name, "passage into the contact", energy * power, false);
+            balance.add(-energy);
+        }
     }
     for layer in 0..layers {
         let (mut electrons, mut holes) = (0.0, 0.0);

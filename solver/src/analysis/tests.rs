@@ -1,5 +1,6 @@
 //! Reference devices and invariants.
 
+mod contacts;
 mod odd_ends;
 mod stops;
 
@@ -65,7 +66,7 @@ pub(crate) fn r1() -> Stack {
     );
     stack.statistics = Statistics::Boltzmann;
     stack.temperature = 300.0;
-    let contact = Contact { recombination_velocity: Some(1e5) };
+    let contact = Contact::Ohmic { recombination_velocity: Some(1e5) };
     (stack.front, stack.rear) = (contact, contact);
     stack
 }
@@ -102,7 +103,7 @@ pub(crate) fn r3() -> Stack {
         ],
     );
     stack.temperature = 300.0;
-    let contact = Contact { recombination_velocity: Some(1e5) };
+    let contact = Contact::Ohmic { recombination_velocity: Some(1e5) };
     (stack.front, stack.rear) = (contact, contact);
     stack
 }

@@ -5,11 +5,11 @@ use std::collections::BTreeSet;
 use crate::materials::{Material, OpticalConstants, TEMPERATURE_LIMITS};
 use crate::math::Scalar;
 use crate::optics::Reflectance;
-use crate::quantity::constants::BOLTZMANN;
+use crate::quantity::constants::{BOLTZMANN, ELEMENTARY_CHARGE};
 
 use super::fault::{Fault, Place, TableProblem};
 use super::profile::Profile;
-use super::stack::{Interface, Layer, Side, Stack};
+use super::stack::{Barrier, Contact, Interface, Layer, Side, Stack};
 
 /// Thickness of a layer, m.
 pub const THICKNESS_LIMITS: (f64, f64) = (1e-11, 1e-2);
@@ -24,6 +24,10 @@ pub const ACCURACY_LIMITS: (f64, f64) = (1e-9, 1e-1);
 pub const LARGEST_REDUCED_GAP: f64 = 600.0;
 /// Most layers in a stack.
 pub const MOST_LAYERS: usize = 1000;
+/// Heights of a barrier that are accepted, J: 0 to 5 eV.
+const BARRIER_LIMITS: (f64, f64) = (0.0, 5.0 * ELEMENTARY_CHARGE);
+/// Work functions that are accepted, J: 1 to 8 eV (metals lie between 2 and 6).
+const WORK_FUNCTION_LIMITS: (f64, f64) = (1.0 * ELEMENTARY_CHARGE, 8.0 * ELEMENTARY_CHARGE);
 /// Wavelengths of tables, m.
 const WAVELENGTH_LIMITS: (f64, f64) = (1e-9, 1e-3);
 
@@ -193,6 +197,40 @@ impl Checker {
         }
     }
 
+    fn contact<P: Scalar>(&mut self, place: &Place, contact: &Contact<P>) {
+        let mut velocities = Vec::new();
+        match contact {
+            Contact::Ohmic { recombination_velocity } => {
+                velocities.push(("recombination_velocity", recombination_velocity));
+            }
+            Contact::Selective { electron_velocity, hole_velocity } => {
+                velocities
+                    .extend([("electron_velocity", electron_velocity), ("hole_velocity", hole_velocity)]);
+            }
+            Contact::Schottky { barrier, electron_emission_velocity, hole_emission_velocity } => {
+                velocities.extend([
+                    ("electron_emission_velocity", electron_emission_velocity),
+                    ("hole_emission_velocity", hole_emission_velocity),
+                ]);
+                let (word, energy, limits) = match barrier {
+                    Barrier::Electrons(height) => ("electron_barrier", height, BARRIER_LIMITS),
+                    Barrier::Holes(height) => ("hole_barrier", height, BARRIER_LIMITS),
+                    Barrier::WorkFunction(energy) => ("work_function", energy, WORK_FUNCTION_LIMITS),
+                };
+                self.range(place, word, *energy, limits, "J");
+            }
+        }
+        for (word, velocity) in &velocities {
+            if let Some(velocity) = velocity {
+                self.range(place, word, *velocity, (0.0, HIGHEST_VELOCITY), "m/s");
+            }
+        }
+        let blocks = |(_, velocity): &(_, &Option<P>)| velocity.is_some_and(|v| v.value() == 0.0);
+        if velocities.len() == 2 && velocities.iter().all(blocks) {
+            self.faults.push(Fault::BlockingContact { place: place.clone() });
+        }
+    }
+
     fn reflectance<P: Scalar>(&mut self, reflectance: &Reflectance<P>) {
         let word = "front_reflectance";
         match reflectance {
@@ -253,10 +291,7 @@ impl<P: Scalar> Stack<P> {
             }
         }
         for (side, contact) in [(Side::Front, &self.front), (Side::Rear, &self.rear)] {
-            if let Some(velocity) = contact.recombination_velocity {
-                let place = Place::Contact(side);
-                check.range(&place, "recombination_velocity", velocity, (0.0, HIGHEST_VELOCITY), "m/s");
-            }
+            check.contact(&Place::Contact(side), contact);
         }
         let stack = Place::Stack;
         let share = (0.0, 1.0);

@@ -109,6 +109,12 @@ pub enum Fault {
         "rear_reflectance and front_internal_reflectance are both 1: light that no layer absorbs would never leave"
     )]
     TrappedLight,
+    /// A contact that lets neither carrier through.
+    #[error("{place} passes neither electrons nor holes: both its velocities are zero")]
+    BlockingContact {
+        /// Which one.
+        place: Place,
+    },
     /// A material that cannot be evaluated.
     #[error("layer `{layer}`: {error}")]
     Material {

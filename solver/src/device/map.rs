@@ -4,7 +4,7 @@ use crate::materials::Material;
 use crate::optics::{Film, Reflectance};
 
 use super::profile::Profile;
-use super::stack::{Circuit, Contact, Interface, Layer, Stack, StackOptics};
+use super::stack::{Circuit, Interface, Layer, Stack, StackOptics};
 
 impl<P: Copy> Profile<P> {
     /// The same profile in another kind of number.
@@ -63,7 +63,6 @@ fn reflectance<P: Copy, Q>(reflectance: &Reflectance<P>, to: impl Fn(P) -> Q + C
 impl<P: Copy> Stack<P> {
     /// The same stack in another kind of number, for instance `stack.map(Dual::fixed)` before one value is made a variable.
     pub fn map<Q>(&self, to: impl Fn(P) -> Q + Copy) -> Stack<Q> {
-        let contact = |c: &Contact<P>| Contact { recombination_velocity: c.recombination_velocity.map(to) };
         let interface = |i: &Interface<P>| Interface {
             electron_recombination_velocity: to(i.electron_recombination_velocity),
             hole_recombination_velocity: to(i.hole_recombination_velocity),
@@ -72,8 +71,8 @@ impl<P: Copy> Stack<P> {
             name: self.name.clone(),
             layers: self.layers.iter().map(|l| layer(l, to)).collect(),
             interfaces: self.interfaces.iter().map(|i| i.as_ref().map(interface)).collect(),
-            front: contact(&self.front),
-            rear: contact(&self.rear),
+            front: self.front.map(|value| to(*value)),
+            rear: self.rear.map(|value| to(*value)),
             optics: StackOptics {
                 lit_from: self.optics.lit_from,
                 front_reflectance: reflectance(&self.optics.front_reflectance, to),

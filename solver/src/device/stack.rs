@@ -52,11 +52,70 @@ pub struct Interface<P = f64> {
     pub hole_recombination_velocity: P,
 }
 
-/// An ohmic contact.
+/// A contact: where it holds the bands, and how fast it takes carriers.
 #[derive(Clone, Copy, Debug)]
-pub struct Contact<P = f64> {
-    /// Recombination velocity of the minority carrier, m/s; `None` is infinite.
-    pub recombination_velocity: Option<P>,
+pub enum Contact<P = f64> {
+    /// Neutral at equilibrium; the majority carrier keeps to the contact's Fermi level.
+    Ohmic {
+        /// Recombination velocity of the minority carrier, m/s; `None` is infinite.
+        recombination_velocity: Option<P>,
+    },
+    /// Neutral at equilibrium; each carrier passes at a velocity of its own.
+    Selective {
+        /// Velocity of the electrons, m/s; `None` is infinite.
+        electron_velocity: Option<P>,
+        /// Velocity of the holes, m/s; `None` is infinite.
+        hole_velocity: Option<P>,
+    },
+    /// A metal that holds the band edges at its barrier; carriers pass by thermionic emission.
+    Schottky {
+        /// The barrier.
+        barrier: Barrier<P>,
+        /// Emission velocity of electrons, m/s; `None` is that of the material's effective mass.
+        electron_emission_velocity: Option<P>,
+        /// Emission velocity of holes, m/s; `None` is that of the material's effective mass.
+        hole_emission_velocity: Option<P>,
+    },
+}
+
+/// What a barrier is told by.
+#[derive(Clone, Copy, Debug)]
+pub enum Barrier<P = f64> {
+    /// Conduction edge at the contact over the metal's Fermi level, J.
+    Electrons(P),
+    /// The metal's Fermi level over the valence edge at the contact, J.
+    Holes(P),
+    /// Work function of the metal, J: the barrier of electrons is what it has over the affinity.
+    WorkFunction(P),
+}
+
+impl<P> Contact<P> {
+    /// An ohmic contact that recombines without limit.
+    pub const OHMIC: Self = Contact::Ohmic { recombination_velocity: None };
+
+    /// The same contact in another kind of number.
+    pub fn map<Q>(&self, to: impl Fn(&P) -> Q) -> Contact<Q> {
+        match self {
+            Contact::Ohmic { recombination_velocity } => {
+                Contact::Ohmic { recombination_velocity: recombination_velocity.as_ref().map(to) }
+            }
+            Contact::Selective { electron_velocity, hole_velocity } => Contact::Selective {
+                electron_velocity: electron_velocity.as_ref().map(&to),
+                hole_velocity: hole_velocity.as_ref().map(&to),
+            },
+            Contact::Schottky { barrier, electron_emission_velocity, hole_emission_velocity } => {
+                Contact::Schottky {
+                    barrier: match barrier {
+                        Barrier::Electrons(height) => Barrier::Electrons(to(height)),
+                        Barrier::Holes(height) => Barrier::Holes(to(height)),
+                        Barrier::WorkFunction(energy) => Barrier::WorkFunction(to(energy)),
+                    },
+                    electron_emission_velocity: electron_emission_velocity.as_ref().map(&to),
+                    hole_emission_velocity: hole_emission_velocity.as_ref().map(&to),
+                }
+            }
+        }
+    }
 }
 
 /// The optics of the whole stack.
@@ -121,8 +180,8 @@ impl Stack<f64> {
             name: name.to_string(),
             layers,
             interfaces: vec![None; gaps],
-            front: Contact { recombination_velocity: None },
-            rear: Contact { recombination_velocity: None },
+            front: Contact::OHMIC,
+            rear: Contact::OHMIC,
             optics: StackOptics {
                 lit_from: Side::Front,
                 front_reflectance: Reflectance::Number(0.0),

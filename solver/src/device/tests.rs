@@ -134,7 +134,7 @@ fn all_faults_at_once() {
     stack.layers[1].acceptors = Profile::Table { depths: vec![2.0, 1.0], values: vec![0.0, 0.0] };
     stack.layers[1].composition = Some(Profile::Constant(0.5));
     stack.interfaces = vec![];
-    stack.front.recombination_velocity = Some(-1.0);
+    stack.front = Contact::Ohmic { recombination_velocity: Some(-1.0) };
     stack.optics.rear_reflectance = 1.0;
     stack.optics.front_internal_reflectance = 1.0;
     stack.optics.grid_shading = 1.5;

@@ -28,9 +28,9 @@ pub struct System {
     pub hole_flux: Vec<f64>,
     /// The carrier rows' diagonal and off-diagonal blocks at the two ends before the contact laws replaced them.
     pub ends: [(Block, Block); 2],
-    /// Minority particle flux into each contact and its derivative with respect to the rise of the carrier's reduced
-    /// energy; zeros where that carrier is pinned.
-    pub surface: [(f64, f64); 2],
+    /// Particle flux of electrons and of holes into each contact and its derivative with respect to the rise of the
+    /// carrier's reduced energy; zeros where that carrier is pinned.
+    pub surface: [[(f64, f64); 2]; 2],
     columns: Columns,
     work: Work,
     /// How many neighbours the kernels take at a time; every width gives the same bits.
@@ -179,7 +179,7 @@ impl System {
             electron_flux: vec![0.0; nodes - 1],
             hole_flux: vec![0.0; nodes - 1],
             ends: [(Block::zeros(), Block::zeros()); 2],
-            surface: [(0.0, 0.0); 2],
+            surface: [[(0.0, 0.0); 2]; 2],
             columns: Columns::new(c),
             work: Work::new(c.entries.len()),
             width: Width::widest(),
@@ -280,24 +280,25 @@ impl System {
             let neighbour = if which == 0 { &mut jacobian.upper[i] } else { &mut jacobian.lower[i] };
             let diagonal = &mut jacobian.diagonal[i];
             ends[which] = (*diagonal, *neighbour);
-            surface[which] = (0.0, 0.0);
+            surface[which] = [(0.0, 0.0); 2];
             let residual = &mut residual[i];
             pin(0, state[i][0] - own - contact.potential, residual, diagonal, neighbour);
             for (carrier, row) in [(Carrier::Electron, 1), (Carrier::Hole, 2)] {
                 // The level relative to the contact's own, without a rounding of the bias where the references agree.
                 let level =
                     state[i][row] + rear * (c.reference[row - 1] - which as f64) + remainders[i][row - 1];
-                match contact.velocity {
-                    Some(velocity) if !contact.pins(carrier) => {
+                let law = contact.carrier(carrier);
+                match law.velocity {
+                    Some(velocity) => {
                         let excess = if row == 1 { -level } else { level };
-                        let (flux, slope) = sloped_surface_flux(c.statistics, contact, velocity, excess);
-                        surface[which] = (flux, slope);
+                        let (flux, slope) = sloped_surface_flux(c.statistics, law, velocity, excess);
+                        surface[which][row - 1] = (flux, slope);
                         residual[row] += if row == 1 { -flux } else { flux };
                         // d excess / d u is -1 for electrons (row sign -1) and +1 for holes (row sign +1).
                         diagonal[(row, row)] += slope;
                         jacobian.sums[i][(row, row)] += slope;
                     }
-                    _ => pin(row, level, residual, diagonal, neighbour),
+                    None => pin(row, level, residual, diagonal, neighbour),
                 }
             }
             // Column sums of pinned rows: the row itself and the rest of its edge, whose other end is in the rows beyond.
@@ -305,7 +306,7 @@ impl System {
                 if which == 0 { (1, jacobian.lower[1]) } else { (last - 1, jacobian.upper[last - 1]) };
             for row in 0..3 {
                 let carrier = if row == 1 { Carrier::Electron } else { Carrier::Hole };
-                if row == 0 || contact.velocity.is_none() || contact.pins(carrier) {
+                if row == 0 || contact.pins(carrier) {
                     for column in 0..3 {
                         jacobian.sums[i][(row, column)] =
                             f64::from(u8::from(row == column)) + back[(row, column)];
@@ -336,7 +337,7 @@ impl System {
         // At the rear every law is written relative to the contact's own level.
         b[n - 1][0] -= 1.0;
         for (carrier, row) in [(Carrier::Electron, 1), (Carrier::Hole, 2)] {
-            b[n - 1][row] -= if c.contacts[1].pins(carrier) { 1.0 } else { self.surface[1].1 };
+            b[n - 1][row] -= if c.contacts[1].pins(carrier) { 1.0 } else { self.surface[1][row - 1].1 };
         }
         b
     }

@@ -1,6 +1,6 @@
 //! The coefficients of the discrete equations: a device on a mesh.
 
-use crate::device::{Device, Stack};
+use crate::device::{Contact, Device, Stack};
 use crate::materials::Values;
 use crate::math::{Over, Scalar};
 use crate::mesh::Mesh;
@@ -106,8 +106,25 @@ pub struct Coefficients<P> {
     /// Whether the outermost dopings make a junction.
     pub junction: bool,
     /// How much of the rear contact's level (0 or 1) is the reference of the electrons' and of the holes' stored
-    /// quasi-Fermi potential: each refers to the contact where it is the majority, so that it is stored as zero there.
+    /// quasi-Fermi potential: each refers to the contact that pins it as the majority, so that it is stored as zero there.
     pub reference: [f64; 2],
+}
+
+/// The sign of the rear contact as a terminal, and whether there is a junction.
+///
+/// The neutral materials at the ends decide; where they are of one type and a contact holds a barrier, the end whose
+/// barrier for electrons is the higher one is the p side.
+fn sides<P: Scalar>(contacts: &[ContactLaw<P>; 2]) -> (f64, bool) {
+    let [front, rear] = contacts;
+    match (front.neutral, rear.neutral) {
+        (Majority::Electron, Majority::Hole) => (1.0, true),
+        (Majority::Hole, Majority::Electron) => (-1.0, true),
+        _ if !front.barrier && !rear.barrier => (-1.0, false),
+        _ => {
+            let (at_front, at_rear) = (front.potential.value(), rear.potential.value());
+            if at_front > at_rear { (1.0, true) } else { (-1.0, at_front < at_rear) }
+        }
+    }
 }
 
 /// Values at one place, in the scaled form of an entry (volume left at zero).
@@ -221,22 +238,19 @@ impl<P: Scalar + Over<P>> Coefficients<P> {
                 })
             })
             .collect();
-        let law = |e: usize, velocity: Option<P>| {
-            ContactLaw::new(stack.statistics, &entries[e], velocity.map(|v| v * velocity_scale))
+        let law = |e: usize, contact: &Contact<P>| {
+            ContactLaw::new(stack.statistics, &entries[e], contact, stack.temperature, |v| v * velocity_scale)
         };
-        let contacts = [
-            law(0, stack.front.recombination_velocity),
-            law(entries.len() - 1, stack.rear.recombination_velocity),
-        ];
-        let (polarity, junction) = match (contacts[0].majority, contacts[1].majority) {
-            (Majority::Electron, Majority::Hole) => (1.0, true),
-            (Majority::Hole, Majority::Electron) => (-1.0, true),
-            _ => (-1.0, false),
-        };
-        let reference = match (contacts[0].majority, contacts[1].majority) {
+        let contacts = [law(0, &stack.front), law(entries.len() - 1, &stack.rear)];
+        let (polarity, junction) = sides(&contacts);
+        let reference = match (contacts[0].neutral, contacts[1].neutral) {
             (Majority::Hole, _) | (_, Majority::Electron) => [1.0, 0.0],
             _ => [0.0, 1.0],
         };
+        // A carrier that the rear contact does not pin refers to the front: so the bias enters its rows through the rear
+        // contact's law alone, not through sums of fluxes that cancel (which a weak tie to the contact would feel).
+        let pinned = [Carrier::Electron, Carrier::Hole].map(|carrier| contacts[1].pins(carrier));
+        let reference = [0, 1].map(|k| if pinned[k] { reference[k] } else { 0.0 });
         Coefficients {
             statistics: stack.statistics,
             thermal_voltage,
@@ -266,17 +280,23 @@ impl<P: Scalar + Over<P>> Coefficients<P> {
     }
     /// The carrier whose flux into the front contact, and the one whose flux into the rear contact, sum with the net
     /// recombination to the terminal current: minority carriers at both. `None` where both ends pin the same one.
+    ///
+    /// A majority carrier that a contact does not pin serves too: its flux is the contact's law.
     pub fn terminal_pair(&self) -> Option<(Carrier, Carrier)> {
-        match (self.contacts[0].majority, self.contacts[1].majority) {
+        let [front, rear] = &self.contacts;
+        match (front.majority, rear.majority) {
             (Majority::Hole, Majority::Electron | Majority::Both) | (Majority::Both, Majority::Electron) => {
                 Some((Carrier::Electron, Carrier::Hole))
             }
             (Majority::Electron, Majority::Hole | Majority::Both) | (Majority::Both, Majority::Hole) => {
                 Some((Carrier::Hole, Carrier::Electron))
             }
-            (Majority::Electron, Majority::Electron)
-            | (Majority::Hole, Majority::Hole)
-            | (Majority::Both, Majority::Both) => None,
+            (Majority::Both, Majority::Both) => None,
+            (Majority::Electron, Majority::Electron) | (Majority::Hole, Majority::Hole) => {
+                [(Carrier::Electron, Carrier::Hole), (Carrier::Hole, Carrier::Electron)]
+                    .into_iter()
+                    .find(|(a, b)| front.tells(*a) && rear.tells(*b))
+            }
         }
     }
 }

@@ -1,9 +1,13 @@
-//! Ohmic contacts: neutral equilibrium, the pinned majority carrier, the recombining minority carrier.
+//! Contacts: the potential that they hold, the carriers that keep to their Fermi level, and those that pass at a velocity.
 
+use crate::device::{Barrier, Contact};
 use crate::math::{Num, Scalar};
-use crate::physics::{Statistics, ln_occupancy_excess, ln_occupancy_excess_with_slope};
+use crate::physics::{Statistics, emission, ln_occupancy_excess, ln_occupancy_excess_with_slope};
+
+use crate::quantity::constants::BOLTZMANN;
 
 use super::coefficients::Entry;
+use super::scales;
 use super::side::{side, sloped_side};
 
 /// A carrier.
@@ -15,33 +19,45 @@ pub enum Carrier {
     Hole,
 }
 
-/// Which carrier is pinned by right of being the more numerous at equilibrium.
+/// Which carrier is the more numerous at equilibrium.
 #[derive(Clone, Copy, Debug, PartialEq, Eq)]
 pub enum Majority {
     /// Electrons.
     Electron,
     /// Holes.
     Hole,
-    /// Neither: equal densities, both are pinned.
+    /// Neither: equal densities.
     Both,
 }
 
 /// A contact's equilibrium and its law.
 #[derive(Clone, Copy, Debug)]
 pub struct ContactLaw<P> {
-    /// Potential of neutral equilibrium relative to the contact's Fermi level, kT/q.
+    /// Potential at the contact relative to its Fermi level, kT/q.
     pub potential: P,
-    /// Which carrier is pinned as the majority.
+    /// The majority carrier at that potential.
     pub majority: Majority,
-    /// Recombination velocity of the minority carrier in scaled units; `None` pins it too.
-    pub velocity: Option<P>,
-    /// Equilibrium density of the minority carrier.
-    pub minority_density: P,
-    /// Reduced energy of the minority carrier at equilibrium.
-    pub minority_energy: P,
+    /// The majority carrier of the neutral material behind it.
+    pub neutral: Majority,
+    /// Whether the contact holds the potential at a barrier, not at neutrality.
+    pub barrier: bool,
+    /// Electrons and holes at the contact.
+    pub carriers: [ContactCarrier<P>; 2],
 }
 
-/// Densities closer than this ratio count as equal (both carriers pinned): far above rounding, far below any doping.
+/// A carrier at a contact.
+#[derive(Clone, Copy, Debug)]
+pub struct ContactCarrier<P> {
+    /// At what velocity what exceeds its equilibrium density passes, in scaled units; `None` keeps its quasi-Fermi level
+    /// at the contact's.
+    pub velocity: Option<P>,
+    /// Equilibrium density.
+    pub density: P,
+    /// Reduced energy at equilibrium.
+    pub energy: P,
+}
+
+/// Densities closer than this ratio count as equal (an ohmic contact pins both carriers): far above rounding, far below any doping.
 const EQUAL: f64 = 1e-9;
 
 /// The neutral potential of an entry at a flat Fermi level of zero, kT/q, for plain numbers.
@@ -93,68 +109,121 @@ pub fn neutral_potential_of<P: Scalar + crate::math::Over<P>>(statistics: Statis
     P::constant(root) + (at.p - at.n + entry.doping) * (1.0 / slope)
 }
 
+/// The majority carrier of an entry at a potential, with both densities.
+fn majority<P: Scalar + crate::math::Over<P>>(
+    statistics: Statistics,
+    entry: &Entry<P>,
+    potential: P,
+) -> (Majority, [P; 2]) {
+    let zero = P::constant(0.0);
+    let at = side::<P, P>(statistics, entry, potential, zero, zero);
+    let (n, p) = (at.n.value(), at.p.value());
+    let majority = if (n - p).abs() <= EQUAL * n.max(p) {
+        Majority::Both
+    } else if n > p {
+        Majority::Electron
+    } else {
+        Majority::Hole
+    };
+    (majority, [at.n, at.p])
+}
+
 impl<P: Scalar + crate::math::Over<P>> ContactLaw<P> {
-    /// The law of a contact on `entry` with a minority recombination velocity (scaled; `None` infinite).
-    pub fn new(statistics: Statistics, entry: &Entry<P>, velocity: Option<P>) -> Self {
-        let potential = neutral_potential_of(statistics, entry);
-        let zero = P::constant(0.0);
-        let at = side::<P, P>(statistics, entry, potential, zero, zero);
-        let (n, p) = (at.n.value(), at.p.value());
-        let majority = if (n - p).abs() <= EQUAL * n.max(p) {
-            Majority::Both
-        } else if n > p {
-            Majority::Electron
-        } else {
-            Majority::Hole
+    /// The law of a contact on `entry`, whose velocities `scaled` takes from m/s.
+    pub fn new(
+        statistics: Statistics,
+        entry: &Entry<P>,
+        contact: &Contact<P>,
+        temperature: P,
+        scaled: impl Fn(P) -> P,
+    ) -> Self {
+        let balanced = neutral_potential_of(statistics, entry);
+        let (neutral, _) = majority(statistics, entry, balanced);
+        let per_kt = (temperature * BOLTZMANN).recip();
+        let potential = match contact {
+            Contact::Ohmic { .. } | Contact::Selective { .. } => balanced,
+            Contact::Schottky { barrier, .. } => match *barrier {
+                Barrier::Electrons(height) => -(entry.affinity + height * per_kt),
+                Barrier::Holes(height) => height * per_kt - entry.affinity_and_gap,
+                Barrier::WorkFunction(energy) => -(energy * per_kt),
+            },
         };
-        let (minority_density, minority_energy) = match majority {
-            Majority::Electron => (at.p, -(potential + entry.affinity_and_gap)),
-            _ => (at.n, potential + entry.affinity),
+        let (majority, densities) = majority(statistics, entry, potential);
+        let velocities = match *contact {
+            Contact::Ohmic { recombination_velocity } => match majority {
+                Majority::Electron => [None, recombination_velocity],
+                Majority::Hole => [recombination_velocity, None],
+                Majority::Both => [None, None],
+            },
+            Contact::Selective { electron_velocity, hole_velocity } => [electron_velocity, hole_velocity],
+            Contact::Schottky { electron_emission_velocity, hole_emission_velocity, .. } => {
+                let of = |given: Option<P>, ln_density: P| {
+                    Some(given.unwrap_or_else(|| {
+                        emission::velocity(temperature, ln_density.exp() * scales::DENSITY)
+                    }))
+                };
+                [
+                    of(electron_emission_velocity, entry.ln_conduction),
+                    of(hole_emission_velocity, entry.ln_valence),
+                ]
+            }
         };
-        ContactLaw { potential, majority, velocity, minority_density, minority_energy }
+        let energies = [potential + entry.affinity, -(potential + entry.affinity_and_gap)];
+        let carriers = [0, 1].map(|k| ContactCarrier {
+            velocity: velocities[k].map(&scaled),
+            density: densities[k],
+            energy: energies[k],
+        });
+        let barrier = matches!(contact, Contact::Schottky { .. });
+        ContactLaw { potential, majority, neutral, barrier, carriers }
     }
 
-    /// The carrier that recombines at finite velocity here, if any.
-    pub fn recombining(&self) -> Option<Carrier> {
-        match (self.majority, &self.velocity) {
-            (Majority::Both, _) | (_, None) => None,
-            (Majority::Electron, Some(_)) => Some(Carrier::Hole),
-            (Majority::Hole, Some(_)) => Some(Carrier::Electron),
-        }
+    /// The law of one carrier here.
+    pub fn carrier(&self, carrier: Carrier) -> &ContactCarrier<P> {
+        &self.carriers[carrier as usize]
     }
     /// Whether this carrier's quasi-Fermi potential is pinned to the contact's level.
     pub fn pins(&self, carrier: Carrier) -> bool {
-        self.recombining() != Some(carrier)
+        self.carrier(carrier).velocity.is_none()
+    }
+    /// Whether a carrier's flux into the contact is known without the cancellation of a majority that is pinned.
+    pub fn tells(&self, carrier: Carrier) -> bool {
+        !self.pins(carrier) || !self.is_majority(carrier)
+    }
+    /// Whether this carrier alone is the majority at equilibrium.
+    pub fn is_majority(&self, carrier: Carrier) -> bool {
+        self.majority == if carrier == Carrier::Electron { Majority::Electron } else { Majority::Hole }
     }
 }
 
-/// Particle flux of the minority carrier into a contact: `S n0 expm1(ln n - ln n0)`, exactly zero at equilibrium.
+/// Particle flux of a carrier into a contact: `v n0 expm1(ln n - ln n0)`, exactly zero at equilibrium.
 ///
-/// `excess` is the rise of the carrier's reduced energy over its equilibrium value.
+/// `excess` is the rise of the carrier's reduced energy over its equilibrium value. With the velocity of thermionic
+/// emission it is the law of C. R. Crowell and S. M. Sze, Solid-State Electron. 9, 1035 (1966) (from memory).
 #[inline(always)]
 pub fn surface_flux<T: crate::math::Over<P>, P: Scalar>(
     statistics: Statistics,
-    law: &ContactLaw<P>,
+    law: &ContactCarrier<P>,
     velocity: P,
     excess: T,
 ) -> T {
-    let reference = T::lift(law.minority_energy);
-    let ln_ratio = excess + ln_occupancy_excess(statistics, excess + law.minority_energy)
+    let reference = T::lift(law.energy);
+    let ln_ratio = excess + ln_occupancy_excess(statistics, excess + law.energy)
         - ln_occupancy_excess(statistics, reference);
-    ln_ratio.exp_m1() * (law.minority_density * velocity)
+    ln_ratio.exp_m1() * (law.density * velocity)
 }
 
 /// [`surface_flux`] of plain numbers with its derivative with respect to `excess`.
 #[inline(always)]
 pub fn sloped_surface_flux(
     statistics: Statistics,
-    law: &ContactLaw<f64>,
+    law: &ContactCarrier<f64>,
     velocity: f64,
     excess: f64,
 ) -> (f64, f64) {
-    let (value, slope) = ln_occupancy_excess_with_slope(statistics, excess + law.minority_energy);
-    let ln_ratio = excess + value - ln_occupancy_excess(statistics, law.minority_energy);
-    let scale = law.minority_density * velocity;
+    let (value, slope) = ln_occupancy_excess_with_slope(statistics, excess + law.energy);
+    let ln_ratio = excess + value - ln_occupancy_excess(statistics, law.energy);
+    let scale = law.density * velocity;
     let e = Num::exp_m1(ln_ratio);
     (e * scale, scale * (e + 1.0) * (1.0 + slope))
 }

@@ -100,12 +100,12 @@ where
         for (carrier, row, sign, phi, excess) in
             [(Carrier::Electron, 1, -1.0, phi_n, own - phi_n), (Carrier::Hole, 2, 1.0, phi_p, phi_p - own)]
         {
-            match contact.velocity {
-                Some(velocity) if !contact.pins(carrier) => {
-                    rows[i][row] =
-                        rows[i][row] + surface_flux(c.statistics, contact, velocity, excess) * sign;
+            let law = contact.carrier(carrier);
+            match law.velocity {
+                Some(velocity) => {
+                    rows[i][row] = rows[i][row] + surface_flux(c.statistics, law, velocity, excess) * sign;
                 }
-                _ => rows[i][row] = phi - own,
+                None => rows[i][row] = phi - own,
             }
         }
     }

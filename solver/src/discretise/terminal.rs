@@ -4,7 +4,7 @@ use crate::linear::Triple;
 
 use super::assembly::System;
 use super::coefficients::Coefficients;
-use super::contact::Carrier;
+use super::contact::{Carrier, Majority};
 
 /// The terminal current (scaled, forward positive) and its partial derivatives.
 #[derive(Clone, Debug)]
@@ -72,7 +72,7 @@ impl Terminal {
                 gradient[i] += own * s;
                 gradient[neighbour] += other * s;
             } else {
-                let (flux, slope) = system.surface[which];
+                let (flux, slope) = system.surface[which][row - 1];
                 sum += flux;
                 magnitude += flux.abs();
                 let by_own = if carrier == Carrier::Electron { -slope } else { slope };
@@ -110,10 +110,7 @@ impl Terminal {
     fn from_edges(c: &Coefficients<f64>, system: &System) -> Terminal {
         let n = system.residual.len();
         let electrons = c.contacts[0].pins(Carrier::Electron)
-            && matches!(
-                c.contacts[0].majority,
-                super::contact::Majority::Electron | super::contact::Majority::Both
-            );
+            && (c.contacts[0].is_majority(Carrier::Electron) || c.contacts[0].majority == Majority::Both);
         // Resistance of an edge: what its flux loses per unit of level, read from the Jacobian's coupling.
         let row = if electrons { 1 } else { 2 };
         let conductance = |k: usize| {

@@ -1,10 +1,11 @@
 //! The assembled Jacobian against dual numbers of the plain residual.
 
 use crate::analysis::tests::{r1, r3};
-use crate::device::{Contact, Device, Interface};
+use crate::device::{Barrier, Contact, Device, Interface, Stack};
 use crate::linear::Triple;
 use crate::math::Dual;
 use crate::mesh::{Grading, Mesh};
+use crate::quantity::constants::ELEMENTARY_CHARGE;
 
 use super::residual::residual;
 use super::*;
@@ -35,11 +36,24 @@ fn jacobian_is_the_derivative_of_the_plain_residual() {
     let mut with_interface = r3();
     with_interface.interfaces[1] =
         Some(Interface { electron_recombination_velocity: 1e3, hole_recombination_velocity: 30.0 });
-    with_interface.rear = Contact { recombination_velocity: None };
+    with_interface.rear = Contact::Ohmic { recombination_velocity: None };
     let mut resistor = r1();
     resistor.layers[0].donors = resistor.layers[1].donors.clone();
     resistor.layers[0].acceptors = resistor.layers[1].acceptors.clone();
-    for (name, stack) in [("R1", r1()), ("R3", r3()), ("interface", with_interface), ("resistor", resistor)] {
+    let velocities = (Some(1e2), Some(3e4));
+    let barrier = Barrier::Electrons(0.7 * ELEMENTARY_CHARGE);
+    let passing = Stack {
+        front: Contact::Selective { electron_velocity: velocities.0, hole_velocity: velocities.1 },
+        rear: Contact::Schottky { barrier, electron_emission_velocity: None, hole_emission_velocity: None },
+        ..r3()
+    };
+    for (name, stack) in [
+        ("R1", r1()),
+        ("R3", r3()),
+        ("interface", with_interface),
+        ("resistor", resistor),
+        ("velocities and a barrier", passing),
+    ] {
         let c = coefficients(stack);
         let n = c.nodes();
         let generation: Vec<f64> = (0..c.entries.len()).map(|e| 1e-7 * (1.0 + e as f64)).collect();
@@ -156,8 +170,14 @@ fn every_width_gives_the_same_bits() {
 #[test]
 fn terminal_gradient_against_differences() {
     let mut blocked = r3();
-    blocked.front = Contact { recombination_velocity: None };
-    for (name, stack) in [("R1", r1()), ("R3", r3()), ("blocked", blocked)] {
+    blocked.front = Contact::Ohmic { recombination_velocity: None };
+    let barrier = Barrier::Holes(0.4 * ELEMENTARY_CHARGE);
+    let passing = Stack {
+        front: Contact::Schottky { barrier, electron_emission_velocity: None, hole_emission_velocity: None },
+        rear: Contact::Selective { electron_velocity: Some(1e2), hole_velocity: Some(3e4) },
+        ..r3()
+    };
+    for (name, stack) in [("R1", r1()), ("R3", r3()), ("blocked", blocked), ("passing", passing)] {
         let c = coefficients(stack);
         let n = c.nodes();
         let generation = vec![0.0; c.entries.len()];
@@ -198,7 +218,7 @@ fn terminal_gradient_against_differences() {
 /// plus the rounding of the row over the step.
 #[test]
 fn parameter_derivatives_flow_through_the_whole_chain() {
-    use crate::device::{Profile, Stack};
+    use crate::device::Profile;
     use crate::materials::Parameter;
     type D = Dual<f64, 1>;
     let stack = r3();

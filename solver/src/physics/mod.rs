@@ -4,6 +4,7 @@
 
 pub mod auger;
 pub mod carriers;
+pub mod emission;
 pub mod radiative;
 pub mod shockley_read_hall;
 pub mod statistics;

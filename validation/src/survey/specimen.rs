@@ -157,7 +157,7 @@ pub fn specimen(seed: u64) -> (Stack, Light, f64) {
             1 => None,
             _ => Some(r.decade(1e-3, 1e5)),
         };
-        *contact = Contact { recombination_velocity };
+        *contact = Contact::Ohmic { recombination_velocity };
     }
     stack.temperature = if r.chance(0.4) { 300.0 } else { r.between(80.0, 500.0) };
     stack.statistics = if r.chance(0.3) { Statistics::Boltzmann } else { Statistics::FermiDirac };
@@ -202,8 +202,8 @@ pub fn describe(seed: u64) -> String {
         stack.statistics,
         stack.circuit.series_resistance,
         stack.circuit.shunt_resistance,
-        stack.front.recombination_velocity,
-        stack.rear.recombination_velocity
+        stack.front,
+        stack.rear
     );
     for l in &stack.layers {
         let d = |p: &Profile| match p {

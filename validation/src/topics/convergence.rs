@@ -1,7 +1,7 @@
 //! The grid convergence index: its published example, and the figures of a cell.
 
 use epiloom_solver::analysis::{Figure, Voltages, current_voltage, spectral_response};
-use epiloom_solver::device::Stack;
+use epiloom_solver::device::{Contact, Stack};
 use epiloom_solver::materials::Material;
 use epiloom_solver::optics::{Light, Spectrum};
 use epiloom_solver::solve::grid_convergence;
@@ -38,8 +38,8 @@ fn cell(checks: &mut Checks) -> Result<(), Failure> {
         layer
     };
     let mut stack = Stack::new("cell", vec![gaas("emitter", 1e-7, 2e24, 0.0), gaas("base", 3e-6, 0.0, 1e23)]);
-    stack.front.recombination_velocity = Some(1e4);
-    stack.rear.recombination_velocity = Some(1e4);
+    stack.front = Contact::Ohmic { recombination_velocity: Some(1e4) };
+    stack.rear = Contact::Ohmic { recombination_velocity: Some(1e4) };
     stack.accuracy = 1e-6;
     let device = device(stack)?;
     let sun = Light::Spectrum { spectrum: Spectrum::standard("AM1.5G")?, suns: 1.0 };

@@ -54,7 +54,8 @@ fn split(problem: &mut Problem, point: &Point, stored: &StoredProblem) -> Vec<(S
         }
     }
     for (name, surface) in ["left contact", "right contact"].into_iter().zip(problem.system().surface) {
-        list.push((name.to_string(), surface.0 * scales::CURRENT));
+        // The minority carrier's; the other one is pinned and has none.
+        list.push((name.to_string(), (surface[0].0 + surface[1].0) * scales::CURRENT));
     }
     let generation: f64 = problem.generation.iter().sum();
     list.push(("generation".to_string(), generation * scales::CURRENT));

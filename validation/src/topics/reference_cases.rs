@@ -166,7 +166,7 @@ impl StoredCase {
         stack.statistics =
             if self.statistics == "Boltzmann" { Statistics::Boltzmann } else { Statistics::FermiDirac };
         stack.temperature = 300.0;
-        let contact = |c: &StoredContact| Contact { recombination_velocity: Some(c.velocity * 0.01) };
+        let contact = |c: &StoredContact| Contact::Ohmic { recombination_velocity: Some(c.velocity * 0.01) };
         (stack.front, stack.rear) = (contact(&self.contacts.left), contact(&self.contacts.right));
         stack.accuracy = accuracy;
         device(stack)

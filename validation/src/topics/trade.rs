@@ -3,7 +3,7 @@
 use std::collections::BTreeMap;
 
 use epiloom_solver::analysis::{BiasPoint, LedgerPart, Voltages, bias_point, current_voltage};
-use epiloom_solver::device::{Layer, LayerOptics, Profile, Stack};
+use epiloom_solver::device::{Contact, Layer, LayerOptics, Profile, Stack};
 use epiloom_solver::materials::{Material, Parameter};
 use epiloom_solver::optics::{Light, Spectrum};
 use epiloom_solver::quantity::constants::{ELEMENTARY_CHARGE, LIGHT_SPEED, PLANCK};
@@ -133,8 +133,8 @@ fn injection(checks: &mut Checks) -> Result<(), Failure> {
             ];
             let mut stack = Stack::new("slab", layers);
             stack.temperature = 300.0;
-            stack.front.recombination_velocity = Some(0.0);
-            stack.rear.recombination_velocity = Some(0.0);
+            stack.front = Contact::Ohmic { recombination_velocity: Some(0.0) };
+            stack.rear = Contact::Ohmic { recombination_velocity: Some(0.0) };
             let point = open_circuit(stack, suns)?;
             let p = &point.profiles;
             let inside: Vec<usize> = (0..p.depth.len()).filter(|e| p.layer[*e] == 1).collect();

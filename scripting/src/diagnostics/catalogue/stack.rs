@@ -74,6 +74,10 @@ super::rows! {
         "The relative accuracy asked for is above zero and at most 0.01; very small values cost many nodes and are \
          refused below what rounding allows.",
         "cell.accuracy = 1e-6;";
+    BARRIER = "E236", "a contact's barrier that cannot be",
+        "A Schottky contact has one barrier, told as that of electrons, that of holes, or by the metal's work function; \
+         a contact must pass one carrier at least.",
+        "schottky(#{ electron_barrier: 0.8.eV })";
     STACK = "E240", "a stack that cannot be solved as described",
         "Something else about the stack contradicts itself; the message says what, where, and the range allowed.",
         "epiloom check cell.rhai        // lists all faults at once, solving nothing";

@@ -54,6 +54,27 @@ fn layers_and_materials_are_checked_at_their_place() {
     fails("donors(infinity.per_cm3); // ~ E203");
 }
 
+/// Source of truth: the rules of each contact by hand.
+#[test]
+fn contacts_are_checked_at_their_place() {
+    let none = fails("schottky(#{}); // ~ E236");
+    assert_eq!(none.help.as_deref(), Some("give one of them: schottky(#{ electron_barrier: 0.8.eV })"));
+    fails("schottky(#{ electron_barrier: 0.8.eV, hole_barrier: 0.6.eV }); // ~ E236");
+    fails("schottky(#{ electron_barrier: 0.8 }); // ~ E200");
+    fails("schottky(#{ electron_barrier: 0.8.V }); // ~ E202");
+    fails("schottky(#{ electron_barrier: 0.8.eV, electron_emission_velocity: -1.cm_per_s }); // ~ E224");
+    let near = fails("schottky(#{ barrier: 0.8.eV }); // ~ E108");
+    assert!(near.help.is_some_and(|help| help.contains("electron_barrier")));
+    fails("selective(#{ electron_velocity: 3 }); // ~ E200");
+    fails("schottky(); // ~ E104");
+    let high = fails(&with_cell(
+        "cell.rear = schottky(#{ electron_barrier: 8.eV });\ncell.equilibrium(); // ~ E236",
+    ));
+    assert!(high.message.contains("electron barrier of the rear contact must be"), "{}", high.message);
+    let blocked = "cell.front = selective(#{ electron_velocity: 0.cm_per_s, hole_velocity: 0.cm_per_s });";
+    fails(&with_cell(&format!("{blocked}\ncell.equilibrium(); // ~ E236")));
+}
+
 /// Source of truth: the rules of a stack by hand.
 #[test]
 fn stacks_are_checked_at_their_place() {

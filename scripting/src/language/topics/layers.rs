@@ -1,14 +1,14 @@
-//! Layers, the interfaces between them, and the contacts at their ends.
+//! Layers and the interfaces between them.
 
 use std::sync::Arc;
 
-use epiloom_solver::device::{Contact, Interface, Layer, LayerOptics};
+use epiloom_solver::device::{Interface, Layer, LayerOptics};
 use epiloom_solver::materials::Parameter;
 use rhai::Dynamic;
 
 use crate::diagnostics::codes;
 use crate::language::device_value::{
-    ConstantsValue, ContactValue, DopingValue, Edit, InterfaceValue, LayerValue, MaterialValue, ProfileValue,
+    ConstantsValue, DopingValue, Edit, InterfaceValue, LayerValue, MaterialValue, ProfileValue,
 };
 use crate::language::dimension::Dimension;
 use crate::language::fault::{Fault, Faults, Place};
@@ -21,7 +21,7 @@ use crate::language::vocabulary::{
 use super::materials;
 
 topic! {
-    "Layers and contacts",
+    "Layers",
     "An entry `()` of a stack is skipped, so a layer may stand in an `if`. Every option of `material` is an option and a property \
      of a layer too.";
 
@@ -52,25 +52,6 @@ topic! {
         register: |engine, session| {
             engine.register_type_with_name::<InterfaceValue>("interface");
             function(engine, session, "interface", 1..=1, interface);
-        },
-    }
-    Function "ohmic" {
-        forms: ["ohmic()", "ohmic(#{ options })"],
-        doc: "An ohmic contact: the majority carrier is pinned to the contact's Fermi level, the minority carrier recombines \
-              with the given velocity, without limit if none is given.",
-        options: &[
-            OptionRow { key: "recombination_velocity", takes: "a velocity", doc: "Recombination velocity of the minority carrier." },
-        ],
-        example: "let contact = ohmic(#{ recombination_velocity: 1e6.cm_per_s });",
-        register: |engine, session| {
-            engine.register_type_with_name::<ContactValue>("contact");
-            function(engine, session, "ohmic", 0..=1, |_, arguments| {
-                let options = match arguments.first() {
-                    Some(map) => Options::new(map, "`ohmic`", ["recombination_velocity"]).map_err(Faults)?,
-                    None => Options::none(),
-                };
-                Ok(Dynamic::from(ContactValue(Contact { recombination_velocity: velocity(&options, "recombination_velocity", true)? })))
-            });
         },
     }
     Property "name" of "layer" {
@@ -350,7 +331,7 @@ fn interface(call: &Call, arguments: &mut [&mut Dynamic]) -> Answer {
 }
 
 /// A recombination velocity of zero or more; infinite only where that is said by leaving it out.
-fn velocity(options: &Options, key: &str, infinite: bool) -> Result<Option<Quantity>, Fault> {
+pub(super) fn velocity(options: &Options, key: &str, infinite: bool) -> Result<Option<Quantity>, Fault> {
     let at = |fault: Fault| fault.at(Place::Option(key.to_string()));
     let Some(value) = options.get(key) else { return Ok(None) };
     let velocity = if infinite {

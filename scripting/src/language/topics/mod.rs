@@ -3,6 +3,7 @@
 use super::vocabulary::Topic;
 
 mod analyses;
+mod contacts;
 mod doping;
 mod files;
 mod functions;
@@ -24,6 +25,7 @@ pub(super) static ALL: &[&Topic] = &[
     &materials::TOPIC,
     &doping::TOPIC,
     &layers::TOPIC,
+    &contacts::TOPIC,
     &stacks::TOPIC,
     &light::TOPIC,
     &analyses::TOPIC,

@@ -89,7 +89,7 @@ topic! {
         },
     }
     Property "front" of "stack" {
-        forms: ["cell.front", "cell.front = ohmic(..)"],
+        forms: ["cell.front", "cell.front = ohmic(..)", "cell.front = selective(..)", "cell.front = schottky(..)"],
         doc: "Contact at the front.",
         example: "let cell = stack(\"bar\", [layer(\"bar\", material(\"GaAs\"), 1.um, donors(1e17.per_cm3))]);\ncell.front = ohmic(#{ recombination_velocity: 1e6.cm_per_s });\nprint(cell.name);",
         register: |engine, session| {
@@ -101,7 +101,7 @@ topic! {
         },
     }
     Property "rear" of "stack" {
-        forms: ["cell.rear", "cell.rear = ohmic(..)"],
+        forms: ["cell.rear", "cell.rear = ohmic(..)", "cell.rear = selective(..)", "cell.rear = schottky(..)"],
         doc: "Contact at the rear.",
         example: "let cell = stack(\"bar\", [layer(\"bar\", material(\"GaAs\"), 1.um, donors(1e17.per_cm3))]);\ncell.rear = ohmic(#{ recombination_velocity: 1e7.cm_per_s });\nprint(cell.name);",
         register: |engine, session| {
@@ -330,8 +330,8 @@ fn build(call: &Call, arguments: &mut [&mut Dynamic]) -> Answer {
         name,
         layers: parts.layers,
         interfaces: parts.interfaces,
-        front: Contact { recombination_velocity: None },
-        rear: Contact { recombination_velocity: None },
+        front: Contact::OHMIC,
+        rear: Contact::OHMIC,
         optics: StackOptics {
             lit_from: Side::Front,
             front_reflectance: Reflectance::Number(Quantity::number(0.0)),
