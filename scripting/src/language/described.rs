@@ -35,6 +35,11 @@ pub fn described_stack(stack: &Stack<Quantity>) -> crate::archive::Stack {
     if let Some(shunt) = &stack.circuit.shunt_resistance {
         settings.push(Condition::new("shunt resistance", value(shunt)));
     }
+    if let Some(diode) = &stack.circuit.second_diode {
+        let (current, ideality) = (&diode.saturation_current_density, &diode.ideality);
+        let words = format!("saturation current density {current}, ideality {ideality}");
+        settings.push(Condition::new("second diode", Value::text(words)));
+    }
     for (pair, interface) in stack.layers.windows(2).zip(&stack.interfaces) {
         if let Some(interface) = interface {
             settings.push(Condition::new(

@@ -4,7 +4,7 @@ use std::collections::BTreeMap;
 use std::sync::Arc;
 use std::sync::atomic::{AtomicBool, Ordering};
 
-use epiloom_solver::device::{Contact, Interface, Layer, Profile, Stack};
+use epiloom_solver::device::{Contact, Diode, Interface, Layer, Profile, Stack};
 use epiloom_solver::materials::Material;
 use epiloom_solver::optics::{Film, OpticalConstants, Reflectance};
 use rhai::Position;
@@ -49,6 +49,10 @@ pub struct InterfaceValue {
 /// A contact.
 #[derive(Clone, Debug)]
 pub struct ContactValue(pub Contact<Quantity>);
+
+/// A diode beside the device.
+#[derive(Clone, Debug)]
+pub struct DiodeValue(pub Diode<Quantity>);
 
 /// Refractive index and extinction coefficient of a substance.
 #[derive(Clone, Debug)]

@@ -2,7 +2,7 @@
 
 use std::cell::Cell;
 
-use epiloom_solver::device::{Circuit, Interface, Layer, Profile, Stack, StackOptics};
+use epiloom_solver::device::{Circuit, Diode, Interface, Layer, Profile, Stack, StackOptics};
 use epiloom_solver::materials::Material;
 use epiloom_solver::optics::{Film, Reflectance};
 
@@ -26,6 +26,10 @@ pub fn stack<P, R>(stack: &Stack<P>, f: &impl Fn(&P) -> R) -> Stack<R> {
         circuit: Circuit {
             series_resistance: f(&stack.circuit.series_resistance),
             shunt_resistance: stack.circuit.shunt_resistance.as_ref().map(f),
+            second_diode: stack.circuit.second_diode.as_ref().map(|diode| Diode {
+                saturation_current_density: f(&diode.saturation_current_density),
+                ideality: f(&diode.ideality),
+            }),
         },
         temperature: f(&stack.temperature),
         statistics: stack.statistics,

@@ -118,6 +118,8 @@ fn limits_of(quantity: &str) -> (Code, Dimension) {
         "donors" | "acceptors" => (codes::DOPING_NEGATIVE, Dimension::DENSITY),
         "temperature" => (codes::TEMPERATURE, Dimension::TEMPERATURE),
         "series_resistance" | "shunt_resistance" => (codes::RESISTANCE, Dimension::AREA_RESISTANCE),
+        "saturation_current_density" => (codes::DIODE, Dimension::CURRENT_DENSITY),
+        "ideality" => (codes::DIODE, Dimension::NONE),
         "accuracy" => (codes::ACCURACY, Dimension::NONE),
         "x" | "composition" => (codes::COMPOSITION, Dimension::NONE),
         "electron_barrier" | "hole_barrier" | "work_function" => (codes::BARRIER, Dimension::ENERGY),

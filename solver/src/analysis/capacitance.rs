@@ -186,7 +186,8 @@ fn answer(problem: &mut Problem, point: &Point) -> Result<Answer, Singular> {
             }
         }
     }
-    let circuit = 1.0 + problem.series_resistance * (point.device_conductance + problem.shunt_conductance);
+    let beside = problem.beside(point.state.voltage).1;
+    let circuit = 1.0 + problem.series_resistance * (point.device_conductance + beside);
     let scale = CHARGE / (circuit * circuit);
     Ok(Answer { capacitance: scale * (stored - lag), stored: scale * stored })
 }

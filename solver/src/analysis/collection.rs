@@ -17,7 +17,8 @@ pub fn collection_probability(problem: &mut Problem, point: &Point) -> Option<Ve
     let mut lambda: Vec<Triple> = terminal.gradient.clone();
     problem.solve_transposed(&mut lambda);
     let last = lambda.len() - 1;
-    let circuit = 1.0 + problem.series_resistance * (point.device_conductance + problem.shunt_conductance);
+    let beside = problem.beside(point.state.voltage).1;
+    let circuit = 1.0 + problem.series_resistance * (point.device_conductance + beside);
     let c = &problem.coefficients;
     Some(
         (0..=last)

@@ -7,7 +7,7 @@ use crate::discretise::Coefficients;
 use crate::mesh::{Grading, Mesh};
 use crate::optics::{Illumination, Light, LitStack, OpticsError};
 use crate::solve::continuation::{hermite_weights, usable};
-use crate::solve::{Drive, Point, Problem, SolveError, State, Tolerances, Work};
+use crate::solve::{Drive, Point, Problem, SecondDiode, SolveError, State, Tolerances, Work};
 
 use super::results::Warning;
 
@@ -125,6 +125,10 @@ impl<'a> Ladder<'a> {
             circuit.series_resistance,
             circuit.shunt_resistance.map_or(0.0, |r| 1.0 / r),
         );
+        problem.second_diode = circuit.second_diode.map(|diode| SecondDiode {
+            saturation: diode.saturation_current_density,
+            scale: diode.ideality * problem.coefficients.thermal_voltage,
+        });
         problem.stop = self.device.stop_flag().cloned();
         self.rungs.push(Rung { mesh, illumination, problem });
         Ok(())

@@ -308,10 +308,15 @@ pub(crate) fn ledger(
     if problem.shunt_conductance > 0.0 {
         ledger.add(part, "", "shunt resistance", shunt, false);
     }
+    let diode =
+        problem.second_diode.map_or(0.0, |diode| diode.current(point.state.voltage).0 * point.state.voltage);
+    if problem.second_diode.is_some() {
+        ledger.add(part, "", "second diode", diode, false);
+    }
     if problem.series_resistance > 0.0 {
         ledger.add(part, "", "series resistance", series, false);
     }
-    ledger.add(part, "", "delivered to the terminals", device_power - shunt - series, false);
+    ledger.add(part, "", "delivered to the terminals", device_power - shunt - diode - series, false);
     ledger.energy_closure = balance.value() * power;
     // Every splitting holds the rounding of two levels; every flux that of its edge.
     let largest = locals.iter().map(|l| l.phi_n.abs().max(l.phi_p.abs())).fold(1.0, f64::max);

@@ -1,5 +1,6 @@
 //! Reference devices and invariants.
 
+mod circuit;
 mod contacts;
 mod odd_ends;
 mod stops;

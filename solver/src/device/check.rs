@@ -28,6 +28,8 @@ pub const MOST_LAYERS: usize = 1000;
 const BARRIER_LIMITS: (f64, f64) = (0.0, 5.0 * ELEMENTARY_CHARGE);
 /// Work functions that are accepted, J: 1 to 8 eV (metals lie between 2 and 6).
 const WORK_FUNCTION_LIMITS: (f64, f64) = (1.0 * ELEMENTARY_CHARGE, 8.0 * ELEMENTARY_CHARGE);
+/// Ideality factors of a second diode that are accepted.
+const IDEALITY_LIMITS: (f64, f64) = (0.1, 100.0);
 /// Wavelengths of tables, m.
 const WAVELENGTH_LIMITS: (f64, f64) = (1e-9, 1e-3);
 
@@ -307,6 +309,11 @@ impl<P: Scalar> Stack<P> {
         check.range(&stack, "series_resistance", self.circuit.series_resistance, (0.0, 1e12), "ohm m^2");
         if let Some(shunt) = self.circuit.shunt_resistance {
             check.range(&stack, "shunt_resistance", shunt, (1e-18, f64::INFINITY), "ohm m^2");
+        }
+        if let Some(diode) = self.circuit.second_diode {
+            let current = diode.saturation_current_density;
+            check.range(&stack, "saturation_current_density", current, (0.0, 1e12), "A/m^2");
+            check.range(&stack, "ideality", diode.ideality, IDEALITY_LIMITS, "");
         }
         // Up to the next whole kelvin, so that what the message says is accepted.
         let coldest = TEMPERATURE_LIMITS.0.max(check.coldest.ceil());

@@ -4,7 +4,7 @@ use crate::materials::Material;
 use crate::optics::{Film, Reflectance};
 
 use super::profile::Profile;
-use super::stack::{Circuit, Interface, Layer, Stack, StackOptics};
+use super::stack::{Circuit, Diode, Interface, Layer, Stack, StackOptics};
 
 impl<P: Copy> Profile<P> {
     /// The same profile in another kind of number.
@@ -83,6 +83,10 @@ impl<P: Copy> Stack<P> {
             circuit: Circuit {
                 series_resistance: to(self.circuit.series_resistance),
                 shunt_resistance: self.circuit.shunt_resistance.map(to),
+                second_diode: self.circuit.second_diode.map(|diode| Diode {
+                    saturation_current_density: to(diode.saturation_current_density),
+                    ideality: to(diode.ideality),
+                }),
             },
             temperature: to(self.temperature),
             statistics: self.statistics,

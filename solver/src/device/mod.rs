@@ -13,7 +13,7 @@ pub use crate::physics::Statistics;
 pub use device::Device;
 pub use fault::{Fault, Place, TableProblem, Warning};
 pub use profile::Profile;
-pub use stack::{Barrier, Circuit, Contact, Interface, Layer, LayerOptics, Side, Stack, StackOptics};
+pub use stack::{Barrier, Circuit, Contact, Diode, Interface, Layer, LayerOptics, Side, Stack, StackOptics};
 
 #[cfg(test)]
 mod tests;

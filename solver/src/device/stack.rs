@@ -140,6 +140,17 @@ pub struct Circuit<P = f64> {
     pub series_resistance: P,
     /// Shunt resistance across the junction, ohm m^2; `None` is infinite.
     pub shunt_resistance: Option<P>,
+    /// A diode across the junction, as of its edges; `None` is none.
+    pub second_diode: Option<Diode<P>>,
+}
+
+/// A diode of fixed characteristic, `J0 (exp(qV / n kT) - 1)`.
+#[derive(Clone, Copy, Debug)]
+pub struct Diode<P = f64> {
+    /// Saturation current density J0, A/m^2.
+    pub saturation_current_density: P,
+    /// Ideality factor n.
+    pub ideality: P,
 }
 
 /// A stack of layers with all that a solution needs but the light and the bias.
@@ -189,7 +200,7 @@ impl Stack<f64> {
                 rear_reflectance: 0.0,
                 front_internal_reflectance: 0.0,
             },
-            circuit: Circuit { series_resistance: 0.0, shunt_resistance: None },
+            circuit: Circuit { series_resistance: 0.0, shunt_resistance: None, second_diode: None },
             temperature: Self::TEMPERATURE,
             statistics: Statistics::FermiDirac,
             accuracy: Self::ACCURACY,

@@ -196,7 +196,7 @@ impl Problem {
 
     /// The slope of the terminal voltage against the voltage across the device.
     fn per_device(&self, p: &Point) -> f64 {
-        1.0 + self.series_resistance * (p.device_conductance + self.shunt_conductance)
+        1.0 + self.series_resistance * (p.device_conductance + self.beside(p.state.voltage).1)
     }
 
     /// A guess at a terminal voltage: the cubic through two points and their tangents, or one tangent.

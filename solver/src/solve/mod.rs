@@ -1,5 +1,6 @@
 //! Floor 9: from discrete equations to solved states: equilibrium, Newton's method, damping, continuation, error estimates.
 
+pub mod circuit;
 pub mod continuation;
 pub mod damping;
 mod equilibrium;
@@ -9,6 +10,7 @@ pub mod newton;
 pub mod problem;
 mod relaxation;
 
+pub use circuit::SecondDiode;
 pub use continuation::SolveError;
 pub use grid_convergence::{GridConvergence, grid_convergence};
 pub use newton::{Drive, Point, Tolerances};

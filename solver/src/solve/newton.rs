@@ -82,6 +82,9 @@ const MOST_LOST: usize = 3;
 /// Most that a potential moves in one iteration, kT/q: damped updates reach it where the linear equations ask for 1100.
 pub(super) const LARGEST_RISE: f64 = 8.0;
 
+/// Most that the voltage across the device rises in one iteration beside a diode, in the scale of its exponential.
+const LARGEST_STEP: f64 = 4.0;
+
 /// How far outside those bounds quasi-Fermi potentials may stray, kT/q.
 const OUTSIDE: f64 = 40.0;
 
@@ -166,17 +169,19 @@ impl Problem {
                     |x: &[Triple]| -> f64 { terminal.gradient.iter().zip(x).map(|(g, x)| g.dot(x)).sum() };
                 let conductance = scales::CURRENT * (along(&tangent) + terminal.by_rear_level * per_volt);
                 let current = scales::CURRENT * (terminal.current + along(&update));
-                let shunt = self.shunt_conductance;
+                let (beside, slope_beside) = self.beside(state.voltage);
                 voltage_step = match drive {
                     Drive::Device(_) => 0.0,
                     Drive::Terminal(target) => {
                         let r = self.series_resistance;
-                        let g = state.voltage + r * (current + shunt * state.voltage) - target;
-                        -g / (1.0 + r * (conductance + shunt))
+                        let g = state.voltage + r * (current + beside) - target;
+                        let step = -g / (1.0 + r * (conductance + slope_beside));
+                        // A diode's exponential is not followed upwards by its tangent.
+                        self.second_diode.map_or(step, |diode| step.min(LARGEST_STEP * diode.scale))
                     }
                     Drive::Current(target) => {
-                        let slope = conductance + shunt;
-                        let g = current + shunt * state.voltage - target;
+                        let slope = conductance + slope_beside;
+                        let g = current + beside - target;
                         let limit = 4.0 * self.coefficients.thermal_voltage;
                         // Far from the solution the slope says little; step at most a few kT/q.
                         if slope > 0.0 { (-g / slope).clamp(-limit, limit) } else { limit.copysign(-g) }
@@ -211,8 +216,9 @@ impl Problem {
                 && let (true, true, Some((tangent, device_current, device_conductance))) =
                     (last, settled, border)
             {
-                let slope = device_conductance + self.shunt_conductance;
-                let current = device_current + self.shunt_conductance * state.voltage;
+                let (beside, slope_beside) = self.beside(state.voltage);
+                let slope = device_conductance + slope_beside;
+                let current = device_current + beside;
                 return Ok(Point {
                     device_current,
                     device_conductance,

@@ -7,6 +7,8 @@ use crate::discretise::contact::neutral_potential;
 use crate::discretise::{Coefficients, System, scales};
 use crate::linear::{Factors, Triple};
 
+use super::circuit::SecondDiode;
+
 /// Work done, pinned by tests.
 #[derive(Clone, Copy, Debug, Default, PartialEq, Eq)]
 pub struct Work {
@@ -58,6 +60,8 @@ pub struct Problem {
     pub series_resistance: f64,
     /// Shunt conductance across the device, S/m^2.
     pub shunt_conductance: f64,
+    /// A diode across the device, if any.
+    pub second_diode: Option<SecondDiode>,
     /// Work done so far.
     pub work: Work,
     /// Raised from outside to give up: every way to a point ends at once, without a solution.
@@ -95,6 +99,7 @@ impl Problem {
             coefficients,
             series_resistance,
             shunt_conductance,
+            second_diode: None,
             work: Work::default(),
             stop: None,
             budget: MOST_WORK,

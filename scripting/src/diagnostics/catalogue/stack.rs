@@ -78,6 +78,9 @@ super::rows! {
         "A Schottky contact has one barrier, told as that of electrons, that of holes, or by the metal's work function; \
          a contact must pass one carrier at least.",
         "schottky(#{ electron_barrier: 0.8.eV })";
+    DIODE = "E237", "a second diode that cannot be",
+        "A diode across the junction has a saturation current density of zero or more and an ideality factor from 0.1 to 100.",
+        "cell.second_diode = diode(#{ saturation_current_density: 1e-9.mA_per_cm2, ideality: 2 });";
     STACK = "E240", "a stack that cannot be solved as described",
         "Something else about the stack contradicts itself; the message says what, where, and the range allowed.",
         "epiloom check cell.rhai        // lists all faults at once, solving nothing";

@@ -3,6 +3,7 @@
 use super::vocabulary::Topic;
 
 mod analyses;
+mod circuit;
 mod contacts;
 mod doping;
 mod files;
@@ -27,6 +28,7 @@ pub(super) static ALL: &[&Topic] = &[
     &layers::TOPIC,
     &contacts::TOPIC,
     &stacks::TOPIC,
+    &circuit::TOPIC,
     &light::TOPIC,
     &analyses::TOPIC,
     &results::TOPIC,

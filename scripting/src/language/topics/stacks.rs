@@ -14,9 +14,7 @@ use crate::language::device_value::{
 use crate::language::dimension::Dimension;
 use crate::language::fault::{Fault, Faults, Place};
 use crate::language::quantity::Quantity;
-use crate::language::value::{
-    Unknown, any_quantity, array, described, give, quantity, quantity_or_infinite, take, text,
-};
+use crate::language::value::{Unknown, any_quantity, array, described, give, quantity, take, text};
 use crate::language::vocabulary::{
     Answer, Call, function, getter, index_getter, index_setter, setter, topic, unknown_property,
 };
@@ -224,35 +222,6 @@ topic! {
             });
         },
     }
-    Property "series_resistance" of "stack" {
-        forms: ["cell.series_resistance", "cell.series_resistance = resistance times area"],
-        doc: "Resistance in series, outside the device and its shunt; solved together with it. Zero by default.",
-        example: "let cell = stack(\"bar\", [layer(\"bar\", material(\"GaAs\"), 1.um, donors(1e17.per_cm3))]);\ncell.series_resistance = 2.ohm_cm2;\nprint(cell.series_resistance);",
-        register: |engine, session| {
-            getter::<StackValue>(engine, session, "series_resistance", |_, arguments| Ok(give(of(arguments[0])?.stack.circuit.series_resistance.clone())));
-            setter::<StackValue>(engine, session, "series_resistance", |call, arguments| {
-                let given = quantity(arguments[1], "the series resistance", Dimension::AREA_RESISTANCE).map_err(value)?;
-                within(&given, 0.0, f64::INFINITY, "the series resistance", codes::RESISTANCE, "cell.series_resistance = 2.ohm_cm2;")?;
-                change(call, arguments[0], |stack| stack.circuit.series_resistance = given)
-            });
-        },
-    }
-    Property "shunt_resistance" of "stack" {
-        forms: ["cell.shunt_resistance", "cell.shunt_resistance = resistance times area"],
-        doc: "Resistance across the junction, inside the series resistance; infinite by default.",
-        example: "let cell = stack(\"bar\", [layer(\"bar\", material(\"GaAs\"), 1.um, donors(1e17.per_cm3))]);\ncell.shunt_resistance = 500.ohm_cm2;\nprint(cell.shunt_resistance);",
-        register: |engine, session| {
-            getter::<StackValue>(engine, session, "shunt_resistance", |_, arguments| {
-                let shunt = of(arguments[0])?.stack.circuit.shunt_resistance.clone();
-                Ok(give(shunt.unwrap_or_else(|| Quantity::si(f64::INFINITY, Dimension::AREA_RESISTANCE))))
-            });
-            setter::<StackValue>(engine, session, "shunt_resistance", |call, arguments| {
-                let given = quantity_or_infinite(arguments[1], "the shunt resistance", Dimension::AREA_RESISTANCE).map_err(value)?;
-                within(&given, f64::MIN_POSITIVE, f64::INFINITY, "the shunt resistance", codes::RESISTANCE, "cell.shunt_resistance = 500.ohm_cm2;")?;
-                change(call, arguments[0], |stack| stack.circuit.shunt_resistance = (given.value < f64::INFINITY).then_some(given))
-            });
-        },
-    }
 }
 
 /// Whether an array holds the layers of a stack, unchanged.
@@ -265,7 +234,7 @@ fn same_layers(stack: &StackValue, given: &Dynamic) -> bool {
 }
 
 /// A fault of the value that is assigned.
-fn value(fault: Fault) -> Fault {
+pub(super) fn value(fault: Fault) -> Fault {
     fault.at_if_unplaced(Place::Argument(0))
 }
 
@@ -277,7 +246,7 @@ pub fn of(value: &Dynamic) -> Result<StackValue, Fault> {
 }
 
 /// Changes a stack where it stands, remembering where.
-fn change(call: &Call, value: &mut Dynamic, edit: impl FnOnce(&mut Stack<Quantity>)) -> Answer {
+pub(super) fn change(call: &Call, value: &mut Dynamic, edit: impl FnOnce(&mut Stack<Quantity>)) -> Answer {
     if let Some(mut stack) = value.write_lock::<StackValue>() {
         edit(Arc::make_mut(&mut stack.stack));
         let what = format!("stack `{}`", stack.stack.name);
@@ -342,6 +311,7 @@ fn build(call: &Call, arguments: &mut [&mut Dynamic]) -> Answer {
         circuit: Circuit {
             series_resistance: Quantity::si(0.0, Dimension::AREA_RESISTANCE),
             shunt_resistance: None,
+            second_diode: None,
         },
         temperature: Quantity::si(Stack::TEMPERATURE, Dimension::TEMPERATURE),
         statistics: Statistics::FermiDirac,
@@ -482,7 +452,7 @@ fn choice<const N: usize>(given: &Dynamic, what: &str, words: [&'static str; N])
 }
 
 /// A quantity within its limits.
-fn within(
+pub(super) fn within(
     given: &Quantity,
     low: f64,
     high: f64,

@@ -59,7 +59,11 @@ fn stack<P: Scalar>(thickness: &[f64], optics: StackOptics<P>) -> Stack<P> {
         front: crate::device::Contact::Ohmic { recombination_velocity: None },
         rear: crate::device::Contact::Ohmic { recombination_velocity: None },
         optics,
-        circuit: crate::device::Circuit { series_resistance: zero, shunt_resistance: None },
+        circuit: crate::device::Circuit {
+            series_resistance: zero,
+            shunt_resistance: None,
+            second_diode: None,
+        },
         temperature: P::constant(298.15),
         statistics: plain.statistics,
         accuracy: plain.accuracy,
