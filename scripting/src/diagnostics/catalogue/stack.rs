@@ -80,7 +80,7 @@ super::rows! {
         "schottky(#{ electron_barrier: 0.8.eV })";
     DIODE = "E237", "a second diode that cannot be",
         "A diode across the junction has a saturation current density of zero or more and an ideality factor from 0.1 to 100.",
-        "cell.second_diode = diode(#{ saturation_current_density: 1e-9.mA_per_cm2, ideality: 2 });";
+        "cell.second_diode = second_diode(#{ saturation_current_density: 1e-9.mA_per_cm2, ideality: 2 });";
     STACK = "E240", "a stack that cannot be solved as described",
         "Something else about the stack contradicts itself; the message says what, where, and the range allowed.",
         "epiloom check cell.rhai        // lists all faults at once, solving nothing";

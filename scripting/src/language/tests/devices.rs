@@ -57,14 +57,14 @@ fn layers_and_materials_are_checked_at_their_place() {
 /// Source of truth: the rules of a second diode by hand.
 #[test]
 fn diodes_are_checked_at_their_place() {
-    let none = fails("diode(#{ ideality: 2 }); // ~ E237");
+    let none = fails("second_diode(#{ ideality: 2 }); // ~ E237");
     assert!(none.help.is_some_and(|help| help.contains("1e-9.mA_per_cm2")));
-    fails("diode(#{ saturation_current_density: 1e-9 }); // ~ E200");
-    fails("diode(#{ saturation_current_density: -1e-9.mA_per_cm2 }); // ~ E237");
-    fails("diode(#{ saturation_current_density: 1e-9.mA_per_cm2, ideality: 0 }); // ~ E237");
-    fails("diode(#{ saturation_current_density: 1e-9.mA_per_cm2, n: 2 }); // ~ E108");
+    fails("second_diode(#{ saturation_current_density: 1e-9 }); // ~ E200");
+    fails("second_diode(#{ saturation_current_density: -1e-9.mA_per_cm2 }); // ~ E237");
+    fails("second_diode(#{ saturation_current_density: 1e-9.mA_per_cm2, ideality: 0 }); // ~ E237");
+    fails("second_diode(#{ saturation_current_density: 1e-9.mA_per_cm2, n: 2 }); // ~ E108");
     fails(&with_cell("cell.second_diode = 3; // ~ E107"));
-    let text = "cell.second_diode = diode(#{ saturation_current_density: 1e-9.mA_per_cm2 });\ncell.second_diode = ();";
+    let text = "cell.second_diode = second_diode(#{ saturation_current_density: 1e-9.mA_per_cm2 });\ncell.second_diode = ();";
     assert!(check(&with_cell(text)).errors.is_empty());
 }
 

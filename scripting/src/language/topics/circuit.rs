@@ -47,24 +47,24 @@ topic! {
             });
         },
     }
-    Function "diode" {
-        forms: ["diode(#{ options })"],
+    Function "second_diode" {
+        forms: ["second_diode(#{ options })"],
         doc: "A diode of fixed characteristic, J0 (exp(qV/nkT) - 1), for what a stack in one dimension does not hold: recombination \
               at the edges of a mesa or under a scratch. Its current flows beside the device's.",
         options: &[
             OptionRow { key: "saturation_current_density", takes: "a current density", doc: "J0, over the area of the cell." },
             OptionRow { key: "ideality", takes: "a number", doc: "Ideality factor n, 0.1 to 100; 2 if none is given." },
         ],
-        example: "let edges = diode(#{ saturation_current_density: 1e-9.mA_per_cm2, ideality: 2 });",
+        example: "let edges = second_diode(#{ saturation_current_density: 1e-9.mA_per_cm2, ideality: 2 });",
         register: |engine, session| {
             engine.register_type_with_name::<DiodeValue>("diode");
-            function(engine, session, "diode", 1..=1, diode);
+            function(engine, session, "second_diode", 1..=1, diode);
         },
     }
     Property "second_diode" of "stack" {
-        forms: ["cell.second_diode", "cell.second_diode = diode(..)", "cell.second_diode = ()"],
+        forms: ["cell.second_diode", "cell.second_diode = second_diode(..)", "cell.second_diode = ()"],
         doc: "A diode across the junction, inside the series resistance; none, `()`, by default.",
-        example: "let cell = stack(\"bar\", [layer(\"bar\", material(\"GaAs\"), 1.um, donors(1e17.per_cm3))]);\ncell.second_diode = diode(#{ saturation_current_density: 1e-9.mA_per_cm2 });",
+        example: "let cell = stack(\"bar\", [layer(\"bar\", material(\"GaAs\"), 1.um, donors(1e17.per_cm3))]);\ncell.second_diode = second_diode(#{ saturation_current_density: 1e-9.mA_per_cm2 });",
         register: |engine, session| {
             getter::<StackValue>(engine, session, "second_diode", |_, arguments| {
                 let diode = of(arguments[0])?.stack.circuit.second_diode.clone();
@@ -85,8 +85,8 @@ topic! {
 
 fn diode(_: &Call, arguments: &mut [&mut Dynamic]) -> Answer {
     let [current, ideality] = ["saturation_current_density", "ideality"];
-    let options = Options::new(arguments[0], "`diode`", [current, ideality]).map_err(Faults)?;
-    let help = "diode(#{ saturation_current_density: 1e-9.mA_per_cm2, ideality: 2 })";
+    let options = Options::new(arguments[0], "`second_diode`", [current, ideality]).map_err(Faults)?;
+    let help = "second_diode(#{ saturation_current_density: 1e-9.mA_per_cm2, ideality: 2 })";
     let at = |key: &str| {
         let place = Place::Option(key.to_string());
         move |fault: Fault| fault.at(place)
