@@ -4,6 +4,7 @@ use std::panic::{AssertUnwindSafe, catch_unwind};
 
 use epiloom_solver::analysis::{AnalysisError, BiasPoint, Figure, LedgerPart, bias_point};
 use epiloom_solver::device::{Device, Stack};
+use epiloom_solver::math::elementary;
 use epiloom_solver::optics::Light;
 use epiloom_solver::quantity::constants::{BOLTZMANN, ELEMENTARY_CHARGE};
 
@@ -142,8 +143,12 @@ fn accounts(device: &Device, light: &Light, voltage: f64, point: &BiasPoint) -> 
 
     // The same current at every depth: the sum of both carriers' at every entry.
     let shunt = stack.circuit.shunt_resistance.map_or(0.0, |r| point.junction_voltage / r);
-    let through = own - shunt;
     let kt = BOLTZMANN * stack.temperature;
+    let diode = stack.circuit.second_diode.map_or(0.0, |diode| {
+        let exponent = point.junction_voltage * ELEMENTARY_CHARGE / (diode.ideality * kt);
+        diode.saturation_current_density * elementary::exp_m1(exponent)
+    });
+    let through = own - shunt - diode;
     let mut worst = (0.0, 0, 0.0);
     for e in 0..entries {
         let (n, h) = (p.electron_current[e], p.hole_current[e]);
@@ -152,7 +157,9 @@ fn accounts(device: &Device, light: &Light, voltage: f64, point: &BiasPoint) -> 
             + p.electron_level[e].abs()
             + p.hole_level[e].abs();
         let rounding = 64.0 * f64::EPSILON * (energies / kt) * (n.abs() + h.abs());
-        let allowed = 1e-7 * through.abs() + rounding + 1e-12 * turnover + NOTHING;
+        // What the circuit takes is subtracted from the terminal current.
+        let beside = 1e-12 * own.abs();
+        let allowed = 1e-7 * through.abs() + rounding + beside + 1e-12 * turnover + NOTHING;
         let over = (n + h - through).abs() / allowed;
         if over > worst.0 {
             worst = (over, e, n + h);

@@ -2,7 +2,9 @@
 
 use std::collections::BTreeMap;
 
-use epiloom_solver::device::{Contact, Interface, Layer, LayerOptics, Profile, Side, Stack, Statistics};
+use epiloom_solver::device::{
+    Barrier, Contact, Diode, Interface, Layer, LayerOptics, Profile, Side, Stack, Statistics,
+};
 use epiloom_solver::materials::{Material, Parameter, names};
 use epiloom_solver::math::elementary;
 use epiloom_solver::optics::{Light, Spectrum};
@@ -181,7 +183,36 @@ pub fn specimen(seed: u64) -> (Stack, Light, f64) {
         _ => Light::Monochromatic { photon_flux: suns * 2e21, wavelength: Some(r.decade(3e-7, 1.2e-6)) },
     };
     let voltage = if r.chance(0.2) { 0.0 } else { r.between(-5.0, 2.5) };
+    // A stream of their own, so that the rest of a specimen does not depend on them.
+    let mut r = Random::new(!seed);
+    if r.chance(0.25) {
+        for contact in [&mut stack.front, &mut stack.rear] {
+            *contact = other_contact(&mut r).unwrap_or(*contact);
+        }
+    }
+    if r.chance(0.1) {
+        let saturation_current_density = r.decade(1e-12, 1e-2);
+        stack.circuit.second_diode =
+            Some(Diode { saturation_current_density, ideality: r.between(1.0, 3.0) });
+    }
     (stack, light, voltage)
+}
+
+/// A contact that is not ohmic; none in one of three.
+fn other_contact(r: &mut Random) -> Option<Contact> {
+    let velocity = |r: &mut Random| if r.chance(0.15) { None } else { Some(r.decade(1e-3, 1e5)) };
+    match r.below(3) {
+        0 => None,
+        1 => Some(Contact::Selective { electron_velocity: velocity(r), hole_velocity: velocity(r) }),
+        _ => {
+            let height = r.between(0.0, 1.2) * ELEMENTARY_CHARGE;
+            Some(Contact::Schottky {
+                barrier: if r.chance(0.5) { Barrier::Electrons(height) } else { Barrier::Holes(height) },
+                electron_emission_velocity: None,
+                hole_emission_velocity: None,
+            })
+        }
+    }
 }
 
 /// A specimen in words: a line for the device and one for each layer.
