@@ -64,7 +64,8 @@ pub fn overview(archive: &Archive, look: Look) -> String {
         text.push('\n');
     }
     if stacks.len() > MOST_STACKS {
-        let _ = writeln!(text, "and {} stacks more\n", stacks.len() - MOST_STACKS);
+        let more = stacks.len() - MOST_STACKS;
+        let _ = writeln!(text, "and {more} more {}\n", if more == 1 { "stack" } else { "stacks" });
     }
     text.push_str(&figures);
     if left_out > 0 {

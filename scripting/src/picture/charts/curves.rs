@@ -72,7 +72,17 @@ fn light(snapshot: &Snapshot, points: &Table, voltage: &[f64], notes: &mut Vec<S
 
 fn dark(points: &Table, voltage: &[f64], notes: &mut Vec<String>) -> Option<Vec<Panel>> {
     let (values, error) = current(points)?;
-    let y = logarithmic("Current density", "mA_per_cm2", values, DARK_DECADES, notes);
+    // What is nothing within its own error would stretch the axis by decades of rounding.
+    let is_nothing =
+        |k: usize| values[k] != 0.0 && error.get(k).is_some_and(|error| values[k].abs() <= *error);
+    let (nothing, known): (Vec<usize>, Vec<usize>) = (0..values.len()).partition(|&k| is_nothing(k));
+    let known: Vec<f64> = known.into_iter().map(|k| values[k]).collect();
+    let y = logarithmic("Current density", "mA_per_cm2", &known, DARK_DECADES, notes);
+    if !nothing.is_empty() {
+        let count = nothing.len();
+        let values = if count == 1 { "1 value".to_string() } else { format!("{count} values") };
+        notes.push(format!("off-scale: current density of zero within its numerical error ({values})"));
+    }
     let curve = Series { error, ..series("current density", Role::Current, voltage, values, 0, Dash::Solid) };
     let mut panels = vec![Panel { y, series: vec![curve], markers: Vec::new(), share: 1.0 }];
     if let Some(ideality) = numbers(points, "local_ideality")

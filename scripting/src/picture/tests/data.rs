@@ -153,6 +153,22 @@ fn what_a_picture_leaves_out_is_said() {
     assert!(notes(&light, &view).contains("values of current density"), "{}", notes(&light, &view));
     let dark = chart(&sample::dark(), Kind::CurrentVoltage);
     assert!(notes(&dark, &View::default()).contains("current density of zero (1 value)"));
+    // A value that is nothing but the rounding of an error does not stretch the axis by decades.
+    let mut uncertain = sample::dark();
+    let columns = &mut uncertain.tables[0].columns;
+    let near_zero = 10;
+    let current = &mut columns[1].values;
+    let error = current
+        .iter()
+        .enumerate()
+        .map(|(k, j)| if k == near_zero { 1e-39 } else { 1e-5 * j.abs() })
+        .collect();
+    current[near_zero] = 1e-40;
+    columns.push(Column::new("error_mA_per_cm2", "mA_per_cm2", error));
+    let uncertain = chart(&uncertain, Kind::CurrentVoltage);
+    assert!(notes(&uncertain, &View::default()).contains("zero within its numerical error (1 value)"));
+    let Body::Curves(curves) = uncertain.body else { panic!("no curves") };
+    assert!(curves.panels[0].y.range.0 > 1e-26, "{:?}", curves.panels[0].y.range);
     let deep = chart(&sample::profiles(true), Kind::Bands);
     assert!(notes(&deep, &View::default()).contains("off-scale: depths below"));
     let rows = 50_000;
