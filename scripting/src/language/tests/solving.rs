@@ -75,6 +75,16 @@ fn figures_that_do_not_exist_are_nothing_with_a_reason() {
     );
 }
 
+/// Source of truth: the places of the ledger's own lines; a wrong one is told with those there are.
+#[test]
+fn a_place_that_the_ledger_does_not_have_is_told() {
+    let cell = "let gaas = material(\"GaAs\", #{ electron_lifetime: 20.ns, hole_lifetime: 20.ns });\n\
+                let bar = stack(\"bar\", [layer(\"bar\", gaas, 1.um, donors(1e17.per_cm3))]);\nlet p = bar.at(0.V, dark());\n";
+    let fault = fails(&format!("{cell}p.total(\"carriers\", \"Auger\", \"bas\"); // ~ E122"));
+    assert_eq!(fault.help.as_deref(), Some("did you mean `bar`?"));
+    fails(&format!("{cell}p.total(\"carriers\", \"surface recombination\", \"bar\"); // ~ E122"));
+}
+
 /// Source of truth: the specified forms, each used once on a small diode; ledger and totals agree by definition.
 #[test]
 fn every_form_of_asking_works() {
@@ -96,7 +106,9 @@ fn every_form_of_asking_works() {
         let point = cell.at(0.4.V, light);
         let sum = 0.mA_per_cm2;
         for line in point.ledger { if line.account == "carriers" && line.channel == "Shockley-Read-Hall" { sum += line.value; } }
-        print(abs(point.total("carriers", "Shockley-Read-Hall") / sum - 1) < 1e-2);
+        let total = point.total("carriers", "Shockley-Read-Hall");
+        let layers = point.total("carriers", "Shockley-Read-Hall", "n") + point.total("carriers", "Shockley-Read-Hall", "p");
+        print(abs(total / sum - 1) < 1e-2 && abs(layers / total - 1) < 1e-12);
         print(point.profiles.depth.len() == point.profiles.electrons.len());
         let bands = cell.equilibrium();
         print(bands.sheet_resistance["n"] > 1.ohm);

@@ -1,6 +1,6 @@
 //! What comes back: figures of merit, points, profiles, ledgers, and what is stored of them.
 
-use epiloom_solver::analysis::{self, BiasPoint, LedgerPart, SpectralResponse};
+use epiloom_solver::analysis::{self, BiasPoint, LedgerLine, LedgerPart, SpectralResponse};
 use rhai::{Array, Dynamic, Map};
 
 use crate::archive::Snapshot;
@@ -170,11 +170,12 @@ topic! {
         },
     }
     Method "total" of "bias point" {
-        forms: ["point.total(\"carriers\", \"Auger\")"],
-        doc: "Sum over all places of one channel of an account of the ledger.",
+        forms: ["point.total(\"carriers\", \"Auger\")", "point.total(\"carriers\", \"Auger\", \"base\")"],
+        doc: "Sum over all places of one channel of an account of the ledger, or what it is at one place: a layer, \"front contact\", \
+              \"rear contact\", or an interface, \"window / emitter\".",
         example: "let gaas = material(\"GaAs\", #{ electron_lifetime: 20.ns, hole_lifetime: 20.ns });\nlet cell = stack(\"diode\", [layer(\"emitter\", gaas, 100.nm, donors(2e18.per_cm3)), layer(\"base\", gaas, 2.um, acceptors(1e17.per_cm3))]);\nlet point = cell.at(0.9.V, dark());\nprint(point.total(\"carriers\", \"Auger\") / point.total(\"carriers\", \"radiative\"));",
         register: |engine, session| {
-            method::<StateValue>(engine, session, "total", 2..=2, total);
+            method::<StateValue>(engine, session, "total", 2..=3, total);
         },
     }
     Property "sheet_resistance" of "bias point" {
@@ -391,15 +392,31 @@ fn total(_: &Call, arguments: &mut [&mut Dynamic]) -> Answer {
         .at(Place::Argument(1))
         .into());
     }
-    let sum: f64 =
-        result.ledger.lines.iter().filter(|l| l.part == part && l.channel == channel).map(|l| l.value).sum();
+    let place = arguments
+        .get(3)
+        .map(|given| text(given, "the place"))
+        .transpose()
+        .map_err(|f| f.at(Place::Argument(2)))?;
+    let places = || result.ledger.lines.iter().filter(|l| l.part == part && l.channel == channel);
+    if let Some(place) = &place
+        && !places().any(|l| l.place == *place)
+    {
+        let message = format!("{channel} of {wanted} has no line at \"{place}\"");
+        return Err(Fault::new(codes::WRONG_CHOICE, message)
+            .candidates(place, places().map(|l| l.place.as_str()).filter(|name| !name.is_empty()))
+            .at(Place::Argument(2))
+            .into());
+    }
+    let counts =
+        |l: &LedgerLine| l.channel == channel && place.as_ref().is_none_or(|place| l.place == *place);
+    let sum: f64 = places().filter(|l| counts(l)).map(|l| l.value).sum();
     let figures: Vec<_> = result
         .ledger
         .lines
         .iter()
         .filter(|l| l.part == LedgerPart::Carriers)
         .zip(&result.carrier_figures)
-        .filter(|(l, _)| part == LedgerPart::Carriers && l.channel == channel)
+        .filter(|(l, _)| part == LedgerPart::Carriers && counts(l))
         .map(|(_, f)| f)
         .collect();
     if figures.is_empty() {

@@ -4,7 +4,8 @@ use crate::archive::{Archive, ArchiveError, Cell, Status, Sweep, SweepColumn};
 
 use super::table::{Columns, Numbers};
 
-/// The columns of a sweep, its points in the order of the plan. Outputs that hold texts are left out.
+/// The columns of a sweep, its points in the order of the plan. A coordinate of texts counts
+/// them; outputs that hold texts are left out.
 ///
 /// # Errors
 /// A damaged block of points.
@@ -43,7 +44,7 @@ pub fn columns(archive: &Archive, sweep: &Sweep) -> Result<Columns, ArchiveError
             column.error.resize(rows, 0.0);
         }
     }
-    // texts and flags hold no number
+    // texts that are results hold no number
     columns.retain(|column| column.values.iter().any(|v| v.is_finite()));
     let mut notes = Vec::new();
     if failed > 0 {
@@ -58,8 +59,8 @@ fn numbers(column: &SweepColumn, varied: bool, rows: usize) -> Numbers {
         name: column.name.clone(),
         unit: column.unit.clone(),
         values: vec![f64::NAN; rows],
-        error: Vec::new(),
         varied,
+        ..Numbers::default()
     }
 }
 
@@ -75,6 +76,10 @@ fn push(column: &mut Numbers, cell: &Cell, rows: usize) {
             }
         }
         Cell::Flag(flag) => column.values.push(f64::from(u8::from(*flag))),
+        Cell::Text(text) if column.varied => {
+            let index = column.index_of(text);
+            column.values.push(index);
+        }
         Cell::Text(_) | Cell::Absent { .. } => column.values.push(f64::NAN),
     }
 }

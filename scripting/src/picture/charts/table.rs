@@ -45,6 +45,8 @@ pub struct Numbers {
     pub error: Vec<f64>,
     /// Whether a plan varied it: a coordinate, not a result.
     pub varied: bool,
+    /// Where it holds texts: the texts, which its numbers count. Empty for a column of numbers.
+    pub words: Vec<String>,
 }
 
 /// Which columns to show; what is not named is chosen.
@@ -82,8 +84,7 @@ impl Columns {
         if rows == 0 {
             return Vec::new();
         }
-        let varied =
-            self.columns.iter().filter(|column| column.varied && distinct(&column.values).len() > 1).count();
+        let varied = self.columns.iter().filter(|column| column.is_scale()).count();
         let mut kinds = vec![Kind::Lines];
         if varied == 2 {
             kinds.insert(0, Kind::Map);
@@ -108,6 +109,40 @@ impl Columns {
     fn results(&self, but: &[usize]) -> Vec<usize> {
         let all = 0..self.columns.len();
         all.filter(|index| !self.columns[*index].varied && !but.contains(index)).collect()
+    }
+}
+
+impl Numbers {
+    /// Whether it was varied over numbers, and can be an axis.
+    fn is_scale(&self) -> bool {
+        self.varied && self.words.is_empty() && distinct(&self.values).len() > 1
+    }
+
+    /// The column with texts, counted in the order in which they come.
+    pub fn counting(mut self, texts: &[Option<&str>]) -> Numbers {
+        for text in texts {
+            let value = text.map_or(f64::NAN, |text| self.index_of(text));
+            self.values.push(value);
+        }
+        self
+    }
+
+    /// The number of a text; one that is new gets the next.
+    pub fn index_of(&mut self, text: &str) -> f64 {
+        let known = self.words.iter().position(|word| word == text);
+        known.unwrap_or_else(|| {
+            self.words.push(text.to_string());
+            self.words.len() - 1
+        }) as f64
+    }
+
+    /// What stands in a row, with the name: "bsf 20 nm", "window GaInP".
+    fn told(&self, row: usize) -> String {
+        let value = self.values[row];
+        let word = self.words.get(value as usize).filter(|_| value >= 0.0);
+        let text = word.cloned().unwrap_or_else(|| crate::figure_text::significant(value, 4));
+        let unit = crate::figure_text::unit_symbol(&self.unit);
+        format!("{} {text} {unit}", self.name.replace('_', " ")).trim_end().to_string()
     }
 }
 
@@ -174,7 +209,7 @@ fn few(name: &str, columns: &Columns, wanted: Kind, reason: &str) -> PictureErro
 
 /// The column along: what was varied, else the first one that rises or falls all the way, else the first.
 fn along(columns: &Columns) -> Option<usize> {
-    let varied = columns.columns.iter().position(|c| c.varied && distinct(&c.values).len() > 1);
+    let varied = columns.columns.iter().position(Numbers::is_scale);
     let steady = || {
         columns.columns.iter().position(|c| {
             c.values.len() > 1
@@ -254,14 +289,7 @@ fn groups(columns: &Columns, x: usize, notes: &mut Vec<String>) -> Vec<(String, 
             match known {
                 Some(index) => groups[index].2.push(row),
                 None if groups.len() <= MOST_CURVES => {
-                    let text: Vec<String> = others
-                        .iter()
-                        .map(|column| {
-                            let unit = crate::figure_text::unit_symbol(&column.unit);
-                            let value = crate::figure_text::significant(column.values[row], 4);
-                            format!("{} {value} {unit}", column.name.replace('_', " ")).trim_end().to_string()
-                        })
-                        .collect();
+                    let text: Vec<String> = others.iter().map(|column| column.told(row)).collect();
                     groups.push((key, text.join(", "), vec![row]));
                 }
                 None => {}
@@ -336,12 +364,8 @@ fn map(
     notes: &mut Vec<String>,
 ) -> Result<Body, PictureError> {
     let wanted = |given: Option<&String>| given.map(|given| columns.find(name, given)).transpose();
-    let varied: Vec<usize> = (0..columns.columns.len())
-        .filter(|index| {
-            let column = &columns.columns[*index];
-            column.varied && distinct(&column.values).len() > 1
-        })
-        .collect();
+    let varied: Vec<usize> =
+        (0..columns.columns.len()).filter(|index| columns.columns[*index].is_scale()).collect();
     let (x, y, z) = (wanted(choice.x.as_ref())?, wanted(choice.y.first())?, wanted(choice.z.as_ref())?);
     let free = |taken: Option<usize>| varied.iter().copied().find(|index| Some(*index) != taken);
     let missing =

@@ -102,20 +102,19 @@ impl HeldSweep {
         coordinates.chain(outputs).collect()
     }
 
-    /// The columns that hold numbers, for charts.
+    /// The columns that hold numbers, and the coordinates of texts, for charts.
     fn numbers(&self) -> Columns {
-        let columns = self.columns().into_iter().filter(|(.., cells)| all_numbers(cells)).map(
-            |(column, varied, cells)| {
-                let errors = errors(&cells);
-                Numbers {
-                    name: column.name,
-                    unit: column.unit,
-                    values: values(&cells),
-                    error: errors,
-                    varied,
-                }
-            },
-        );
+        let columns = self.columns().into_iter().filter_map(|(column, varied, cells)| {
+            let made = Numbers { name: column.name, unit: column.unit, varied, ..Numbers::default() };
+            if all_numbers(&cells) {
+                Some(Numbers { values: values(&cells), error: errors(&cells), ..made })
+            } else if varied {
+                let texts: Vec<Option<&str>> = cells.iter().map(|cell| cell.and_then(as_text)).collect();
+                Some(made.counting(&texts))
+            } else {
+                None
+            }
+        });
         let mut notes = Vec::new();
         match self.failed() {
             0 => {}
@@ -219,6 +218,13 @@ impl HeldSweep {
 fn all_numbers(cells: &[Option<&Cell>]) -> bool {
     let there = || cells.iter().flatten().filter(|cell| !matches!(cell, Cell::Absent { .. }));
     there().all(|cell| matches!(cell, Cell::Number { .. })) && there().next().is_some()
+}
+
+fn as_text(cell: &Cell) -> Option<&str> {
+    match cell {
+        Cell::Text(text) => Some(text),
+        _ => None,
+    }
 }
 
 fn values(cells: &[Option<&Cell>]) -> Vec<f64> {

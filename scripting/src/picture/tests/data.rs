@@ -2,7 +2,7 @@
 
 use crate::archive::{Column, Label, Snapshot, Table};
 use crate::picture::chart::{BarRole, Body, Role, Scale, si_unit};
-use crate::picture::charts::{self, Choice};
+use crate::picture::charts::{self, Choice, Columns, Numbers};
 use crate::picture::{Chart, Kind, PictureError, View, draw, overlay, terminal, ticks};
 
 use super::sample;
@@ -190,6 +190,30 @@ fn scales_are_chosen_by_the_data() {
     assert_eq!(thick.x.scale, Scale::Log);
     let Body::Curves(thin) = chart(&sample::profiles(false), Kind::Bands).body else { panic!("no curves") };
     assert_eq!(thin.x.scale, Scale::Linear);
+}
+
+/// Source of truth: the points by hand: a coordinate of texts is no axis; each text has a curve of its own, by its name.
+#[test]
+fn texts_that_were_varied_part_the_curves() {
+    let column = |name: &str, values: Vec<f64>, varied: bool| Numbers {
+        name: name.to_string(),
+        values,
+        varied,
+        ..Numbers::default()
+    };
+    let window = column("window", Vec::new(), true).counting(&[Some("GaInP"), Some("AlInP")].repeat(3));
+    let velocity = column("velocity", vec![1.0, 1.0, 10.0, 10.0, 100.0, 100.0], true);
+    let efficiency = column("efficiency", vec![0.25, 0.26, 0.24, 0.255, 0.2, 0.21], false);
+    let columns = Columns { columns: vec![window, velocity, efficiency], ..Columns::default() };
+    assert_eq!(columns.kinds(), [Kind::Lines]);
+    let drawn = charts::table::chart("t", &columns, Kind::Lines, &Choice::default()).unwrap();
+    let Body::Curves(curves) = drawn.body else { panic!("no curves") };
+    let series = &curves.panels[0].series;
+    assert_eq!(curves.x.label, "Velocity");
+    let names: Vec<&str> = series.iter().map(|each| each.name.as_str()).collect();
+    assert_eq!(names, ["window GaInP", "window AlInP"]);
+    assert_eq!((&series[0].x, &series[0].y), (&vec![1.0, 10.0, 100.0], &vec![0.25, 0.24, 0.2]));
+    assert_eq!(series[1].y, [0.26, 0.255, 0.21]);
 }
 
 /// Source of truth: the specification of errors: what is wrong, what there is, the near name.

@@ -241,6 +241,7 @@ pub fn sweep() -> Columns {
         values,
         error: if varied { Vec::new() } else { vec![1e-4; rows] },
         varied,
+        ..Numbers::default()
     };
     Columns {
         columns: vec![
