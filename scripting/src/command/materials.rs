@@ -99,6 +99,17 @@ fn page(listing: &Listing, width: usize) -> String {
         "\nband edges above those of GaAs  valence {valence} eV, conduction {conduction} eV\n"
     ));
     text.push_str(&wrapped(&source(&listing.offset), width, 4));
+    if let Some(coefficients) = &listing.narrowing {
+        text.push_str("\ngap narrowing, off unless gap_narrowing: \"jain\"\n");
+        for (word, roots) in ["donors", "acceptors"].iter().zip(coefficients) {
+            let [cube, fourth, square] = roots.map(|e| significant(e * 1e3, 4));
+            let law = format!(
+                "{cube} r^(1/3) + {fourth} r^(1/4) + {square} r^(1/2) meV, r the net doping over 1e18 cm^-3"
+            );
+            text.push_str(&wrapped(&format!("{word}: {law}"), width, 4));
+        }
+        text.push_str(&wrapped(listing.narrowing_source, width, 4));
+    }
     text.push_str(&format!("\nabsorption\n{}", wrapped(listing.absorption, width, 4)));
     text
 }

@@ -70,6 +70,10 @@ parameters! {
     ElectronAuger "electron_auger" AugerCoefficient "Auger coefficient C_n (the energy goes to an electron).";
     HoleAuger "hole_auger" AugerCoefficient "Auger coefficient C_p (the energy goes to a hole).";
     Absorption "absorption" InverseLength "One absorption coefficient; under a spectrum it acts at photon energies above the gap.";
+    NarrowingCubeRoot "gap_narrowing_cube_root" Energy "Band-gap narrowing at a net doping of 1e18 cm^-3 that grows with its cube root; any of the three stands for the library's coefficients.";
+    NarrowingFourthRoot "gap_narrowing_fourth_root" Energy "Band-gap narrowing at a net doping of 1e18 cm^-3 that grows with its fourth root.";
+    NarrowingSquareRoot "gap_narrowing_square_root" Energy "Band-gap narrowing at a net doping of 1e18 cm^-3 that grows with its square root.";
+    NarrowingShare "gap_narrowing_conduction_share" Number "Share of the narrowing by which the conduction-band edge falls, 0.5 unless given; the valence-band edge rises by the rest.";
     ReferenceTemperature "reference_temperature" Temperature "Temperature that the numbers given hold at, where one of the options below moves them; 300 K unless given.";
     GapAtZero "gap_at_zero_kelvin" Energy "Band gap at 0 K, instead of `gap`, for Varshni's law.";
     VarshniAlpha "gap_varshni_alpha" EnergyPerTemperature "Varshni's alpha: the gap falls as alpha T^2 / (T + beta).";

@@ -62,6 +62,8 @@ pub enum AbsorptionBasis {
     },
     /// A stated model for want of a table.
     Model,
+    /// Nothing: light above the gap is refused.
+    Unknown,
 }
 
 /// A table moved in energy, with its share.
@@ -80,6 +82,8 @@ struct IndirectTail<P> {
     strength: f64,
     /// eV.
     edge: P,
+    /// The energy that it grows up to, eV; `None` for ever.
+    until: Option<P>,
 }
 
 /// A material's absorption at one place and temperature, ready for any wavelength.
@@ -109,7 +113,8 @@ impl<P: Scalar> Absorber<P> {
             return None;
         }
         let tables = self.tables.iter().map(|t| Arc::as_ptr(&t.table).addr()).collect();
-        let tail = self.tail.iter().flat_map(|t| [t.strength, t.edge.value()]);
+        let until = |t: &IndirectTail<P>| t.until.map_or(f64::INFINITY, |until| until.value());
+        let tail = self.tail.iter().flat_map(|t| [t.strength, t.edge.value(), until(t)]);
         let numbers = self.tables.iter().flat_map(|t| [t.shift.value(), t.share.value()]).chain(tail);
         Some((tables, numbers.chain(wavelengths.iter().copied()).map(f64::to_bits).collect()))
     }
@@ -153,7 +158,9 @@ impl<P: Scalar> Absorber<P> {
             sum = sum + shifted.table.coefficient(-shifted.shift + energy, hint) * shifted.share;
         }
         if let Some(tail) = &self.tail {
-            let above = (-tail.edge + energy).max(zero);
+            let energy = P::constant(energy);
+            let reached = tail.until.map_or(energy, |until| energy.min(until));
+            let above = (reached - tail.edge).max(zero);
             sum = sum + above * above * tail.strength;
         }
         Absorption { coefficient: sum, covered }
@@ -247,7 +254,8 @@ impl<P: Scalar> Material<P> {
             Ok((record, x)) => {
                 let source = record.optics.source().to_string();
                 match record.optics {
-                    OpticalModel::AlInP | OpticalModel::GaInAs => {
+                    OpticalModel::None => (AbsorptionBasis::Unknown, Origin::Illustrative, source),
+                    OpticalModel::AlInP | OpticalModel::GaInAs | OpticalModel::Phosphide => {
                         (AbsorptionBasis::Model, Origin::Illustrative, source)
                     }
                     OpticalModel::AlGaAs => {
