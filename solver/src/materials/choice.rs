@@ -28,6 +28,7 @@ macro_rules! choices {
 
 choices! {
     GapNarrowing "gap_narrowing" ["off", "jain"] "Narrowing of the gap by heavy doping: the library's coefficients for the layer's majority dopant, or none; off unless given.";
+    Radiative "radiative_model" ["given", "absorption"] "Coefficient of radiative recombination: the library's or the script's number, or by detailed balance from how the material absorbs; `given` unless given.";
 }
 
 impl Choice {

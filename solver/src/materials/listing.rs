@@ -3,6 +3,7 @@
 use crate::math::Scalar;
 use crate::quantity::constants::ELEMENTARY_CHARGE;
 
+use super::choice::Choice;
 use super::library::{ALL, find, gaas::GAAS};
 use super::material::{Material, MaterialError, Values};
 use super::parameter::Parameter;
@@ -42,6 +43,8 @@ pub struct Listing {
     pub conduction_offset: f64,
     /// Source of the offsets.
     pub offset: Provenance,
+    /// Radiative coefficient that detailed balance gives from the absorption, m^3/s; `None` without optical data.
+    pub radiative_by_absorption: Option<f64>,
     /// Coefficients of the narrowing of the gap, eV at a net doping of 1e18 cm^-3 (cube, fourth and square root), for donors
     /// and for acceptors; `None` where the library has none.
     pub narrowing: Option<[[f64; 3]; 2]>,
@@ -124,6 +127,8 @@ pub fn listing(name: &str, x: Option<f64>) -> Result<Listing, MaterialError> {
 fn of_record(record: &Record, x: Option<f64>) -> Result<Listing, MaterialError> {
     let at = record.composition.map(|(low, high)| x.unwrap_or(low + 0.3 * (high - low))).or(x);
     let values = Material::library(record.name, at).values(None, LISTED_AT, 0.0)?;
+    let radiative_by_absorption =
+        Material::library(record.name, at).radiative_by_absorption(None, LISTED_AT, &values).ok();
     let rows = Parameter::ALL.iter().filter_map(|&p| Some((values.get(p)?, record.provenance(p)?))).collect();
     let valence_offset = record.valence_edge(at.unwrap_or(0.0), LISTED_AT) * ELEMENTARY_CHARGE;
     let gaas = GAAS.bands(0.0, LISTED_AT).gap * ELEMENTARY_CHARGE;
@@ -142,6 +147,7 @@ fn of_record(record: &Record, x: Option<f64>) -> Result<Listing, MaterialError> 
             origin: record.ladder.origin,
             source: record.ladder.source,
         },
+        radiative_by_absorption,
         narrowing: record.composition.is_none().then(|| super::narrowing::listed(record.name)).flatten(),
         narrowing_source: super::narrowing::SOURCE,
         absorption: record.optics.source(),
@@ -166,6 +172,15 @@ impl<P: Scalar> Material<P> {
                     temperature: everywhere,
                     origin: Origin::Script,
                     source,
+                });
+            }
+            let by_absorption = self.choices.get(&Choice::Radiative) == Some(&"absorption");
+            if *parameter == Parameter::RadiativeCoefficient && by_absorption {
+                return Some(Provenance {
+                    parameter: *parameter,
+                    temperature: super::TEMPERATURE_LIMITS,
+                    origin: self.absorption_basis(x).1,
+                    source: "detailed balance with the absorption (W. van Roosbroeck and W. Shockley, Phys. Rev. 94, 1558 (1954))",
                 });
             }
             record.and_then(|r| r.provenance(*parameter))

@@ -155,6 +155,12 @@ pub enum MaterialError {
         /// Highest value allowed.
         high: f64,
     },
+    /// Radiative recombination by detailed balance without a spectrum of refractive index and absorption.
+    #[error("radiative recombination of `{material}` by its absorption needs its optical constants")]
+    NoEmission {
+        /// The material.
+        material: String,
+    },
     /// No coefficients of gap narrowing for a material.
     #[error("the library has no coefficients of gap narrowing for `{material}`")]
     NoNarrowing {

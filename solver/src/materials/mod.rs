@@ -7,6 +7,7 @@
 pub mod choice;
 mod law;
 mod library;
+mod lifetime;
 mod listing;
 pub mod material;
 mod narrowing;

@@ -3,6 +3,7 @@
 use crate::math::{Num, Scalar};
 use crate::quantity::constants::{BOLTZMANN, ELEMENTARY_CHARGE};
 
+use super::choice::Choice;
 use super::law::{density_of_states, thermal};
 use super::library::find;
 use super::material::{Dopants, Material, MaterialBase, MaterialError, Values};
@@ -39,6 +40,7 @@ impl Parameter {
             Parameter::GapAtZero => (0.05 * ev, 10.0 * ev),
             Parameter::VarshniAlpha => (0.0, 0.1 * ev),
             Parameter::NarrowingShare => (0.0, 1.0),
+            Parameter::LifetimeDopingPower => (0.1, 10.0),
             Parameter::ElectronMass | Parameter::HoleMass => (1e-4, 1e3),
             p if p.moved_by_power().is_some() => (-20.0, 20.0),
             _ => match self.kind() {
@@ -52,6 +54,7 @@ impl Parameter {
                 Kind::InverseLength => (0.0, 1e10),
                 Kind::Temperature => (0.0, 1e4),
                 Kind::EnergyPerTemperature => (-0.1 * ev, 0.1 * ev),
+                Kind::ArealDensity => (0.0, 1e20),
             },
         }
     }
@@ -155,6 +158,7 @@ impl<P: Scalar> Material<P> {
             faults.push(MaterialError::TrapTwice { material: name.to_string() });
         }
         faults.extend(self.narrowing_faults());
+        faults.extend(self.doping_faults());
         faults.extend(self.temperature_model_faults());
         faults
     }
@@ -219,7 +223,7 @@ impl<P: Scalar> Material<P> {
     }
 
     /// The values where the dopants are these: [`Material::values`] at their sum, with what depends on which of the two is
-    /// the majority: the narrowing of the gap.
+    /// the majority: the narrowing of the gap and the mobilities of minority carriers.
     ///
     /// # Errors
     /// As [`Material::values`], and narrowing that leaves no gap.
@@ -238,6 +242,34 @@ impl<P: Scalar> Material<P> {
         temperature: P,
         doping: P,
         dopants: Option<Dopants<P>>,
+    ) -> Result<Values<P>, MaterialError> {
+        let mut values = self.bare_values(x, temperature, doping)?;
+        if self.choices.get(&Choice::Radiative) == Some(&"absorption") {
+            values.radiative_coefficient = self.radiative_by_absorption(x, temperature, &values)?;
+        }
+        self.shorten(&mut values, temperature, doping, dopants);
+        if let Some(dopants) = dopants {
+            self.narrow(&mut values, dopants)?;
+        }
+        // E_trap - E_i with E_i = (Ec + Ev)/2 + (kT/2) ln(Nv/Nc), so that n1 = ni e^(E/kT) is Nc e^(-below/kT) exactly.
+        let tilt = (values.valence_density * values.conduction_density.recip()).ln()
+            * temperature
+            * (BOLTZMANN * 0.5);
+        if let Some(below) = self.overrides.get(&Parameter::TrapBelowConduction) {
+            values.trap_energy = values.gap * 0.5 - *below - tilt;
+        }
+        if let Some(above) = self.overrides.get(&Parameter::TrapAboveValence) {
+            values.trap_energy = *above - values.gap * 0.5 - tilt;
+        }
+        Ok(values)
+    }
+
+    /// The library's values with those of the script, without what models make of them.
+    pub(super) fn bare_values(
+        &self,
+        x: Option<P>,
+        temperature: P,
+        doping: P,
     ) -> Result<Values<P>, MaterialError> {
         if let Some(fault) = self.faults().into_iter().next() {
             return Err(fault);
@@ -281,19 +313,6 @@ impl<P: Scalar> Material<P> {
                 });
             }
             *slot = value;
-        }
-        if let Some(dopants) = dopants {
-            self.narrow(&mut values, dopants)?;
-        }
-        // E_trap - E_i with E_i = (Ec + Ev)/2 + (kT/2) ln(Nv/Nc), so that n1 = ni e^(E/kT) is Nc e^(-below/kT) exactly.
-        let tilt = (values.valence_density * values.conduction_density.recip()).ln()
-            * temperature
-            * (BOLTZMANN * 0.5);
-        if let Some(below) = self.overrides.get(&Parameter::TrapBelowConduction) {
-            values.trap_energy = values.gap * 0.5 - *below - tilt;
-        }
-        if let Some(above) = self.overrides.get(&Parameter::TrapAboveValence) {
-            values.trap_energy = *above - values.gap * 0.5 - tilt;
         }
         Ok(values)
     }

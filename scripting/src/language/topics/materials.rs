@@ -138,6 +138,41 @@ const OPTIONS: &[OptionRow] = &[
         doc: "Narrowing of the gap by heavy doping: the library's coefficients for the layer's majority dopant, or none; off unless given.",
     },
     OptionRow {
+        key: "radiative_model",
+        takes: "a text: \"given\" or \"absorption\"",
+        doc: "Coefficient of radiative recombination: the library's or the script's number, or by detailed balance from how the material absorbs; `given` unless given.",
+    },
+    OptionRow {
+        key: "electron_lifetime_reference_doping",
+        takes: "a density",
+        doc: "Doping (donors plus acceptors) at which `electron_lifetime` has fallen to half: it is over 1 + (N / this)^`lifetime_doping_exponent`.",
+    },
+    OptionRow {
+        key: "hole_lifetime_reference_doping",
+        takes: "a density",
+        doc: "Doping (donors plus acceptors) at which `hole_lifetime` has fallen to half.",
+    },
+    OptionRow {
+        key: "lifetime_doping_exponent",
+        takes: "a number",
+        doc: "Exponent of the doping in both lifetimes; 1 unless given.",
+    },
+    OptionRow {
+        key: "dislocation_density",
+        takes: "a density per area",
+        doc: "Threading dislocations, at which carriers recombine besides: each lifetime's reciprocal gains pi^3 D / 4 times this, D the carrier's diffusion coefficient.",
+    },
+    OptionRow {
+        key: "minority_electron_mobility",
+        takes: "a mobility",
+        doc: "Mobility of electrons where acceptors are the majority, instead of `electron_mobility`; between the two by the share of acceptors.",
+    },
+    OptionRow {
+        key: "minority_hole_mobility",
+        takes: "a mobility",
+        doc: "Mobility of holes where donors are the majority, instead of `hole_mobility`; between the two by the share of donors.",
+    },
+    OptionRow {
         key: "gap_narrowing_cube_root",
         takes: "an energy",
         doc: "Band-gap narrowing at a net doping of 1e18 cm^-3 that grows with its cube root; any of the three stands for the library's coefficients.",
@@ -256,6 +291,7 @@ pub fn dimension(kind: Kind) -> Dimension {
         Kind::InverseLength => Dimension::INVERSE_LENGTH,
         Kind::Temperature => Dimension::TEMPERATURE,
         Kind::EnergyPerTemperature => Dimension::ENERGY_PER_TEMPERATURE,
+        Kind::ArealDensity => Dimension::AREAL_DENSITY,
     }
 }
 
@@ -423,6 +459,12 @@ pub fn material_fault(error: &MaterialError) -> Fault {
             .help("give your own, at a net doping of 1e18 cm^-3: gap_narrowing_cube_root: 10.meV")
             .at(Place::Key("gap_narrowing".to_string()))
         }
+        MaterialError::NoEmission { material } => Fault::new(
+            codes::MATERIAL_INCOMPLETE,
+            format!("radiative recombination of material `{material}` by its absorption needs its optical constants"),
+        )
+        .help("give `optical_constants`, or leave radiative_model at \"given\" and give `radiative_coefficient`")
+        .at(Place::Key("radiative_model".to_string())),
         MaterialError::NarrowedAway { material, narrowing, doping } => Fault::new(
             codes::MATERIAL_VALUE,
             format!(

@@ -192,8 +192,18 @@ impl<P: Scalar> Material<P> {
     /// # Errors
     /// As [`Material::values`].
     pub fn absorber(&self, x: Option<P>, temperature: P) -> Result<Absorber<P>, MaterialError> {
-        let values = self.values(x, temperature, P::constant(0.0))?;
-        let gap = values.gap * (1.0 / ELEMENTARY_CHARGE);
+        let values = self.bare_values(x, temperature, P::constant(0.0))?;
+        self.absorber_at(x, temperature, values.gap)
+    }
+
+    /// [`Material::absorber`] where the gap, J, is known already.
+    pub(super) fn absorber_at(
+        &self,
+        x: Option<P>,
+        temperature: P,
+        gap: P,
+    ) -> Result<Absorber<P>, MaterialError> {
+        let gap = gap * (1.0 / ELEMENTARY_CHARGE);
         let zero = P::constant(0.0);
         let mut number = self.overrides.get(&Parameter::Absorption).copied();
         let (mut tables, mut tail) = (Vec::new(), None);
