@@ -88,7 +88,8 @@ fn minority_carriers_have_their_own_mobility() {
 }
 
 /// Source: the definition R0 = B ni^2 (never B alone: it goes as ni^-2), to rounding of the exponential of 50; the size of what
-/// published constants give for GaAs (R0 from 1.7e3 to 3.9e3 cm^-3 s^-1, computed elsewhere from two sets of data), and closed
+/// published constants give for GaAs (R0 from 1.7e3 to 3.9e3 cm^-3 s^-1, computed elsewhere from two sets of data; the library's tail of 7
+/// instead of 6.7 meV and its index of 3.6 instead of 3.5 add an eighth to the larger), and closed
 /// form: a table alpha = 3e4 sqrt(E - 1.424) cm^-1 of index 3.5 emits 1.371035e3 cm^-3 s^-1 up to 2.2 eV (computed elsewhere),
 /// 1e-3 as the table and the range of integration end.
 #[test]
@@ -102,7 +103,7 @@ fn radiation_by_detailed_balance() {
     let rate =
         material.equilibrium_emission(None, 300.0, gap - 0.3, gap + 0.5).expect("valid").expect("a table");
     assert!((v.radiative_coefficient * ni_squared / rate - 1.0).abs() < 1e-12);
-    assert!((1.7e9..3.9e9).contains(&rate), "{rate:e}");
+    assert!((1.7e9..4.5e9).contains(&rate), "{rate:e}");
 
     let energies: Vec<f64> = (0..=6000).map(|k| 1.3 + 1.4e-4 * f64::from(k)).collect();
     let table = crate::materials::OpticalConstants {

@@ -143,10 +143,14 @@ impl<P: Scalar> Absorber<P> {
     }
 
     fn evaluate(&self, wavelength: f64, hints: &mut [usize; 2]) -> Absorption<P> {
+        self.coefficient(P::constant(ENERGY_TIMES_WAVELENGTH / wavelength), wavelength, hints)
+    }
+
+    /// The coefficient at a photon energy, eV, and the vacuum wavelength, m, of its real part.
+    fn coefficient(&self, energy: P, wavelength: f64, hints: &mut [usize; 2]) -> Absorption<P> {
         let zero = P::constant(0.0);
-        let energy = ENERGY_TIMES_WAVELENGTH / wavelength;
         if let Some(number) = self.number {
-            let coefficient = if energy >= self.gap.value() { number } else { zero };
+            let coefficient = if energy.value() >= self.gap.value() { number } else { zero };
             return Absorption { coefficient, covered: true };
         }
         let covered = self.tables.iter().all(|t| t.table.covers(wavelength));
@@ -155,15 +159,28 @@ impl<P: Scalar> Absorber<P> {
         }
         let mut sum = zero;
         for (shifted, hint) in self.tables.iter().zip(hints) {
-            sum = sum + shifted.table.coefficient(-shifted.shift + energy, hint) * shifted.share;
+            sum = sum + shifted.table.coefficient(energy - shifted.shift, hint) * shifted.share;
         }
         if let Some(tail) = &self.tail {
-            let energy = P::constant(energy);
             let reached = tail.until.map_or(energy, |until| energy.min(until));
             let above = (reached - tail.edge).max(zero);
             sum = sum + above * above * tail.strength;
         }
         Absorption { coefficient: sum, covered }
+    }
+
+    /// Refractive index and absorption coefficient, m^-1, at a photon energy, eV, that may have derivatives; `None` without a
+    /// table.
+    fn at_energy(&self, energy: P) -> Option<(P, P)> {
+        if self.tables.is_empty() {
+            return None;
+        }
+        let (mut n, mut hints) = (P::constant(0.0), [0, 0]);
+        for shifted in &self.tables {
+            n = n + shifted.table.index(energy - shifted.shift)? * shifted.share;
+        }
+        let wavelength = ENERGY_TIMES_WAVELENGTH / energy.value();
+        Some((n, self.coefficient(energy, wavelength, &mut hints).coefficient))
     }
 
     /// Refractive index and extinction coefficient at a vacuum wavelength, m; `None` without a table.
