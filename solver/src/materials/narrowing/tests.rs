@@ -151,7 +151,7 @@ fn minority_carriers_grow_by_the_boltzmann_factor() {
         });
         let narrowing: Vec<f64> = dopants.map(|d| jain("GaAs").gap_narrowing(d) / kt).collect();
         let ends = [narrowing[0], narrowing[narrowing.len() - 1]];
-        (c.contacts.map(|contact| contact.minority_density), ends)
+        (c.contacts.map(|contact| contact.carriers[0].density.min(contact.carriers[1].density)), ends)
     };
     let (plain, narrowing) = minority(None, 0.0);
     for share in [0.0, 0.5, 1.0] {
