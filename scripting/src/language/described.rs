@@ -1,7 +1,9 @@
 //! The device of a snapshot: its stack in words, and every material value used with its source.
 
-use epiloom_solver::device::{Barrier, Contact, Device, LayerOptics, Profile, Stack};
-use epiloom_solver::materials::{Dopants, Kind, Parameter};
+use epiloom_solver::device::{
+    Barrier, Contact, Device, Interface, LayerOptics, Offset, Profile, Stack, Transport,
+};
+use epiloom_solver::materials::Parameter;
 use epiloom_solver::optics::Reflectance;
 
 use crate::archive::{Condition, Layer, MaterialValue, Value};
@@ -44,10 +46,7 @@ pub fn described_stack(stack: &Stack<Quantity>) -> crate::archive::Stack {
         if let Some(interface) = interface {
             settings.push(Condition::new(
                 format!("interface {} / {}", pair[0].name, pair[1].name),
-                Value::text(format!(
-                    "recombination velocity of electrons {}, of holes {}",
-                    interface.electron_recombination_velocity, interface.hole_recombination_velocity
-                )),
+                Value::text(interface_words(interface)),
             ));
         }
     }
@@ -56,6 +55,37 @@ pub fn described_stack(stack: &Stack<Quantity>) -> crate::archive::Stack {
         layers: stack.layers.iter().map(layer).collect(),
         settings,
     }
+}
+
+/// "recombination velocity of electrons .., of holes ..; thermionic emission; conduction-band edge rises by .. ".
+fn interface_words(interface: &Interface<Quantity>) -> String {
+    let mut words = format!(
+        "recombination velocity of electrons {}, of holes {}",
+        interface.electron_recombination_velocity, interface.hole_recombination_velocity
+    );
+    if let Transport::Thermionic { electron_velocity, hole_velocity } = &interface.transport {
+        let of = |velocity: &Option<Quantity>| {
+            velocity.as_ref().map_or("by the effective masses".to_string(), Quantity::to_string)
+        };
+        words.push_str(&format!(
+            "; thermionic emission, velocity of electrons {}, of holes {}",
+            of(electron_velocity),
+            of(hole_velocity)
+        ));
+    }
+    match &interface.offset {
+        None => {}
+        Some(Offset::Conduction(rise)) => {
+            words.push_str(&format!("; the conduction-band edge rises by {rise} to the rear"));
+        }
+        Some(Offset::Valence(rise)) => {
+            words.push_str(&format!("; the valence-band edge rises by {rise} to the rear"));
+        }
+        Some(Offset::Share(share)) => {
+            words.push_str(&format!("; {share} of the difference of the gaps in the conduction band"));
+        }
+    }
+    words
 }
 
 fn layer(layer: &epiloom_solver::device::Layer<Quantity>) -> Layer {
@@ -71,8 +101,6 @@ fn layer(layer: &epiloom_solver::device::Layer<Quantity>) -> Layer {
         .iter()
         .map(|(parameter, given)| Condition::new(parameter.key(), value(given)))
         .collect();
-    let chosen = layer.material.choices.iter();
-    settings.extend(chosen.map(|(choice, word)| Condition::new(choice.key(), Value::text(*word))));
     if layer.optics == LayerOptics::Inert {
         settings.push(Condition::new("optics", Value::text(optics_word(layer.optics))));
     }
@@ -161,11 +189,8 @@ pub fn materials(device: &Device) -> Vec<MaterialValue> {
     let mut list = Vec::new();
     for layer in &stack.layers {
         let x = layer.composition.as_ref().map(|c| c.at(0.0, layer.thickness));
-        let dopants = Dopants {
-            donors: layer.donors.at(0.0, layer.thickness),
-            acceptors: layer.acceptors.at(0.0, layer.thickness),
-        };
-        let Ok(values) = layer.material.local_values(x, stack.temperature, dopants) else { continue };
+        let doping = layer.donors.at(0.0, layer.thickness) + layer.acceptors.at(0.0, layer.thickness);
+        let Ok(values) = layer.material.values(x, stack.temperature, doping) else { continue };
         let row = |parameter: &str, value: Value, source: String, note: String| MaterialValue {
             layer: layer.name.clone(),
             material: layer.material.name().to_string(),
@@ -174,7 +199,7 @@ pub fn materials(device: &Device) -> Vec<MaterialValue> {
             source,
             note,
         };
-        let provenance = layer.material.provenance(x);
+        let provenance = layer.material.provenance();
         for parameter in Parameter::ALL {
             let Some(number) = values.get(*parameter) else { continue };
             let quantity = Quantity::si(number, parameter_dimension(parameter.kind()));
@@ -185,12 +210,6 @@ pub fn materials(device: &Device) -> Vec<MaterialValue> {
                 format!("{}; {} K to {} K", p.origin.word(), p.temperature.0, p.temperature.1)
             });
             list.push(row(parameter.key(), value(&quantity), source, note));
-        }
-        if let Some((origin, source)) = layer.material.narrowing_source() {
-            let narrowing =
-                Quantity::si(layer.material.gap_narrowing(dopants), parameter_dimension(Kind::Energy));
-            let note = format!("{}; of the gap above", origin.word());
-            list.push(row("gap_narrowing", value(&narrowing), source.to_string(), note));
         }
         let (_, origin, source) = layer.material.absorption_basis(x);
         list.push(row("absorption", Value::text("spectrum"), source, origin.word().to_string()));

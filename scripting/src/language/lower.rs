@@ -2,7 +2,7 @@
 
 use std::cell::Cell;
 
-use epiloom_solver::device::{Circuit, Diode, Interface, Layer, Profile, Stack, StackOptics};
+use epiloom_solver::device::{Circuit, Diode, Layer, Profile, Stack, StackOptics};
 use epiloom_solver::materials::Material;
 use epiloom_solver::optics::{Film, Reflectance};
 
@@ -13,7 +13,7 @@ pub fn stack<P, R>(stack: &Stack<P>, f: &impl Fn(&P) -> R) -> Stack<R> {
     Stack {
         name: stack.name.clone(),
         layers: stack.layers.iter().map(|l| layer(l, f)).collect(),
-        interfaces: stack.interfaces.iter().map(|i| i.as_ref().map(|i| interface(i, f))).collect(),
+        interfaces: stack.interfaces.iter().map(|i| i.as_ref().map(|i| i.map(f))).collect(),
         front: stack.front.map(f),
         rear: stack.rear.map(f),
         optics: StackOptics {
@@ -57,7 +57,6 @@ pub fn material<P, R>(material: &Material<P>, f: &impl Fn(&P) -> R) -> Material<
         composition: material.composition.as_ref().map(f),
         overrides: material.overrides.iter().map(|(key, value)| (*key, f(value))).collect(),
         optical: material.optical.clone(),
-        choices: material.choices.clone(),
     }
 }
 
@@ -73,13 +72,6 @@ pub fn profile<P, R>(profile: &Profile<P>, f: &impl Fn(&P) -> R) -> Profile<R> {
         Profile::Table { depths, values } => {
             Profile::Table { depths: depths.iter().map(f).collect(), values: values.iter().map(f).collect() }
         }
-    }
-}
-
-fn interface<P, R>(interface: &Interface<P>, f: &impl Fn(&P) -> R) -> Interface<R> {
-    Interface {
-        electron_recombination_velocity: f(&interface.electron_recombination_velocity),
-        hole_recombination_velocity: f(&interface.hole_recombination_velocity),
     }
 }
 

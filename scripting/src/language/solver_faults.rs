@@ -2,7 +2,6 @@
 
 use epiloom_solver::analysis::AnalysisError;
 use epiloom_solver::device::{Fault as DeviceFault, Place as DevicePlace};
-use epiloom_solver::optics::OpticsError;
 
 use crate::diagnostics::{Code, codes};
 
@@ -31,10 +30,6 @@ pub fn analysis_fault(error: &AnalysisError) -> Fault {
         }
         AnalysisError::Stopped => {
             Fault::new(codes::INTERRUPTED, "the run was interrupted").label("stopped here, while solving")
-        }
-        AnalysisError::Optics(OpticsError::NoOpticalData { .. }) => {
-            Fault::new(codes::NO_OPTICAL_DATA, error.to_string())
-                .help("give the layer `absorption` or `optical_constants`, or take it out of the optics: optics: \"inert\"")
         }
         AnalysisError::BadRequest { .. } => Fault::new(codes::VOLTAGES, error.to_string()),
         other => Fault::new(codes::STACK, other.to_string()),
@@ -128,6 +123,7 @@ fn limits_of(quantity: &str) -> (Code, Dimension) {
         "accuracy" => (codes::ACCURACY, Dimension::NONE),
         "x" | "composition" => (codes::COMPOSITION, Dimension::NONE),
         "electron_barrier" | "hole_barrier" | "work_function" => (codes::BARRIER, Dimension::ENERGY),
+        "conduction_offset" | "valence_offset" => (codes::STACK, Dimension::ENERGY),
         q if q.ends_with("velocity") => (codes::VELOCITY, Dimension::VELOCITY),
         q if q.ends_with("reflectance") || q.ends_with("shading") => (codes::SHARE, Dimension::NONE),
         _ => (codes::STACK, Dimension::NONE),

@@ -174,7 +174,13 @@ fn answer(problem: &mut Problem, point: &Point) -> Result<Answer, Singular> {
             terminal.sense * sum
         }
         // The same total current flows through every edge; each counts as it does in the steady current.
-        None => terminal.edge_weights.iter().enumerate().map(|(k, weight)| weight * displacement(k)).sum(),
+        None => terminal
+            .edge_weights
+            .iter()
+            .enumerate()
+            .filter(|(_, weight)| **weight != 0.0)
+            .map(|(k, weight)| weight * displacement(k))
+            .sum(),
     };
     let mut lag = 0.0;
     for (i, (rise, lambda)) in rises.iter().zip(&lambda).enumerate() {

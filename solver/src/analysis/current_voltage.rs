@@ -16,6 +16,10 @@ const SCAN: f64 = 0.05;
 const AUTOMATIC: f64 = 0.02;
 /// The maximum-power voltage is solved to this step, V; the power errs by its square.
 const POWER_STEP: f64 = 1e-9;
+/// A step of the search for maximum power this small, V, that is not half the one before it is the rounding of the slopes.
+const POWER_NOISE: f64 = 1e-4;
+/// Points this far apart, V, tell how the slope of the current grows.
+const TELLING: f64 = 1e-6;
 
 /// The solved points of one mesh.
 #[derive(Default)]
@@ -196,12 +200,16 @@ fn maximum_power(ladder: &mut Ladder, rung: usize, mut a: Point, mut b: Point) -
     let tolerances = ladder.tolerances;
     let mut here = if power_slope(&a).abs() < power_slope(&b).abs() { a.clone() } else { b.clone() };
     let mut other = if here.voltage == a.voltage { b.clone() } else { a.clone() };
+    let (mut rate, mut before) = (bending(&here, &other), f64::INFINITY);
     for _ in 0..60 {
-        let bending = bending(&here, &other);
-        let step = power_step(&here, bending);
+        // Nearer points say nothing but the rounding of their slopes, which counts where the curve is nearly straight.
+        if (here.voltage - other.voltage).abs() >= TELLING {
+            rate = bending(&here, &other);
+        }
+        let step = power_step(&here, rate);
         let mut next = here.voltage + step;
-        if step.abs() <= POWER_STEP {
-            return Some((here, bending));
+        if arrived(step, &mut before) {
+            return Some((here, rate));
         }
         let (low, high) = (a.voltage.min(b.voltage), a.voltage.max(b.voltage));
         if !(next > low && next < high) {
@@ -228,6 +236,14 @@ fn bending(here: &Point, other: &Point) -> f64 {
     let distance = here.voltage - other.voltage;
     let ratio = here.conductance / other.conductance;
     if ratio > 0.0 && distance != 0.0 { crate::math::elementary::ln(ratio) / distance } else { 0.0 }
+}
+
+/// Whether a step towards maximum power says that it is reached; `before` holds the size of the step before it.
+fn arrived(step: f64, before: &mut f64) -> bool {
+    let size = step.abs();
+    let noise = size <= POWER_NOISE && size > 0.5 * *before;
+    *before = size;
+    size <= POWER_STEP || noise
 }
 
 /// Newton step on the power's slope, with `J'' = J'` times the bending.
@@ -309,12 +325,13 @@ fn finer_power(
     let drive = ladder.rungs[rung].problem.drive(coarse.voltage);
     let mut here = ladder.solve_from(rung, guess, drive, coarse.voltage)?;
     let tolerances = ladder.tolerances;
+    let mut before = f64::INFINITY;
     for _ in 0..20 {
         let step = power_step(&here, bending);
         if !step.is_finite() {
             return Ok(None);
         }
-        if step.abs() <= POWER_STEP {
+        if arrived(step, &mut before) {
             return Ok(Some(here));
         }
         let aim = here.voltage + step.clamp(-SCAN, SCAN);

@@ -224,7 +224,7 @@ impl<'a> Ladder<'a> {
         let mut nodes = vec![[0.0; 3]; c.nodes()];
         let mut base = 0;
         for layer in 0..c.layers() {
-            let first = c.first[layer] - layer;
+            let first = c.node(layer, c.first[layer]);
             let cells = (c.first[layer + 1] - c.first[layer] - 1) / 2;
             let from = &coarse[base..=base + cells];
             let to = &mut nodes[first..=first + 2 * cells];
@@ -248,7 +248,7 @@ impl<'a> Ladder<'a> {
                     };
                 }
             }
-            base += cells;
+            base += cells + usize::from(c.is_joint(layer));
         }
         nodes
     }

@@ -284,18 +284,32 @@ pub(crate) fn ledger(
             balance.add(-energy);
         }
     }
+    // Flux times the fall of the level, over a cell or where levels jump.
+    let transport = |k: usize| {
+        let (a, b) = (&point.state.nodes[k], &point.state.nodes[k + 1]);
+        let (low_a, low_b) = (&point.state.remainders[k], &point.state.remainders[k + 1]);
+        [
+            system.electron_flux[k] * ((b[1] - a[1]) + (low_b[0] - low_a[0])),
+            system.hole_flux[k] * ((b[2] - a[2]) + (low_b[1] - low_a[1])),
+        ]
+    };
+    let mut lines = Vec::with_capacity(layers);
     for layer in 0..layers {
         let (mut electrons, mut holes) = (0.0, 0.0);
         for e in c.first[layer]..c.first[layer + 1] - 1 {
-            let k = e - layer;
-            let (a, b) = (&point.state.nodes[k], &point.state.nodes[k + 1]);
-            let (low_a, low_b) = (&point.state.remainders[k], &point.state.remainders[k + 1]);
-            electrons -= system.electron_flux[k] * ((b[1] - a[1]) + (low_b[0] - low_a[0]));
-            holes -= system.hole_flux[k] * ((b[2] - a[2]) + (low_b[1] - low_a[1]));
+            let lost = transport(c.node(layer, e));
+            electrons -= lost[0];
+            holes -= lost[1];
         }
-        let name = &stack.layers[layer].name;
-        ledger.add(part, name, "electron transport", electrons * power, false);
-        ledger.add(part, name, "hole transport", holes * power, false);
+        lines.push((stack.layers[layer].name.clone(), electrons, holes));
+    }
+    for (layer, node) in c.joint_nodes() {
+        let lost = transport(node);
+        lines.push((between(layer), -lost[0], -lost[1]));
+    }
+    for (place, electrons, holes) in lines {
+        ledger.add(part, &place, "electron transport", electrons * power, false);
+        ledger.add(part, &place, "hole transport", holes * power, false);
         balance.add(-electrons);
         balance.add(-holes);
     }
@@ -338,6 +352,7 @@ pub(crate) fn ledger(
     // The current of the best-conditioned edge, evaluated from the carriers there and nothing else.
     let energy = problem.largest_energy();
     let best = (0..c.cells.len())
+        .filter(|k| c.cells[*k].width > 0.0)
         .map(|k| (k, edge_rounding(problem, point, k, energy)))
         .min_by(|a, b| a.1.total_cmp(&b.1));
     if let Some((k, rounding)) = best {

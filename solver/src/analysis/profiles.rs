@@ -98,7 +98,7 @@ pub(crate) fn sheet_resistance(problem: &Problem, profiles: &Profiles) -> Vec<f6
             let (first, end) = (c.first[layer], c.first[layer + 1]);
             let (mut electrons, mut holes) = (0.0, 0.0);
             for e in first..end - 1 {
-                let cell = &c.cells[e - layer];
+                let cell = &c.cells[c.node(layer, e)];
                 let width = cell.width;
                 let thickness = width * scales::LENGTH;
                 electrons += cell.electron

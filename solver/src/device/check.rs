@@ -2,14 +2,14 @@
 
 use std::collections::BTreeSet;
 
-use crate::materials::{Dopants, Material, MaterialError, OpticalConstants, TEMPERATURE_LIMITS};
+use crate::materials::{Material, OpticalConstants, TEMPERATURE_LIMITS};
 use crate::math::Scalar;
 use crate::optics::Reflectance;
 use crate::quantity::constants::{BOLTZMANN, ELEMENTARY_CHARGE};
 
 use super::fault::{Fault, Place, TableProblem};
 use super::profile::Profile;
-use super::stack::{Barrier, Contact, Interface, Layer, Side, Stack};
+use super::stack::{Barrier, Contact, Interface, Layer, Offset, Side, Stack, Transport};
 
 /// Thickness of a layer, m.
 pub const THICKNESS_LIMITS: (f64, f64) = (1e-11, 1e-2);
@@ -17,6 +17,10 @@ pub const THICKNESS_LIMITS: (f64, f64) = (1e-11, 1e-2);
 pub const HIGHEST_DOPING: f64 = 1e28;
 /// Highest recombination velocity, m/s.
 pub const HIGHEST_VELOCITY: f64 = 1e12;
+/// Emission velocities, m/s.
+pub const EMISSION_LIMITS: (f64, f64) = (1e-6, HIGHEST_VELOCITY);
+/// Band offsets given by hand, J: 5 eV either way.
+pub const OFFSET_LIMITS: (f64, f64) = (-5.0 * ELEMENTARY_CHARGE, 5.0 * ELEMENTARY_CHARGE);
 /// Relative accuracies that can be asked for.
 pub const ACCURACY_LIMITS: (f64, f64) = (1e-9, 1e-1);
 /// Largest gap over kT: beyond, densities of minority carriers leave the range of a double (e^-707), and with them what
@@ -181,12 +185,9 @@ impl Checker {
                 }
                 Err(error) => {
                     self.faults.push(wrap(error));
-                    return;
+                    break;
                 }
             }
-        }
-        if layer.material.narrows() {
-            self.faults.extend(narrowed_away(layer, temperature).map(wrap));
         }
     }
 
@@ -199,6 +200,25 @@ impl Checker {
         } else {
             self.range(place, "electron_recombination_velocity", electrons, limits, "m/s");
             self.range(place, "hole_recombination_velocity", holes, limits, "m/s");
+        }
+        if let Transport::Thermionic { electron_velocity, hole_velocity } = &interface.transport {
+            for (word, velocity) in
+                [("electron_emission_velocity", electron_velocity), ("hole_emission_velocity", hole_velocity)]
+            {
+                if let Some(velocity) = velocity {
+                    self.range(place, word, *velocity, EMISSION_LIMITS, "m/s");
+                }
+            }
+        }
+        match &interface.offset {
+            Some(Offset::Conduction(energy)) => {
+                self.range(place, "conduction_offset", *energy, OFFSET_LIMITS, "J");
+            }
+            Some(Offset::Valence(energy)) => {
+                self.range(place, "valence_offset", *energy, OFFSET_LIMITS, "J");
+            }
+            Some(Offset::Share(share)) => self.range(place, "offset_ratio", *share, (-10.0, 10.0), ""),
+            None => {}
         }
     }
 
@@ -324,30 +344,6 @@ impl<P: Scalar> Stack<P> {
         check.range(&stack, "accuracy", self.accuracy, ACCURACY_LIMITS, "");
         check.faults
     }
-}
-
-/// What is wrong with the narrowing of a layer's gap: no coefficients for a graded alloy, or no gap left at the heaviest net
-/// doping of either sign at an end of the composition.
-fn narrowed_away<P: Scalar>(layer: &Layer<P>, temperature: P) -> Option<MaterialError> {
-    if layer.composition.is_some() && layer.material.narrows_by_library() {
-        return Some(MaterialError::NoNarrowing { material: layer.material.name().to_string() });
-    }
-    let compositions = match &layer.composition {
-        Some(profile) => vec![Some(profile.extremes().0), Some(profile.extremes().1)],
-        None => vec![None],
-    };
-    let (donors, acceptors) = (layer.donors.extremes(), layer.acceptors.extremes());
-    let sound = |(low, high): (f64, f64)| low >= 0.0 && high <= HIGHEST_DOPING;
-    if !sound(donors) || !sound(acceptors) {
-        return None;
-    }
-    let heaviest = [(donors.1, acceptors.0), (donors.0, acceptors.1)];
-    compositions.into_iter().flat_map(|x| heaviest.map(|pair| (x, pair))).find_map(
-        |(x, (donors, acceptors))| {
-            let dopants = Dopants { donors: P::constant(donors), acceptors: P::constant(acceptors) };
-            layer.material.local_values(x.map(P::constant), temperature, dopants).err()
-        },
-    )
 }
 
 /// Whether two layers are made of one substance, so that no band offset lies between them.

@@ -35,7 +35,6 @@ fn layer<P: Copy, Q>(layer: &Layer<P>, to: impl Fn(P) -> Q + Copy) -> Layer<Q> {
             composition: material.composition.map(to),
             overrides: material.overrides.iter().map(|(parameter, value)| (*parameter, to(*value))).collect(),
             optical: material.optical.clone(),
-            choices: material.choices.clone(),
         },
         thickness: to(layer.thickness),
         donors: layer.donors.map(to),
@@ -64,10 +63,7 @@ fn reflectance<P: Copy, Q>(reflectance: &Reflectance<P>, to: impl Fn(P) -> Q + C
 impl<P: Copy> Stack<P> {
     /// The same stack in another kind of number, for instance `stack.map(Dual::fixed)` before one value is made a variable.
     pub fn map<Q>(&self, to: impl Fn(P) -> Q + Copy) -> Stack<Q> {
-        let interface = |i: &Interface<P>| Interface {
-            electron_recombination_velocity: to(i.electron_recombination_velocity),
-            hole_recombination_velocity: to(i.hole_recombination_velocity),
-        };
+        let interface = |i: &Interface<P>| i.map(|value| to(*value));
         Stack {
             name: self.name.clone(),
             layers: self.layers.iter().map(|l| layer(l, to)).collect(),

@@ -13,7 +13,10 @@ pub use crate::physics::Statistics;
 pub use device::Device;
 pub use fault::{Fault, Place, TableProblem, Warning};
 pub use profile::Profile;
-pub use stack::{Barrier, Circuit, Contact, Diode, Interface, Layer, LayerOptics, Side, Stack, StackOptics};
+pub use stack::{
+    Barrier, Circuit, Contact, Diode, Interface, Layer, LayerOptics, Offset, Side, Stack, StackOptics,
+    Transport,
+};
 
 #[cfg(test)]
 mod tests;

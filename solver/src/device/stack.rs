@@ -43,6 +43,31 @@ pub struct Layer<P = f64> {
     pub optics: LayerOptics,
 }
 
+/// How carriers cross an interface.
+#[derive(Clone, Copy, Debug, PartialEq)]
+pub enum Transport<P = f64> {
+    /// Quasi-Fermi levels are continuous.
+    Continuous,
+    /// Each carrier leaves the side of its higher band edge by thermionic emission; levels may jump.
+    Thermionic {
+        /// Emission velocity of electrons, m/s; `None` takes that of the effective masses.
+        electron_velocity: Option<P>,
+        /// Emission velocity of holes, m/s; `None` takes that of the effective masses.
+        hole_velocity: Option<P>,
+    },
+}
+
+/// How the bands line up at an interface, instead of by the materials' affinities.
+#[derive(Clone, Copy, Debug, PartialEq)]
+pub enum Offset<P = f64> {
+    /// Rise of the conduction-band edge on the way to the rear, J.
+    Conduction(P),
+    /// Rise of the valence-band edge on the way to the rear, J.
+    Valence(P),
+    /// Share of the difference of the two gaps that lies in the conduction band.
+    Share(P),
+}
+
 /// What happens between two layers beyond continuity.
 #[derive(Clone, Copy, Debug)]
 pub struct Interface<P = f64> {
@@ -50,6 +75,42 @@ pub struct Interface<P = f64> {
     pub electron_recombination_velocity: P,
     /// Interface recombination velocity of holes S_p, m/s.
     pub hole_recombination_velocity: P,
+    /// How carriers cross it.
+    pub transport: Transport<P>,
+    /// How the bands line up; `None` is by the affinities. All layers behind move together, so that other steps stay.
+    pub offset: Option<Offset<P>>,
+}
+
+impl<P> Interface<P> {
+    /// An interface with continuous levels at which carriers recombine, at velocities in m/s.
+    pub fn recombining(electron_velocity: P, hole_velocity: P) -> Self {
+        Interface {
+            electron_recombination_velocity: electron_velocity,
+            hole_recombination_velocity: hole_velocity,
+            transport: Transport::Continuous,
+            offset: None,
+        }
+    }
+
+    /// The same with every number put through a function.
+    pub fn map<Q>(&self, to: impl Fn(&P) -> Q) -> Interface<Q> {
+        Interface {
+            electron_recombination_velocity: to(&self.electron_recombination_velocity),
+            hole_recombination_velocity: to(&self.hole_recombination_velocity),
+            transport: match &self.transport {
+                Transport::Continuous => Transport::Continuous,
+                Transport::Thermionic { electron_velocity, hole_velocity } => Transport::Thermionic {
+                    electron_velocity: electron_velocity.as_ref().map(&to),
+                    hole_velocity: hole_velocity.as_ref().map(&to),
+                },
+            },
+            offset: self.offset.as_ref().map(|offset| match offset {
+                Offset::Conduction(energy) => Offset::Conduction(to(energy)),
+                Offset::Valence(energy) => Offset::Valence(to(energy)),
+                Offset::Share(share) => Offset::Share(to(share)),
+            }),
+        }
+    }
 }
 
 /// A contact: where it holds the bands, and how fast it takes carriers.

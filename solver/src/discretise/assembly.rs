@@ -171,6 +171,7 @@ impl System {
         let nodes = c.nodes();
         let mut jacobian = BlockTridiagonal::zeros(nodes);
         jacobian.sums = jacobian.diagonal.clone();
+        jacobian.joints = c.joint_nodes().map(|(_, node)| node).collect();
         System {
             residual: vec![Triple::zeros(); nodes],
             jacobian,
@@ -191,7 +192,7 @@ impl System {
         let n = c.nodes();
         let System { residual, jacobian, columns, work, net, net_gradient, electron_flux, hole_flux, .. } =
             self;
-        let BlockTridiagonal { lower, diagonal, upper, sums } = jacobian;
+        let BlockTridiagonal { lower, diagonal, upper, sums, .. } = jacobian;
         // A caller that eliminates by rows has taken the sums away.
         sums.resize(n, Block::zeros());
         let entries = columns.entries();
@@ -201,13 +202,16 @@ impl System {
         let (mut front, mut left) = (Source::default(), CellRows::default());
         for layer in 0..c.layers() {
             let (first, end) = (c.first[layer], c.first[layer + 1].min(entries));
+            // Whether the layer shares its first node with the layer before it, its last one with the layer behind it.
+            let shares_first = layer > 0 && !c.is_joint(layer - 1);
+            let shares_last = layer + 1 < c.layers() && !c.is_joint(layer);
+            let shared = c.shared[layer];
             for e in first..end {
-                let (mut own, i) = (Source::of(&results, e), e - layer);
-                // The first entry of a later layer shares its node with the last entry of the layer before.
-                if e == first && layer > 0 {
+                let (mut own, i) = (Source::of(&results, e), e - shared);
+                if e == first && shares_first {
                     own = front.and(&own);
                 }
-                if e + 1 == end && i + 1 < n {
+                if e + 1 == end && shares_last {
                     front = own;
                     continue;
                 }
@@ -247,6 +251,7 @@ impl System {
         self.work.spread(c, state, remainders);
         let shifts = [rear * c.reference[0], rear * c.reference[1]];
         self.work.run(self.width, c, &self.columns, &Condition { shifts, generation, light });
+        self.work.interfaces(c, shifts);
         self.rows(c);
         self.apply_contacts(c, state, remainders, rear);
     }
@@ -257,7 +262,7 @@ impl System {
         let mut sums = vec![[0.0; 2]; c.nodes()];
         for layer in 0..c.layers() {
             for e in c.first[layer]..c.first[layer + 1] {
-                let sum = &mut sums[e - layer];
+                let sum = &mut sums[c.node(layer, e)];
                 sum[0] += self.work.charge[e];
                 sum[1] += self.work.charge_by[0][e];
             }

@@ -1,6 +1,6 @@
 //! The coefficients of the discrete equations: a device on a mesh.
 
-use crate::device::{Contact, Device, Stack};
+use crate::device::{Contact, Device, Offset, Stack, Transport};
 use crate::materials::Values;
 use crate::math::{Over, Scalar};
 use crate::mesh::Mesh;
@@ -9,6 +9,7 @@ use crate::physics::shockley_read_hall::Level;
 use crate::quantity::constants::{BOLTZMANN, ELEMENTARY_CHARGE, VACUUM_PERMITTIVITY};
 
 use super::contact::{Carrier, ContactLaw, Majority};
+use super::interface::Joint;
 use super::scales;
 
 /// One side of a node: the material there and the half control volumes that belong to it.
@@ -89,16 +90,21 @@ pub struct Coefficients<P> {
     /// Thermal voltage kT/q, V.
     pub thermal_voltage: P,
     /// Sides of nodes, front first: `[entries]`. Layer `l` holds entries `first[l]..first[l + 1]`; an entry `e` of
-    /// layer `l` belongs to node `e - l`.
+    /// layer `l` belongs to [`Coefficients::node`]`(l, e)`.
     pub entries: Vec<Entry<P>>,
     /// First entry of each layer, and the number of entries: `[layers + 1]`.
     pub first: Vec<usize>,
-    /// Cells; cell `i` lies between nodes `i` and `i + 1`: `[nodes - 1]`.
+    /// How many of the interfaces before each layer have continuous levels, and so one node for two entries: `[layers]`.
+    pub shared: Vec<usize>,
+    /// Cells; cell `i` lies between nodes `i` and `i + 1`: `[nodes - 1]`. Between the two nodes of a joint it has no width, and a
+    /// displacement per potential difference without limit.
     pub cells: Vec<Cell<P>>,
     /// Depth of each entry, m: `[entries]`.
     pub depths: Vec<P>,
     /// Recombination at the rear end of each layer: `[layers - 1]`.
     pub interfaces: Vec<Option<InterfaceRecombination<P>>>,
+    /// The law of each interface at which levels may jump; two nodes stand there, which share their potential: `[layers - 1]`.
+    pub joints: Vec<Option<Joint<P>>>,
     /// Contacts: front and rear.
     pub contacts: [ContactLaw<P>; 2],
     /// +1 where the rear contact is the positive terminal (p side), -1 where the front one is.
@@ -155,6 +161,19 @@ fn entry<P: Scalar>(v: &Values<P>, doping: P, thermal_energy: P) -> Entry<P> {
     }
 }
 
+/// What the affinity behind an interface moves by, over kT, so that the bands line up as given; `rear` has not moved.
+fn aligned<P: Scalar>(offset: &Offset<P>, front: &Entry<P>, rear: &Entry<P>, thermal_energy: P) -> P {
+    let per_kt = thermal_energy.recip();
+    match offset {
+        Offset::Conduction(rise) => front.affinity - *rise * per_kt - rear.affinity,
+        Offset::Valence(rise) => front.affinity_and_gap - *rise * per_kt - rear.affinity_and_gap,
+        Offset::Share(share) => {
+            let gaps = (rear.affinity_and_gap - rear.affinity) - (front.affinity_and_gap - front.affinity);
+            front.affinity - *share * gaps - rear.affinity
+        }
+    }
+}
+
 impl<P: Scalar + Over<P>> Coefficients<P> {
     /// The coefficients of a device on a mesh.
     pub fn new(device: &Device<P>, mesh: &Mesh) -> Self {
@@ -170,6 +189,10 @@ impl<P: Scalar + Over<P>> Coefficients<P> {
         let mut first = vec![0];
         let mut gaps = Vec::new();
         let mut front = P::constant(0.0);
+        let (mut shared, mut joints) = (Vec::with_capacity(stack.layers.len()), Vec::new());
+        let mut continuous = 0;
+        // What the affinities of a layer and of all behind it have moved by, over kT.
+        let mut shift: Option<P> = None;
         for (index, layer) in stack.layers.iter().enumerate() {
             let fractions = &mesh.layers[index].fractions;
             let place = |fraction: f64| {
@@ -180,9 +203,19 @@ impl<P: Scalar + Over<P>> Coefficients<P> {
             };
             let uniform =
                 layer.composition.is_none() && layer.donors.is_constant() && layer.acceptors.is_constant();
-            let shared = uniform.then(|| place(0.0));
-            let at = |fraction: f64| shared.unwrap_or_else(|| place(fraction));
+            let everywhere = uniform.then(|| place(0.0));
+            let at = |fraction: f64| everywhere.unwrap_or_else(|| place(fraction));
             let base = entries.len();
+            let law = index.checked_sub(1).and_then(|i| stack.interfaces[i].as_ref()).map(|i| &i.transport);
+            if matches!(law, Some(Transport::Thermionic { .. })) {
+                let none = P::constant(0.0);
+                cells.push(Cell {
+                    displacement: P::constant(f64::INFINITY),
+                    electron: none,
+                    hole: none,
+                    width: none,
+                });
+            }
             let mut previous: Option<(f64, usize)> = None;
             for &fraction in fractions {
                 let (values, doping) = at(fraction);
@@ -205,6 +238,25 @@ impl<P: Scalar + Over<P>> Coefficients<P> {
                 }
                 previous = Some((fraction, here));
             }
+            let before = index.checked_sub(1).and_then(|i| stack.interfaces[i].as_ref());
+            if let Some(offset) = before.and_then(|i| i.offset.as_ref()) {
+                shift = Some(aligned(offset, &entries[base - 1], &entries[base], thermal_energy));
+            }
+            if let Some(shift) = shift {
+                for e in &mut entries[base..] {
+                    (e.affinity, e.affinity_and_gap) = (e.affinity + shift, e.affinity_and_gap + shift);
+                }
+            }
+            if index > 0 {
+                let joint = before.and_then(|i| {
+                    Joint::new(&i.transport, &entries[base - 1], &entries[base], stack.temperature)
+                });
+                if joint.is_none() {
+                    continuous += 1;
+                }
+                joints.push(joint);
+            }
+            shared.push(continuous);
             let gap = |e: usize| (entries[e].affinity_and_gap - entries[e].affinity).value();
             gaps.push((gap(base), gap(entries.len() - 1)));
             first.push(entries.len());
@@ -256,9 +308,11 @@ impl<P: Scalar + Over<P>> Coefficients<P> {
             thermal_voltage,
             entries,
             first,
+            shared,
             cells,
             depths,
             interfaces,
+            joints,
             contacts,
             polarity,
             junction,
@@ -274,9 +328,23 @@ impl<P: Scalar + Over<P>> Coefficients<P> {
     pub fn layers(&self) -> usize {
         self.first.len() - 1
     }
+    /// The node of an entry of a layer (of the layer's last entry but one: that after the layer's last node).
+    #[inline(always)]
+    pub fn node(&self, layer: usize, entry: usize) -> usize {
+        entry - self.shared[layer]
+    }
     /// The layer and node of each entry, in order.
     pub fn places(&self) -> impl Iterator<Item = (usize, usize, usize)> + '_ {
-        (0..self.layers()).flat_map(move |l| (self.first[l]..self.first[l + 1]).map(move |e| (e, l, e - l)))
+        (0..self.layers())
+            .flat_map(move |l| (self.first[l]..self.first[l + 1]).map(move |e| (e, l, self.node(l, e))))
+    }
+    /// Whether levels may jump at the rear end of a layer, and two nodes stand there.
+    pub fn is_joint(&self, layer: usize) -> bool {
+        self.joints.get(layer).is_some_and(Option::is_some)
+    }
+    /// The front node of each joint, in order, with the layer before it.
+    pub fn joint_nodes(&self) -> impl Iterator<Item = (usize, usize)> + '_ {
+        (0..self.joints.len()).filter(|l| self.is_joint(*l)).map(|l| (l, self.node(l, self.first[l + 1] - 1)))
     }
     /// The carrier whose flux into the front contact, and the one whose flux into the rear contact, sum with the net
     /// recombination to the terminal current: minority carriers at both. `None` where both ends pin the same one.

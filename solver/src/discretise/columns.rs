@@ -8,7 +8,8 @@ use super::coefficients::{Coefficients, Entry};
 
 /// Every field of [`Entry`] over the entries, and of a cell over its left entries: `[entries]`.
 ///
-/// Between the two entries of an interface node lies no cell: its coefficients are 0 there, and so are its fluxes.
+/// Between the two entries of an interface lies no cell: its coefficients are 0 there, and so are its fluxes unless a law of
+/// the interface puts others in their place.
 #[derive(Clone, Debug)]
 pub struct Columns {
     /// Carrier statistics.
@@ -59,7 +60,7 @@ impl Columns {
         };
         for layer in 0..c.layers() {
             for e in c.first[layer]..c.first[layer + 1] - 1 {
-                let cell = &c.cells[e - layer];
+                let cell = &c.cells[c.node(layer, e)];
                 columns.displacement[e] = cell.displacement;
                 columns.electron[e] = cell.electron;
                 columns.hole[e] = cell.hole;

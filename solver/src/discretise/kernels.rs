@@ -24,12 +24,12 @@ use super::side::sloped_side;
 #[derive(Clone, Debug, Default)]
 pub struct Work {
     /// Potential.
-    psi: Vec<f64>,
+    pub(super) psi: Vec<f64>,
     /// Stored quasi-Fermi potentials, and their remainders.
-    u_n: Vec<f64>,
-    u_p: Vec<f64>,
-    low_n: Vec<f64>,
-    low_p: Vec<f64>,
+    pub(super) u_n: Vec<f64>,
+    pub(super) u_p: Vec<f64>,
+    pub(super) low_n: Vec<f64>,
+    pub(super) low_p: Vec<f64>,
     /// Effective levels W_n, W_p.
     electron_level: Vec<f64>,
     hole_level: Vec<f64>,
@@ -217,7 +217,7 @@ impl Work {
     pub fn spread(&mut self, c: &Coefficients<f64>, state: &[[f64; 3]], remainders: &[[f64; 2]]) {
         for layer in 0..c.layers() {
             let entries = c.first[layer]..c.first[layer + 1];
-            let nodes = entries.start - layer..entries.end - layer;
+            let nodes = c.node(layer, entries.start)..c.node(layer, entries.end);
             let columns = self.psi[entries.clone()].iter_mut().zip(&mut self.u_n[entries.clone()]);
             let columns = columns.zip(&mut self.u_p[entries.clone()]);
             for (((psi, u_n), u_p), node) in columns.zip(&state[nodes.clone()]) {
@@ -239,7 +239,8 @@ impl Work {
     pub fn run_charges(&mut self, width: Width, c: &Coefficients<f64>, columns: &Columns, psi: &[f64]) {
         for layer in 0..c.layers() {
             let entries = c.first[layer]..c.first[layer + 1];
-            self.psi[entries.clone()].copy_from_slice(&psi[entries.start - layer..entries.end - layer]);
+            self.psi[entries.clone()]
+                .copy_from_slice(&psi[c.node(layer, entries.start)..c.node(layer, entries.end)]);
         }
         at_width!(width, self, charges_over, charges_wide, (columns));
     }

@@ -7,6 +7,7 @@ pub mod coefficients;
 mod columns;
 pub mod contact;
 pub mod edge;
+pub mod interface;
 mod kernels;
 pub mod residual;
 pub mod scales;
@@ -16,6 +17,7 @@ pub mod terminal;
 pub use assembly::System;
 pub use coefficients::{Cell, Coefficients, Entry, InterfaceRecombination};
 pub use contact::{Carrier, ContactLaw, Majority};
+pub use interface::{Emission, Joint};
 pub use side::Side;
 pub use terminal::Terminal;
 

@@ -39,7 +39,8 @@ pub fn interface_recombination<T: Over<P>, P: Num>(
 }
 
 /// The residual of every node at a state, with the rear contact's level at `rear` (kT/q) and the pairs generated per
-/// area in each entry's volume. Rows: Gauss's law, electron continuity, hole continuity; at the contacts, their laws.
+/// area in each entry's volume. Rows: Gauss's law, electron continuity, hole continuity; at the contacts, their laws. The two nodes
+/// of a joint share their potential, and their rows of Gauss's law are the two parts of one.
 ///
 /// Shapes: `state` and result `[nodes]`, `generation` `[entries]`.
 pub fn residual<T, P>(
@@ -87,6 +88,15 @@ where
                 fitted_flux(at.p, left.p, left.hole_level - at.hole_level, state[i][2] - state[i - 1][2])
                     * cell.hole;
             for (row, flux) in [displacement, electrons, holes].into_iter().enumerate() {
+                rows[i - 1][row] = rows[i - 1][row] + flux;
+                rows[i][row] = rows[i][row] - flux;
+            }
+        }
+        if let (true, Some(front), Some(joint)) =
+            (e == c.first[layer], previous, layer.checked_sub(1).and_then(|l| c.joints[l].as_ref()))
+        {
+            let rises = [state[i][1] - state[i - 1][1], state[i][2] - state[i - 1][2]];
+            for (row, flux) in (1..).zip(joint.fluxes(&front, &at, rises)) {
                 rows[i - 1][row] = rows[i - 1][row] + flux;
                 rows[i][row] = rows[i][row] - flux;
             }

@@ -122,12 +122,15 @@ impl Terminal {
             };
             coupling[(row, row)].abs().max(f64::MIN_POSITIVE)
         };
-        let total: f64 = (0..n - 1).map(|k| 1.0 / conductance(k)).sum();
+        // The levels' jump at a joint has no width: its current is that of the edges beside it.
+        let edges = |k: &usize| c.cells[*k].width > 0.0;
+        let total: f64 = (0..n - 1).filter(edges).map(|k| 1.0 / conductance(k)).sum();
         let sign = -c.polarity;
         let mut gradient = vec![Triple::zeros(); n];
-        let edge_weights: Vec<f64> = (0..n - 1).map(|k| sign / (conductance(k) * total)).collect();
+        let edge_weights: Vec<f64> =
+            (0..n - 1).map(|k| if edges(&k) { sign / (conductance(k) * total) } else { 0.0 }).collect();
         let (mut current, mut magnitude) = (0.0, 0.0);
-        for (k, &weight) in edge_weights.iter().enumerate() {
+        for (k, &weight) in edge_weights.iter().enumerate().filter(|(k, _)| edges(k)) {
             current += weight * (system.electron_flux[k] + system.hole_flux[k]);
             magnitude += weight.abs() * (system.electron_flux[k].abs() + system.hole_flux[k].abs());
             // Rows of node k hold +flux of edge k, those of node k + 1 hold -flux.

@@ -34,8 +34,7 @@ fn coefficients(stack: crate::device::Stack) -> Coefficients<f64> {
 #[test]
 fn jacobian_is_the_derivative_of_the_plain_residual() {
     let mut with_interface = r3();
-    with_interface.interfaces[1] =
-        Some(Interface { electron_recombination_velocity: 1e3, hole_recombination_velocity: 30.0 });
+    with_interface.interfaces[1] = Some(Interface::recombining(1e3, 30.0));
     with_interface.rear = Contact::Ohmic { recombination_velocity: None };
     let mut resistor = r1();
     resistor.layers[0].donors = resistor.layers[1].donors.clone();
@@ -47,12 +46,14 @@ fn jacobian_is_the_derivative_of_the_plain_residual() {
         rear: Contact::Schottky { barrier, electron_emission_velocity: None, hole_emission_velocity: None },
         ..r3()
     };
+    let emitting = crate::analysis::tests::interfaces::emitting(Some(2e3), None);
     for (name, stack) in [
         ("R1", r1()),
         ("R3", r3()),
         ("interface", with_interface),
         ("resistor", resistor),
         ("velocities and a barrier", passing),
+        ("thermionic", emitting),
     ] {
         let c = coefficients(stack);
         let n = c.nodes();
@@ -132,9 +133,8 @@ fn jacobian_is_the_derivative_of_the_plain_residual() {
 #[test]
 fn every_width_gives_the_same_bits() {
     use crate::math::lanes::Width;
-    let mut stacks = vec![r1(), r3()];
-    stacks[1].interfaces[1] =
-        Some(Interface { electron_recombination_velocity: 1e3, hole_recombination_velocity: 30.0 });
+    let mut stacks = vec![r1(), r3(), crate::analysis::tests::interfaces::emitting(None, None)];
+    stacks[1].interfaces[1] = Some(Interface::recombining(1e3, 30.0));
     for cells in [4, 5, 6, 7] {
         for stack in &stacks {
             let device = Device::new(stack.clone()).unwrap();
@@ -177,7 +177,10 @@ fn terminal_gradient_against_differences() {
         rear: Contact::Selective { electron_velocity: Some(1e2), hole_velocity: Some(3e4) },
         ..r3()
     };
-    for (name, stack) in [("R1", r1()), ("R3", r3()), ("blocked", blocked), ("passing", passing)] {
+    let emitting = crate::analysis::tests::interfaces::emitting(None, None);
+    for (name, stack) in
+        [("R1", r1()), ("R3", r3()), ("blocked", blocked), ("passing", passing), ("thermionic", emitting)]
+    {
         let c = coefficients(stack);
         let n = c.nodes();
         let generation = vec![0.0; c.entries.len()];

@@ -1,5 +1,6 @@
 //! A block-tridiagonal matrix with 3 x 3 blocks.
 
+use super::joints::Joints;
 use super::{Block, Factors, Singular, Triple};
 
 /// The matrix. Row `i` couples to nodes `i - 1` (lower), `i` (diagonal) and `i + 1` (upper).
@@ -14,13 +15,22 @@ pub struct BlockTridiagonal {
     /// Sums of each block column, `diagonal[i] + lower[i + 1] + upper[i - 1]`, made without their cancellation: what is
     /// left of a node's fluxes into its neighbours (sources and sinks). Empty where it is not known: `[nodes]`.
     pub sums: Vec<Block>,
+    /// The front node of each pair of neighbours that share their first unknown, in order: their first rows are parts of one
+    /// equation, which is their sum.
+    pub joints: Vec<usize>,
 }
 
 impl BlockTridiagonal {
     /// A zero matrix of `nodes` block rows.
     pub fn zeros(nodes: usize) -> Self {
         let z = vec![Block::zeros(); nodes];
-        BlockTridiagonal { lower: z.clone(), diagonal: z.clone(), upper: z, sums: Vec::new() }
+        BlockTridiagonal {
+            lower: z.clone(),
+            diagonal: z.clone(),
+            upper: z,
+            sums: Vec::new(),
+            joints: Vec::new(),
+        }
     }
     /// Number of block rows.
     pub fn nodes(&self) -> usize {
@@ -30,6 +40,12 @@ impl BlockTridiagonal {
     pub fn clear(&mut self) {
         for blocks in [&mut self.lower, &mut self.diagonal, &mut self.upper] {
             blocks.fill(Block::zeros());
+        }
+    }
+    /// Takes every row away, keeping the room for them.
+    pub(super) fn empty(&mut self) {
+        for blocks in [&mut self.lower, &mut self.diagonal, &mut self.upper, &mut self.sums] {
+            blocks.clear();
         }
     }
     /// `y = A x`: `[nodes]`.
@@ -52,6 +68,20 @@ impl BlockTridiagonal {
     /// Factors the matrix into `factors`, reusing its storage. Where densities span more decades than the exponent of a
     /// double holds, a second try scales each row to unit size.
     pub fn factor(&self, factors: &mut Factors) -> Result<(), Singular> {
+        if self.joints.is_empty() {
+            factors.joints = None;
+            return self.factor_chain(factors);
+        }
+        let mut joints: Box<Joints> = factors.joints.take().unwrap_or_default();
+        let result = joints.condense(self).and_then(|()| {
+            joints.matrix.factor_chain(factors).map_err(|s| Singular { node: joints.node(s.node) })
+        });
+        factors.joints = Some(joints);
+        result
+    }
+
+    /// [`BlockTridiagonal::factor`] of a chain without joints.
+    fn factor_chain(&self, factors: &mut Factors) -> Result<(), Singular> {
         factors.scales.clear();
         match factors.eliminate(self) {
             Ok(()) => Ok(()),

@@ -8,6 +8,7 @@
 use crate::math::Num;
 use crate::math::lanes::Pair;
 
+use super::joints::Joints;
 use super::{Block, BlockTridiagonal, Triple};
 
 /// A pivot block could not be inverted.
@@ -171,6 +172,8 @@ pub struct Factors {
     last: Matrix<f64>,
     /// Row scales applied before factoring; empty when none were needed.
     pub(super) scales: Vec<Triple>,
+    /// What was condensed before the chain was factored.
+    pub(super) joints: Option<Box<Joints>>,
 }
 
 /// A step and what it takes from the next node of its chain.
@@ -266,6 +269,29 @@ impl Factors {
 
     /// Solves `A x = b` in place: `[nodes]`.
     pub fn solve(&self, b: &mut [Triple]) {
+        match &self.joints {
+            None => self.solve_chain(b),
+            Some(joints) => {
+                let mut short = joints.shortened(b, false);
+                self.solve_chain(&mut short);
+                joints.lengthened(&short, b, false);
+            }
+        }
+    }
+
+    /// Solves the transposed system `A^T x = b` in place: `[nodes]`.
+    pub fn solve_transposed(&self, b: &mut [Triple]) {
+        match &self.joints {
+            None => self.solve_chain_transposed(b),
+            Some(joints) => {
+                let mut short = joints.shortened(b, true);
+                self.solve_chain_transposed(&mut short);
+                joints.lengthened(&short, b, true);
+            }
+        }
+    }
+
+    fn solve_chain(&self, b: &mut [Triple]) {
         for (value, scale) in b.iter_mut().zip(&self.scales) {
             value.component_mul_assign(scale);
         }
@@ -297,8 +323,7 @@ impl Factors {
         }
     }
 
-    /// Solves the transposed system `A^T x = b` in place: `[nodes]`.
-    pub fn solve_transposed(&self, b: &mut [Triple]) {
+    fn solve_chain_transposed(&self, b: &mut [Triple]) {
         let (twist, end) = (self.nodes / 2, self.nodes - 1);
         let mut carried = [Pair::constant(0.0); 3];
         for (front, step) in self.both.iter().enumerate() {

@@ -3,6 +3,7 @@
 pub mod assembled;
 pub mod block_tridiagonal;
 pub mod factors;
+mod joints;
 
 pub use block_tridiagonal::BlockTridiagonal;
 pub use factors::{Factors, Singular};

@@ -16,15 +16,33 @@ impl Problem {
     /// The equilibrium potential with flat levels at zero bias in the dark, from a start with the contacts' potentials at its
     /// ends; the start itself where none is found.
     pub(super) fn flat_levels(&mut self, start: State) -> State {
-        let mut psi: Vec<f64> = start.nodes.iter().map(|x| x[0]).collect();
+        let c = &self.coefficients;
+        // Where levels may jump two nodes share one potential: a chain of potentials, and which one each node has.
+        let width = |node: usize| c.cells[node].width;
+        let mut of_node = vec![0; start.nodes.len()];
+        for i in 1..of_node.len() {
+            of_node[i] = of_node[i - 1] + usize::from(width(i - 1) > 0.0);
+        }
+        let cells: Vec<f64> = c.cells.iter().filter(|x| x.width > 0.0).map(|x| x.displacement).collect();
+        let mut psi = vec![0.0; cells.len() + 1];
+        for (node, k) in start.nodes.iter().zip(&of_node) {
+            psi[*k] = node[0];
+        }
+        let (mut charges, mut nodes) = (vec![[0.0; 2]; psi.len()], vec![0.0; of_node.len()]);
         let last = psi.len() - 1;
         // Of each node: what elimination from the front leaves of its coupling and of its right side.
         let (mut coupling, mut right) = (vec![0.0; psi.len()], vec![0.0; psi.len()]);
         for _ in 0..MOST {
-            let charges = self.system.charges(&self.coefficients, &psi);
-            let cells = &self.coefficients.cells;
+            charges.fill([0.0; 2]);
+            for (node, k) in nodes.iter_mut().zip(&of_node) {
+                *node = psi[*k];
+            }
+            for ([charge, slope], k) in self.system.charges(&self.coefficients, &nodes).iter().zip(&of_node) {
+                charges[*k][0] += charge;
+                charges[*k][1] += slope;
+            }
             for i in 1..last {
-                let (before, after) = (cells[i - 1].displacement, cells[i].displacement);
+                let (before, after) = (cells[i - 1], cells[i]);
                 let [charge, slope] = charges[i];
                 let residual = after * (psi[i + 1] - psi[i]) - before * (psi[i] - psi[i - 1]) + charge;
                 let pivot = 1.0 / (before * (1.0 - coupling[i - 1]) + after - slope);
@@ -42,8 +60,8 @@ impl Problem {
             }
             if largest <= NEAR {
                 let mut state = start;
-                for (node, psi) in state.nodes.iter_mut().zip(&psi) {
-                    node[0] = *psi;
+                for (node, k) in state.nodes.iter_mut().zip(&of_node) {
+                    node[0] = psi[*k];
                 }
                 return state;
             }

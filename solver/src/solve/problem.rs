@@ -153,9 +153,14 @@ impl Problem {
                 _ => neutral_potential(c.statistics, entry),
             };
             known = Some((layer, entry.doping, potential));
-            // At an interface: midway between the two sides.
-            nodes[i][0] =
-                if layer > 0 && e == c.first[layer] { 0.5 * (nodes[i][0] + potential) } else { potential };
+            // At an interface: midway between the two sides, of which each has a node where levels may jump.
+            if layer > 0 && e == c.first[layer] {
+                let front = if c.is_joint(layer - 1) { i - 1 } else { i };
+                nodes[front][0] = 0.5 * (nodes[front][0] + potential);
+                nodes[i][0] = nodes[front][0];
+            } else {
+                nodes[i][0] = potential;
+            }
         }
         nodes[0][0] = c.contacts[0].potential;
         let last = nodes.len() - 1;

@@ -52,9 +52,9 @@ super::rows! {
         "A graded profile needs positive values where it is exponential; a table needs two points or more, its \
          depths or wavelengths increasing.",
         "acceptors(graded(\"exponential\", 1e18.per_cm3, 1e16.per_cm3))";
-    VELOCITY = "E224", "a recombination velocity that cannot be",
+    VELOCITY = "E224", "a velocity that cannot be",
         "A recombination velocity is zero or more. Without one, an ohmic contact recombines without limit and an \
-         interface not at all.",
+         interface not at all. An emission velocity is above zero; without one it is that of the effective masses.",
         "ohmic(#{ recombination_velocity: 1e6.cm_per_s })";
     LIGHT = "E225", "a light that cannot be",
         "Concentration, photon flux and wavelength are positive and finite; light without any photons is `dark()`.",
@@ -74,10 +74,6 @@ super::rows! {
         "The relative accuracy asked for is above zero and at most 0.01; very small values cost many nodes and are \
          refused below what rounding allows.",
         "cell.accuracy = 1e-6;";
-    NO_OPTICAL_DATA = "E230", "light on a material without optical data",
-        "No absorption of this material was found that could be cited, and none is made up: light whose photons pass its gap \
-         cannot be followed through the layer. Give `absorption` or `optical_constants`, or take the layer out of the optics.",
-        "layer(\"window\", material(\"AlAs\"), 30.nm, donors(2e18.per_cm3), #{ optics: \"inert\" })";
     BARRIER = "E236", "a contact's barrier that cannot be",
         "A Schottky contact has one barrier, told as that of electrons, that of holes, or by the metal's work function; \
          a contact must pass one carrier at least.",
@@ -85,6 +81,10 @@ super::rows! {
     DIODE = "E237", "a second diode that cannot be",
         "A diode across the junction has a saturation current density of zero or more and an ideality factor from 0.1 to 100.",
         "cell.second_diode = second_diode(#{ saturation_current_density: 1e-9.mA_per_cm2, ideality: 2 });";
+    OPTIONS_CONTRADICT = "E238", "options that contradict each other",
+        "Two options say different things about one and the same, or the same thing twice. Give the one that is \
+         known; what follows from it is worked out.",
+        "interface(#{ transport: \"thermionic\", valence_offset: 0.3.eV })";
     STACK = "E240", "a stack that cannot be solved as described",
         "Something else about the stack contradicts itself; the message says what, where, and the range allowed.",
         "epiloom check cell.rhai        // lists all faults at once, solving nothing";

@@ -3,7 +3,6 @@
 mod attacks;
 mod devices;
 mod files;
-mod material_models;
 mod numbers;
 mod pictures;
 mod plans;

@@ -2,8 +2,8 @@
 
 use std::sync::Arc;
 
-use epiloom_solver::device::{Interface, Layer, LayerOptics};
-use epiloom_solver::materials::{Choice, Parameter};
+use epiloom_solver::device::{Interface, Layer, LayerOptics, Offset, Transport};
+use epiloom_solver::materials::Parameter;
 use rhai::Dynamic;
 
 use crate::diagnostics::codes;
@@ -42,11 +42,20 @@ topic! {
     Function "interface" {
         forms: ["interface(#{ options })"],
         doc: "What happens between two layers beyond continuity: it stands between them in the stack. Recombination per area \
-              X / ((n + n1)/S_p + (p + p1)/S_n), with the densities and n1 = p1 = ni of the side of smaller gap.",
+              X / ((n + n1)/S_p + (p + p1)/S_n), with the densities and n1 = p1 = ni of the side of smaller gap. By thermionic emission \
+              each carrier leaves the side of its higher band edge, h, with v n_h (1 - exp(-(E_F,h - E_F,o)/kT)): levels may jump, and what \
+              the jump costs stands in the ledger under both layers' names. A band offset given here moves the affinity of the layer behind \
+              and of all layers after it by as much, so that the steps of other interfaces stay.",
         options: &[
             OptionRow { key: "recombination_velocity", takes: "a velocity", doc: "Recombination velocity of both carriers." },
             OptionRow { key: "electron_recombination_velocity", takes: "a velocity", doc: "Recombination velocity S_n of electrons, if it differs." },
             OptionRow { key: "hole_recombination_velocity", takes: "a velocity", doc: "Recombination velocity S_p of holes, if it differs." },
+            OptionRow { key: "transport", takes: "a text: \"continuous\" or \"thermionic\"", doc: "How carriers cross: with continuous quasi-Fermi levels (the default) or by thermionic emission over the step of the bands." },
+            OptionRow { key: "electron_emission_velocity", takes: "a velocity", doc: "Emission velocity v of electrons. Unless given it is A* T^2/(q Nc), A* of the smaller of the two sides' masses, Nc of the barrier's side." },
+            OptionRow { key: "hole_emission_velocity", takes: "a velocity", doc: "Emission velocity v of holes, unless A* T^2/(q Nv)." },
+            OptionRow { key: "conduction_offset", takes: "an energy", doc: "Rise of the conduction-band edge on the way to the rear (negative: it falls), instead of by the affinities. The valence band follows by the gaps." },
+            OptionRow { key: "valence_offset", takes: "an energy", doc: "Rise of the valence-band edge on the way to the rear, instead of `conduction_offset`." },
+            OptionRow { key: "offset_ratio", takes: "a number", doc: "Share of the difference of the two gaps that lies in the conduction band, instead of `conduction_offset`." },
         ],
         example: "let between = interface(#{ recombination_velocity: 1e4.cm_per_s });",
         register: |engine, session| {
@@ -135,10 +144,6 @@ topic! {
                 if key == "optical_constants" {
                     return Ok(layer.material.optical.clone().map_or(Dynamic::UNIT, |own| Dynamic::from(ConstantsValue(own))));
                 }
-                if let Some(choice) = Choice::from_key(&key) {
-                    let word = layer.material.choices.get(&choice).copied();
-                    return Ok(word.map_or(Dynamic::UNIT, Dynamic::from));
-                }
                 match Parameter::from_key(&key) {
                     Some(parameter) => Ok(layer.material.overrides.get(&parameter).cloned().map_or(Dynamic::UNIT, give)),
                     None => Err(no_property(&key).into()),
@@ -161,12 +166,6 @@ topic! {
                     let given: ConstantsValue =
                         take(arguments[2], "`optical_constants`", "`optical_constants(\"file.csv\")`").map_err(here)?;
                     return change(call, arguments[0], |layer| layer.material.optical = Some(given.0));
-                }
-                if let Some(choice) = Choice::from_key(&key) {
-                    let word = materials::choice_word(choice, arguments[2]).map_err(here)?;
-                    return change(call, arguments[0], |layer| {
-                        layer.material.choices.insert(choice, word);
-                    });
                 }
                 let parameter = Parameter::from_key(&key).ok_or_else(|| no_property(&key))?;
                 let given = materials::parameter_value(parameter, arguments[2], &of_layer).map_err(here)?;
@@ -282,9 +281,7 @@ fn option(layer: &mut Layer<Quantity>, key: &str, value: &Dynamic) -> Result<(),
             layer.material.optical = Some(constants.0);
         }
         _ => {
-            if let Some(choice) = Choice::from_key(key) {
-                layer.material.choices.insert(choice, materials::choice_word(choice, value)?);
-            } else if let Some(parameter) = Parameter::from_key(key) {
+            if let Some(parameter) = Parameter::from_key(key) {
                 layer
                     .material
                     .overrides
@@ -328,7 +325,17 @@ fn thickness(value: &Dynamic, layer: &str, place: Place) -> Result<Quantity, Fau
 }
 
 fn interface(call: &Call, arguments: &mut [&mut Dynamic]) -> Answer {
-    let keys = ["recombination_velocity", "electron_recombination_velocity", "hole_recombination_velocity"];
+    let keys = [
+        "recombination_velocity",
+        "electron_recombination_velocity",
+        "hole_recombination_velocity",
+        "transport",
+        "electron_emission_velocity",
+        "hole_emission_velocity",
+        "conduction_offset",
+        "valence_offset",
+        "offset_ratio",
+    ];
     let options = Options::new(arguments[0], "`interface`", keys).map_err(Faults)?;
     let both = velocity(&options, keys[0], false)?;
     let one = |key: &str| -> Result<Quantity, Fault> {
@@ -338,8 +345,81 @@ fn interface(call: &Call, arguments: &mut [&mut Dynamic]) -> Answer {
     let interface = Interface {
         electron_recombination_velocity: one(keys[1])?,
         hole_recombination_velocity: one(keys[2])?,
+        transport: transport(&options)?,
+        offset: offset(&options)?,
     };
     Ok(Dynamic::from(InterfaceValue { interface, place: call.line_and_column() }))
+}
+
+/// How carriers cross an interface.
+fn transport(options: &Options) -> Result<Transport<Quantity>, Fault> {
+    let velocities = ["electron_emission_velocity", "hole_emission_velocity"];
+    let given = match options.get("transport") {
+        None => None,
+        Some(value) => {
+            let at = |fault: Fault| fault.at(Place::Option("transport".to_string()));
+            match text(value, "`transport`").map_err(at)?.as_str() {
+                "continuous" => Some(false),
+                "thermionic" => Some(true),
+                other => {
+                    return Err(at(Fault::new(
+                        codes::WRONG_CHOICE,
+                        format!("`transport` cannot be \"{other}\""),
+                    )
+                    .candidates(other, ["continuous", "thermionic"])));
+                }
+            }
+        }
+    };
+    let named = velocities.into_iter().find(|key| options.get(key).is_some());
+    match (given, named) {
+        (Some(false), Some(key)) => Err(Fault::new(
+            codes::OPTIONS_CONTRADICT,
+            format!("`{key}` says how carriers are emitted, and `transport` says that they are not"),
+        )
+        .help("leave out `transport`, or make it \"thermionic\"")
+        .at(Place::Option(key.to_string()))),
+        (Some(false), None) | (None, None) => Ok(Transport::Continuous),
+        _ => Ok(Transport::Thermionic {
+            electron_velocity: emission_velocity(options, velocities[0])?,
+            hole_velocity: emission_velocity(options, velocities[1])?,
+        }),
+    }
+}
+
+/// An emission velocity above zero.
+fn emission_velocity(options: &Options, key: &str) -> Result<Option<Quantity>, Fault> {
+    let Some(given) = options.quantity(key, &format!("`{key}`"), Dimension::VELOCITY)? else {
+        return Ok(None);
+    };
+    if given.value > 0.0 || given.unknown {
+        return Ok(Some(given));
+    }
+    Err(Fault::new(codes::VELOCITY, format!("`{key}` must be above zero"))
+        .label(format!("this is {given}"))
+        .at(Place::Option(key.to_string())))
+}
+
+/// How the bands line up, if that is said.
+fn offset(options: &Options) -> Result<Option<Offset<Quantity>>, Fault> {
+    let keys = ["conduction_offset", "valence_offset", "offset_ratio"];
+    let given: Vec<&str> = keys.into_iter().filter(|key| options.get(key).is_some()).collect();
+    if let [first, second, ..] = given[..] {
+        return Err(Fault::new(
+            codes::OPTIONS_CONTRADICT,
+            format!("`{first}` and `{second}` both say how the bands line up"),
+        )
+        .help("give one: the other band follows, since the gaps are those of the materials")
+        .at(Place::Option(second.to_string())));
+    }
+    let Some(&key) = given.first() else { return Ok(None) };
+    let dimension = if key == keys[2] { Dimension::NONE } else { Dimension::ENERGY };
+    let value = options.quantity(key, &format!("`{key}`"), dimension)?;
+    Ok(value.map(match key {
+        "conduction_offset" => Offset::Conduction,
+        "valence_offset" => Offset::Valence,
+        _ => Offset::Share,
+    }))
 }
 
 /// A recombination velocity of zero or more; infinite only where that is said by leaving it out.
