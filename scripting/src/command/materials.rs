@@ -99,6 +99,25 @@ fn page(listing: &Listing, width: usize) -> String {
         "\nband edges above those of GaAs  valence {valence} eV, conduction {conduction} eV\n"
     ));
     text.push_str(&wrapped(&source(&listing.offset), width, 4));
+    if let Some(coefficient) = listing.radiative_by_absorption {
+        let (number, unit) = in_trade_unit(coefficient, Kind::RadiativeCoefficient);
+        let (number, unit) = (significant(number, 4), unit_symbol(unit));
+        text.push_str(&format!(
+            "\nradiative_coefficient with radiative_model: \"absorption\"  {number} {unit}\n{}",
+            wrapped("detailed balance: W. van Roosbroeck and W. Shockley, Phys. Rev. 94, 1558 (1954), with the absorption below", width, 4)
+        ));
+    }
+    if let Some(coefficients) = &listing.narrowing {
+        text.push_str("\ngap narrowing, off unless gap_narrowing: \"jain\"\n");
+        for (word, roots) in ["donors", "acceptors"].iter().zip(coefficients) {
+            let [cube, fourth, square] = roots.map(|e| significant(e * 1e3, 4));
+            let law = format!(
+                "{cube} r^(1/3) + {fourth} r^(1/4) + {square} r^(1/2) meV, r the net doping over 1e18 cm^-3"
+            );
+            text.push_str(&wrapped(&format!("{word}: {law}"), width, 4));
+        }
+        text.push_str(&wrapped(listing.narrowing_source, width, 4));
+    }
     text.push_str(&format!("\nabsorption\n{}", wrapped(listing.absorption, width, 4)));
     text
 }
@@ -126,5 +145,6 @@ fn in_trade_unit(value: f64, kind: Kind) -> (f64, &'static str) {
         Kind::InverseLength => (value / 100.0, "per_cm"),
         Kind::Temperature => (value, "K"),
         Kind::EnergyPerTemperature => (value / ELEMENTARY_CHARGE, "eV_per_K"),
+        Kind::ArealDensity => (value / 1e4, "per_cm2"),
     }
 }

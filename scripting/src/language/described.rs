@@ -3,7 +3,7 @@
 use epiloom_solver::device::{
     Barrier, Contact, Device, Interface, LayerOptics, Offset, Profile, Stack, Transport,
 };
-use epiloom_solver::materials::Parameter;
+use epiloom_solver::materials::{Dopants, Kind, Parameter};
 use epiloom_solver::optics::Reflectance;
 
 use crate::archive::{Condition, Layer, MaterialValue, Value};
@@ -101,6 +101,8 @@ fn layer(layer: &epiloom_solver::device::Layer<Quantity>) -> Layer {
         .iter()
         .map(|(parameter, given)| Condition::new(parameter.key(), value(given)))
         .collect();
+    let chosen = layer.material.choices.iter();
+    settings.extend(chosen.map(|(choice, word)| Condition::new(choice.key(), Value::text(*word))));
     if layer.optics == LayerOptics::Inert {
         settings.push(Condition::new("optics", Value::text(optics_word(layer.optics))));
     }
@@ -189,8 +191,11 @@ pub fn materials(device: &Device) -> Vec<MaterialValue> {
     let mut list = Vec::new();
     for layer in &stack.layers {
         let x = layer.composition.as_ref().map(|c| c.at(0.0, layer.thickness));
-        let doping = layer.donors.at(0.0, layer.thickness) + layer.acceptors.at(0.0, layer.thickness);
-        let Ok(values) = layer.material.values(x, stack.temperature, doping) else { continue };
+        let dopants = Dopants {
+            donors: layer.donors.at(0.0, layer.thickness),
+            acceptors: layer.acceptors.at(0.0, layer.thickness),
+        };
+        let Ok(values) = layer.material.local_values(x, stack.temperature, dopants) else { continue };
         let row = |parameter: &str, value: Value, source: String, note: String| MaterialValue {
             layer: layer.name.clone(),
             material: layer.material.name().to_string(),
@@ -199,7 +204,7 @@ pub fn materials(device: &Device) -> Vec<MaterialValue> {
             source,
             note,
         };
-        let provenance = layer.material.provenance();
+        let provenance = layer.material.provenance(x);
         for parameter in Parameter::ALL {
             let Some(number) = values.get(*parameter) else { continue };
             let quantity = Quantity::si(number, parameter_dimension(parameter.kind()));
@@ -210,6 +215,12 @@ pub fn materials(device: &Device) -> Vec<MaterialValue> {
                 format!("{}; {} K to {} K", p.origin.word(), p.temperature.0, p.temperature.1)
             });
             list.push(row(parameter.key(), value(&quantity), source, note));
+        }
+        if let Some((origin, source)) = layer.material.narrowing_source() {
+            let narrowing =
+                Quantity::si(layer.material.gap_narrowing(dopants), parameter_dimension(Kind::Energy));
+            let note = format!("{}; of the gap above", origin.word());
+            list.push(row("gap_narrowing", value(&narrowing), source.to_string(), note));
         }
         let (_, origin, source) = layer.material.absorption_basis(x);
         list.push(row("absorption", Value::text("spectrum"), source, origin.word().to_string()));

@@ -57,6 +57,7 @@ pub fn material<P, R>(material: &Material<P>, f: &impl Fn(&P) -> R) -> Material<
         composition: material.composition.as_ref().map(f),
         overrides: material.overrides.iter().map(|(key, value)| (*key, f(value))).collect(),
         optical: material.optical.clone(),
+        choices: material.choices.clone(),
     }
 }
 

@@ -2,6 +2,7 @@
 
 use epiloom_solver::analysis::AnalysisError;
 use epiloom_solver::device::{Fault as DeviceFault, Place as DevicePlace};
+use epiloom_solver::optics::OpticsError;
 
 use crate::diagnostics::{Code, codes};
 
@@ -30,6 +31,10 @@ pub fn analysis_fault(error: &AnalysisError) -> Fault {
         }
         AnalysisError::Stopped => {
             Fault::new(codes::INTERRUPTED, "the run was interrupted").label("stopped here, while solving")
+        }
+        AnalysisError::Optics(OpticsError::NoOpticalData { .. }) => {
+            Fault::new(codes::NO_OPTICAL_DATA, error.to_string())
+                .help("give the layer `absorption` or `optical_constants`, or take it out of the optics: optics: \"inert\"")
         }
         AnalysisError::BadRequest { .. } => Fault::new(codes::VOLTAGES, error.to_string()),
         other => Fault::new(codes::STACK, other.to_string()),

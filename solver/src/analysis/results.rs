@@ -26,6 +26,7 @@ impl Warning {
             Of::Offset { .. } => "W204",
             Of::BetweenTables { .. } => "W205",
             Of::ModelAbsorption { .. } => "W206",
+            Of::NarrowingWithBoltzmann { .. } => "W207",
         };
         Warning { code, message: warning.to_string() }
     }

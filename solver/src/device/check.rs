@@ -2,7 +2,7 @@
 
 use std::collections::BTreeSet;
 
-use crate::materials::{Material, OpticalConstants, TEMPERATURE_LIMITS};
+use crate::materials::{Dopants, Material, MaterialError, OpticalConstants, TEMPERATURE_LIMITS};
 use crate::math::Scalar;
 use crate::optics::Reflectance;
 use crate::quantity::constants::{BOLTZMANN, ELEMENTARY_CHARGE};
@@ -185,9 +185,12 @@ impl Checker {
                 }
                 Err(error) => {
                     self.faults.push(wrap(error));
-                    break;
+                    return;
                 }
             }
+        }
+        if layer.material.narrows() {
+            self.faults.extend(narrowed_away(layer, temperature).map(wrap));
         }
     }
 
@@ -344,6 +347,30 @@ impl<P: Scalar> Stack<P> {
         check.range(&stack, "accuracy", self.accuracy, ACCURACY_LIMITS, "");
         check.faults
     }
+}
+
+/// What is wrong with the narrowing of a layer's gap: no coefficients for a graded alloy, or no gap left at the heaviest net
+/// doping of either sign at an end of the composition.
+fn narrowed_away<P: Scalar>(layer: &Layer<P>, temperature: P) -> Option<MaterialError> {
+    if layer.composition.is_some() && layer.material.narrows_by_library() {
+        return Some(MaterialError::NoNarrowing { material: layer.material.name().to_string() });
+    }
+    let compositions = match &layer.composition {
+        Some(profile) => vec![Some(profile.extremes().0), Some(profile.extremes().1)],
+        None => vec![None],
+    };
+    let (donors, acceptors) = (layer.donors.extremes(), layer.acceptors.extremes());
+    let sound = |(low, high): (f64, f64)| low >= 0.0 && high <= HIGHEST_DOPING;
+    if !sound(donors) || !sound(acceptors) {
+        return None;
+    }
+    let heaviest = [(donors.1, acceptors.0), (donors.0, acceptors.1)];
+    compositions.into_iter().flat_map(|x| heaviest.map(|pair| (x, pair))).find_map(
+        |(x, (donors, acceptors))| {
+            let dopants = Dopants { donors: P::constant(donors), acceptors: P::constant(acceptors) };
+            layer.material.local_values(x.map(P::constant), temperature, dopants).err()
+        },
+    )
 }
 
 /// Whether two layers are made of one substance, so that no band offset lies between them.

@@ -3,8 +3,10 @@
 use std::sync::Arc;
 use std::sync::atomic::{AtomicBool, Ordering};
 
-use crate::materials::{AbsorptionBasis, MaterialBase, Origin, Parameter};
+use crate::materials::{AbsorptionBasis, Dopants, MaterialBase, Origin, Parameter};
 use crate::math::Scalar;
+use crate::physics::Statistics;
+use crate::quantity::constants::ELEMENTARY_CHARGE;
 
 use super::check::same_substance;
 use super::fault::{Fault, Warning};
@@ -73,7 +75,8 @@ impl<P: Scalar> Device<P> {
         let temperature = self.stack.temperature.value();
         let mut outside: Vec<(&str, Vec<(&'static str, f64, f64)>)> = Vec::new();
         for layer in &self.stack.layers {
-            for p in layer.material.provenance() {
+            let x = layer.composition.as_ref().map(|c| c.at(P::constant(0.0), layer.thickness));
+            for p in layer.material.provenance(x) {
                 let (low, high) = p.temperature;
                 if temperature >= low && temperature <= high {
                     continue;
@@ -94,9 +97,9 @@ impl<P: Scalar> Device<P> {
 
     fn layer_warnings(&self, layer: &Layer<P>, warnings: &mut Vec<Warning>) {
         let material = layer.material.name().to_string();
-        let provenance = layer.material.provenance();
-        let lifetime = |p: &Parameter| matches!(p, Parameter::ElectronLifetime | Parameter::HoleLifetime);
         let x = layer.composition.as_ref().map(|c| c.at(P::constant(0.0), layer.thickness));
+        let provenance = layer.material.provenance(x);
+        let lifetime = |p: &Parameter| matches!(p, Parameter::ElectronLifetime | Parameter::HoleLifetime);
         if provenance.iter().any(|p| lifetime(&p.parameter) && p.origin == Origin::Illustrative)
             && let Ok(values) = layer.material.values(x, self.stack.temperature, P::constant(0.0))
         {
@@ -124,6 +127,17 @@ impl<P: Scalar> Device<P> {
                 _ => {}
             }
         }
+        if self.stack.statistics == Statistics::Boltzmann && layer.material.narrows() {
+            let (donors, acceptors) = (layer.donors.extremes(), layer.acceptors.extremes());
+            let heaviest = [(donors.1, acceptors.0), (donors.0, acceptors.1)].map(|(donors, acceptors)| {
+                let dopants = Dopants { donors: P::constant(donors), acceptors: P::constant(acceptors) };
+                layer.material.gap_narrowing(dopants).value()
+            });
+            warnings.push(Warning::NarrowingWithBoltzmann {
+                layer: layer.name.clone(),
+                narrowing: heaviest[0].max(heaviest[1]) / ELEMENTARY_CHARGE * 1e3,
+            });
+        }
         for p in &provenance {
             let worth_saying = matches!(p.parameter, Parameter::ElectronMobility | Parameter::HoleMobility);
             if p.origin == Origin::Illustrative && worth_saying {
@@ -145,8 +159,9 @@ fn offset_warnings<P: Scalar>(front: &Layer<P>, rear: &Layer<P>, warnings: &mut 
     }
     for layer in [front, rear] {
         let library = matches!(layer.material.base, MaterialBase::Library(_));
+        let x = layer.composition.as_ref().map(|c| c.at(P::constant(0.0), layer.thickness));
         let of_affinity =
-            layer.material.provenance().into_iter().find(|p| p.parameter == Parameter::Affinity);
+            layer.material.provenance(x).into_iter().find(|p| p.parameter == Parameter::Affinity);
         if let Some(p) = of_affinity
             && library
             && layer.material.name() != "GaAs"

@@ -232,6 +232,17 @@ pub enum Warning {
         /// The model.
         source_text: String,
     },
+    /// The shrinkage of the gap itself, used with statistics that know no filling of bands.
+    #[error(
+        "layer `{layer}`: gap narrowing of {narrowing:.1} meV with Boltzmann statistics counts too much: the narrowing is that of the gap \
+         itself, and what the filling of the band takes back of it is known to Fermi-Dirac statistics alone"
+    )]
+    NarrowingWithBoltzmann {
+        /// The layer.
+        layer: String,
+        /// The largest narrowing in it, meV.
+        narrowing: f64,
+    },
 }
 
 /// Parameters grouped by the range that their sources cover: "`nc`, `nv` 200 to 500 K; ...".

@@ -1,6 +1,6 @@
 //! A device's material values at a place.
 
-use crate::materials::Values;
+use crate::materials::{Dopants, Values};
 use crate::math::Scalar;
 
 use super::device::Device;
@@ -13,8 +13,11 @@ impl<P: Scalar> Device<P> {
     pub fn values(&self, layer: usize, depth: P) -> Values<P> {
         let layer = &self.stack().layers[layer];
         let x = layer.composition.as_ref().map(|c| c.at(depth, layer.thickness));
-        let doping = layer.donors.at(depth, layer.thickness) + layer.acceptors.at(depth, layer.thickness);
-        layer.material.values(x, self.stack().temperature, doping).unwrap_or_else(|_| {
+        let dopants = Dopants {
+            donors: layer.donors.at(depth, layer.thickness),
+            acceptors: layer.acceptors.at(depth, layer.thickness),
+        };
+        layer.material.local_values(x, self.stack().temperature, dopants).unwrap_or_else(|_| {
             let nan = P::constant(f64::NAN);
             Values {
                 gap: nan,

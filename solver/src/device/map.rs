@@ -35,6 +35,7 @@ fn layer<P: Copy, Q>(layer: &Layer<P>, to: impl Fn(P) -> Q + Copy) -> Layer<Q> {
             composition: material.composition.map(to),
             overrides: material.overrides.iter().map(|(parameter, value)| (*parameter, to(*value))).collect(),
             optical: material.optical.clone(),
+            choices: material.choices.clone(),
         },
         thickness: to(layer.thickness),
         donors: layer.donors.map(to),

@@ -45,6 +45,15 @@ pub(crate) enum Valley {
         /// Bowing, eV.
         bowing: f64,
     },
+    /// An alloy of variable x: `x at_one + (1 - x) at_zero - bowing x (1 - x)` at every temperature.
+    Bowed {
+        /// The compound at x = 0.
+        at_zero: &'static Valley,
+        /// The compound at x = 1.
+        at_one: &'static Valley,
+        /// Bowing, eV.
+        bowing: f64,
+    },
     /// An alloy of variable x: `at_zero(T) + c1 x + c2 x^2 + x (change of `at_one` from 300 K - change of `at_zero`)`.
     Graded {
         /// Value at 300 K and x = 0, eV; `None` takes it from `at_zero`.
@@ -71,6 +80,10 @@ impl Valley {
             Valley::Alloy { share, first, second, bowing } => {
                 first.energy(x, temperature) * share + second.energy(x, temperature) * (1.0 - share)
                     - bowing * share * (1.0 - share)
+            }
+            Valley::Bowed { at_zero, at_one, bowing } => {
+                let (zero, one) = (at_zero.energy(x, temperature), at_one.energy(x, temperature));
+                zero + (one - zero) * x - x * (-x + 1.0) * bowing
             }
             Valley::Graded { room, coefficients: [linear, square], at_zero, at_one } => {
                 let at = P::constant(ROOM);
@@ -133,6 +146,8 @@ pub(crate) enum Mobility {
         /// Reference doping, cm^-3.
         reference: f64,
     },
+    /// Between mobilities at given x, increasing: the logarithm is linear in x, and constant beyond the ends.
+    Between(&'static [(f64, &'static Mobility)]),
     /// Another mobility times the larger of quadratic polynomials in x.
     Scaled {
         /// The mobility at x = 0.
@@ -157,6 +172,16 @@ impl Mobility {
                 let ratio = doping * (0.88 * 1e-6 / reference) * t.powf(-2.4 - 0.146);
                 let low = t.powf(least.1) * least.0;
                 (low + t.powf(lattice.1) * lattice.0 * (ratio + 1.0).recip()) * 1e-4
+            }
+            Mobility::Between(anchors) => {
+                let (zero, one) = (P::constant(0.0), P::constant(1.0));
+                let ln = |anchor: &(f64, &Mobility)| anchor.1.at(x, temperature, doping).ln();
+                let start = anchors.first().map_or(zero, ln);
+                let rises = anchors.windows(2).map(|pair| {
+                    let share = ((x - pair[0].0) * (1.0 / (pair[1].0 - pair[0].0))).max(zero).min(one);
+                    (ln(&pair[1]) - ln(&pair[0])) * share
+                });
+                rises.fold(start, |sum, rise| sum + rise).exp()
             }
             Mobility::Scaled { base, factors } => {
                 let factor = factors

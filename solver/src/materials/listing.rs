@@ -3,8 +3,9 @@
 use crate::math::Scalar;
 use crate::quantity::constants::ELEMENTARY_CHARGE;
 
+use super::choice::Choice;
 use super::library::{ALL, find, gaas::GAAS};
-use super::material::{Material, MaterialBase, MaterialError, Values};
+use super::material::{Material, MaterialError, Values};
 use super::parameter::Parameter;
 use super::record::{LIFETIME_SOURCE, Origin, Record, Sourced};
 
@@ -42,6 +43,13 @@ pub struct Listing {
     pub conduction_offset: f64,
     /// Source of the offsets.
     pub offset: Provenance,
+    /// Radiative coefficient that detailed balance gives from the absorption, m^3/s; `None` without optical data.
+    pub radiative_by_absorption: Option<f64>,
+    /// Coefficients of the narrowing of the gap, eV at a net doping of 1e18 cm^-3 (cube, fourth and square root), for donors
+    /// and for acceptors; `None` where the library has none.
+    pub narrowing: Option<[[f64; 3]; 2]>,
+    /// Their source.
+    pub narrowing_source: &'static str,
     /// Where the absorption comes from.
     pub absorption: &'static str,
 }
@@ -112,9 +120,15 @@ impl Record {
 /// # Errors
 /// An unknown name, or a composition out of range.
 pub fn listing(name: &str, x: Option<f64>) -> Result<Listing, MaterialError> {
-    let record = find(name).ok_or_else(|| MaterialError::Unknown { name: name.to_string() })?;
+    let unknown = || MaterialError::Unknown { name: name.to_string() };
+    of_record(find(name, x.is_some()).ok_or_else(unknown)?, x)
+}
+
+fn of_record(record: &Record, x: Option<f64>) -> Result<Listing, MaterialError> {
     let at = record.composition.map(|(low, high)| x.unwrap_or(low + 0.3 * (high - low))).or(x);
-    let values = Material::library(name, at).values(None, LISTED_AT, 0.0)?;
+    let values = Material::library(record.name, at).values(None, LISTED_AT, 0.0)?;
+    let radiative_by_absorption =
+        Material::library(record.name, at).radiative_by_absorption(None, LISTED_AT, &values).ok();
     let rows = Parameter::ALL.iter().filter_map(|&p| Some((values.get(p)?, record.provenance(p)?))).collect();
     let valence_offset = record.valence_edge(at.unwrap_or(0.0), LISTED_AT) * ELEMENTARY_CHARGE;
     let gaas = GAAS.bands(0.0, LISTED_AT).gap * ELEMENTARY_CHARGE;
@@ -133,22 +147,22 @@ pub fn listing(name: &str, x: Option<f64>) -> Result<Listing, MaterialError> {
             origin: record.ladder.origin,
             source: record.ladder.source,
         },
+        radiative_by_absorption,
+        narrowing: record.composition.is_none().then(|| super::narrowing::listed(record.name)).flatten(),
+        narrowing_source: super::narrowing::SOURCE,
         absorption: record.optics.source(),
     })
 }
 
 /// The listings of every material of the library, alloys at 0.3 of their range.
 pub fn library() -> Vec<Listing> {
-    ALL.iter().filter_map(|record| listing(record.name, None).ok()).collect()
+    ALL.iter().filter_map(|record| of_record(record, None).ok()).collect()
 }
 
 impl<P: Scalar> Material<P> {
-    /// Where each of the material's values comes from, in the order of the parameter table.
-    pub fn provenance(&self) -> Vec<Provenance> {
-        let record = match &self.base {
-            MaterialBase::Library(name) => find(name),
-            MaterialBase::Custom(_) => None,
-        };
+    /// Where each of the material's values comes from, in the order of the parameter table; `x` as for [`Material::values`].
+    pub fn provenance(&self, x: Option<P>) -> Vec<Provenance> {
+        let record = self.record_for(x);
         let of = |parameter: &Parameter| {
             if self.overrides.contains_key(parameter) || self.follows_from_script(*parameter) {
                 let everywhere = super::TEMPERATURE_LIMITS;
@@ -158,6 +172,15 @@ impl<P: Scalar> Material<P> {
                     temperature: everywhere,
                     origin: Origin::Script,
                     source,
+                });
+            }
+            let by_absorption = self.choices.get(&Choice::Radiative) == Some(&"absorption");
+            if *parameter == Parameter::RadiativeCoefficient && by_absorption {
+                return Some(Provenance {
+                    parameter: *parameter,
+                    temperature: super::TEMPERATURE_LIMITS,
+                    origin: self.absorption_basis(x).1,
+                    source: "detailed balance with the absorption (W. van Roosbroeck and W. Shockley, Phys. Rev. 94, 1558 (1954))",
                 });
             }
             record.and_then(|r| r.provenance(*parameter))

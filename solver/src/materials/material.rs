@@ -5,6 +5,7 @@ use std::sync::Arc;
 
 use crate::math::Scalar;
 
+use super::choice::Choice;
 use super::optical::OpticalConstants;
 use super::parameter::Parameter;
 
@@ -28,6 +29,17 @@ pub struct Material<P = f64> {
     pub overrides: BTreeMap<Parameter, P>,
     /// The script's own table of optical constants, used as it stands at every temperature instead of the library's.
     pub optical: Option<Arc<OpticalConstants>>,
+    /// Models chosen by the script, each by one of its words; what is not there is at its default.
+    pub choices: BTreeMap<Choice, &'static str>,
+}
+
+/// Dopants at one place, m^-3.
+#[derive(Clone, Copy, Debug)]
+pub struct Dopants<P> {
+    /// Donors.
+    pub donors: P,
+    /// Acceptors.
+    pub acceptors: P,
 }
 
 /// All electronic values of a material at one place, SI units (energies in J).
@@ -143,6 +155,30 @@ pub enum MaterialError {
         /// Highest value allowed.
         high: f64,
     },
+    /// Radiative recombination by detailed balance without a spectrum of refractive index and absorption.
+    #[error("radiative recombination of `{material}` by its absorption needs its optical constants")]
+    NoEmission {
+        /// The material.
+        material: String,
+    },
+    /// No coefficients of gap narrowing for a material.
+    #[error("the library has no coefficients of gap narrowing for `{material}`")]
+    NoNarrowing {
+        /// The material.
+        material: String,
+    },
+    /// Narrowing takes more than the gap.
+    #[error(
+        "gap narrowing of {narrowing:e} J at a net doping of {doping:e} m^-3 leaves no gap of `{material}`"
+    )]
+    NarrowedAway {
+        /// The material.
+        material: String,
+        /// The narrowing, J.
+        narrowing: f64,
+        /// Net doping, m^-3.
+        doping: f64,
+    },
     /// The trap level was given twice.
     #[error(
         "material `{material}`: give one of trap_energy, trap_below_conduction_band, trap_above_valence_band"
@@ -170,6 +206,7 @@ impl<P: Scalar> Material<P> {
             composition,
             overrides: BTreeMap::new(),
             optical: None,
+            choices: BTreeMap::new(),
         }
     }
     /// A custom material on its own values.
@@ -179,6 +216,7 @@ impl<P: Scalar> Material<P> {
             composition: None,
             overrides: values,
             optical: None,
+            choices: BTreeMap::new(),
         }
     }
 }

@@ -25,6 +25,8 @@ pub enum Kind {
     Temperature,
     /// Energy over temperature, J/K.
     EnergyPerTemperature,
+    /// Number per area, m^-2.
+    ArealDensity,
 }
 
 macro_rules! parameters {
@@ -70,6 +72,16 @@ parameters! {
     ElectronAuger "electron_auger" AugerCoefficient "Auger coefficient C_n (the energy goes to an electron).";
     HoleAuger "hole_auger" AugerCoefficient "Auger coefficient C_p (the energy goes to a hole).";
     Absorption "absorption" InverseLength "One absorption coefficient; under a spectrum it acts at photon energies above the gap.";
+    ElectronLifetimeDoping "electron_lifetime_reference_doping" Density "Doping (donors plus acceptors) at which `electron_lifetime` has fallen to half: it is over 1 + (N / this)^`lifetime_doping_exponent`.";
+    HoleLifetimeDoping "hole_lifetime_reference_doping" Density "Doping (donors plus acceptors) at which `hole_lifetime` has fallen to half.";
+    LifetimeDopingPower "lifetime_doping_exponent" Number "Exponent of the doping in both lifetimes; 1 unless given.";
+    DislocationDensity "dislocation_density" ArealDensity "Threading dislocations, at which carriers recombine besides: each lifetime's reciprocal gains pi^3 D / 4 times this, D the carrier's diffusion coefficient.";
+    MinorityElectronMobility "minority_electron_mobility" Mobility "Mobility of electrons where acceptors are the majority, instead of `electron_mobility`; between the two by the share of acceptors.";
+    MinorityHoleMobility "minority_hole_mobility" Mobility "Mobility of holes where donors are the majority, instead of `hole_mobility`; between the two by the share of donors.";
+    NarrowingCubeRoot "gap_narrowing_cube_root" Energy "Band-gap narrowing at a net doping of 1e18 cm^-3 that grows with its cube root; any of the three stands for the library's coefficients.";
+    NarrowingFourthRoot "gap_narrowing_fourth_root" Energy "Band-gap narrowing at a net doping of 1e18 cm^-3 that grows with its fourth root.";
+    NarrowingSquareRoot "gap_narrowing_square_root" Energy "Band-gap narrowing at a net doping of 1e18 cm^-3 that grows with its square root.";
+    NarrowingShare "gap_narrowing_conduction_share" Number "Share of the narrowing by which the conduction-band edge falls, 0.5 unless given; the valence-band edge rises by the rest.";
     ReferenceTemperature "reference_temperature" Temperature "Temperature that the numbers given hold at, where one of the options below moves them; 300 K unless given.";
     GapAtZero "gap_at_zero_kelvin" Energy "Band gap at 0 K, instead of `gap`, for Varshni's law.";
     VarshniAlpha "gap_varshni_alpha" EnergyPerTemperature "Varshni's alpha: the gap falls as alpha T^2 / (T + beta).";

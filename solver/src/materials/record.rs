@@ -54,6 +54,15 @@ pub(crate) struct Minimum {
 pub(crate) enum Ladder {
     /// A number.
     Step(f64),
+    /// Of an alloy: `x at_one + (1 - x) at_zero + bowing x (1 - x)` below, `bowing` that of the position itself.
+    Between {
+        /// At x = 0, eV.
+        at_zero: f64,
+        /// At x = 1, eV.
+        at_one: f64,
+        /// Bowing of the position, eV.
+        bowing: f64,
+    },
     /// A share of the difference of the direct gap to that of the same material at x = 0.
     ShareOfDirectGap(f64),
 }
@@ -69,6 +78,10 @@ pub(crate) enum OpticalModel {
     GaInAs,
     Si,
     Ge,
+    /// GaInP's table moved to the direct gap, with an indirect tail below it.
+    Phosphide,
+    /// No data.
+    None,
 }
 
 /// One material of the library.
@@ -130,12 +143,20 @@ impl OpticalModel {
                  J. Appl. Phys. 36, 2081 (1965) from 950 to 2590 nm, and one oscillator"
             }
             OpticalModel::GaInAs => {
-                "stated model: S. Adachi, J. Appl. Phys. 66, 6030 (1989), a dispersion model at x = 0.48, well above the gap; an \
-                 analytic direct edge with an Urbach tail of 7 meV below"
+                "stated model: S. Adachi, J. Appl. Phys. 66, 6030 (1989), a dispersion model at x = 0.48, well above the gap, moved to the \
+                 gap of the layer; an analytic direct edge with an Urbach tail of 7 meV below"
             }
             OpticalModel::Si => {
                 "M. A. Green, Sol. Energy Mater. Sol. Cells 92, 1305 (2008); transparent beyond 1450 nm, where it ends; refractive index \
                  there by the table \"Franta, 300 K\" of the database of optical constants that all tables come from"
+            }
+            OpticalModel::Phosphide => {
+                "stated model: GaInP's table moved to the alloy's direct gap, with an illustrative indirect tail below it; best near the \
+                 compositions matched to GaAs"
+            }
+            OpticalModel::None => {
+                "no optical data: under light whose photons pass the gap give `absorption` or `optical_constants`, or make the layer \
+                 `optics: \"inert\"`"
             }
             OpticalModel::Ge => {
                 "T. N. Nunley et al., J. Vac. Sci. Technol. B 34, 061205 (2016); transparent beyond 2480 nm, where it ends"

@@ -3,9 +3,10 @@
 use crate::math::{Num, Scalar};
 use crate::quantity::constants::{BOLTZMANN, ELEMENTARY_CHARGE};
 
+use super::choice::Choice;
 use super::law::{density_of_states, thermal};
 use super::library::find;
-use super::material::{Material, MaterialBase, MaterialError, Values};
+use super::material::{Dopants, Material, MaterialBase, MaterialError, Values};
 use super::parameter::{Kind, Parameter};
 use super::record::{Ladder, Record};
 
@@ -38,6 +39,8 @@ impl Parameter {
             Parameter::ReferenceTemperature => TEMPERATURE_LIMITS,
             Parameter::GapAtZero => (0.05 * ev, 10.0 * ev),
             Parameter::VarshniAlpha => (0.0, 0.1 * ev),
+            Parameter::NarrowingShare => (0.0, 1.0),
+            Parameter::LifetimeDopingPower => (0.1, 10.0),
             Parameter::ElectronMass | Parameter::HoleMass => (1e-4, 1e3),
             p if p.moved_by_power().is_some() => (-20.0, 20.0),
             _ => match self.kind() {
@@ -51,6 +54,7 @@ impl Parameter {
                 Kind::InverseLength => (0.0, 1e10),
                 Kind::Temperature => (0.0, 1e4),
                 Kind::EnergyPerTemperature => (-0.1 * ev, 0.1 * ev),
+                Kind::ArealDensity => (0.0, 1e20),
             },
         }
     }
@@ -89,6 +93,9 @@ impl Record {
     pub(crate) fn valence_edge<P: Num>(&self, x: P, temperature: P) -> P {
         match self.ladder.law {
             Ladder::Step(below) => P::constant(0.0 - below),
+            Ladder::Between { at_zero, at_one, bowing } => {
+                -(x * (at_one - at_zero) + at_zero + x * (-x + 1.0) * bowing)
+            }
             Ladder::ShareOfDirectGap(share) => {
                 let direct = &self.minima.law[0].valley;
                 (direct.energy(P::constant(0.0), temperature) - direct.energy(x, temperature)) * share
@@ -119,7 +126,7 @@ impl<P: Scalar> Material<P> {
         let name = self.name();
         let mut faults = Vec::new();
         match &self.base {
-            MaterialBase::Library(_) => match find(name) {
+            MaterialBase::Library(_) => match find(name, self.composition.is_some()) {
                 None => faults.push(MaterialError::Unknown { name: name.to_string() }),
                 Some(record) => match (record.composition, self.composition) {
                     (Some(range), Some(x)) => faults.extend(range_error(name, "x", x.value(), range)),
@@ -150,6 +157,8 @@ impl<P: Scalar> Material<P> {
         if traps.iter().filter(|t| self.overrides.contains_key(t)).count() > 1 {
             faults.push(MaterialError::TrapTwice { material: name.to_string() });
         }
+        faults.extend(self.narrowing_faults());
+        faults.extend(self.doping_faults());
         faults.extend(self.temperature_model_faults());
         faults
     }
@@ -157,18 +166,31 @@ impl<P: Scalar> Material<P> {
     /// Whether the material has a composition that a layer may grade.
     pub fn is_alloy(&self) -> bool {
         match &self.base {
-            MaterialBase::Library(name) => find(name).is_some_and(|r| r.composition.is_some()),
+            MaterialBase::Library(name) => find(name, true).is_some_and(|r| r.composition.is_some()),
             MaterialBase::Custom(_) => false,
+        }
+    }
+
+    /// Whether it means nothing without a composition.
+    pub fn needs_composition(&self) -> bool {
+        match &self.base {
+            MaterialBase::Library(name) => find(name, false).is_some_and(|r| r.composition.is_some()),
+            MaterialBase::Custom(_) => false,
+        }
+    }
+
+    /// The library record: that of variable composition where there is a composition, the layer's (`x`) or its own.
+    pub(super) fn record_for(&self, x: Option<P>) -> Option<&'static Record> {
+        match &self.base {
+            MaterialBase::Library(name) => find(name, x.or(self.composition).is_some()),
+            MaterialBase::Custom(_) => None,
         }
     }
 
     /// The library record and the composition to evaluate it at.
     pub(crate) fn record(&self, x: Option<P>) -> Result<(&'static Record, P), MaterialError> {
         let name = self.name();
-        let record = match &self.base {
-            MaterialBase::Library(_) => find(name),
-            MaterialBase::Custom(_) => None,
-        };
+        let record = self.record_for(x);
         let record = record.ok_or_else(|| MaterialError::Unknown { name: name.to_string() })?;
         let x = match (record.composition, x.or(self.composition)) {
             (Some(range), Some(x)) => match range_error(name, "x", x.value(), range) {
@@ -197,6 +219,58 @@ impl<P: Scalar> Material<P> {
     /// The first fault of [`Material::faults`], a missing composition, a composition or temperature out of range, or a
     /// value that the script's temperature model takes out of its limits.
     pub fn values(&self, x: Option<P>, temperature: P, doping: P) -> Result<Values<P>, MaterialError> {
+        self.values_with(x, temperature, doping, None)
+    }
+
+    /// The values where the dopants are these: [`Material::values`] at their sum, with what depends on which of the two is
+    /// the majority: the narrowing of the gap and the mobilities of minority carriers.
+    ///
+    /// # Errors
+    /// As [`Material::values`], and narrowing that leaves no gap.
+    pub fn local_values(
+        &self,
+        x: Option<P>,
+        temperature: P,
+        dopants: Dopants<P>,
+    ) -> Result<Values<P>, MaterialError> {
+        self.values_with(x, temperature, dopants.donors + dopants.acceptors, Some(dopants))
+    }
+
+    fn values_with(
+        &self,
+        x: Option<P>,
+        temperature: P,
+        doping: P,
+        dopants: Option<Dopants<P>>,
+    ) -> Result<Values<P>, MaterialError> {
+        let mut values = self.bare_values(x, temperature, doping)?;
+        if self.choices.get(&Choice::Radiative) == Some(&"absorption") {
+            values.radiative_coefficient = self.radiative_by_absorption(x, temperature, &values)?;
+        }
+        self.shorten(&mut values, temperature, doping, dopants);
+        if let Some(dopants) = dopants {
+            self.narrow(&mut values, dopants)?;
+        }
+        // E_trap - E_i with E_i = (Ec + Ev)/2 + (kT/2) ln(Nv/Nc), so that n1 = ni e^(E/kT) is Nc e^(-below/kT) exactly.
+        let tilt = (values.valence_density * values.conduction_density.recip()).ln()
+            * temperature
+            * (BOLTZMANN * 0.5);
+        if let Some(below) = self.overrides.get(&Parameter::TrapBelowConduction) {
+            values.trap_energy = values.gap * 0.5 - *below - tilt;
+        }
+        if let Some(above) = self.overrides.get(&Parameter::TrapAboveValence) {
+            values.trap_energy = *above - values.gap * 0.5 - tilt;
+        }
+        Ok(values)
+    }
+
+    /// The library's values with those of the script, without what models make of them.
+    pub(super) fn bare_values(
+        &self,
+        x: Option<P>,
+        temperature: P,
+        doping: P,
+    ) -> Result<Values<P>, MaterialError> {
         if let Some(fault) = self.faults().into_iter().next() {
             return Err(fault);
         }
@@ -239,16 +313,6 @@ impl<P: Scalar> Material<P> {
                 });
             }
             *slot = value;
-        }
-        // E_trap - E_i with E_i = (Ec + Ev)/2 + (kT/2) ln(Nv/Nc), so that n1 = ni e^(E/kT) is Nc e^(-below/kT) exactly.
-        let tilt = (values.valence_density * values.conduction_density.recip()).ln()
-            * temperature
-            * (BOLTZMANN * 0.5);
-        if let Some(below) = self.overrides.get(&Parameter::TrapBelowConduction) {
-            values.trap_energy = values.gap * 0.5 - *below - tilt;
-        }
-        if let Some(above) = self.overrides.get(&Parameter::TrapAboveValence) {
-            values.trap_energy = *above - values.gap * 0.5 - tilt;
         }
         Ok(values)
     }

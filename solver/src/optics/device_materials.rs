@@ -1,7 +1,7 @@
 //! What the optics asks of a device's materials.
 
 use crate::device::{Device, Profile, Side};
-use crate::materials::{Absorber, Parameter};
+use crate::materials::{Absorber, AbsorptionBasis, Parameter};
 use crate::math::Scalar;
 use crate::quantity::constants::photon_energy;
 
@@ -52,6 +52,11 @@ impl<P: Scalar> LayerMaterials<P> for Device<P> {
             Some(Index { n: found.n, k: found.k, covered: found.covered })
         };
         wavelengths.iter().map(at).collect()
+    }
+    fn unknown(&self, layer: usize) -> bool {
+        let x = self.composition_at(layer, P::constant(0.0));
+        let basis = self.stack().layers[layer].material.absorption_basis(x).0;
+        basis == AbsorptionBasis::Unknown
     }
     fn graded(&self, layer: usize) -> bool {
         let composition = &self.stack().layers[layer].composition;

@@ -22,6 +22,10 @@ pub trait LayerMaterials<P> {
     fn index(&self, layer: usize, wavelengths: &[f64]) -> Vec<Option<Index<P>>>;
     /// Whether absorption varies with depth.
     fn graded(&self, layer: usize) -> bool;
+    /// Whether nothing is known of how the layer absorbs above its gap.
+    fn unknown(&self, _layer: usize) -> bool {
+        false
+    }
 }
 
 /// Why light on a stack cannot be worked out.
@@ -42,6 +46,18 @@ pub enum OpticsError {
     #[error("the table behind the front reflectance has no value at {} nm", wavelength * 1e9)]
     EmptyTable {
         /// Vacuum wavelength, m.
+        wavelength: f64,
+    },
+    /// Light above the gap of a layer whose material has no optical data.
+    #[error(
+        "no optical data of {material}: layer `{layer}` has no absorption, and light of {} nm passes its gap", wavelength * 1e9
+    )]
+    NoOpticalData {
+        /// The layer.
+        layer: String,
+        /// Its material.
+        material: String,
+        /// Vacuum wavelength of such light, m.
         wavelength: f64,
     },
     /// A number of the light that makes no sense.
@@ -155,6 +171,7 @@ impl<'a, P: Scalar, M: LayerMaterials<P>> LitStack<'a, P, M> {
         edge_of: &[Option<usize>],
     ) -> Result<Self, OpticsError> {
         let zero = P::constant(0.0);
+        refuse_unknown(stack, materials, &samples)?;
         let optics = &stack.optics;
         let from_rear = optics.lit_from == Side::Rear;
         let lit_layer = if from_rear { stack.layers.len().saturating_sub(1) } else { 0 };
@@ -378,6 +395,27 @@ fn coefficients<P: Scalar, M: LayerMaterials<P>>(
     let mut found = materials.absorption(layer, depth, &known).into_iter();
     let at = |l: &Option<f64>| l.and_then(|_| found.next()).unwrap_or((zero, true));
     wavelengths.iter().map(at).collect()
+}
+
+/// Refuses light that passes the gap of a layer of which nothing is known.
+fn refuse_unknown<P: Scalar, M: LayerMaterials<P>>(
+    stack: &Stack<P>,
+    materials: &M,
+    samples: &Samples<P>,
+) -> Result<(), OpticsError> {
+    for (index, layer) in stack.layers.iter().enumerate() {
+        if layer.optics == LayerOptics::Inert || !materials.unknown(index) {
+            continue;
+        }
+        let gap = |depth| materials.gap(index, depth).value();
+        let gap = gap(P::constant(0.0)).min(gap(layer.thickness));
+        let lit = samples.wavelength.iter().zip(&samples.flux).filter(|(_, flux)| flux.value() > 0.0);
+        if let Some(wavelength) = lit.filter_map(|(w, _)| *w).find(|w| photon_energy(*w) >= gap) {
+            let (layer, material) = (layer.name.clone(), layer.material.name().to_string());
+            return Err(OpticsError::NoOpticalData { layer, material, wavelength });
+        }
+    }
+    Ok(())
 }
 
 /// Sums the shares of each wavelength times its flux.

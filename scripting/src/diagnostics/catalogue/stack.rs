@@ -74,6 +74,10 @@ super::rows! {
         "The relative accuracy asked for is above zero and at most 0.01; very small values cost many nodes and are \
          refused below what rounding allows.",
         "cell.accuracy = 1e-6;";
+    NO_OPTICAL_DATA = "E230", "light on a material without optical data",
+        "No absorption of this material was found that could be cited, and none is made up: light whose photons pass its gap \
+         cannot be followed through the layer. Give `absorption` or `optical_constants`, or take the layer out of the optics.",
+        "layer(\"window\", material(\"AlAs\"), 30.nm, donors(2e18.per_cm3), #{ optics: \"inert\" })";
     BARRIER = "E236", "a contact's barrier that cannot be",
         "A Schottky contact has one barrier, told as that of electrons, that of holes, or by the metal's work function; \
          a contact must pass one carrier at least.",

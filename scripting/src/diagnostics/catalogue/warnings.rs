@@ -27,6 +27,12 @@ super::rows! {
         "No measured absorption table of this material was found that can be used near its gap, so a stated model \
          stands in for it. What the layer absorbs is plausible and no more.",
         "epiloom materials AlInP";
+    NARROWING_WITH_BOLTZMANN = "W207", "gap narrowing is used with Boltzmann statistics",
+        "The coefficients describe how far the gap itself shrinks. In a heavily doped layer the band fills up as well, \
+         which holds minority carriers back by nearly as much; Boltzmann statistics do not know that, so the product n p \
+         comes out too large. Use Fermi-Dirac statistics, or give the apparent narrowing that was measured by Boltzmann \
+         statistics.",
+        "cell.statistics = \"fermi-dirac\";";
     OUTSIDE_TABLE = "W301", "light outside an absorption table",
         "Part of the light lies at wavelengths for which the material's absorption is not known. It is counted in \
          W/m2 and not absorbed, never extrapolated.",

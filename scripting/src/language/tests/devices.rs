@@ -32,7 +32,8 @@ fn layers_and_materials_are_checked_at_their_place() {
     fails("layer(\"a\", \"GaAs\", 30.nm, intrinsic()); // ~ E107");
     fails("layer(\"a\", material(\"GaAs\"), 30.nm, 1e17.per_cm3); // ~ E107");
     fails("layer(\"a\", material(\"GaAs\"), 30.nm); // ~ E104");
-    fails("material(\"GaAsP\"); // ~ E217");
+    fails("material(\"GaAsN\"); // ~ E217");
+    fails("material(\"GaAsP\"); // ~ E216");
     fails("material(\"AlGaAs\"); // ~ E216");
     fails("material(\"GaAs\", #{ x: 0.3 }); // ~ E216");
     fails("material(\"AlGaAs\", #{ x: 1.3 }); // ~ E216");

@@ -3,6 +3,7 @@
 mod attacks;
 mod devices;
 mod files;
+mod material_models;
 mod numbers;
 mod pictures;
 mod plans;

@@ -3,7 +3,7 @@
 use std::sync::Arc;
 
 use epiloom_solver::device::{Interface, Layer, LayerOptics, Offset, Transport};
-use epiloom_solver::materials::Parameter;
+use epiloom_solver::materials::{Choice, Parameter};
 use rhai::Dynamic;
 
 use crate::diagnostics::codes;
@@ -144,6 +144,10 @@ topic! {
                 if key == "optical_constants" {
                     return Ok(layer.material.optical.clone().map_or(Dynamic::UNIT, |own| Dynamic::from(ConstantsValue(own))));
                 }
+                if let Some(choice) = Choice::from_key(&key) {
+                    let word = layer.material.choices.get(&choice).copied();
+                    return Ok(word.map_or(Dynamic::UNIT, Dynamic::from));
+                }
                 match Parameter::from_key(&key) {
                     Some(parameter) => Ok(layer.material.overrides.get(&parameter).cloned().map_or(Dynamic::UNIT, give)),
                     None => Err(no_property(&key).into()),
@@ -166,6 +170,12 @@ topic! {
                     let given: ConstantsValue =
                         take(arguments[2], "`optical_constants`", "`optical_constants(\"file.csv\")`").map_err(here)?;
                     return change(call, arguments[0], |layer| layer.material.optical = Some(given.0));
+                }
+                if let Some(choice) = Choice::from_key(&key) {
+                    let word = materials::choice_word(choice, arguments[2]).map_err(here)?;
+                    return change(call, arguments[0], |layer| {
+                        layer.material.choices.insert(choice, word);
+                    });
                 }
                 let parameter = Parameter::from_key(&key).ok_or_else(|| no_property(&key))?;
                 let given = materials::parameter_value(parameter, arguments[2], &of_layer).map_err(here)?;
@@ -281,7 +291,9 @@ fn option(layer: &mut Layer<Quantity>, key: &str, value: &Dynamic) -> Result<(),
             layer.material.optical = Some(constants.0);
         }
         _ => {
-            if let Some(parameter) = Parameter::from_key(key) {
+            if let Some(choice) = Choice::from_key(key) {
+                layer.material.choices.insert(choice, materials::choice_word(choice, value)?);
+            } else if let Some(parameter) = Parameter::from_key(key) {
                 layer
                     .material
                     .overrides

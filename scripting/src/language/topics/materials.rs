@@ -1,6 +1,10 @@
 //! Materials: from the library, or on a script's own numbers.
 
-use epiloom_solver::materials::{Kind, Material, MaterialBase, MaterialError, Parameter, names};
+use std::collections::BTreeMap;
+
+use epiloom_solver::materials::{
+    Choice, Kind, Material, MaterialBase, MaterialError, Parameter, names, narrowing_materials,
+};
 use rhai::Dynamic;
 
 use crate::diagnostics::codes;
@@ -21,8 +25,10 @@ topic! {
 
     Function "material" {
         forms: ["material(\"name\")", "material(\"name\", #{ options })"],
-        doc: "A material of the library. An alloy takes its composition `x`, a number or a `graded(..)` profile. Every other \
-              option replaces a value of the library. Lifetimes have no citable default: set them.",
+        doc: "A material of the library. An alloy takes its composition `x`, a number or a `graded(..)` profile; GaInP, AlInP and GaInAs \
+              without `x` are the alloys matched to GaAs and InP. Every other option replaces a value of the library, or chooses a \
+              model. Lifetimes have no citable default: set them. AlAs, GaAsP, InAs and GaSb have no optical data: under light that \
+              passes their gap they need `absorption`, `optical_constants`, or a layer of `optics: \"inert\"`.",
         options: OPTIONS,
         example: "let gaas = material(\"GaAs\", #{ electron_lifetime: 20.ns, hole_lifetime: 20.ns });\nlet wide = material(\"AlGaAs\", #{ x: 0.80 });",
         register: |engine, session| {
@@ -127,6 +133,66 @@ const OPTIONS: &[OptionRow] = &[
         doc: "One absorption coefficient; under a spectrum it acts at photon energies above the gap.",
     },
     OptionRow {
+        key: "gap_narrowing",
+        takes: "a text: \"off\" or \"jain\"",
+        doc: "Narrowing of the gap by heavy doping: the library's coefficients for the layer's majority dopant, or none; off unless given.",
+    },
+    OptionRow {
+        key: "radiative_model",
+        takes: "a text: \"given\" or \"absorption\"",
+        doc: "Coefficient of radiative recombination: the library's or the script's number, or by detailed balance from how the material absorbs; `given` unless given.",
+    },
+    OptionRow {
+        key: "electron_lifetime_reference_doping",
+        takes: "a density",
+        doc: "Doping (donors plus acceptors) at which `electron_lifetime` has fallen to half: it is over 1 + (N / this)^`lifetime_doping_exponent`.",
+    },
+    OptionRow {
+        key: "hole_lifetime_reference_doping",
+        takes: "a density",
+        doc: "Doping (donors plus acceptors) at which `hole_lifetime` has fallen to half.",
+    },
+    OptionRow {
+        key: "lifetime_doping_exponent",
+        takes: "a number",
+        doc: "Exponent of the doping in both lifetimes; 1 unless given.",
+    },
+    OptionRow {
+        key: "dislocation_density",
+        takes: "a density per area",
+        doc: "Threading dislocations, at which carriers recombine besides: each lifetime's reciprocal gains pi^3 D / 4 times this, D the carrier's diffusion coefficient.",
+    },
+    OptionRow {
+        key: "minority_electron_mobility",
+        takes: "a mobility",
+        doc: "Mobility of electrons where acceptors are the majority, instead of `electron_mobility`; between the two by the share of acceptors.",
+    },
+    OptionRow {
+        key: "minority_hole_mobility",
+        takes: "a mobility",
+        doc: "Mobility of holes where donors are the majority, instead of `hole_mobility`; between the two by the share of donors.",
+    },
+    OptionRow {
+        key: "gap_narrowing_cube_root",
+        takes: "an energy",
+        doc: "Band-gap narrowing at a net doping of 1e18 cm^-3 that grows with its cube root; any of the three stands for the library's coefficients.",
+    },
+    OptionRow {
+        key: "gap_narrowing_fourth_root",
+        takes: "an energy",
+        doc: "Band-gap narrowing at a net doping of 1e18 cm^-3 that grows with its fourth root.",
+    },
+    OptionRow {
+        key: "gap_narrowing_square_root",
+        takes: "an energy",
+        doc: "Band-gap narrowing at a net doping of 1e18 cm^-3 that grows with its square root.",
+    },
+    OptionRow {
+        key: "gap_narrowing_conduction_share",
+        takes: "a number",
+        doc: "Share of the narrowing by which the conduction-band edge falls, 0.5 unless given; the valence-band edge rises by the rest.",
+    },
+    OptionRow {
         key: "reference_temperature",
         takes: "a temperature",
         doc: "Temperature that the numbers given hold at, where one of the options below moves them; 300 K unless given.",
@@ -225,12 +291,23 @@ pub fn dimension(kind: Kind) -> Dimension {
         Kind::InverseLength => Dimension::INVERSE_LENGTH,
         Kind::Temperature => Dimension::TEMPERATURE,
         Kind::EnergyPerTemperature => Dimension::ENERGY_PER_TEMPERATURE,
+        Kind::ArealDensity => Dimension::AREAL_DENSITY,
     }
 }
 
 /// Keys of the options of a material.
 pub fn keys() -> impl Iterator<Item = &'static str> + Clone {
-    ["x", "optical_constants"].into_iter().chain(Parameter::ALL.iter().map(|p| p.key()))
+    let choices = Choice::ALL.iter().map(|c| c.key());
+    ["x", "optical_constants"].into_iter().chain(choices).chain(Parameter::ALL.iter().map(|p| p.key()))
+}
+
+/// The word of a choice out of an option or a property.
+pub fn choice_word(choice: Choice, value: &Dynamic) -> Result<&'static str, Fault> {
+    let given = text(value, &format!("`{}`", choice.key()))?;
+    choice.word(&given).ok_or_else(|| {
+        Fault::new(codes::WRONG_CHOICE, format!("`{}` cannot be \"{given}\"", choice.key()))
+            .candidates(&given, choice.words().iter().copied())
+    })
 }
 
 /// The value of a parameter out of an option or a property.
@@ -251,8 +328,13 @@ pub fn composition(value: &Dynamic, of: &str) -> Result<(Option<Quantity>, Optio
 }
 
 fn build(base: MaterialBase, function: &str, options: Option<&Dynamic>) -> Result<Dynamic, Faults> {
-    let mut material =
-        Material { base, composition: None, overrides: std::collections::BTreeMap::new(), optical: None };
+    let mut material = Material {
+        base,
+        composition: None,
+        overrides: BTreeMap::new(),
+        optical: None,
+        choices: BTreeMap::new(),
+    };
     let of = format!("material `{}`", material.name());
     let mut faults = Vec::new();
     let mut graded = None;
@@ -275,6 +357,13 @@ fn build(base: MaterialBase, function: &str, options: Option<&Dynamic>) -> Resul
                     "`optical_constants(\"file.csv\")`",
                 ) {
                     Ok(constants) => material.optical = Some(constants.0),
+                    Err(fault) => faults.push(at(fault)),
+                }
+            } else if let Some(choice) = Choice::from_key(key) {
+                match choice_word(choice, value) {
+                    Ok(word) => {
+                        material.choices.insert(choice, word);
+                    }
                     Err(fault) => faults.push(at(fault)),
                 }
             } else if let Some(parameter) = Parameter::from_key(key) {
@@ -308,7 +397,7 @@ pub fn faults_of(material: &Material<Quantity>, graded: bool) -> Vec<Fault> {
         return Vec::new();
     }
     let mut faults: Vec<Fault> = plain.faults().iter().map(material_fault).collect();
-    if faults.is_empty() && plain.is_alloy() && plain.composition.is_none() && !graded {
+    if faults.is_empty() && plain.needs_composition() && plain.composition.is_none() && !graded {
         faults.push(material_fault(&MaterialError::NoComposition { name: material.name().to_string() }));
     }
     faults
@@ -361,6 +450,30 @@ pub fn material_fault(error: &MaterialError) -> Fault {
                 format!("custom material `{material}` needs `{parameter}`, {}", wants.family()),
             )
         }
+        MaterialError::NoNarrowing { material } => {
+            let known: Vec<String> = narrowing_materials().map(|name| format!("`{name}`")).collect();
+            Fault::new(
+                codes::MATERIAL_INCOMPLETE,
+                format!("the library has no coefficients of gap narrowing for `{material}`, only for {}", known.join(", ")),
+            )
+            .help("give your own, at a net doping of 1e18 cm^-3: gap_narrowing_cube_root: 10.meV")
+            .at(Place::Key("gap_narrowing".to_string()))
+        }
+        MaterialError::NoEmission { material } => Fault::new(
+            codes::MATERIAL_INCOMPLETE,
+            format!("radiative recombination of material `{material}` by its absorption needs its optical constants"),
+        )
+        .help("give `optical_constants`, or leave radiative_model at \"given\" and give `radiative_coefficient`")
+        .at(Place::Key("radiative_model".to_string())),
+        MaterialError::NarrowedAway { material, narrowing, doping } => Fault::new(
+            codes::MATERIAL_VALUE,
+            format!(
+                "narrowing by {} at a net doping of {} leaves no gap of material `{material}`",
+                Quantity::si(*narrowing, Dimension::ENERGY),
+                Quantity::si(*doping, Dimension::DENSITY)
+            ),
+        )
+        .help("the coefficients hold up to about 1e20 cm^-3: check the doping, or give smaller coefficients"),
         MaterialError::Exclusive { material, first, second } => Fault::new(
             codes::MATERIAL_VALUE,
             format!("material `{material}` gives both `{first}` and `{second}`"),
@@ -373,6 +486,12 @@ pub fn material_fault(error: &MaterialError) -> Fault {
         )
         .help("give one, such as gap_varshni_alpha and gap_varshni_beta, or nc_temperature_exponent: 1.5")
         .at(Place::Key("reference_temperature".to_string())),
+        MaterialError::Needs { material, parameter, needs: "gap_narrowing" } => Fault::new(
+            codes::MATERIAL_INCOMPLETE,
+            format!("`{parameter}` of material `{material}` moves nothing: `gap_narrowing` is off"),
+        )
+        .help("give gap_narrowing: \"jain\", or coefficients such as gap_narrowing_cube_root: 10.meV")
+        .at(Place::Key(parameter.to_string())),
         MaterialError::Needs { material, parameter, needs } => {
             let wants = Parameter::from_key(needs).map_or(Dimension::NONE, |p| dimension(p.kind()));
             Fault::new(
@@ -420,7 +539,8 @@ mod tests {
     /// Source of truth: the solver's own parameter table; the rows that people read must be the same, in order.
     #[test]
     fn the_option_rows_are_the_parameter_table() {
-        let of_solver = || OPTIONS[1..].iter().filter(|o| o.key != "optical_constants");
+        let chosen = |o: &&OptionRow| Choice::from_key(o.key).is_some();
+        let of_solver = || OPTIONS[1..].iter().filter(|o| o.key != "optical_constants" && !chosen(o));
         let rows: Vec<(&str, &str)> = of_solver().map(|o| (o.key, o.doc)).collect();
         let table: Vec<(&str, &str)> = Parameter::ALL.iter().map(|p| (p.key(), p.description())).collect();
         assert_eq!(rows, table);
@@ -429,6 +549,13 @@ mod tests {
                 row.takes,
                 dimension(parameter.kind()).family_name().replace("a plain number", "a number")
             );
+        }
+        let rows: Vec<(&str, &str)> = OPTIONS.iter().filter(chosen).map(|o| (o.key, o.doc)).collect();
+        let table: Vec<(&str, &str)> = Choice::ALL.iter().map(|c| (c.key(), c.description())).collect();
+        assert_eq!(rows, table);
+        for (row, choice) in OPTIONS.iter().filter(chosen).zip(Choice::ALL) {
+            let words: Vec<String> = choice.words().iter().map(|word| format!("\"{word}\"")).collect();
+            assert_eq!(row.takes, format!("a text: {}", words.join(" or ")));
         }
     }
 }

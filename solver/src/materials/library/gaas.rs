@@ -2,15 +2,13 @@
 
 use super::super::law::{Linear, Mobility, Valley};
 use super::super::record::{Ladder, Minimum, OpticalModel, Origin, Record, Sourced};
+use super::binaries::{ALAS_DIRECT, ALAS_L, ALAS_X};
 use super::cite;
 
 const GAAS_GAP: Valley = Valley::Varshni { zero: 1.519, alpha: 5.405e-4, beta: 204.0 };
 pub(super) static GAAS_DIRECT: Valley = GAAS_GAP;
-static GAAS_X: Valley = Valley::Varshni { zero: 1.981, alpha: 4.60e-4, beta: 204.0 };
-static GAAS_L: Valley = Valley::Varshni { zero: 1.815, alpha: 6.05e-4, beta: 204.0 };
-static ALAS_DIRECT: Valley = Valley::Varshni { zero: 3.099, alpha: 8.85e-4, beta: 530.0 };
-static ALAS_X: Valley = Valley::Varshni { zero: 2.24, alpha: 7.0e-4, beta: 530.0 };
-static ALAS_L: Valley = Valley::Varshni { zero: 2.46, alpha: 6.05e-4, beta: 204.0 };
+pub(super) static GAAS_X: Valley = Valley::Varshni { zero: 1.981, alpha: 4.60e-4, beta: 204.0 };
+pub(super) static GAAS_L: Valley = Valley::Varshni { zero: 1.815, alpha: 6.05e-4, beta: 204.0 };
 
 const ELECTRONS: Mobility = Mobility::CaugheyThomas {
     low: 500.0,
@@ -29,8 +27,8 @@ const HOLES: Mobility = Mobility::CaugheyThomas {
     doping: 3.0,
 };
 
-static GAAS_ELECTRONS: Mobility = ELECTRONS;
-static GAAS_HOLES: Mobility = HOLES;
+pub(super) static GAAS_ELECTRONS: Mobility = ELECTRONS;
+pub(super) static GAAS_HOLES: Mobility = HOLES;
 
 pub(crate) static GAAS: Record = Record {
     name: "GaAs",

@@ -2,9 +2,45 @@
 
 use super::super::law::{Linear, Mobility, Valley};
 use super::super::record::{Ladder, Minimum, OpticalModel, Origin, Record, Sourced};
+use super::binaries::INAS_DIRECT;
 use super::cite;
 
-static INAS_DIRECT: Valley = Valley::Varshni { zero: 0.417, alpha: 2.76e-4, beta: 93.0 };
+const INP_ELECTRONS_LAW: Mobility = Mobility::CaugheyThomas {
+    low: 400.0,
+    high: 5200.0,
+    reference: 3e17,
+    power: 0.47,
+    lattice: 2.0,
+    doping: 3.25,
+};
+pub(super) static INP_ELECTRONS: Mobility = INP_ELECTRONS_LAW;
+const INP_HOLES_LAW: Mobility = Mobility::CaugheyThomas {
+    low: 10.0,
+    high: 170.0,
+    reference: 4.87e17,
+    power: 0.62,
+    lattice: 2.0,
+    doping: 3.0,
+};
+pub(super) static INP_HOLES: Mobility = INP_HOLES_LAW;
+const GAINAS_ELECTRONS_LAW: Mobility = Mobility::CaugheyThomas {
+    low: 300.0,
+    high: 14000.0,
+    reference: 1.3e17,
+    power: 0.48,
+    lattice: 1.59,
+    doping: 3.68,
+};
+pub(super) static GAINAS_ELECTRONS: Mobility = GAINAS_ELECTRONS_LAW;
+const GAINAS_HOLES_LAW: Mobility = Mobility::CaugheyThomas {
+    low: 10.0,
+    high: 320.0,
+    reference: 4.9e17,
+    power: 0.403,
+    lattice: 1.59,
+    doping: 0.0,
+};
+pub(super) static GAINAS_HOLES: Mobility = GAINAS_HOLES_LAW;
 
 pub(crate) static INP: Record = Record {
     name: "InP",
@@ -45,27 +81,13 @@ pub(crate) static INP: Record = Record {
         source: cite::NSM,
     },
     electron_mobility: Sourced {
-        law: Mobility::CaugheyThomas {
-            low: 400.0,
-            high: 5200.0,
-            reference: 3e17,
-            power: 0.47,
-            lattice: 2.0,
-            doping: 3.25,
-        },
+        law: INP_ELECTRONS_LAW,
         temperature: (77.0, 500.0),
         origin: Origin::FromMemory,
         source: cite::SOTOODEH,
     },
     hole_mobility: Sourced {
-        law: Mobility::CaugheyThomas {
-            low: 10.0,
-            high: 170.0,
-            reference: 4.87e17,
-            power: 0.62,
-            lattice: 2.0,
-            doping: 3.0,
-        },
+        law: INP_HOLES_LAW,
         temperature: (77.0, 500.0),
         origin: Origin::FromMemory,
         source: cite::SOTOODEH,
@@ -136,27 +158,13 @@ pub(crate) static GAINAS: Record = Record {
         source: "common handbook value, from memory",
     },
     electron_mobility: Sourced {
-        law: Mobility::CaugheyThomas {
-            low: 300.0,
-            high: 14000.0,
-            reference: 1.3e17,
-            power: 0.48,
-            lattice: 1.59,
-            doping: 3.68,
-        },
+        law: GAINAS_ELECTRONS_LAW,
         temperature: (77.0, 500.0),
         origin: Origin::FromMemory,
         source: cite::SOTOODEH,
     },
     hole_mobility: Sourced {
-        law: Mobility::CaugheyThomas {
-            low: 10.0,
-            high: 320.0,
-            reference: 4.9e17,
-            power: 0.403,
-            lattice: 1.59,
-            doping: 0.0,
-        },
+        law: GAINAS_HOLES_LAW,
         temperature: (200.0, 400.0),
         origin: Origin::FromMemory,
         source: "coefficients of M. Sotoodeh, A. H. Khalid and A. A. Rezazadeh, J. Appl. Phys. 87, 2890 (2000), from memory; \

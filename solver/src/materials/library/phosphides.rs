@@ -4,13 +4,38 @@ use super::super::law::{Linear, Mobility, Valley};
 use super::super::record::{Ladder, Minimum, OpticalModel, Origin, Record, Sourced};
 use super::cite;
 
-static GAP_DIRECT: Valley = Valley::Phonon { zero: 2.886, strength: 0.1081, half: 164.0 };
-static ALP_DIRECT: Valley = Valley::Varshni { zero: 3.63, alpha: 5.771e-4, beta: 372.0 };
-static ALP_X: Valley = Valley::Varshni { zero: 2.52, alpha: 3.18e-4, beta: 588.0 };
+pub(super) static GAP_DIRECT: Valley = Valley::Phonon { zero: 2.886, strength: 0.1081, half: 164.0 };
+pub(super) static ALP_DIRECT: Valley = Valley::Varshni { zero: 3.63, alpha: 5.771e-4, beta: 372.0 };
+pub(super) static ALP_X: Valley = Valley::Varshni { zero: 2.52, alpha: 3.18e-4, beta: 588.0 };
 /// InP as the end of an alloy, from the collection that the alloy's bowing is from; the library's InP stands on another set.
-static INP_DIRECT: Valley = Valley::Varshni { zero: 1.4236, alpha: 3.63e-4, beta: 162.0 };
+pub(super) static INP_DIRECT: Valley = Valley::Varshni { zero: 1.4236, alpha: 3.63e-4, beta: 162.0 };
 /// The collection gives a change linear in T (beta = 0).
-static INP_X: Valley = Valley::Varshni { zero: 2.384, alpha: 3.7e-4, beta: 0.0 };
+pub(super) static INP_X: Valley = Valley::Varshni { zero: 2.384, alpha: 3.7e-4, beta: 0.0 };
+
+const GAINP_ELECTRONS_LAW: Mobility = Mobility::CaugheyThomas {
+    low: 400.0,
+    high: 4300.0,
+    reference: 2e16,
+    power: 0.70,
+    lattice: 1.66,
+    doping: 0.0,
+};
+pub(super) static GAINP_ELECTRONS: Mobility = GAINP_ELECTRONS_LAW;
+const GAINP_HOLES_LAW: Mobility = Mobility::CaugheyThomas {
+    low: 15.0,
+    high: 150.0,
+    reference: 1.5e17,
+    power: 0.80,
+    lattice: 2.0,
+    doping: 0.0,
+};
+pub(super) static GAINP_HOLES: Mobility = GAINP_HOLES_LAW;
+const ALINP_ELECTRONS_LAW: Mobility =
+    Mobility::CaugheyThomas { low: 0.0, high: 200.0, reference: 1e17, power: 0.5, lattice: 2.0, doping: 0.0 };
+pub(super) static ALINP_ELECTRONS: Mobility = ALINP_ELECTRONS_LAW;
+const ALINP_HOLES_LAW: Mobility =
+    Mobility::CaugheyThomas { low: 0.0, high: 40.0, reference: 1e17, power: 0.5, lattice: 2.0, doping: 0.0 };
+pub(super) static ALINP_HOLES: Mobility = ALINP_HOLES_LAW;
 
 pub(crate) static GAINP: Record = Record {
     name: "GaInP",
@@ -52,28 +77,14 @@ pub(crate) static GAINP: Record = Record {
         source: cite::NSM,
     },
     electron_mobility: Sourced {
-        law: Mobility::CaugheyThomas {
-            low: 400.0,
-            high: 4300.0,
-            reference: 2e16,
-            power: 0.70,
-            lattice: 1.66,
-            doping: 0.0,
-        },
+        law: GAINP_ELECTRONS_LAW,
         temperature: (200.0, 400.0),
         origin: Origin::FromMemory,
         source: "coefficients of M. Sotoodeh, A. H. Khalid and A. A. Rezazadeh, J. Appl. Phys. 87, 2890 (2000), from memory; \
             the reference doping is kept at every temperature; majority carriers (Hall)",
     },
     hole_mobility: Sourced {
-        law: Mobility::CaugheyThomas {
-            low: 15.0,
-            high: 150.0,
-            reference: 1.5e17,
-            power: 0.80,
-            lattice: 2.0,
-            doping: 0.0,
-        },
+        law: GAINP_HOLES_LAW,
         temperature: (200.0, 400.0),
         origin: Origin::FromMemory,
         source: "coefficients of M. Sotoodeh, A. H. Khalid and A. A. Rezazadeh, J. Appl. Phys. 87, 2890 (2000), from memory; \
@@ -149,28 +160,14 @@ pub(crate) static ALINP: Record = Record {
         source: "mean by share of AlP 9.8 and InP 12.5, from memory",
     },
     electron_mobility: Sourced {
-        law: Mobility::CaugheyThomas {
-            low: 0.0,
-            high: 200.0,
-            reference: 1e17,
-            power: 0.5,
-            lattice: 2.0,
-            doping: 0.0,
-        },
+        law: ALINP_ELECTRONS_LAW,
         temperature: (200.0, 400.0),
         origin: Origin::Illustrative,
         source: "200 cm^2/Vs for the pure crystal, no source; doping dependence of C. Hilsum, Electron. Lett. 10, 259 (1974), \
             from memory",
     },
     hole_mobility: Sourced {
-        law: Mobility::CaugheyThomas {
-            low: 0.0,
-            high: 40.0,
-            reference: 1e17,
-            power: 0.5,
-            lattice: 2.0,
-            doping: 0.0,
-        },
+        law: ALINP_HOLES_LAW,
         temperature: (200.0, 400.0),
         origin: Origin::Illustrative,
         source: "40 cm^2/Vs for the pure crystal, no source; doping dependence of C. Hilsum, Electron. Lett. 10, 259 (1974), \

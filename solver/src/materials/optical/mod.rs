@@ -62,6 +62,8 @@ pub enum AbsorptionBasis {
     },
     /// A stated model for want of a table.
     Model,
+    /// Nothing: light above the gap is refused.
+    Unknown,
 }
 
 /// A table moved in energy, with its share.
@@ -80,6 +82,8 @@ struct IndirectTail<P> {
     strength: f64,
     /// eV.
     edge: P,
+    /// The energy that it grows up to, eV; `None` for ever.
+    until: Option<P>,
 }
 
 /// A material's absorption at one place and temperature, ready for any wavelength.
@@ -109,7 +113,8 @@ impl<P: Scalar> Absorber<P> {
             return None;
         }
         let tables = self.tables.iter().map(|t| Arc::as_ptr(&t.table).addr()).collect();
-        let tail = self.tail.iter().flat_map(|t| [t.strength, t.edge.value()]);
+        let until = |t: &IndirectTail<P>| t.until.map_or(f64::INFINITY, |until| until.value());
+        let tail = self.tail.iter().flat_map(|t| [t.strength, t.edge.value(), until(t)]);
         let numbers = self.tables.iter().flat_map(|t| [t.shift.value(), t.share.value()]).chain(tail);
         Some((tables, numbers.chain(wavelengths.iter().copied()).map(f64::to_bits).collect()))
     }
@@ -138,10 +143,14 @@ impl<P: Scalar> Absorber<P> {
     }
 
     fn evaluate(&self, wavelength: f64, hints: &mut [usize; 2]) -> Absorption<P> {
+        self.coefficient(P::constant(ENERGY_TIMES_WAVELENGTH / wavelength), wavelength, hints)
+    }
+
+    /// The coefficient at a photon energy, eV, and the vacuum wavelength, m, of its real part.
+    fn coefficient(&self, energy: P, wavelength: f64, hints: &mut [usize; 2]) -> Absorption<P> {
         let zero = P::constant(0.0);
-        let energy = ENERGY_TIMES_WAVELENGTH / wavelength;
         if let Some(number) = self.number {
-            let coefficient = if energy >= self.gap.value() { number } else { zero };
+            let coefficient = if energy.value() >= self.gap.value() { number } else { zero };
             return Absorption { coefficient, covered: true };
         }
         let covered = self.tables.iter().all(|t| t.table.covers(wavelength));
@@ -150,13 +159,28 @@ impl<P: Scalar> Absorber<P> {
         }
         let mut sum = zero;
         for (shifted, hint) in self.tables.iter().zip(hints) {
-            sum = sum + shifted.table.coefficient(-shifted.shift + energy, hint) * shifted.share;
+            sum = sum + shifted.table.coefficient(energy - shifted.shift, hint) * shifted.share;
         }
         if let Some(tail) = &self.tail {
-            let above = (-tail.edge + energy).max(zero);
+            let reached = tail.until.map_or(energy, |until| energy.min(until));
+            let above = (reached - tail.edge).max(zero);
             sum = sum + above * above * tail.strength;
         }
         Absorption { coefficient: sum, covered }
+    }
+
+    /// Refractive index and absorption coefficient, m^-1, at a photon energy, eV, that may have derivatives; `None` without a
+    /// table.
+    fn at_energy(&self, energy: P) -> Option<(P, P)> {
+        if self.tables.is_empty() {
+            return None;
+        }
+        let (mut n, mut hints) = (P::constant(0.0), [0, 0]);
+        for shifted in &self.tables {
+            n = n + shifted.table.index(energy - shifted.shift)? * shifted.share;
+        }
+        let wavelength = ENERGY_TIMES_WAVELENGTH / energy.value();
+        Some((n, self.coefficient(energy, wavelength, &mut hints).coefficient))
     }
 
     /// Refractive index and extinction coefficient at a vacuum wavelength, m; `None` without a table.
@@ -185,8 +209,18 @@ impl<P: Scalar> Material<P> {
     /// # Errors
     /// As [`Material::values`].
     pub fn absorber(&self, x: Option<P>, temperature: P) -> Result<Absorber<P>, MaterialError> {
-        let values = self.values(x, temperature, P::constant(0.0))?;
-        let gap = values.gap * (1.0 / ELEMENTARY_CHARGE);
+        let values = self.bare_values(x, temperature, P::constant(0.0))?;
+        self.absorber_at(x, temperature, values.gap)
+    }
+
+    /// [`Material::absorber`] where the gap, J, is known already.
+    pub(super) fn absorber_at(
+        &self,
+        x: Option<P>,
+        temperature: P,
+        gap: P,
+    ) -> Result<Absorber<P>, MaterialError> {
+        let gap = gap * (1.0 / ELEMENTARY_CHARGE);
         let zero = P::constant(0.0);
         let mut number = self.overrides.get(&Parameter::Absorption).copied();
         let (mut tables, mut tail) = (Vec::new(), None);
@@ -247,7 +281,8 @@ impl<P: Scalar> Material<P> {
             Ok((record, x)) => {
                 let source = record.optics.source().to_string();
                 match record.optics {
-                    OpticalModel::AlInP | OpticalModel::GaInAs => {
+                    OpticalModel::None => (AbsorptionBasis::Unknown, Origin::Illustrative, source),
+                    OpticalModel::AlInP | OpticalModel::GaInAs | OpticalModel::Phosphide => {
                         (AbsorptionBasis::Model, Origin::Illustrative, source)
                     }
                     OpticalModel::AlGaAs => {

@@ -163,8 +163,14 @@ pub(super) fn tables<P: Scalar>(
         OpticalModel::Ge => (one(&tables.ge, gap), None),
         OpticalModel::AlInP => {
             let direct = record.minima.law[0].valley.energy(x, temperature) + moved;
-            (one(&tables.gainp, direct), Some(IndirectTail { strength: INDIRECT, edge: gap }))
+            (one(&tables.gainp, direct), Some(IndirectTail { strength: INDIRECT, edge: gap, until: None }))
         }
+        OpticalModel::Phosphide => {
+            let direct = record.minima.law[0].valley.energy(x, temperature) + moved;
+            let tail = IndirectTail { strength: INDIRECT, edge: gap, until: Some(direct) };
+            (one(&tables.gainp, direct), Some(tail))
+        }
+        OpticalModel::None => (Vec::new(), None),
         OpticalModel::AlGaAs => {
             let direct = optical_gap(record, x, temperature) + moved;
             let used = compositions(x.value());

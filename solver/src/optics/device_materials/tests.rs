@@ -133,3 +133,35 @@ fn a_coating_on_a_material_without_an_index_is_refused() {
         assert!(matches!(&fault, OpticsError::NoIndex { layer, .. } if layer == "emitter"), "{fault}");
     }
 }
+
+/// Truth: the stated rule: a material without optical data is transparent below its gap, refused above it, and taken with an
+/// absorption of the script's or out of the optics.
+#[test]
+fn light_on_a_material_without_optical_data_is_refused() {
+    let lit = |material: Material, optics: LayerOptics, light: &Light| {
+        let mut window = layer("window", material, 30e-9);
+        window.optics = optics;
+        let base = layer("base", Material::library("GaAs", None), 1e-6);
+        let device = Device::new(device(vec![window, base])).expect("valid");
+        let lit = LitStack::new(device.stack(), &device, light);
+        lit.map(|lit| lit.illuminate(&nodes(&device, 4)).expect("sound")).map_err(|fault| fault.to_string())
+    };
+    let red = |wavelength: f64| Light::Monochromatic { photon_flux: 1e20, wavelength: Some(wavelength) };
+    let alas = || Material::library("AlAs", None);
+    for light in [sun(), red(400e-9)] {
+        let said = lit(alas(), LayerOptics::Absorbing, &light).expect_err("no data");
+        assert!(said.contains("AlAs") && said.contains("`window`"), "{said}");
+        let graded = Material::library("GaAsP", Some(0.2));
+        assert!(lit(graded, LayerOptics::Absorbing, &light).is_err());
+        let inert = lit(alas(), LayerOptics::Inert, &light).expect("inert");
+        assert_eq!(inert.photons.absorbed[0], 0.0);
+        let mut own = alas();
+        own.overrides.insert(Parameter::Absorption, 1e6);
+        assert!(lit(own, LayerOptics::Absorbing, &light).expect("a number").photons.absorbed[0] > 0.0);
+    }
+    for light in [red(600e-9), Light::Dark] {
+        let passed = lit(alas(), LayerOptics::Absorbing, &light).expect("below the gap");
+        assert_eq!(passed.photons.absorbed[0], 0.0);
+        assert_eq!(passed.uncovered[0], 0.0);
+    }
+}
