@@ -1,7 +1,7 @@
 //! The device of a snapshot: its stack in words, and every material value used with its source.
 
 use epiloom_solver::device::{
-    Barrier, Contact, Device, Interface, LayerOptics, Offset, Profile, Stack, Transport,
+    Barrier, Contact, Device, Interface, LayerOptics, LevelEnergy, Offset, Profile, Stack, Transport,
 };
 use epiloom_solver::materials::{Dopants, Kind, Parameter};
 use epiloom_solver::optics::Reflectance;
@@ -63,6 +63,28 @@ fn interface_words(interface: &Interface<Quantity>) -> String {
         "recombination velocity of electrons {}, of holes {}",
         interface.electron_recombination_velocity, interface.hole_recombination_velocity
     );
+    match &interface.level {
+        None => {}
+        Some(LevelEnergy::Intrinsic(energy)) => {
+            words.push_str(&format!("; level {energy} above the intrinsic one"))
+        }
+        Some(LevelEnergy::BelowConduction(energy)) => {
+            words.push_str(&format!("; level {energy} below the conduction band"));
+        }
+        Some(LevelEnergy::AboveValence(energy)) => {
+            words.push_str(&format!("; level {energy} above the valence band"));
+        }
+    }
+    if interface.both_sides || interface.states.is_some() {
+        words.push_str("; carriers of both sides");
+    }
+    if let Some(charge) = &interface.sheet_charge {
+        words.push_str(&format!("; fixed charge {charge}"));
+    }
+    if let Some(states) = &interface.states {
+        let kind = if states.donors { "donor" } else { "acceptor" };
+        words.push_str(&format!("; {kind} states {}", states.density));
+    }
     if let Transport::Thermionic { electron_velocity, hole_velocity } = &interface.transport {
         let of = |velocity: &Option<Quantity>| {
             velocity.as_ref().map_or("by the effective masses".to_string(), Quantity::to_string)

@@ -123,6 +123,32 @@ pub fn state(name: &str, step: u64, solved: &Solved<BiasPoint>, result: &BiasPoi
             });
         }
     }
+    for (pair, interface) in solved.stack.layers.windows(2).zip(&result.interfaces) {
+        let between = format!("{} / {}", pair[0].name, pair[1].name);
+        for (neighbour, velocity) in pair.iter().zip(&interface.seen_from) {
+            snapshot.figures.push(Figure {
+                name: format!("recombination velocity of {between} seen from {}", neighbour.name),
+                value: velocity.map(|v| in_unit(v, "cm_per_s")),
+                unit: "cm_per_s".to_string(),
+                reason: velocity.is_none().then(|| "no carriers beyond equilibrium".to_string()),
+                ..Figure::default()
+            });
+        }
+        let mut add = |name: String, value: f64, unit: &str| {
+            let (value, unit) = (Some(in_unit(value, unit)), unit.to_string());
+            snapshot.figures.push(Figure { name, value, unit, ..Figure::default() });
+        };
+        if interface.electron_jump != 0.0 || interface.hole_jump != 0.0 {
+            add(format!("jump of the electrons' level at {between}"), interface.electron_jump, "eV");
+            add(format!("jump of the holes' level at {between}"), interface.hole_jump, "eV");
+        }
+        if interface.charge != 0.0 {
+            add(format!("charge at {between}"), interface.charge, "C_per_cm2");
+        }
+        if let Some(occupancy) = interface.occupancy {
+            add(format!("occupancy of the level at {between}"), occupancy, "");
+        }
+    }
     snapshot.tables.push(profiles(&result.profiles));
     snapshot.ledgers = ledgers(result);
     snapshot

@@ -112,6 +112,11 @@ pub fn device_fault(fault: &DeviceFault, stack: &StackValue) -> Fault {
                 .label("both its velocities are zero")
                 .help("give one carrier a velocity above zero, or leave it out: then it passes without limit")
         }
+        DeviceFault::IdleStates { place: DevicePlace::Interface(front, _) } => {
+            Fault::new(codes::MISSING_OPTION, fault.to_string())
+                .help("give recombination_velocity beside states: capture cross-section times thermal velocity times states")
+                .at(layer_at(front, Place::Argument(0)))
+        }
         other => Fault::new(codes::STACK, other.to_string()),
     }
 }
@@ -128,6 +133,7 @@ fn limits_of(quantity: &str) -> (Code, Dimension) {
         "accuracy" => (codes::ACCURACY, Dimension::NONE),
         "x" | "composition" => (codes::COMPOSITION, Dimension::NONE),
         "electron_barrier" | "hole_barrier" | "work_function" => (codes::BARRIER, Dimension::ENERGY),
+        "sheet_charge" | "states" => (codes::STACK, Dimension::AREAL_DENSITY),
         "conduction_offset" | "valence_offset" => (codes::STACK, Dimension::ENERGY),
         q if q.ends_with("velocity") => (codes::VELOCITY, Dimension::VELOCITY),
         q if q.ends_with("reflectance") || q.ends_with("shading") => (codes::SHARE, Dimension::NONE),

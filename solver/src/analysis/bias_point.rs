@@ -6,6 +6,7 @@ use crate::solve::Point;
 
 use super::collection::collection_probability;
 use super::figure::Figure;
+use super::interfaces::interface_states;
 use super::ladder::{AnalysisError, Ladder, MOST, check_voltage};
 use super::ledger::{Ledger, LedgerPart, ledger};
 use super::profiles::{barriers, profiles, sheet_resistance};
@@ -74,6 +75,7 @@ fn collect(ladder: &mut Ladder, voltage: f64, points: Vec<Point>, mut ledgers: V
     let profiles = profiles(problem, point, &collection);
     let sheet_resistance = sheet_resistance(problem, &profiles);
     let barriers = barriers(problem);
+    let interfaces = interface_states(problem, point);
     let ledger = ledgers.swap_remove(finest);
     let mut warnings = ladder.warnings();
     let unclosed = ledger.unclosed().into_iter();
@@ -89,6 +91,7 @@ fn collect(ladder: &mut Ladder, voltage: f64, points: Vec<Point>, mut ledgers: V
         carrier_figures,
         sheet_resistance,
         barriers,
+        interfaces,
         nodes: ladder.nodes(),
         counts: ladder.work(),
         warnings,

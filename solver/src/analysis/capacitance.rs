@@ -1,10 +1,10 @@
 //! Capacitance at low frequency against voltage.
 
 use crate::device::Device;
-use crate::discretise::side::sloped_side;
+use crate::discretise::side::{side, sloped_side};
 use crate::discretise::{Carrier, Terminal, scales};
 use crate::linear::{Singular, Triple};
-use crate::math::Num;
+use crate::math::{Dual, Num};
 use crate::optics::Light;
 use crate::quantity::constants::ELEMENTARY_CHARGE;
 use crate::solve::{Point, Problem};
@@ -143,6 +143,29 @@ fn rises(problem: &Problem, point: &Point) -> Vec<[f64; 2]> {
         let by_p = t[2] + per_volt * c.reference[1] - t[0];
         rises[i][0] += Num::exp(s.ln_n) * entry.volume * s.electron_slope * by_n;
         rises[i][1] += Num::exp(s.ln_p) * entry.volume * s.hole_slope * by_p;
+    }
+    // Electrons in states of interfaces: what comes from a conduction band stands in its electrons' row, what goes to a valence
+    // band in its holes' row.
+    for (layer, source) in c.sources.iter().enumerate() {
+        let Some(source) = source else { continue };
+        let e = c.first[layer + 1] - 1;
+        let nodes = [c.node(layer, e), c.node(layer + 1, e + 1)];
+        let sides = [0, 1].map(|s| {
+            let ([psi, u_n, u_p], t) = (point.state.nodes[nodes[s]], &point.tangent[nodes[s]]);
+            let along = |re: f64, d: f64| Dual { re, d: [d] };
+            let level =
+                |u: f64, t: f64, reference: f64| along(u + rear * reference, t + per_volt * reference);
+            let phi = [level(u_n, t[1], c.reference[0]), level(u_p, t[2], c.reference[1])];
+            (side(c.statistics, &c.entries[e + s], along(psi, t[0]), phi[0], phi[1]), phi)
+        });
+        let acted = source.act([&sides[0].0, &sides[1].0], [sides[0].1, sides[1].1]);
+        if let Some(exchange) = acted.exchange {
+            let filled = source.states * exchange.occupancy.d[0];
+            for (s, node) in nodes.into_iter().enumerate() {
+                rises[node][0] += exchange.electron_share[s].re * filled;
+                rises[node][1] -= exchange.hole_share[s].re * filled;
+            }
+        }
     }
     rises
 }

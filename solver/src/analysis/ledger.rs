@@ -12,7 +12,7 @@ use crate::optics::{Illumination, PhotonAccount};
 use crate::quantity::constants::ELEMENTARY_CHARGE;
 use crate::solve::{Point, Problem};
 
-use super::profiles::{Local, locals};
+use super::profiles::{Local, act, locals};
 
 /// Which account a line belongs to.
 #[derive(Clone, Copy, Debug, PartialEq, Eq, PartialOrd, Ord)]
@@ -221,7 +221,7 @@ pub(crate) fn ledger(
             recombined_energy[layer][channel] += r * local.splitting;
         }
     }
-    let interfaces: Vec<(usize, f64, f64)> = c
+    let mut interfaces: Vec<(usize, f64, f64)> = c
         .interfaces
         .iter()
         .enumerate()
@@ -232,6 +232,17 @@ pub(crate) fn ledger(
             (l, rate, rate * local.splitting)
         })
         .collect();
+    for (l, source) in c.sources.iter().enumerate() {
+        let acted = source.as_ref().and_then(|s| act(c, s, l, &locals).exchange);
+        if let Some(u) = acted {
+            // What each band loses, at its own level.
+            let beside = [&locals[c.first[l + 1] - 1], &locals[c.first[l + 1]]];
+            let energy: f64 =
+                (0..2).map(|s| u.holes[s] * beside[s].phi_p - u.electrons[s] * beside[s].phi_n).sum();
+            interfaces.push((l, u.recombination, energy));
+        }
+    }
+    interfaces.sort_by_key(|i| i.0);
     let surfaces = [
         contact_account(problem, point, 0, &locals[0]),
         contact_account(problem, point, 1, &locals[locals.len() - 1]),

@@ -5,6 +5,7 @@ pub mod capacitance;
 pub mod collection;
 pub mod current_voltage;
 pub mod figure;
+mod interfaces;
 mod ladder;
 pub mod ledger;
 mod profiles;
@@ -19,8 +20,8 @@ pub use figure::{Absent, Figure, Outcome};
 pub use ladder::{AnalysisError, LARGEST_VOLTAGE};
 pub use ledger::{Ledger, LedgerLine, LedgerPart};
 pub use results::{
-    BiasPoint, Capacitance, CapacitancePoint, CurrentVoltage, JvPoint, Profiles, SpectralResponse, Voltages,
-    Warning,
+    BiasPoint, Capacitance, CapacitancePoint, CurrentVoltage, InterfaceState, JvPoint, Profiles,
+    SpectralResponse, Voltages, Warning,
 };
 pub use spectral_response::spectral_response;
 

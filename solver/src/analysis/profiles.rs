@@ -1,5 +1,6 @@
 //! Profiles against depth from a solved state.
 
+use crate::discretise::interface::{Acted, Source};
 use crate::discretise::residual::recombination;
 use crate::discretise::side::{Side, side};
 use crate::discretise::{Coefficients, scales};
@@ -31,6 +32,13 @@ pub(crate) fn locals(problem: &Problem, point: &Point) -> Vec<Local> {
             Local { phi_n, phi_p, splitting, side: at, rates }
         })
         .collect()
+}
+
+/// What a source at the rear end of a layer does at a state.
+pub(crate) fn act(c: &Coefficients<f64>, source: &Source<f64>, layer: usize, at: &[Local]) -> Acted<f64> {
+    let (front, rear) = (&at[c.first[layer + 1] - 1], &at[c.first[layer + 1]]);
+    let phi = |local: &Local| [local.phi_n, local.phi_p];
+    source.act([&front.side, &rear.side], [phi(front), phi(rear)])
 }
 
 /// Profiles of a solved point. The problem must have been assembled at its state. `collection` is per node.

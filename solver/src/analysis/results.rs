@@ -117,6 +117,22 @@ pub struct Profiles {
     pub collection: Vec<f64>,
 }
 
+/// An interface at a bias point, on the finest mesh.
+#[derive(Clone, Debug, PartialEq)]
+pub struct InterfaceState {
+    /// Effective recombination velocity that the front and the rear neighbour see, m/s: the flux of their minority carriers into
+    /// the plane of the interface over their excess there. `None` in equilibrium; negative where the interface injects.
+    pub seen_from: [Option<f64>; 2],
+    /// Rise of the electrons' quasi-Fermi level over the interface on the way to the rear, J.
+    pub electron_jump: f64,
+    /// The same of the holes'.
+    pub hole_jump: f64,
+    /// Charge per area, C/m^2.
+    pub charge: f64,
+    /// Occupancy of the level by electrons, where it sees both sides.
+    pub occupancy: Option<f64>,
+}
+
 /// A solved bias point.
 #[derive(Clone, Debug)]
 pub struct BiasPoint {
@@ -140,6 +156,8 @@ pub struct BiasPoint {
     pub sheet_resistance: Vec<f64>,
     /// Barriers at each interface seen by electrons and holes (edge steps), J: `[layers - 1]`.
     pub barriers: Vec<(f64, f64)>,
+    /// What each interface does: `[layers - 1]`.
+    pub interfaces: Vec<InterfaceState>,
     /// Nodes of each nested mesh, coarsest first.
     pub nodes: Vec<usize>,
     /// Work done on all meshes.

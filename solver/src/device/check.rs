@@ -9,7 +9,7 @@ use crate::quantity::constants::{BOLTZMANN, ELEMENTARY_CHARGE};
 
 use super::fault::{Fault, Place, TableProblem};
 use super::profile::Profile;
-use super::stack::{Barrier, Contact, Interface, Layer, Offset, Side, Stack, Transport};
+use super::stack::{Barrier, Contact, Interface, Layer, LevelEnergy, Offset, Side, Stack, Transport};
 
 /// Thickness of a layer, m.
 pub const THICKNESS_LIMITS: (f64, f64) = (1e-11, 1e-2);
@@ -21,6 +21,8 @@ pub const HIGHEST_VELOCITY: f64 = 1e12;
 pub const EMISSION_LIMITS: (f64, f64) = (1e-6, HIGHEST_VELOCITY);
 /// Band offsets given by hand, J: 5 eV either way.
 pub const OFFSET_LIMITS: (f64, f64) = (-5.0 * ELEMENTARY_CHARGE, 5.0 * ELEMENTARY_CHARGE);
+/// Most charges or states per area of an interface, m^-2: far beyond a monolayer's bonds.
+pub const MOST_PER_AREA: f64 = 1e20;
 /// Relative accuracies that can be asked for.
 pub const ACCURACY_LIMITS: (f64, f64) = (1e-9, 1e-1);
 /// Largest gap over kT: beyond, densities of minority carriers leave the range of a double (e^-707), and with them what
@@ -222,6 +224,24 @@ impl Checker {
             }
             Some(Offset::Share(share)) => self.range(place, "offset_ratio", *share, (-10.0, 10.0), ""),
             None => {}
+        }
+        let level = match &interface.level {
+            Some(LevelEnergy::Intrinsic(energy)) => Some(("trap_energy", energy)),
+            Some(LevelEnergy::BelowConduction(energy)) => Some(("trap_below_conduction_band", energy)),
+            Some(LevelEnergy::AboveValence(energy)) => Some(("trap_above_valence_band", energy)),
+            None => None,
+        };
+        if let Some((word, energy)) = level {
+            self.range(place, word, *energy, OFFSET_LIMITS, "J");
+        }
+        if let Some(charge) = interface.sheet_charge {
+            self.range(place, "sheet_charge", charge, (-MOST_PER_AREA, MOST_PER_AREA), "m^-2");
+        }
+        if let Some(states) = &interface.states {
+            self.range(place, "states", states.density, (0.0, MOST_PER_AREA), "m^-2");
+            if electrons.value() == 0.0 || holes.value() == 0.0 {
+                self.faults.push(Fault::IdleStates { place: place.clone() });
+            }
         }
     }
 

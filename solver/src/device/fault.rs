@@ -115,6 +115,14 @@ pub enum Fault {
         /// Which one.
         place: Place,
     },
+    /// States that nothing fills or empties.
+    #[error(
+        "{place} has states but no recombination velocities of electrons and holes, which say what occupies them"
+    )]
+    IdleStates {
+        /// Which one.
+        place: Place,
+    },
     /// A material that cannot be evaluated.
     #[error("layer `{layer}`: {error}")]
     Material {

@@ -14,8 +14,8 @@ pub use device::Device;
 pub use fault::{Fault, Place, TableProblem, Warning};
 pub use profile::Profile;
 pub use stack::{
-    Barrier, Circuit, Contact, Diode, Interface, Layer, LayerOptics, Offset, Side, Stack, StackOptics,
-    Transport,
+    Barrier, Circuit, Contact, Diode, Interface, Layer, LayerOptics, LevelEnergy, Offset, Side, Stack,
+    StackOptics, States, Transport,
 };
 
 #[cfg(test)]

@@ -68,6 +68,26 @@ pub enum Offset<P = f64> {
     Share(P),
 }
 
+/// Where a level of an interface lies, by the bands of the side of smaller gap (the rear one where gaps are equal), J.
+#[derive(Clone, Copy, Debug, PartialEq)]
+pub enum LevelEnergy<P = f64> {
+    /// Above the intrinsic level.
+    Intrinsic(P),
+    /// Below the conduction-band edge.
+    BelowConduction(P),
+    /// Above the valence-band edge.
+    AboveValence(P),
+}
+
+/// States at an interface that hold charge.
+#[derive(Clone, Copy, Debug, PartialEq)]
+pub struct States<P = f64> {
+    /// Their density, m^-2.
+    pub density: P,
+    /// Whether they are positive when empty (donor-like), and not negative when full (acceptor-like).
+    pub donors: bool,
+}
+
 /// What happens between two layers beyond continuity.
 #[derive(Clone, Copy, Debug)]
 pub struct Interface<P = f64> {
@@ -79,6 +99,14 @@ pub struct Interface<P = f64> {
     pub transport: Transport<P>,
     /// How the bands line up; `None` is by the affinities. All layers behind move together, so that other steps stay.
     pub offset: Option<Offset<P>>,
+    /// The level through which carriers recombine; `None` is the intrinsic level.
+    pub level: Option<LevelEnergy<P>>,
+    /// Whether the level sees the carriers of both sides, and not of the side of smaller gap alone.
+    pub both_sides: bool,
+    /// Fixed charge, elementary charges per m^2.
+    pub sheet_charge: Option<P>,
+    /// States at the level, which see both sides' carriers; their charge and recombination have one occupancy.
+    pub states: Option<States<P>>,
 }
 
 impl<P> Interface<P> {
@@ -89,6 +117,10 @@ impl<P> Interface<P> {
             hole_recombination_velocity: hole_velocity,
             transport: Transport::Continuous,
             offset: None,
+            level: None,
+            both_sides: false,
+            sheet_charge: None,
+            states: None,
         }
     }
 
@@ -109,6 +141,17 @@ impl<P> Interface<P> {
                 Offset::Valence(energy) => Offset::Valence(to(energy)),
                 Offset::Share(share) => Offset::Share(to(share)),
             }),
+            level: self.level.as_ref().map(|level| match level {
+                LevelEnergy::Intrinsic(energy) => LevelEnergy::Intrinsic(to(energy)),
+                LevelEnergy::BelowConduction(energy) => LevelEnergy::BelowConduction(to(energy)),
+                LevelEnergy::AboveValence(energy) => LevelEnergy::AboveValence(to(energy)),
+            }),
+            both_sides: self.both_sides,
+            sheet_charge: self.sheet_charge.as_ref().map(&to),
+            states: self
+                .states
+                .as_ref()
+                .map(|states| States { density: to(&states.density), donors: states.donors }),
         }
     }
 }

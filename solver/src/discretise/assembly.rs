@@ -4,12 +4,15 @@
 //! rows and blocks of the nodes, and the contacts' laws take the rows that are theirs.
 
 use crate::linear::{Block, BlockTridiagonal, Triple};
+use crate::math::Dual;
 use crate::math::lanes::Width;
 
 use super::coefficients::Coefficients;
 use super::columns::Columns;
 use super::contact::{Carrier, sloped_surface_flux};
+use super::interface::Both;
 use super::kernels::{Condition, Results, Work};
+use super::side::side;
 
 /// The linearised discrete equations at a state.
 #[derive(Clone, Debug)]
@@ -20,7 +23,7 @@ pub struct System {
     pub jacobian: BlockTridiagonal,
     /// Recombination minus generation per area at each node, interfaces included: `[nodes]`.
     pub net: Vec<f64>,
-    /// Its partial derivatives: `[nodes]`.
+    /// Partial derivatives of their sum by the unknowns of each node: `[nodes]`.
     pub net_gradient: Vec<Triple>,
     /// Electron flux (in the sense of current) through each cell: `[nodes - 1]`.
     pub electron_flux: Vec<f64>,
@@ -237,6 +240,52 @@ impl System {
         }
     }
 
+    /// Adds charge and recombination at interfaces: a pass over the few of them.
+    fn sources(&mut self, c: &Coefficients<f64>, shifts: [f64; 2]) {
+        for (layer, source) in c.sources.iter().enumerate() {
+            let Some(source) = source else { continue };
+            let e = c.first[layer + 1] - 1;
+            let nodes = [c.node(layer, e), c.node(layer + 1, e + 1)];
+            let (sides, phi) = self.work.both_sides(c, e, shifts);
+            let acted = source.act([&sides[0], &sides[1]], phi);
+            let jacobian = &mut self.jacobian;
+            let mut add = |row_node: usize, row: usize, value: Both| {
+                self.residual[row_node][row] += value.re;
+                for (k, d) in value.d.iter().enumerate() {
+                    let node = nodes[k / 3];
+                    let block = if node == row_node {
+                        &mut jacobian.diagonal[node]
+                    } else if node > row_node {
+                        &mut jacobian.upper[row_node]
+                    } else {
+                        &mut jacobian.lower[row_node]
+                    };
+                    block[(row, k % 3)] += d;
+                }
+            };
+            add(nodes[0], 0, acted.charge);
+            let mut sums = vec![(0, acted.charge)];
+            if let Some(exchange) = acted.exchange {
+                for side in 0..2 {
+                    add(nodes[side], 1, -exchange.electrons[side]);
+                    add(nodes[side], 2, exchange.holes[side]);
+                }
+                let u = exchange.recombination;
+                sums.extend([(1, -u), (2, u)]);
+                self.net[nodes[0]] += u.re;
+                for (k, d) in u.d.iter().enumerate() {
+                    self.net_gradient[nodes[k / 3]][k % 3] += d;
+                }
+            }
+            // What passes from one side to the other by way of the level cancels in the sums of columns.
+            for (row, value) in sums {
+                for (k, d) in value.d.iter().enumerate() {
+                    self.jacobian.sums[nodes[k / 3]][(row, k % 3)] += d;
+                }
+            }
+        }
+    }
+
     /// Evaluates residual and Jacobian at `state`, whose quasi-Fermi potentials hold `remainders` besides, with the rear contact's level at `rear` (kT/q) and the pairs
     /// generated per area in each entry's volume, each times `light`.
     pub fn assemble(
@@ -253,6 +302,7 @@ impl System {
         self.work.run(self.width, c, &self.columns, &Condition { shifts, generation, light });
         self.work.interfaces(c, shifts);
         self.rows(c);
+        self.sources(c, shifts);
         self.apply_contacts(c, state, remainders, rear);
     }
 
@@ -266,6 +316,18 @@ impl System {
                 sum[0] += self.work.charge[e];
                 sum[1] += self.work.charge_by[0][e];
             }
+        }
+        // The charge of interfaces, at flat levels as well.
+        let flat = Dual::<f64, 1>::fixed(0.0);
+        for (layer, source) in c.sources.iter().enumerate() {
+            let Some(source) = source else { continue };
+            let e = c.first[layer + 1] - 1;
+            let node = c.node(layer, e);
+            let potential = Dual::variable(psi[node], 0);
+            let sides = [e, e + 1].map(|e| side(c.statistics, &c.entries[e], potential, flat, flat));
+            let charge = source.act([&sides[0], &sides[1]], [[flat; 2]; 2]).charge;
+            sums[node][0] += charge.re;
+            sums[node][1] += charge.d[0];
         }
         sums
     }

@@ -9,7 +9,7 @@ use crate::physics::shockley_read_hall::Level;
 use crate::quantity::constants::{BOLTZMANN, ELEMENTARY_CHARGE, VACUUM_PERMITTIVITY};
 
 use super::contact::{Carrier, ContactLaw, Majority};
-use super::interface::Joint;
+use super::interface::{Joint, Source, at_level, level_depth};
 use super::scales;
 
 /// One side of a node: the material there and the half control volumes that belong to it.
@@ -105,6 +105,8 @@ pub struct Coefficients<P> {
     pub interfaces: Vec<Option<InterfaceRecombination<P>>>,
     /// The law of each interface at which levels may jump; two nodes stand there, which share their potential: `[layers - 1]`.
     pub joints: Vec<Option<Joint<P>>>,
+    /// Charge and recombination with the carriers of both sides at each interface: `[layers - 1]`.
+    pub sources: Vec<Option<Source<P>>>,
     /// Contacts: front and rear.
     pub contacts: [ContactLaw<P>; 2],
     /// +1 where the rear contact is the positive terminal (p side), -1 where the front one is.
@@ -270,24 +272,40 @@ impl<P: Scalar + Over<P>> Coefficients<P> {
             .map(|(l, interface)| {
                 interface.as_ref().and_then(|i| {
                     let (s_n, s_p) = (i.electron_recombination_velocity, i.hole_recombination_velocity);
-                    if s_n.value() == 0.0 || s_p.value() == 0.0 {
+                    if s_n.value() == 0.0 || s_p.value() == 0.0 || i.both_sides || i.states.is_some() {
                         return None;
                     }
                     // The side of the smaller gap; the rear one where they are equal.
                     let entry = if gaps[l].1 < gaps[l + 1].0 { first[l + 1] - 1 } else { first[l + 1] };
                     let e: &Entry<P> = &entries[entry];
-                    let intrinsic =
-                        ((e.ln_conduction + e.ln_valence - (e.affinity_and_gap - e.affinity)) * 0.5).exp();
+                    let (n1, p1) = match &i.level {
+                        None => {
+                            let gap = e.affinity_and_gap - e.affinity;
+                            let intrinsic = ((e.ln_conduction + e.ln_valence - gap) * 0.5).exp();
+                            (intrinsic, intrinsic)
+                        }
+                        Some(level) => at_level(e, level_depth(level, e, thermal_energy)),
+                    };
                     Some(InterfaceRecombination {
                         level: Level {
                             electron_rate: s_n * velocity_scale,
                             hole_rate: s_p * velocity_scale,
-                            n1: intrinsic,
-                            p1: intrinsic,
+                            n1,
+                            p1,
                         },
                         entry,
                     })
                 })
+            })
+            .collect();
+        let sources = stack
+            .interfaces
+            .iter()
+            .enumerate()
+            .map(|(l, interface)| {
+                let (front, rear) = (&entries[first[l + 1] - 1], &entries[first[l + 1]]);
+                let narrow = if gaps[l].1 < gaps[l + 1].0 { front } else { rear };
+                interface.as_ref().and_then(|i| Source::new(i, front, rear, narrow, thermal_energy))
             })
             .collect();
         let law = |e: usize, contact: &Contact<P>| {
@@ -313,6 +331,7 @@ impl<P: Scalar + Over<P>> Coefficients<P> {
             depths,
             interfaces,
             joints,
+            sources,
             contacts,
             polarity,
             junction,

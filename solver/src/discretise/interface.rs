@@ -1,11 +1,13 @@
-//! Interfaces whose levels are not continuous: two nodes at one place, and the law by which carriers cross between them.
+//! What happens at interfaces. Where levels are not continuous: two nodes at one place, and the law by which carriers cross between
+//! them. Charge, and a level that sees the carriers of both sides.
 //!
 //! The law takes the place of a cell's fluxes; the potential is shared (`linear/joints.rs`). It is written once over every kind of
 //! number: the plain statement of the equations and the assembly, which takes derivatives by dual numbers, call the same function.
 
-use crate::device::Transport;
+use crate::device::{Interface, LevelEnergy, Transport};
 use crate::math::{Dual, Num, Over, Scalar};
-use crate::physics::emission;
+use crate::physics::interface_level::{Beside, Exchange, InterfaceLevel, exchange};
+use crate::physics::{Carriers, emission};
 
 use super::coefficients::{Coefficients, Entry};
 use super::kernels::Work;
@@ -98,31 +100,136 @@ impl<P: Num> Joint<P> {
     }
 }
 
+/// How deep a level lies below the vacuum level, over kT, given by the bands of one side.
+pub fn level_depth<P: Scalar>(level: &LevelEnergy<P>, by: &Entry<P>, thermal_energy: P) -> P {
+    let per_kt = thermal_energy.recip();
+    match level {
+        LevelEnergy::Intrinsic(energy) => {
+            (by.affinity + by.affinity_and_gap + by.ln_conduction - by.ln_valence) * 0.5 - *energy * per_kt
+        }
+        LevelEnergy::BelowConduction(energy) => by.affinity + *energy * per_kt,
+        LevelEnergy::AboveValence(energy) => by.affinity_and_gap - *energy * per_kt,
+    }
+}
+
+/// n1 and p1 of one side: its densities with the Fermi level at a level so deep.
+pub fn at_level<P: Scalar>(entry: &Entry<P>, depth: P) -> (P, P) {
+    (
+        (entry.ln_conduction + entry.affinity - depth).exp(),
+        (entry.ln_valence + depth - entry.affinity_and_gap).exp(),
+    )
+}
+
+/// Charge at an interface, and a level that takes and gives carriers of both sides.
+#[derive(Clone, Copy, Debug)]
+pub struct Source<P> {
+    /// Charge per area with every state empty.
+    pub empty: P,
+    /// States per area: each electron in one takes a charge away.
+    pub states: P,
+    /// The level.
+    pub level: Option<InterfaceLevel<P>>,
+}
+
+/// What a [`Source`] does at a state.
+#[derive(Clone, Copy, Debug)]
+pub struct Acted<T> {
+    /// Charge per area.
+    pub charge: T,
+    /// What the bands lose, where there is a level.
+    pub exchange: Option<Exchange<T>>,
+}
+
+impl<P: Scalar> Source<P> {
+    /// What an interface holds beyond recombination on one side; `None` where that is nothing. `narrow` is the side by whose bands
+    /// the level's energy is given.
+    pub fn new(
+        interface: &Interface<P>,
+        front: &Entry<P>,
+        rear: &Entry<P>,
+        narrow: &Entry<P>,
+        thermal_energy: P,
+    ) -> Option<Self> {
+        let zero = P::constant(0.0);
+        let per_area = 1.0 / (scales::DENSITY * scales::LENGTH);
+        let fixed = interface.sheet_charge.map(|charge| charge * per_area);
+        let states = interface.states.as_ref().map(|s| s.density * per_area);
+        let (s_n, s_p) = (interface.electron_recombination_velocity, interface.hole_recombination_velocity);
+        let recombines = s_n.value() != 0.0 && s_p.value() != 0.0;
+        let level = ((interface.both_sides || states.is_some()) && recombines).then(|| {
+            let given = interface.level.unwrap_or(LevelEnergy::Intrinsic(zero));
+            let depth = level_depth(&given, narrow, thermal_energy);
+            let ((n_front, p_front), (n_rear, p_rear)) = (at_level(front, depth), at_level(rear, depth));
+            let velocity = scales::TIME / scales::LENGTH;
+            InterfaceLevel {
+                electron_velocity: s_n * velocity,
+                hole_velocity: s_p * velocity,
+                n1: [n_front, n_rear],
+                p1: [p_front, p_rear],
+            }
+        });
+        if fixed.is_none() && level.is_none() {
+            return None;
+        }
+        let positive = interface.states.as_ref().is_some_and(|s| s.donors);
+        let states = states.unwrap_or(zero);
+        let empty = fixed.unwrap_or(zero) + if positive { states } else { zero };
+        Some(Source { empty, states, level })
+    }
+}
+
+impl<P: Copy> Source<P> {
+    /// Charge and exchange at a state, from the carriers of both sides and their quasi-Fermi potentials (electrons, holes).
+    pub fn act<T: Over<P>>(&self, sides: [&Side<T>; 2], phi: [[T; 2]; 2]) -> Acted<T> {
+        let beside = |s: usize| Beside {
+            carriers: Carriers { n: sides[s].n, p: sides[s].p },
+            ln: [sides[s].ln_n, sides[s].ln_p],
+            phi: phi[s],
+        };
+        let exchange = self.level.as_ref().map(|level| exchange(level, &beside(0), &beside(1)));
+        let empty = T::lift(self.empty);
+        let charge = exchange.as_ref().map_or(empty, |e| -(e.occupancy * self.states) + empty);
+        Acted { charge, exchange }
+    }
+}
+
 /// Unknowns of an interface: potential and levels of the front node, then of the rear one.
-type Both = Dual<f64, 6>;
+pub(super) type Both = Dual<f64, 6>;
 
 impl Work {
+    /// The carriers on both sides of the interface behind the entry `e`, and their quasi-Fermi potentials, with derivatives.
+    pub(super) fn both_sides(
+        &self,
+        c: &Coefficients<f64>,
+        e: usize,
+        shifts: [f64; 2],
+    ) -> ([Side<Both>; 2], [[Both; 2]; 2]) {
+        let phi = |e: usize, first: usize| {
+            [
+                Both::variable(self.u_n[e] + shifts[0], first + 1),
+                Both::variable(self.u_p[e] + shifts[1], first + 2),
+            ]
+        };
+        let at = |e: usize, first: usize| -> Side<Both> {
+            let [phi_n, phi_p] = phi(e, first);
+            side(c.statistics, &c.entries[e], Both::variable(self.psi[e], first), phi_n, phi_p)
+        };
+        ([at(e, 0), at(e + 1, 3)], [phi(e, 0), phi(e + 1, 3)])
+    }
+
     /// Puts the laws of the interfaces in the places of the cells that are not there: a pass over the few of them.
     pub fn interfaces(&mut self, c: &Coefficients<f64>, shifts: [f64; 2]) {
         for (layer, joint) in c.joints.iter().enumerate() {
             let Some(joint) = joint else { continue };
             let e = c.first[layer + 1] - 1;
-            let at = |e: usize, first: usize| -> Side<Both> {
-                side(
-                    c.statistics,
-                    &c.entries[e],
-                    Dual::variable(self.psi[e], first),
-                    Dual::variable(self.u_n[e] + shifts[0], first + 1),
-                    Dual::variable(self.u_p[e] + shifts[1], first + 2),
-                )
-            };
+            let ([front, rear], _) = self.both_sides(c, e, shifts);
             let rise = |level: &[f64], low: &[f64], unknown: usize| {
                 let mut rise = Both::fixed((level[e + 1] - level[e]) + (low[e + 1] - low[e]));
                 (rise.d[unknown], rise.d[unknown + 3]) = (-1.0, 1.0);
                 rise
             };
             let rises = [rise(&self.u_n, &self.low_n, 1), rise(&self.u_p, &self.low_p, 2)];
-            let fluxes = joint.fluxes(&at(e, 0), &at(e + 1, 3), rises);
+            let fluxes = joint.fluxes(&front, &rear, rises);
             for ((out, flux), unknown) in
                 [&mut self.electrons, &mut self.holes].into_iter().zip(fluxes).zip(1..)
             {

@@ -17,7 +17,7 @@ pub mod terminal;
 pub use assembly::System;
 pub use coefficients::{Cell, Coefficients, Entry, InterfaceRecombination};
 pub use contact::{Carrier, ContactLaw, Majority};
-pub use interface::{Emission, Joint};
+pub use interface::{Emission, Joint, Source};
 pub use side::Side;
 pub use terminal::Terminal;
 

@@ -92,9 +92,20 @@ where
                 rows[i][row] = rows[i][row] - flux;
             }
         }
-        if let (true, Some(front), Some(joint)) =
-            (e == c.first[layer], previous, layer.checked_sub(1).and_then(|l| c.joints[l].as_ref()))
-        {
+        let interface = layer.checked_sub(1).filter(|_| e == c.first[layer]);
+        if let (Some(front), Some(source)) = (previous, interface.and_then(|l| c.sources[l].as_ref())) {
+            let k = c.node(layer - 1, e - 1);
+            let level = |i: usize| [levels[i].0, levels[i].1];
+            let acted = source.act([&front, &at], [level(k), level(i)]);
+            rows[k][0] = rows[k][0] + acted.charge;
+            if let Some(exchange) = acted.exchange {
+                for (side, node) in [k, i].into_iter().enumerate() {
+                    rows[node][1] = rows[node][1] - exchange.electrons[side];
+                    rows[node][2] = rows[node][2] + exchange.holes[side];
+                }
+            }
+        }
+        if let (Some(front), Some(joint)) = (previous, interface.and_then(|l| c.joints[l].as_ref())) {
             let rises = [state[i][1] - state[i - 1][1], state[i][2] - state[i - 1][2]];
             for (row, flux) in (1..).zip(joint.fluxes(&front, &at, rises)) {
                 rows[i - 1][row] = rows[i - 1][row] + flux;

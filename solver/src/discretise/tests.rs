@@ -1,7 +1,8 @@
 //! The assembled Jacobian against dual numbers of the plain residual.
 
+use crate::analysis::tests::interface_levels::charged_cell;
 use crate::analysis::tests::{r1, r3};
-use crate::device::{Barrier, Contact, Device, Interface, Stack};
+use crate::device::{Barrier, Contact, Device, Interface, Stack, Transport};
 use crate::linear::Triple;
 use crate::math::Dual;
 use crate::mesh::{Grading, Mesh};
@@ -47,6 +48,7 @@ fn jacobian_is_the_derivative_of_the_plain_residual() {
         ..r3()
     };
     let emitting = crate::analysis::tests::interfaces::emitting(Some(2e3), None);
+    let emission = Transport::Thermionic { electron_velocity: Some(3e2), hole_velocity: None };
     for (name, stack) in [
         ("R1", r1()),
         ("R3", r3()),
@@ -54,6 +56,8 @@ fn jacobian_is_the_derivative_of_the_plain_residual() {
         ("resistor", resistor),
         ("velocities and a barrier", passing),
         ("thermionic", emitting),
+        ("levels", charged_cell(Transport::Continuous)),
+        ("levels, thermionic", charged_cell(emission)),
     ] {
         let c = coefficients(stack);
         let n = c.nodes();
@@ -178,9 +182,15 @@ fn terminal_gradient_against_differences() {
         ..r3()
     };
     let emitting = crate::analysis::tests::interfaces::emitting(None, None);
-    for (name, stack) in
-        [("R1", r1()), ("R3", r3()), ("blocked", blocked), ("passing", passing), ("thermionic", emitting)]
-    {
+    let emission = Transport::Thermionic { electron_velocity: Some(3e2), hole_velocity: None };
+    for (name, stack) in [
+        ("R1", r1()),
+        ("R3", r3()),
+        ("blocked", blocked),
+        ("passing", passing),
+        ("thermionic", emitting),
+        ("levels", charged_cell(emission)),
+    ] {
         let c = coefficients(stack);
         let n = c.nodes();
         let generation = vec![0.0; c.entries.len()];

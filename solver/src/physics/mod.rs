@@ -5,6 +5,7 @@
 pub mod auger;
 pub mod carriers;
 pub mod emission;
+pub mod interface_level;
 pub mod radiative;
 pub mod shockley_read_hall;
 pub mod statistics;

@@ -150,6 +150,23 @@ fn laws_of_interfaces_are_checked_and_kept() {
     let text = stack("valence_offset: 0.15.eV", "");
     assert_eq!(printed(&format!("{text}print((step.holes.to(\"eV\") + 0.15).abs() < 1e-9);")), ["true"]);
     fails(&stack("conduction_offset: 7.eV", "// ~ E240"));
+    fails(&stack("states: 1e12.per_cm2, states_kind: \"donor\"", "// ~ E109"));
+    fails(&stack("sheet_charge: 1e18.per_cm2", "// ~ E240"));
+    fails("interface(#{ states: 1e12.per_cm2, recombination_velocity: 1.cm_per_s }); // ~ E109");
+    fails("interface(#{ states_kind: \"donor\" }); // ~ E109");
+    fails("interface(#{ carriers: \"both\" }); // ~ E122");
+    fails("interface(#{ trap_energy: 0.1.eV, trap_above_valence_band: 0.7.eV }); // ~ E238");
+    let text = stack(
+        "recombination_velocity: 1e4.cm_per_s, carriers: \"both sides\", trap_energy: 0.1.eV, states: 1e11.per_cm2, states_kind: \"acceptor\", \
+         sheet_charge: -1e11.per_cm2",
+        "",
+    );
+    let lines = printed(&format!(
+        "{text}let point = cell.at(0.5.V, dark()); let found = point.interfaces[0];\n\
+         print(found.front + found.rear); print(found.occupancy < 1); print(found.charge < 0.C_per_cm2);\n\
+         print(found.seen_from_rear != ()); print(found.electron_jump == 0.eV);"
+    ));
+    assert_eq!(lines, ["wb", "true", "true", "true", "true"]);
 }
 
 /// Source of truth: the list of mistakes that every author meets.

@@ -2,7 +2,7 @@
 
 use std::sync::Arc;
 
-use epiloom_solver::device::{Interface, Layer, LayerOptics, Offset, Transport};
+use epiloom_solver::device::{Interface, Layer, LayerOptics, LevelEnergy, Offset, States, Transport};
 use epiloom_solver::materials::{Choice, Parameter};
 use rhai::Dynamic;
 
@@ -45,11 +45,20 @@ topic! {
               X / ((n + n1)/S_p + (p + p1)/S_n), with the densities and n1 = p1 = ni of the side of smaller gap. By thermionic emission \
               each carrier leaves the side of its higher band edge, h, with v n_h (1 - exp(-(E_F,h - E_F,o)/kT)): levels may jump, and what \
               the jump costs stands in the ledger under both layers' names. A band offset given here moves the affinity of the layer behind \
-              and of all layers after it by as much, so that the steps of other interfaces stay.",
+              and of all layers after it by as much, so that the steps of other interfaces stay. Energies of the level are told by the \
+              bands of the side of smaller gap (the rear one where gaps are equal). States fill and empty by the level's velocities and see \
+              both sides; their charge and their recombination have one occupancy.",
         options: &[
             OptionRow { key: "recombination_velocity", takes: "a velocity", doc: "Recombination velocity of both carriers." },
             OptionRow { key: "electron_recombination_velocity", takes: "a velocity", doc: "Recombination velocity S_n of electrons, if it differs." },
             OptionRow { key: "hole_recombination_velocity", takes: "a velocity", doc: "Recombination velocity S_p of holes, if it differs." },
+            OptionRow { key: "carriers", takes: "a text: \"smaller gap\" or \"both sides\"", doc: "Whose carriers recombine: those of the side of smaller gap (the default), or of both sides, electrons of one with holes of the other too." },
+            OptionRow { key: "trap_energy", takes: "an energy", doc: "Energy of the level above the intrinsic level, zero by default." },
+            OptionRow { key: "trap_below_conduction_band", takes: "an energy", doc: "Energy of the level below the conduction-band edge, instead of `trap_energy`." },
+            OptionRow { key: "trap_above_valence_band", takes: "an energy", doc: "Energy of the level above the valence-band edge, instead of `trap_energy`." },
+            OptionRow { key: "sheet_charge", takes: "a number per area", doc: "Fixed charge in elementary charges, positive or negative." },
+            OptionRow { key: "states", takes: "a number per area", doc: "States at the level; they need recombination velocities, which are cross-section times thermal velocity times states." },
+            OptionRow { key: "states_kind", takes: "a text: \"acceptor\" or \"donor\"", doc: "Negative when full, or positive when empty; needed beside `states`." },
             OptionRow { key: "transport", takes: "a text: \"continuous\" or \"thermionic\"", doc: "How carriers cross: with continuous quasi-Fermi levels (the default) or by thermionic emission over the step of the bands." },
             OptionRow { key: "electron_emission_velocity", takes: "a velocity", doc: "Emission velocity v of electrons. Unless given it is A* T^2/(q Nc), A* of the smaller of the two sides' masses, Nc of the barrier's side." },
             OptionRow { key: "hole_emission_velocity", takes: "a velocity", doc: "Emission velocity v of holes, unless A* T^2/(q Nv)." },
@@ -347,6 +356,13 @@ fn interface(call: &Call, arguments: &mut [&mut Dynamic]) -> Answer {
         "conduction_offset",
         "valence_offset",
         "offset_ratio",
+        "carriers",
+        "trap_energy",
+        "trap_below_conduction_band",
+        "trap_above_valence_band",
+        "sheet_charge",
+        "states",
+        "states_kind",
     ];
     let options = Options::new(arguments[0], "`interface`", keys).map_err(Faults)?;
     let both = velocity(&options, keys[0], false)?;
@@ -359,6 +375,10 @@ fn interface(call: &Call, arguments: &mut [&mut Dynamic]) -> Answer {
         hole_recombination_velocity: one(keys[2])?,
         transport: transport(&options)?,
         offset: offset(&options)?,
+        level: level(&options)?,
+        both_sides: choice(&options, "carriers", ["smaller gap", "both sides"])? == Some(1),
+        sheet_charge: options.quantity("sheet_charge", "`sheet_charge`", Dimension::AREAL_DENSITY)?,
+        states: states(&options)?,
     };
     Ok(Dynamic::from(InterfaceValue { interface, place: call.line_and_column() }))
 }
@@ -366,23 +386,7 @@ fn interface(call: &Call, arguments: &mut [&mut Dynamic]) -> Answer {
 /// How carriers cross an interface.
 fn transport(options: &Options) -> Result<Transport<Quantity>, Fault> {
     let velocities = ["electron_emission_velocity", "hole_emission_velocity"];
-    let given = match options.get("transport") {
-        None => None,
-        Some(value) => {
-            let at = |fault: Fault| fault.at(Place::Option("transport".to_string()));
-            match text(value, "`transport`").map_err(at)?.as_str() {
-                "continuous" => Some(false),
-                "thermionic" => Some(true),
-                other => {
-                    return Err(at(Fault::new(
-                        codes::WRONG_CHOICE,
-                        format!("`transport` cannot be \"{other}\""),
-                    )
-                    .candidates(other, ["continuous", "thermionic"])));
-                }
-            }
-        }
-    };
+    let given = choice(options, "transport", ["continuous", "thermionic"])?.map(|which| which == 1);
     let named = velocities.into_iter().find(|key| options.get(key).is_some());
     match (given, named) {
         (Some(false), Some(key)) => Err(Fault::new(
@@ -397,6 +401,70 @@ fn transport(options: &Options) -> Result<Transport<Quantity>, Fault> {
             hole_velocity: emission_velocity(options, velocities[1])?,
         }),
     }
+}
+
+/// Which of two words an option says, if it stands there.
+fn choice(options: &Options, key: &str, words: [&str; 2]) -> Result<Option<usize>, Fault> {
+    let at = |fault: Fault| fault.at(Place::Option(key.to_string()));
+    let Some(value) = options.get(key) else { return Ok(None) };
+    let given = text(value, &format!("`{key}`")).map_err(at)?;
+    let which = words.iter().position(|word| *word == given);
+    which.map(Some).ok_or_else(|| {
+        at(Fault::new(codes::WRONG_CHOICE, format!("`{key}` cannot be \"{given}\""))
+            .candidates(&given, words))
+    })
+}
+
+/// The option of several that exclude each other which stands there, if any.
+fn one_of<'a>(
+    options: &Options,
+    keys: [&'a str; 3],
+    what: &str,
+    help: &str,
+) -> Result<Option<&'a str>, Fault> {
+    let given: Vec<&str> = keys.into_iter().filter(|key| options.get(key).is_some()).collect();
+    match given[..] {
+        [first, second, ..] => {
+            Err(Fault::new(codes::OPTIONS_CONTRADICT, format!("`{first}` and `{second}` both say {what}"))
+                .help(help.to_string())
+                .at(Place::Option(second.to_string())))
+        }
+        _ => Ok(given.first().copied()),
+    }
+}
+
+/// Where the level of an interface lies, if that is said.
+fn level(options: &Options) -> Result<Option<LevelEnergy<Quantity>>, Fault> {
+    let keys = ["trap_energy", "trap_below_conduction_band", "trap_above_valence_band"];
+    let Some(key) = one_of(options, keys, "where the level lies", "give one")? else { return Ok(None) };
+    let energy = options.quantity(key, &format!("`{key}`"), Dimension::ENERGY)?;
+    Ok(energy.map(match key {
+        "trap_energy" => LevelEnergy::Intrinsic,
+        "trap_below_conduction_band" => LevelEnergy::BelowConduction,
+        _ => LevelEnergy::AboveValence,
+    }))
+}
+
+/// States that hold charge, if there are any.
+fn states(options: &Options) -> Result<Option<States<Quantity>>, Fault> {
+    let kind = choice(options, "states_kind", ["acceptor", "donor"])?;
+    let Some(density) = options.quantity("states", "`states`", Dimension::AREAL_DENSITY)? else {
+        return match kind {
+            None => Ok(None),
+            Some(_) => Err(Fault::new(
+                codes::MISSING_OPTION,
+                "`states_kind` says of what kind states are that are not there",
+            )
+            .help("give `states`, a number per area")
+            .at(Place::Option("states_kind".to_string()))),
+        };
+    };
+    let Some(kind) = kind else {
+        return Err(Fault::new(codes::MISSING_OPTION, "`states` needs `states_kind`")
+            .help("states_kind: \"acceptor\" (negative when full) or \"donor\" (positive when empty)")
+            .at(Place::Option("states".to_string())));
+    };
+    Ok(Some(States { density, donors: kind == 1 }))
 }
 
 /// An emission velocity above zero.
@@ -415,16 +483,8 @@ fn emission_velocity(options: &Options, key: &str) -> Result<Option<Quantity>, F
 /// How the bands line up, if that is said.
 fn offset(options: &Options) -> Result<Option<Offset<Quantity>>, Fault> {
     let keys = ["conduction_offset", "valence_offset", "offset_ratio"];
-    let given: Vec<&str> = keys.into_iter().filter(|key| options.get(key).is_some()).collect();
-    if let [first, second, ..] = given[..] {
-        return Err(Fault::new(
-            codes::OPTIONS_CONTRADICT,
-            format!("`{first}` and `{second}` both say how the bands line up"),
-        )
-        .help("give one: the other band follows, since the gaps are those of the materials")
-        .at(Place::Option(second.to_string())));
-    }
-    let Some(&key) = given.first() else { return Ok(None) };
+    let help = "give one: the other band follows, since the gaps are those of the materials";
+    let Some(key) = one_of(options, keys, "how the bands line up", help)? else { return Ok(None) };
     let dimension = if key == keys[2] { Dimension::NONE } else { Dimension::ENERGY };
     let value = options.quantity(key, &format!("`{key}`"), dimension)?;
     Ok(value.map(match key {

@@ -137,7 +137,7 @@ topic! {
             getter::<StateValue>(engine, session, "conductance", |_, a| of_state(a[0], Dimension::AREA_CONDUCTANCE, |s| Quantity::si(s.conductance, Dimension::AREA_CONDUCTANCE)));
             index_getter::<StateValue>(engine, session, |_, arguments| {
                 let name = text(arguments[1], "a property")?;
-                let known = ["voltage", "junction_voltage", "current_density", "conductance", "profiles", "ledger", "sheet_resistance", "barriers"];
+                let known = ["voltage", "junction_voltage", "current_density", "conductance", "profiles", "ledger", "sheet_resistance", "barriers", "interfaces"];
                 Err(unknown_property("bias point", &name).candidates(&name, known).into())
             });
         },
@@ -218,6 +218,23 @@ topic! {
             });
         },
     }
+    Property "interfaces" of "bias point" {
+        forms: ["point.interfaces"],
+        doc: "What each interface does: an array of maps with `front`, `rear` (the two layers), `seen_from_front` and `seen_from_rear`, the \
+              effective recombination velocity that the minority carriers of either layer meet there: their flux into the plane of the \
+              interface over their excess, the density less that in balance with the majority (`()` in equilibrium, negative where the interface injects); \
+              `electron_jump` and `hole_jump`, rises of the quasi-Fermi levels on the way to the rear; `charge`; `occupancy` of the \
+              level by electrons (`()` where it does not see both sides).",
+        example: "let gaas = material(\"GaAs\", #{ electron_lifetime: 20.ns, hole_lifetime: 20.ns });\nlet wide = material(\"AlGaAs\", #{ x: 0.3, electron_lifetime: 1.ns, hole_lifetime: 1.ns });\nlet cell = stack(\"diode\", [layer(\"emitter\", gaas, 100.nm, donors(2e18.per_cm3)), layer(\"base\", gaas, 2.um, acceptors(1e17.per_cm3)), interface(#{ transport: \"thermionic\" }), layer(\"barrier\", wide, 50.nm, acceptors(1e18.per_cm3))]);\nlet between = cell.at(0.9.V, dark()).interfaces[1];\nprint(`${between.front} / ${between.rear}: ${between.seen_from_front}`);",
+        register: |engine, session| {
+            getter::<StateValue>(engine, session, "interfaces", |_, arguments| {
+                let state: StateValue = take(arguments[0], "the bias point", "a bias point")?;
+                let Some(result) = &state.0.result else { return Ok(Dynamic::from(Unknown)) };
+                let pairs = state.0.stack.layers.windows(2).zip(&result.interfaces);
+                Ok(pairs.map(|(pair, found)| interface_map(&pair[0].name, &pair[1].name, found)).collect::<Array>().into())
+            });
+        },
+    }
     Property "points" of "spectral response" {
         forms: ["response.points"],
         doc: "Its points, maps with `wavelength`, `eqe` (with its error), `iqe` and `reflectance`.",
@@ -241,6 +258,23 @@ topic! {
             function(engine, session, "store", 2..=2, store);
         },
     }
+}
+
+/// An interface at a bias point.
+fn interface_map(front: &str, rear: &str, found: &analysis::InterfaceState) -> Dynamic {
+    let mut map = Map::new();
+    map.insert("front".into(), front.into());
+    map.insert("rear".into(), rear.into());
+    for (key, velocity) in ["seen_from_front", "seen_from_rear"].into_iter().zip(found.seen_from) {
+        let velocity = velocity.map_or(Dynamic::UNIT, |v| give(Quantity::si(v, Dimension::VELOCITY)));
+        map.insert(key.into(), velocity);
+    }
+    map.insert("electron_jump".into(), give(Quantity::si(found.electron_jump, Dimension::ENERGY)));
+    map.insert("hole_jump".into(), give(Quantity::si(found.hole_jump, Dimension::ENERGY)));
+    map.insert("charge".into(), give(Quantity::si(found.charge, Dimension::CHARGE_DENSITY)));
+    let occupancy = found.occupancy.map_or(Dynamic::UNIT, |f| give(Quantity::number(f)));
+    map.insert("occupancy".into(), occupancy);
+    map.into()
 }
 
 /// A figure of merit of a curve by its word.
