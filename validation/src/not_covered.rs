@@ -7,10 +7,10 @@ pub const NOT_COVERED: [&str; 14] = [
      device whose radiative coefficient is set to the emission of its faces: that tests transport and bookkeeping, not emission.",
     "Time and frequency: capacitance is checked as the frequency goes to zero; admittance at a frequency, transients and \
      photoluminescence decay are not in the model.",
-    "Thermionic emission at interfaces and tunnelling: not in the model. Interfaces are checked with continuous quasi-Fermi \
-     levels, contacts as ohmic ones with a recombination velocity; Schottky and selective contacts by the solver's own tests \
-     against the law of thermionic emission.",
-    "Incomplete ionisation, band-gap narrowing, fields that saturate velocities, traps that hold charge: not in the model.",
+    "Tunnelling: not in the model. Interfaces are checked with continuous quasi-Fermi levels, contacts as ohmic ones with a \
+     recombination velocity; thermionic emission at interfaces, Schottky and selective contacts by the solver's own tests \
+     against the law of thermionic emission, its limits and its symmetries.",
+    "Incomplete ionisation, band-gap narrowing, fields that saturate velocities, traps in the bulk that hold charge: not in the model.",
     "Several junctions in one stack: equations and ledgers are checked by the solver's own tests, no outside solution is.",
     "Coatings and rear reflection: the solver's own tests hold them to Fresnel's formulas and to closed sums; no measured \
      reflectance is compared.",
@@ -19,7 +19,7 @@ pub const NOT_COVERED: [&str; 14] = [
     "Temperature: checks stand at 298.15 K and 300 K; other temperatures are covered by the survey of odd devices, which asks \
      for solutions and closed accounts, not for outside values.",
     "Graded layers: one manufactured solution; no graded device was solved by another program.",
-    "Recombination at interfaces: no outside solution; the solver's own tests derive it.",
+    "Recombination, states and fixed charge at interfaces: no outside solution; the solver's own tests derive them.",
     "Fabricated cells: four records as ceilings, and one voltage. No split lot of a paper is reproduced: doping profiles, \
      lifetimes and surfaces of published lots are not given in what could be read, and fitting them would prove little.",
     "Sources marked `from memory` were not looked up; editions of the efficiency tables after about 2020 may hold higher records.",

@@ -3,7 +3,8 @@
 use std::collections::BTreeMap;
 
 use epiloom_solver::device::{
-    Barrier, Contact, Diode, Interface, Layer, LayerOptics, Profile, Side, Stack, Statistics,
+    Barrier, Contact, Diode, Interface, Layer, LayerOptics, LevelEnergy, Offset, Profile, Side, Stack, States,
+    Statistics, Transport,
 };
 use epiloom_solver::materials::{Material, Parameter};
 use epiloom_solver::math::elementary;
@@ -194,7 +195,55 @@ pub fn specimen(seed: u64) -> (Stack, Light, f64) {
         stack.circuit.second_diode =
             Some(Diode { saturation_current_density, ideality: r.between(1.0, 3.0) });
     }
+    // Another one for what interfaces do beyond recombination on one side.
+    let mut r = Random::new(seed.rotate_left(32) ^ INTERFACES);
+    for interface in &mut stack.interfaces {
+        if r.chance(0.3) {
+            let known = interface.unwrap_or(Interface::recombining(0.0, 0.0));
+            *interface = Some(other_interface(&mut r, known));
+        }
+    }
     (stack, light, voltage)
+}
+
+/// Tells the stream of interfaces from that of the rest.
+const INTERFACES: u64 = 0x9e37_79b9_7f4a_7c15;
+
+/// An interface that emits, holds charge, sees both sides or lines its bands up by hand.
+fn other_interface(r: &mut Random, known: Interface) -> Interface {
+    let mut interface = known;
+    let velocity = |r: &mut Random| r.chance(0.5).then(|| r.decade(1e-1, 1e6));
+    if r.chance(0.6) {
+        let (electron_velocity, hole_velocity) = (velocity(r), velocity(r));
+        interface.transport = Transport::Thermionic { electron_velocity, hole_velocity };
+    }
+    if r.chance(0.4) {
+        interface.electron_recombination_velocity = r.decade(1e-2, 1e5);
+        interface.hole_recombination_velocity = r.decade(1e-2, 1e5);
+        interface.both_sides = r.chance(0.5);
+        interface.level = r.chance(0.5).then(|| {
+            let energy = r.between(0.1, 0.8) * ELEMENTARY_CHARGE;
+            match r.below(2) {
+                0 => LevelEnergy::BelowConduction(energy),
+                _ => LevelEnergy::AboveValence(energy),
+            }
+        });
+        if r.chance(0.5) {
+            interface.states = Some(States { density: r.decade(1e12, 1e17), donors: r.chance(0.5) });
+        }
+    }
+    if r.chance(0.2) {
+        interface.sheet_charge = Some(r.decade(1e13, 1e16) * if r.chance(0.5) { 1.0 } else { -1.0 });
+    }
+    if r.chance(0.2) {
+        let energy = r.between(-0.4, 0.4) * ELEMENTARY_CHARGE;
+        interface.offset = Some(match r.below(3) {
+            0 => Offset::Conduction(energy),
+            1 => Offset::Valence(energy),
+            _ => Offset::Share(r.between(0.0, 1.0)),
+        });
+    }
+    interface
 }
 
 /// A contact that is not ohmic; none in one of three.
