@@ -266,9 +266,11 @@ impl System {
             add(nodes[0], 0, acted.charge);
             let mut sums = vec![(0, acted.charge)];
             if let Some(exchange) = acted.exchange {
-                for side in 0..2 {
-                    add(nodes[side], 1, -exchange.electrons[side]);
-                    add(nodes[side], 2, exchange.holes[side]);
+                for ((node, electrons), holes) in
+                    nodes.into_iter().zip(exchange.electrons).zip(exchange.holes)
+                {
+                    add(node, 1, -electrons);
+                    add(node, 2, holes);
                 }
                 let u = exchange.recombination;
                 sums.extend([(1, -u), (2, u)]);

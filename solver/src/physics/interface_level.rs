@@ -143,9 +143,9 @@ mod tests {
             assert!((got.occupancy / f - 1.0).abs() <= 1e-13);
             let shares: f64 = got.electron_share.iter().chain(&got.hole_share).sum();
             assert!((shares - 1.0).abs() <= 1e-13);
-            for s in 0..2 {
-                let n = l.electron_velocity * sides[s].carriers.n * (1.0 - f);
-                let p = l.hole_velocity * sides[s].carriers.p * f;
+            for (s, side) in sides.iter().enumerate() {
+                let n = l.electron_velocity * side.carriers.n * (1.0 - f);
+                let p = l.hole_velocity * side.carriers.p * f;
                 let electrons = n - l.electron_velocity * l.n1[s] * f;
                 let holes = p - l.hole_velocity * l.p1[s] * (1.0 - f);
                 assert!((got.electrons[s] - electrons).abs() <= 1e-12 * n, "{phi:?} {s}");

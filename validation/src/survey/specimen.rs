@@ -3,8 +3,8 @@
 use std::collections::BTreeMap;
 
 use epiloom_solver::device::{
-    Barrier, Contact, Diode, Interface, Layer, LayerOptics, LevelEnergy, Offset, Profile, Side, Stack, States,
-    Statistics, Transport,
+    Barrier, Contact, Diode, Interface, Layer, LayerOptics, LevelEnergy, Offset, Profile, Side, Stack,
+    States, Statistics, Transport,
 };
 use epiloom_solver::materials::{Material, Parameter};
 use epiloom_solver::math::elementary;
