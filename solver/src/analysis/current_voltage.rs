@@ -191,16 +191,21 @@ fn power_slope(p: &Point) -> f64 {
     p.current + p.voltage * p.conductance
 }
 
-/// The root of [`power_slope`] between two points of a mesh where it changes sign: Newton steps with the curvature of an
-/// exponential through the last two points, kept inside the bracket.
+/// The root of [`power_slope`] between two points of a mesh: Newton steps with the curvature of an exponential through the
+/// last two points, kept inside a bracket in which a greatest power lies.
+///
+/// The power rises at the bracket's lower end; at its upper end it falls, or is less than at the lower one (a curve with a
+/// step may rise at both).
 fn maximum_power(ladder: &mut Ladder, rung: usize, mut a: Point, mut b: Point) -> Option<(Point, f64)> {
-    if power_slope(&a) > 0.0 || power_slope(&b) < 0.0 {
+    if power_slope(&a) > 0.0 || power_slope(&b) < 0.0 && power(&b) > power(&a) {
         return None;
     }
     let tolerances = ladder.tolerances;
     let mut here = if power_slope(&a).abs() < power_slope(&b).abs() { a.clone() } else { b.clone() };
     let mut other = if here.voltage == a.voltage { b.clone() } else { a.clone() };
     let (mut rate, mut before) = (bending(&here, &other), f64::INFINITY);
+    // The last two steps asked for: where they do not shrink, the bracket is halved.
+    let mut steps = [f64::INFINITY; 2];
     for _ in 0..60 {
         // Nearer points say nothing but the rounding of their slopes, which counts where the curve is nearly straight.
         if (here.voltage - other.voltage).abs() >= TELLING {
@@ -208,20 +213,25 @@ fn maximum_power(ladder: &mut Ladder, rung: usize, mut a: Point, mut b: Point) -
         }
         let step = power_step(&here, rate);
         let mut next = here.voltage + step;
-        if arrived(step, &mut before) {
+        let (low, high) = (a.voltage.min(b.voltage), a.voltage.max(b.voltage));
+        // Rounding of the slope may keep the step above what the bracket allows.
+        if arrived(step, &mut before) || high - low <= POWER_STEP {
             return Some((here, rate));
         }
-        let (low, high) = (a.voltage.min(b.voltage), a.voltage.max(b.voltage));
-        if !(next > low && next < high) {
+        if !(next > low && next < high) || step.abs() > 0.5 * steps[0] {
             next = 0.5 * (low + high);
         }
+        steps = [steps[1], step.abs()];
         let problem = &mut ladder.rungs[rung].problem;
         let share = (next - a.voltage) / (b.voltage - a.voltage);
         let guess = hermite(&a, &b, a.state.voltage + share * (b.state.voltage - a.state.voltage));
         let drive = problem.drive(next);
         problem.grant();
-        let point = problem.newton(&guess, drive, &tolerances).ok()?;
-        if power_slope(&point) < 0.0 {
+        let point = match problem.newton(&guess, drive, &tolerances) {
+            Ok(point) => point,
+            Err(_) => problem.advance(None, &here, next, &tolerances).ok()?,
+        };
+        if power_slope(&point) < 0.0 && power(&point) >= power(&a) {
             a = point.clone();
         } else {
             b = point.clone();
@@ -314,7 +324,8 @@ fn expected(ladder: &Ladder, rung: usize, coarse: &Point, correction: Option<&Co
     guess
 }
 
-/// Maximum power on a finer mesh, from the coarser mesh's point with the rate at which its slope grows.
+/// Maximum power on a finer mesh, from the coarser mesh's point with the rate at which its slope grows; where that does not
+/// get there, in a bracket.
 fn finer_power(
     ladder: &mut Ladder,
     rung: usize,
@@ -323,13 +334,14 @@ fn finer_power(
     bending: f64,
 ) -> Result<Option<Point>, AnalysisError> {
     let drive = ladder.rungs[rung].problem.drive(coarse.voltage);
-    let mut here = ladder.solve_from(rung, guess, drive, coarse.voltage)?;
+    let start = ladder.solve_from(rung, guess, drive, coarse.voltage)?;
     let tolerances = ladder.tolerances;
     let mut before = f64::INFINITY;
+    let mut here = start.clone();
     for _ in 0..20 {
         let step = power_step(&here, bending);
         if !step.is_finite() {
-            return Ok(None);
+            break;
         }
         if arrived(step, &mut before) {
             return Ok(Some(here));
@@ -337,10 +349,26 @@ fn finer_power(
         let aim = here.voltage + step.clamp(-SCAN, SCAN);
         match ladder.rungs[rung].problem.advance(None, &here, aim, &tolerances) {
             Ok(point) => here = point,
-            Err(_) => return Ok(None),
+            Err(_) => break,
         }
     }
-    Ok(None)
+    Ok(bracketed_power(ladder, rung, &start))
+}
+
+/// Maximum power about a point, between two voltages with a greatest power between them.
+fn bracketed_power(ladder: &mut Ladder, rung: usize, start: &Point) -> Option<Point> {
+    let tolerances = ladder.tolerances;
+    let mut reach = 0.2 * SCAN;
+    while reach < 1.0 {
+        let problem = &mut ladder.rungs[rung].problem;
+        let low = problem.advance(None, start, (start.voltage - reach).max(0.0), &tolerances).ok()?;
+        let high = problem.advance(None, start, start.voltage + reach, &tolerances).ok()?;
+        if power_slope(&low) <= 0.0 && power_slope(&high) >= 0.0 {
+            return maximum_power(ladder, rung, low, high).map(|(point, _)| point);
+        }
+        reach *= 3.0;
+    }
+    None
 }
 
 fn levels(curves: &[Curve], read: impl Fn(&Curve) -> Option<f64>) -> Vec<f64> {
