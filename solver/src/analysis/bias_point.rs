@@ -48,6 +48,18 @@ fn accurate(accuracy: f64, points: &[Point], ledgers: &[Ledger]) -> bool {
         })
 }
 
+/// The numerical error of the finest mesh's slope, from its values on all meshes and the finest one's own rounding.
+pub(crate) fn conductance_error<'a>(points: impl IntoIterator<Item = &'a Point>) -> f64 {
+    let (mut levels, mut rounding) = (Vec::new(), 0.0);
+    for point in points {
+        levels.push(point.conductance);
+        rounding = point.conductance_error;
+    }
+    let figure = Figure::from_levels(levels);
+    let own = figure.levels.last().copied().unwrap_or(f64::NAN);
+    (figure.value - own).abs() + figure.error + rounding
+}
+
 /// The dark equilibrium.
 pub fn equilibrium(device: &Device) -> Result<BiasPoint, AnalysisError> {
     bias_point(device, &Light::Dark, 0.0)
@@ -86,6 +98,7 @@ fn collect(ladder: &mut Ladder, voltage: f64, points: Vec<Point>, mut ledgers: V
         current_density,
         own_current_density: point.current,
         conductance: point.conductance,
+        conductance_error: conductance_error(&points),
         profiles,
         ledger,
         carrier_figures,

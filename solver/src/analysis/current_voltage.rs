@@ -6,6 +6,7 @@ use crate::solve::continuation::hermite;
 use crate::solve::extrapolation::extrapolate;
 use crate::solve::{Drive, Point, State};
 
+use super::bias_point::conductance_error;
 use super::figure::{Absent, Figure, Outcome};
 use super::ladder::{AnalysisError, Correction, LARGEST_VOLTAGE, Ladder, MOST, check_voltage};
 use super::results::{CurrentVoltage, JvPoint, Voltages, Warning};
@@ -439,6 +440,7 @@ fn collect(
                 junction_voltage: p.state.voltage,
                 current_density: p.current,
                 conductance: p.conductance,
+                conductance_error: conductance_error(curves.iter().filter_map(|c| c.points.get(k))),
                 extrapolated: Figure::from_levels(levels(&curves, |c| c.points.get(k).map(|p| p.current))),
             }
         })

@@ -201,6 +201,9 @@ impl<'a> Ladder<'a> {
             return Ok(point);
         }
         problem.work.rejected_steps += 1;
+        if let Ok(point) = problem.careful_newton(guess, drive, &tolerances) {
+            return Ok(point);
+        }
         let result = problem
             .short_circuit(&tolerances)
             .and_then(|start| problem.advance(None, &start, voltage, &tolerances))

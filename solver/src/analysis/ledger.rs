@@ -175,8 +175,64 @@ pub(super) fn edge_rounding(problem: &Problem, point: &Point, k: usize, largest_
     let system = problem.system();
     let size = |node: usize| point.state.nodes[node].iter().map(|x| x.abs()).sum::<f64>();
     let energies = size(k) + size(k + 1) + largest_energy;
-    4.0 * f64::EPSILON * energies * (system.electron_flux[k].abs() + system.hole_flux[k].abs())
+    ROUNDINGS * energies * (system.electron_flux[k].abs() + system.hole_flux[k].abs())
 }
+
+/// Rounding of the account of free energy, scaled: every rate and flux holds the rounding of the energies that its exponents
+/// are made from, every splitting that of two levels.
+fn energy_rounding(problem: &Problem, point: &Point, locals: &[Local], surfaces: &[Taken; 2]) -> f64 {
+    let c = &problem.coefficients;
+    let system = problem.system();
+    let light = point.state.light;
+    // Of a rate with a splitting: its own, relative, and that of the splitting.
+    let rated = |rate: f64, splitting: f64, energies: f64, levels: f64| {
+        ROUNDINGS * rate.abs() * (energies * splitting.abs() + levels)
+    };
+    let mut sum = 0.0;
+    let mut sizes = Vec::with_capacity(locals.len());
+    for ((e, _, i), local) in c.places().zip(locals) {
+        let levels = local.phi_n.abs() + local.phi_p.abs();
+        let energies = point.state.nodes[i][0].abs() + levels + c.entries[e].affinity_and_gap.abs();
+        let rates: f64 = local.rates.iter().map(|r| r.abs()).sum::<f64>() * c.entries[e].volume;
+        sum += rated(rates, local.splitting, energies, levels)
+            + rated(problem.generation[e] * light, 0.0, 0.0, levels);
+        sizes.push((energies, levels));
+    }
+    for interface in c.interfaces.iter().flatten() {
+        let (local, (energies, levels)) = (&locals[interface.entry], sizes[interface.entry]);
+        let rate = interface_recombination::<f64, f64>(interface, &local.side, local.splitting);
+        sum += rated(rate, local.splitting, energies, levels);
+    }
+    for (which, (taken, (energies, levels))) in
+        surfaces.iter().zip([sizes[0], sizes[sizes.len() - 1]]).enumerate()
+    {
+        sum += rated(taken.rate, taken.energy, energies, levels);
+        sum += ROUNDINGS * energies * taken.other.unwrap_or(0.0).abs();
+        sum += ROUNDINGS * levels * system.surface[which].iter().map(|(flux, _)| flux.abs()).sum::<f64>();
+    }
+    for layer in 0..c.layers() {
+        for e in c.first[layer]..c.first[layer + 1] - 1 {
+            let k = e - layer;
+            let energies = sizes[e].0 + sizes[e + 1].0;
+            let rise = |which: usize| (point.state.nodes[k + 1][which] - point.state.nodes[k][which]).abs();
+            let transport = (system.electron_flux[k] * rise(1)).abs() + (system.hole_flux[k] * rise(2)).abs();
+            sum += ROUNDINGS * energies * transport;
+        }
+    }
+    sum
+}
+
+/// The largest sum of the energies that a rate's exponents are made from, kT.
+fn largest_energies(problem: &Problem, point: &Point) -> f64 {
+    let node = |x: &[f64; 3]| x.iter().map(|x| x.abs()).sum::<f64>();
+    point.state.nodes.iter().map(node).fold(0.0, f64::max)
+        + problem.rear_level(point.state.voltage).abs()
+        + problem.largest_energy()
+}
+
+/// Roundings of a rate or a flux, each of the size of the energies in its exponents: the potential, the level, the band's edge
+/// and their sum.
+const ROUNDINGS: f64 = 4.0 * f64::EPSILON;
 
 /// The account of a solved point. The problem must have been assembled at its state.
 pub(crate) fn ledger(
@@ -343,12 +399,11 @@ pub(crate) fn ledger(
     }
     ledger.add(part, "", "delivered to the terminals", device_power - shunt - diode - series, false);
     ledger.energy_closure = balance.value() * power;
-    // Every splitting holds the rounding of two levels; every flux that of its edge.
-    let largest = locals.iter().map(|l| l.phi_n.abs().max(l.phi_p.abs())).fold(1.0, f64::max);
-    let turnover: f64 =
-        generated.iter().sum::<f64>() + recombined.iter().flatten().map(|r| r.abs()).sum::<f64>();
-    let rounding = 8.0 * f64::EPSILON * largest * (turnover + terminal.magnitude);
-    ledger.energy_bound = (1e-12 * balance.magnitude() + rounding) * power;
+    let rounding = energy_rounding(problem, point, &locals, &surfaces)
+        + f64::EPSILON * terminal.magnitude * junction_voltage.abs();
+    // What the last update leaves is its square.
+    let left = f64::EPSILON.max(point.last_update * point.last_update) * balance.magnitude();
+    ledger.energy_bound = (left + rounding) * power;
 
     // The photon side of it.
     if let Some(absorbed) = &illumination.photon_energy {
@@ -368,7 +423,9 @@ pub(crate) fn ledger(
         .min_by(|a, b| a.1.total_cmp(&b.1));
     if let Some((k, rounding)) = best {
         let edge = -c.polarity * (system.electron_flux[k] + system.hole_flux[k]);
-        let own = 16.0 * f64::EPSILON * terminal.magnitude;
+        // Every term of the sum holds the rounding of its own energies, and the fluxes what the last iteration left.
+        let own =
+            ROUNDINGS * largest_energies(problem, point) * terminal.magnitude + point.flux_error / current;
         ledger.carrier_closure = (terminal.current - edge) * current;
         ledger.carrier_bound = (1e-9 * terminal.current.abs() + rounding + own) * current;
         ledger.carrier_checked = terminal.from_rows && rounding < 1e-3 * terminal.magnitude;

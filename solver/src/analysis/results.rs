@@ -41,8 +41,10 @@ pub struct JvPoint {
     pub junction_voltage: f64,
     /// Terminal current density, positive for forward diode current, A/m^2.
     pub current_density: f64,
-    /// Slope dJ/dV at the terminals, S/m^2.
+    /// Slope dJ/dV at the terminals on the finest mesh, S/m^2.
     pub conductance: f64,
+    /// Estimate of its numerical error: what the meshes say, and a bound on rounding and on what the last iteration leaves.
+    pub conductance_error: f64,
     /// The current density extrapolated over the nested meshes, with its error.
     pub extrapolated: Figure,
 }
@@ -146,6 +148,8 @@ pub struct BiasPoint {
     pub own_current_density: f64,
     /// Slope dJ/dV at the terminals on the finest mesh, S/m^2.
     pub conductance: f64,
+    /// Estimate of its numerical error: what the meshes say, and a bound on rounding and on what the last iteration leaves.
+    pub conductance_error: f64,
     /// Profiles on the finest mesh.
     pub profiles: Profiles,
     /// The account, on the finest mesh.

@@ -4,9 +4,11 @@ pub mod assembled;
 pub mod block_tridiagonal;
 pub mod factors;
 mod joints;
+pub mod shifted;
 
 pub use block_tridiagonal::BlockTridiagonal;
 pub use factors::{Factors, Singular};
+pub use shifted::{Boundary, ShiftedFactors};
 
 /// A 3 x 3 block.
 pub type Block = nalgebra::Matrix3<f64>;

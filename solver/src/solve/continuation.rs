@@ -78,11 +78,14 @@ impl Problem {
             return Ok(point);
         }
         self.work.rejected_steps += 1;
+        if let Ok(point) = self.careful_newton(&lit, Drive::Terminal(0.0), tolerances) {
+            return Ok(point);
+        }
         if let Ok(point) = self.relax(&lit, 0.0, tolerances) {
             if point.voltage.abs() <= REACHED {
                 return Ok(point);
             }
-            if let Ok(point) = self.newton(&point.state, Drive::Terminal(0.0), tolerances) {
+            if let Ok(point) = self.careful_newton(&point.state, Drive::Terminal(0.0), tolerances) {
                 return Ok(point);
             }
             if let Ok(point) = self.advance(None, &point, 0.0, tolerances) {
@@ -96,7 +99,7 @@ impl Problem {
         loop {
             let mut state = good.state.clone();
             state.light = light;
-            match self.newton(&state, Drive::Terminal(0.0), tolerances) {
+            match self.careful_newton(&state, Drive::Terminal(0.0), tolerances) {
                 Ok(point) if light >= 1.0 => return Ok(point),
                 Ok(point) => {
                     good = point;
@@ -139,6 +142,8 @@ impl Problem {
         // The step below which a failing one is tried through time: all of them once that was needed.
         let mut relaxed = RELAXED_STEP;
         let mut at_once = true;
+        // Once the ordinary elimination has failed where the careful one has not, that is taken for the rest of the way.
+        let mut careful = false;
         loop {
             let remaining = target - here.voltage;
             let mut aim = here.voltage + step;
@@ -146,7 +151,16 @@ impl Problem {
                 aim = target;
             }
             let guess = self.predict(before.as_deref(), &here, aim);
-            match self.newton(&guess, self.drive(aim), tolerances) {
+            let ordinary = if careful { None } else { self.newton(&guess, self.drive(aim), tolerances).ok() };
+            let attempt = match ordinary {
+                Some(point) => Ok(point),
+                None => {
+                    let attempt = self.careful_newton(&guess, self.drive(aim), tolerances);
+                    careful |= attempt.is_ok();
+                    attempt
+                }
+            };
+            match attempt {
                 Ok(point) if aim == target => return Ok(point),
                 Ok(point) => {
                     before = Some(std::mem::replace(&mut here, Cow::Owned(point)));
@@ -164,7 +178,9 @@ impl Problem {
                             if (point.voltage - target).abs() <= REACHED {
                                 return Ok(point);
                             }
-                            if let Ok(point) = self.newton(&point.state, self.drive(target), tolerances) {
+                            if let Ok(point) =
+                                self.careful_newton(&point.state, self.drive(target), tolerances)
+                            {
                                 return Ok(point);
                             }
                             here = Cow::Owned(point);

@@ -5,6 +5,7 @@ pub mod continuation;
 pub mod damping;
 mod equilibrium;
 pub mod extrapolation;
+mod floating;
 pub mod grid_convergence;
 pub mod newton;
 pub mod problem;

@@ -4,6 +4,7 @@ use crate::discretise::{Terminal, scales};
 use crate::linear::Triple;
 
 use super::damping::damped;
+use super::floating::decayed;
 use super::problem::{Problem, State};
 use super::relaxation::TimeStep;
 
@@ -54,8 +55,22 @@ pub struct Point {
     pub current: f64,
     /// Slope of the terminal characteristic, S/m^2.
     pub conductance: f64,
+    /// Bound on the rounding of that slope and on what the last update leaves of it, S/m^2.
+    pub conductance_error: f64,
     /// Largest update of the last iteration, kT/q.
     pub last_update: f64,
+    /// What that iteration may have left in the fluxes, A/m^2.
+    pub flux_error: f64,
+}
+
+/// Derivatives by the voltage across the device.
+pub(super) struct Slope {
+    /// Of the node unknowns, per V: `[nodes]`.
+    pub tangent: Vec<Triple>,
+    /// Of the device's current density, S/m^2.
+    pub conductance: f64,
+    /// The sum of the absolute terms of that.
+    pub magnitude: f64,
 }
 
 /// Why an iteration stopped without a solution.
@@ -73,6 +88,18 @@ pub struct Stalled {
 const SETTLED: f64 = 3e-7;
 /// After an update this small, kT/q, the next one may be the last.
 const NEARING: f64 = 1e-3;
+
+/// What elimination leaves of an update, relative to it (empirical: up to 3e-11 where many carriers stand on a fine mesh).
+const LEFT: f64 = 3e-11;
+/// Fluxes are constant to this share of the current ...
+const CONSTANCY: f64 = 1e-8;
+/// ... or this one of the sum of its absolute terms ...
+const TURNOVER: f64 = 1e-13;
+/// ... or to this, A/m^2: a hundredth of a carrier per m^2 and second.
+const LEAST: f64 = 1e-21;
+
+/// Roundings of each term of a slope: of a derivative, of the tangent there and of their product.
+const ROUNDINGS: f64 = 8.0 * f64::EPSILON;
 
 /// A step in time is given up where its updates are this many times the first one (or one kT/q) ...
 const LOST: f64 = 1e3;
@@ -118,6 +145,19 @@ impl Problem {
         self.newton_with(start, drive, tolerances, None)
     }
 
+    /// [`Problem::newton`] by the elimination that keeps what holds a floating region.
+    pub(crate) fn careful_newton(
+        &mut self,
+        start: &State,
+        drive: Drive,
+        tolerances: &Tolerances,
+    ) -> Result<Point, Stalled> {
+        let before = std::mem::replace(&mut self.careful, true);
+        let result = self.newton(start, drive, tolerances);
+        self.careful = before;
+        result
+    }
+
     /// [`Problem::newton`] of the steady equations, or of one implicit step in time.
     pub(super) fn newton_with(
         &mut self,
@@ -140,35 +180,43 @@ impl Problem {
                 break;
             }
             self.assemble(&state);
+            self.storage.clear();
             if let Some(step) = step {
                 self.add_storage(&state, step);
             }
+            let shifted = self.careful && !self.by_rows;
             if self.by_rows {
                 self.system.jacobian.sums.clear();
             }
-            let factored = self.system.jacobian.factor(&mut self.factors);
-            self.work.factorisations += 1;
+            let factored = if shifted { self.factor_shifted() } else { self.refactor() };
             if let Err(singular) = factored {
                 return Err(Stalled { node: singular.node, unknown: 0, update: f64::NAN });
             }
-            let mut update: Vec<Triple> = self.system.residual.iter().map(|r| -r).collect();
-            self.solve(&mut update);
+            let mut update: Vec<Triple> = if shifted {
+                self.update_shifted(&state)
+            } else {
+                let mut update = self.system.residual.iter().map(|r| -r).collect::<Vec<Triple>>();
+                self.solve(&mut update);
+                update
+            };
             let bordered = !matches!(drive, Drive::Device(_));
             let mut border = None;
+            let mut settled = true;
             let mut voltage_step = 0.0;
             let last = polishing
                 || !tolerances.polish && self.largest_of_note(&state, &update).update <= tolerances.update;
             if bordered || last {
                 let terminal = Terminal::new(&self.coefficients, &self.system);
-                let mut tangent: Vec<Triple> = self.system.by_rear_level(&self.coefficients);
-                for t in &mut tangent {
-                    *t *= -per_volt;
-                }
-                self.solve(&mut tangent);
-                let along =
-                    |x: &[Triple]| -> f64 { terminal.gradient.iter().zip(x).map(|(g, x)| g.dot(x)).sum() };
-                let conductance = scales::CURRENT * (along(&tangent) + terminal.by_rear_level * per_volt);
-                let current = scales::CURRENT * (terminal.current + along(&update));
+                // Levels that float are held by what the ordinary elimination rounds off.
+                let keep = shifted || last && self.floats && !self.by_rows && self.factor_shifted().is_ok();
+                let slope = if keep {
+                    self.slope_shifted(&terminal, per_volt)
+                } else {
+                    self.slope(&terminal, per_volt)
+                };
+                let Slope { tangent, conductance, magnitude } = slope;
+                let along: f64 = terminal.gradient.iter().zip(&update).map(|(g, x)| g.dot(x)).sum();
+                let current = scales::CURRENT * (terminal.current + along);
                 let (beside, slope_beside) = self.beside(state.voltage);
                 voltage_step = match drive {
                     Drive::Device(_) => 0.0,
@@ -190,7 +238,14 @@ impl Problem {
                 for (u, t) in update.iter_mut().zip(&tangent) {
                     *u += t * voltage_step;
                 }
-                border = Some((tangent, current + conductance * voltage_step, conductance));
+                let current = current + conductance * voltage_step;
+                // What is wrong in the last places of the update is felt by the fluxes where many carriers stand: go on until
+                // that is nothing beside the current.
+                let felt =
+                    scales::CURRENT * terminal.magnitude * TURNOVER + current.abs() * CONSTANCY + LEAST;
+                let flux_error = if last { LEFT * self.flux_of(&update) } else { 0.0 };
+                settled = flux_error <= felt;
+                border = Some((tangent, current, conductance, magnitude, flux_error));
             }
             worst = self.largest_of_note(&state, &update);
             let relative_voltage = (voltage_step * per_volt).abs();
@@ -210,11 +265,14 @@ impl Problem {
             state.voltage += voltage_step;
             // The polishing update is near the square of the one before; where it is not (levels that next to nothing holds),
             // go on for as long as updates shrink.
-            let settled = size <= SETTLED || size > 0.5 * smallest || !tolerances.polish;
+            let settled = settled && size <= SETTLED || size > 0.5 * smallest || !tolerances.polish;
             smallest = smallest.min(size);
             if size <= tolerances.update
-                && let (true, true, Some((tangent, device_current, device_conductance))) =
-                    (last, settled, border)
+                && let (
+                    true,
+                    true,
+                    Some((tangent, device_current, device_conductance, magnitude, flux_error)),
+                ) = (last, settled, border)
             {
                 let (beside, slope_beside) = self.beside(state.voltage);
                 let slope = device_conductance + slope_beside;
@@ -226,13 +284,37 @@ impl Problem {
                     voltage: state.voltage + self.series_resistance * current,
                     current,
                     conductance: slope / (1.0 + self.series_resistance * slope),
+                    conductance_error: (ROUNDINGS * magnitude + size * device_conductance.abs())
+                        / ((1.0 + self.series_resistance * slope) * (1.0 + self.series_resistance * slope)),
                     last_update: size,
+                    flux_error,
                     state,
                 });
             }
             polishing = size <= NEARING;
         }
         Err(worst)
+    }
+
+    /// The derivatives by the voltage, from the factors of the last iteration.
+    fn slope(&mut self, terminal: &Terminal, per_volt: f64) -> Slope {
+        let mut tangent: Vec<Triple> = self.system.by_rear_level(&self.coefficients);
+        for t in &mut tangent {
+            *t *= -per_volt;
+        }
+        self.solve(&mut tangent);
+        let direct = terminal.by_rear_level * per_volt;
+        let (mut sum, mut magnitude) = (0.0, direct.abs());
+        for (g, t) in terminal.gradient.iter().zip(&tangent) {
+            let terms = g.component_mul(t);
+            sum += g.dot(t);
+            magnitude += terms.x.abs() + terms.y.abs() + terms.z.abs();
+        }
+        Slope {
+            tangent,
+            conductance: scales::CURRENT * (sum + direct),
+            magnitude: scales::CURRENT * magnitude,
+        }
     }
 
     /// Applies an update, damped in the logarithm of the densities.
@@ -249,8 +331,11 @@ impl Problem {
         for ((x, low), u) in state.nodes.iter_mut().zip(&mut state.remainders).zip(update) {
             let potential = damped(u[0]).clamp(-LARGEST_RISE, LARGEST_RISE);
             // The change of ln n is that of (psi - phi_n), of ln p that of (phi_p - psi), up to the statistics' slope.
-            let electrons = damped(u[0] - u[1]);
-            let holes = damped(u[2] - u[0]);
+            let (mut electrons, mut holes) = (damped(u[0] - u[1]), damped(u[2] - u[0]));
+            if self.careful {
+                electrons = decayed(u[0] - u[1], electrons);
+                holes = decayed(u[2] - u[0], holes);
+            }
             x[0] += potential;
             add(&mut x[1], &mut low[0], potential - electrons);
             add(&mut x[2], &mut low[1], potential + holes);

@@ -5,7 +5,7 @@ use std::sync::atomic::{AtomicBool, Ordering};
 
 use crate::discretise::contact::neutral_potential;
 use crate::discretise::{Coefficients, System, scales};
-use crate::linear::{Factors, Triple};
+use crate::linear::{Factors, ShiftedFactors, Triple};
 
 use super::circuit::SecondDiode;
 
@@ -70,6 +70,13 @@ pub struct Problem {
     pub(super) budget: usize,
     /// Whether to eliminate by rows, with their rounding, instead of by column sums.
     pub(super) by_rows: bool,
+    /// Whether to eliminate by common rises of potential and levels, which keeps what holds a floating region.
+    pub(super) careful: bool,
+    /// Whether some region's level may float.
+    pub(super) floats: bool,
+    /// What a step in time adds to the carriers' rows; empty in the steady state: `[nodes]`.
+    pub(super) storage: Vec<[f64; 2]>,
+    pub(super) shifted: ShiftedFactors,
     /// Carriers per area in a node's volume, scaled, below which its level may be unsettled; 0 on the ordinary way.
     pub(super) negligible: f64,
     /// The largest gap, kT.
@@ -89,6 +96,10 @@ impl Problem {
         let system = System::new(&coefficients);
         Problem {
             by_rows: false,
+            careful: false,
+            floats: Problem::may_float(&coefficients),
+            storage: Vec::new(),
+            shifted: ShiftedFactors::default(),
             negligible: 0.0,
             largest_gap: coefficients
                 .entries

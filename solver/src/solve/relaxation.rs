@@ -70,6 +70,7 @@ impl Problem {
     pub(super) fn add_storage(&mut self, state: &State, step: &TimeStep) {
         let now = self.stored(state);
         let last = now.len() - 1;
+        self.storage.resize(now.len(), [0.0; 2]);
         for (i, (now, then)) in now.iter().zip(&step.stored).enumerate() {
             for (carrier, row) in
                 [(crate::discretise::Carrier::Electron, 1), (crate::discretise::Carrier::Hole, 2)]
@@ -82,7 +83,9 @@ impl Problem {
                 let [value, slope] = now[row - 1];
                 // Electrons: -(n - n_old)/dt, n rising with psi - phi_n; holes: +(p - p_old)/dt, p rising with phi_p - psi.
                 let sign = if row == 1 { -1.0 } else { 1.0 };
-                self.system.residual[i][row] += sign * step.rate * (value - then[row - 1]);
+                let rise = sign * step.rate * (value - then[row - 1]);
+                self.storage[i][row - 1] = rise;
+                self.system.residual[i][row] += rise;
                 let jacobian = &mut self.system.jacobian;
                 for blocks in [&mut jacobian.diagonal, &mut jacobian.sums] {
                     blocks[i][(row, 0)] -= step.rate * slope;
@@ -125,7 +128,9 @@ impl Problem {
         let whole = self.budget;
         self.budget = whole.min(self.work.newton_iterations + MOST_WAY);
         self.negligible = NEGLIGIBLE;
+        let careful = std::mem::replace(&mut self.careful, true);
         let result = self.through_time(start, voltage, tolerances);
+        self.careful = careful;
         self.negligible = 0.0;
         self.budget = whole;
         result

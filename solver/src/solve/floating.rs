@@ -1,0 +1,139 @@
+//! Newton updates and slopes by the elimination that keeps what holds a floating region.
+
+use crate::discretise::{Carrier, Terminal, scales};
+use crate::linear::{Boundary, Singular, Triple};
+use crate::math::Num;
+
+use super::newton::Slope;
+use super::problem::{Problem, State};
+
+impl Problem {
+    /// Factors the Jacobian of the last assembly by common rises.
+    pub(super) fn factor_shifted(&mut self) -> Result<(), Singular> {
+        self.work.factorisations += 1;
+        let ends = self.boundaries();
+        self.shifted.factor(&self.system.jacobian, &ends)
+    }
+
+    fn boundaries(&self) -> [Boundary; 2] {
+        [0, 1].map(|which| {
+            let contact = &self.coefficients.contacts[which];
+            let pinned = [true, contact.pins(Carrier::Electron), contact.pins(Carrier::Hole)];
+            let [electrons, holes] = self.system.surface[which].map(|(_, slope)| slope);
+            let law = Triple::new(0.0, electrons, holes);
+            Boundary { coupling: self.system.ends[which].1, pinned, law }
+        })
+    }
+
+    /// The Newton update of the last assembly, fluxes and sources kept apart up to the sums of elimination.
+    pub(super) fn update_shifted(&mut self, state: &State) -> Vec<Triple> {
+        self.work.solves += 1;
+        let (c, system) = (&self.coefficients, &self.system);
+        let last = system.residual.len() - 1;
+        let fluxes: Vec<Triple> = (0..last)
+            .map(|k| {
+                let displacement = c.cells[k].displacement * (state.nodes[k + 1][0] - state.nodes[k][0]);
+                -Triple::new(displacement, system.electron_flux[k], system.hole_flux[k])
+            })
+            .collect();
+        let sources: Vec<Triple> = (0..=last)
+            .map(|i| {
+                let charge = -system.residual[i].x - if i < last { fluxes[i].x } else { 0.0 }
+                    + if i > 0 { fluxes[i - 1].x } else { 0.0 };
+                let stored = self.storage.get(i).copied().unwrap_or_default();
+                let mut source = Triple::new(charge, system.net[i] - stored[0], -system.net[i] - stored[1]);
+                for which in [0, 1] {
+                    if i == which * last {
+                        source[1] += system.surface[which][0].0;
+                        source[2] -= system.surface[which][1].0;
+                    }
+                }
+                source
+            })
+            .collect();
+        let rises = self.shifted.solve(&fluxes, &sources, &[-system.residual[0], -system.residual[last]]);
+        rises.iter().map(|z| Triple::new(z.x, z.x + z.y, z.x + z.z)).collect()
+    }
+
+    /// The derivative of the state by the voltage across the device and that of its current.
+    ///
+    /// Recombination depends on what the levels rise besides the potential, which stand here by themselves: no digits are
+    /// lost between levels that follow a contact and what they leave at a junction.
+    pub(super) fn slope_shifted(&mut self, terminal: &Terminal, per_volt: f64) -> Slope {
+        self.work.solves += 1;
+        let last = self.system.residual.len() - 1;
+        let ends = self.boundaries();
+        let fluxes = vec![Triple::zeros(); last];
+        let mut sources = vec![Triple::zeros(); last + 1];
+        sources[last] = ends[1].law;
+        let one = Triple::from_fn(|i, _| if ends[1].pinned[i] { 1.0 } else { 0.0 });
+        let rises = self.shifted.solve(&fluxes, &sources, &[Triple::zeros(), one]);
+        let (mut sum, mut magnitude) = (0.0, 0.0);
+        let mut add = |term: f64| {
+            sum += term;
+            magnitude += term.abs();
+        };
+        for (g, z) in terminal.gradient.iter().zip(&rises) {
+            add(g.y * z.y);
+            add(g.z * z.z);
+        }
+        let whole = |i: usize| terminal.gradient[i].x + terminal.gradient[i].y + terminal.gradient[i].z;
+        match (terminal.from_rows, self.coefficients.terminal_pair()) {
+            (true, Some((front, rear))) => {
+                // A reaction is the flux of the edge next to the contact.
+                for (which, carrier, end, next) in [(0, front, 0, 1), (1, rear, last, last - 1)] {
+                    if self.coefficients.contacts[which].pins(carrier) {
+                        add(whole(next) * (rises[next].x - rises[end].x));
+                    }
+                }
+            }
+            _ => {
+                for (i, z) in rises.iter().enumerate() {
+                    add(whole(i) * z.x);
+                }
+            }
+        }
+        let reference = self.coefficients.reference;
+        let tangent = rises
+            .iter()
+            .map(|z| Triple::new(z.x, z.x + z.y - reference[0], z.x + z.z - reference[1]) * per_volt)
+            .collect();
+        let scale = scales::CURRENT * per_volt;
+        Slope { tangent, conductance: scale * sum, magnitude: (scale * magnitude).abs() }
+    }
+
+    /// The largest change of a flux that an update of the levels would bring if it came to one end of a cell alone, A/m^2.
+    pub(super) fn flux_of(&self, update: &[Triple]) -> f64 {
+        let upper = &self.system.jacobian.upper;
+        let mut worst = 0.0_f64;
+        for (coupling, u) in upper[1..].iter().zip(&update[1..]) {
+            let electrons = (coupling[(1, 1)] * u.y).abs();
+            let holes = (coupling[(2, 2)] * u.z).abs();
+            worst = worst.max(electrons.max(holes));
+        }
+        worst * scales::CURRENT
+    }
+
+    /// Whether some region's level may float: doping of one sign between two of the other.
+    pub(super) fn may_float(coefficients: &crate::discretise::Coefficients<f64>) -> bool {
+        let signs: Vec<f64> =
+            coefficients.entries.iter().map(|e| e.doping).filter(|d| *d != 0.0).map(f64::signum).collect();
+        signs.windows(2).filter(|w| w[0] != w[1]).count() > 1
+    }
+}
+
+/// An update that falls to next to nothing, as the linear equations ask for, in the logarithm of a density that decays: where
+/// it asks for all of it to go the logarithm falls by [`FALL`], not by 1.
+pub(super) fn decayed(update: f64, damped: f64) -> f64 {
+    if update < -DECAY && update > -1.0 - 1e-3 {
+        let left = (1.0 + update).max(f64::MIN_POSITIVE);
+        Num::ln(left).max(-FALL)
+    } else {
+        damped
+    }
+}
+
+/// Updates below this are taken to be a decay ...
+const DECAY: f64 = 0.9;
+/// ... that goes on by this much at most at once (empirical).
+const FALL: f64 = 6.0;
