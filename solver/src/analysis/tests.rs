@@ -2,6 +2,7 @@
 
 mod circuit;
 mod contacts;
+mod floating;
 pub(crate) mod interface_levels;
 pub(crate) mod interfaces;
 mod odd_ends;

@@ -252,3 +252,87 @@ impl ShiftedFactors {
 fn same(a: f64, b: f64) -> bool {
     (a - b).abs() <= 1e-9 * a.abs()
 }
+
+#[cfg(test)]
+mod tests {
+    use super::*;
+
+    /// A chain of equal nodes whose levels are tied to the potential by densities of one and to their neighbours by
+    /// conductances of one; the front pinned by a coupling of `hold` alone, the rear by nothing.
+    fn chain(nodes: usize, hold: f64) -> (BlockTridiagonal, [Boundary; 2]) {
+        let coupling = |strength: f64| {
+            Block::new(strength, 0.0, 0.0, 0.25 * strength, strength, 0.0, -0.25 * strength, 0.0, strength)
+        };
+        let own = Block::new(-2.0, 1.0, 1.0, 0.0, 0.0, 0.0, 0.0, 0.0, 0.0);
+        let mut m = BlockTridiagonal::zeros(nodes);
+        m.sums = vec![own; nodes];
+        for i in 0..nodes - 1 {
+            let strength = if i == 0 { hold } else { 1.0 };
+            m.upper[i] = coupling(strength);
+            m.lower[i + 1] = coupling(strength);
+        }
+        let first = m.upper[0];
+        m.upper[0] = Block::zeros();
+        m.sums[0] = Block::identity() + m.lower[1];
+        m.sums[1] -= first;
+        let front = Boundary { coupling: first, pinned: [true; 3], law: Triple::zeros() };
+        let rear = Boundary { coupling: m.lower[nodes - 1], pinned: [false; 3], law: Triple::zeros() };
+        (m, [front, rear])
+    }
+
+    /// Truth: by hand. A current of electrons and holes into the last node of a chain that is held at its front alone, by
+    /// 1e-30 of what ties its nodes, raises all of it by current over hold, to a few roundings; the rises between nodes are
+    /// those of the ties, thirty decades less.
+    #[test]
+    fn what_hangs_by_a_thread_keeps_its_digits() {
+        for hold in [1.0, 1e-12, 1e-30, 1e-60] {
+            let (m, ends) = chain(9, hold);
+            let mut factors = ShiftedFactors::default();
+            factors.factor(&m, &ends).unwrap();
+            let mut sources = vec![Triple::zeros(); 9];
+            // Row sums by a common rise: 1 of the potential's, 1.25 and 0.75 of the levels' rows.
+            sources[8] = -Triple::new(1.0, 1.25, 0.75) * hold;
+            let x = factors.solve(&vec![Triple::zeros(); 8], &sources, &[Triple::zeros(); 2]);
+            for (node, z) in x.iter().enumerate().skip(1) {
+                let expected = 1.0 + (node - 1) as f64 * hold;
+                assert!((z.x / expected - 1.0).abs() <= 1e-14, "{hold:e} {node} {}", z.x);
+                assert!(z.y.abs().max(z.z.abs()) <= 1e-14 * hold, "{hold:e} {node} {} {}", z.y, z.z);
+            }
+        }
+    }
+
+    /// Truth: `A x`, by the matrix itself: an ordinary chain, its right side in parts, solved to rounding.
+    #[test]
+    fn parts_of_the_right_side_add_up() {
+        let (mut m, ends) = chain(7, 0.3);
+        for i in 0..7 {
+            m.diagonal[i] = m.sums[i];
+            if i > 0 {
+                m.diagonal[i] -= m.upper[i - 1];
+            }
+            if i < 6 {
+                m.diagonal[i] -= m.lower[i + 1];
+            }
+        }
+        // The sums of the pinned row and of its neighbour hold the edge between them by hand.
+        m.diagonal[0] = Block::identity();
+        let mut factors = ShiftedFactors::default();
+        factors.factor(&m, &ends).unwrap();
+        let part = |i: usize, k: f64| Triple::new(k, 0.5 - 0.1 * i as f64, 0.2 * i as f64 - k);
+        let fluxes: Vec<Triple> = (0..6).map(|i| part(i, 0.7)).collect();
+        let sources: Vec<Triple> = (0..7).map(|i| part(i, -0.2)).collect();
+        let pins = [Triple::new(0.1, 0.2, 0.3), Triple::zeros()];
+        let x: Vec<Triple> = factors
+            .solve(&fluxes, &sources, &pins)
+            .iter()
+            .map(|z| Triple::new(z.x, z.x + z.y, z.x + z.z))
+            .collect();
+        for (i, y) in m.multiply(&x).iter().enumerate() {
+            let mut b = sources[i];
+            b += if i < 6 { fluxes[i] } else { Triple::zeros() };
+            b -= if i > 0 { fluxes[i - 1] } else { Triple::zeros() };
+            let b = if i == 0 { pins[0] } else { b };
+            assert!((y - b).amax() <= 1e-13, "{i}: {y} for {b}");
+        }
+    }
+}

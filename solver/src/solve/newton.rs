@@ -95,8 +95,8 @@ const LEFT: f64 = 3e-11;
 const CONSTANCY: f64 = 1e-8;
 /// ... or this one of the sum of its absolute terms ...
 const TURNOVER: f64 = 1e-13;
-/// ... or to this, A/m^2: a hundredth of a carrier per m^2 and second.
-const LEAST: f64 = 1e-21;
+/// ... or to this, A/m^2: less than a carrier per ten m^2 and second.
+const LEAST: f64 = 1e-20;
 
 /// Roundings of each term of a slope: of a derivative, of the tangent there and of their product.
 const ROUNDINGS: f64 = 8.0 * f64::EPSILON;

@@ -134,7 +134,7 @@ topic! {
             getter::<StateValue>(engine, session, "current_density", |_, a| {
                 of_state(a[0], Dimension::CURRENT_DENSITY, |s| figure(&s.current_density, Dimension::CURRENT_DENSITY, "mA_per_cm2"))
             });
-            getter::<StateValue>(engine, session, "conductance", |_, a| of_state(a[0], Dimension::AREA_CONDUCTANCE, |s| Quantity::si(s.conductance, Dimension::AREA_CONDUCTANCE)));
+            getter::<StateValue>(engine, session, "conductance", |_, a| of_state(a[0], Dimension::AREA_CONDUCTANCE, |s| Quantity::si(s.conductance, Dimension::AREA_CONDUCTANCE).with_error(s.conductance_error)));
             index_getter::<StateValue>(engine, session, |_, arguments| {
                 let name = text(arguments[1], "a property")?;
                 let known = ["voltage", "junction_voltage", "current_density", "conductance", "profiles", "ledger", "sheet_resistance", "barriers", "interfaces"];
@@ -301,7 +301,8 @@ fn point_map(point: &analysis::JvPoint) -> Dynamic {
         "extrapolated".into(),
         give(figure(&point.extrapolated, Dimension::CURRENT_DENSITY, "mA_per_cm2")),
     );
-    map.insert("conductance".into(), give(Quantity::si(point.conductance, Dimension::AREA_CONDUCTANCE)));
+    let slope = Quantity::si(point.conductance, Dimension::AREA_CONDUCTANCE);
+    map.insert("conductance".into(), give(slope.with_error(point.conductance_error)));
     Dynamic::from(map)
 }
 
