@@ -184,9 +184,11 @@ fn energy_rounding(problem: &Problem, point: &Point, locals: &[Local], surfaces:
     let c = &problem.coefficients;
     let system = problem.system();
     let light = point.state.light;
-    // Of a rate with a splitting: its own, relative, and that of the splitting.
+    // Of a rate with a splitting: its own, relative, and that of the splitting. The current is a sum of rates, and the state
+    // that it is summed at makes the fluxes follow it to a rounding of each: so it counts at the junction's voltage too.
+    let junction = (point.state.voltage / c.thermal_voltage).abs();
     let rated = |rate: f64, splitting: f64, energies: f64, levels: f64| {
-        ROUNDINGS * rate.abs() * (energies * splitting.abs() + levels)
+        ROUNDINGS * rate.abs() * (energies * (splitting.abs() + junction) + levels)
     };
     let mut sum = 0.0;
     let mut sizes = Vec::with_capacity(locals.len());

@@ -89,8 +89,8 @@ const SETTLED: f64 = 3e-7;
 /// After an update this small, kT/q, the next one may be the last.
 const NEARING: f64 = 1e-3;
 
-/// What elimination leaves of an update, relative to it (empirical: up to 3e-11 where many carriers stand on a fine mesh).
-const LEFT: f64 = 3e-11;
+/// What elimination leaves of an update, relative to it (empirical).
+const LEFT: f64 = 1e-14;
 /// Fluxes are constant to this share of the current ...
 const CONSTANCY: f64 = 1e-8;
 /// ... or this one of the sum of its absolute terms ...
@@ -337,8 +337,13 @@ impl Problem {
                 holes = decayed(u[2] - u[0], holes);
             }
             x[0] += potential;
-            add(&mut x[1], &mut low[0], potential - electrons);
-            add(&mut x[2], &mut low[1], potential + holes);
+            // Undamped, a level takes its own update to its last place, which may be far below that of the potential's.
+            let whole = potential == u[0];
+            let level = |own: f64, damped: f64, moved: f64, density: f64| {
+                if whole && damped == density { own } else { moved }
+            };
+            add(&mut x[1], &mut low[0], level(u[1], electrons, potential - electrons, u[0] - u[1]));
+            add(&mut x[2], &mut low[1], level(u[2], holes, potential + holes, u[2] - u[0]));
             for carrier in 0..2 {
                 let inside = x[1 + carrier].clamp(bounds[carrier].0, bounds[carrier].1);
                 if inside != x[1 + carrier] {
