@@ -212,14 +212,15 @@ fn energy_rounding(problem: &Problem, point: &Point, locals: &[Local], surfaces:
         sum += ROUNDINGS * energies * taken.other.unwrap_or(0.0).abs();
         sum += ROUNDINGS * levels * system.surface[which].iter().map(|(flux, _)| flux.abs()).sum::<f64>();
     }
-    for layer in 0..c.layers() {
-        for e in c.first[layer]..c.first[layer + 1] - 1 {
-            let k = e - layer;
-            let energies = sizes[e].0 + sizes[e + 1].0;
-            let rise = |which: usize| (point.state.nodes[k + 1][which] - point.state.nodes[k][which]).abs();
-            let transport = (system.electron_flux[k] * rise(1)).abs() + (system.hole_flux[k] * rise(2)).abs();
-            sum += ROUNDINGS * energies * transport;
-        }
+    let mut by_node = vec![0.0_f64; c.nodes()];
+    for ((_, _, i), (energies, _)) in c.places().zip(&sizes) {
+        by_node[i] = by_node[i].max(*energies);
+    }
+    // Cells, and places where levels jump.
+    for k in 0..c.cells.len() {
+        let rise = |which: usize| (point.state.nodes[k + 1][which] - point.state.nodes[k][which]).abs();
+        let transport = (system.electron_flux[k] * rise(1)).abs() + (system.hole_flux[k] * rise(2)).abs();
+        sum += ROUNDINGS * (by_node[k] + by_node[k + 1]) * transport;
     }
     sum
 }

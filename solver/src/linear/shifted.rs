@@ -45,6 +45,10 @@ pub struct ShiftedFactors {
 /// Rows of no more than this are nothing: no carriers, and nothing that they could do.
 const NOTHING: f64 = 1e-290;
 
+/// The displacement per difference of potentials that have none: far above that of any cell, far below the square root of what
+/// a double holds.
+const STIFF: f64 = 1e40;
+
 /// A block by common rise, electrons' rise besides and holes' rise besides.
 fn by_rise(block: &Block) -> Block {
     let mut m = *block;
@@ -144,7 +148,14 @@ impl ShiftedFactors {
         let last = m.nodes() - 1;
         self.steps.clear();
         self.pinned = [ends[0].pinned, ends[1].pinned];
-        let coupled = |i: usize| by_rise(if i == 0 { &ends[0].coupling } else { &m.upper[i] });
+        // Two nodes that share their potential are a cell whose displacement per difference has no limit.
+        let stiff = |i: usize, mut block: Block| {
+            if m.joints.contains(&i) {
+                block.m11 = STIFF;
+            }
+            by_rise(&block)
+        };
+        let coupled = |i: usize| stiff(i, if i == 0 { ends[0].coupling } else { m.upper[i] });
         let mut carried = Block::zeros();
         for node in 0..=last {
             let mut rest = m.sums[node];
@@ -153,7 +164,7 @@ impl ShiftedFactors {
             let (mut back, mut coupling) = (Block::zeros(), Block::zeros());
             if node < last {
                 let whole = coupled(node);
-                (back, coupling) = (by_rise(&m.lower[node + 1]), by_rise(&m.upper[node]));
+                (back, coupling) = (stiff(node, m.lower[node + 1]), stiff(node, m.upper[node]));
                 for i in 0..3 {
                     if !(node + 1 == last && ends[1].pinned[i]) && same(whole[(i, 0)], back[(i, 0)]) {
                         back[(i, 0)] = whole[(i, 0)];

@@ -15,6 +15,13 @@ impl Problem {
         self.shifted.factor(&self.system.jacobian, &ends)
     }
 
+    /// The two nodes of a joint share their potential to the last place.
+    fn share(&self, rises: &mut [Triple]) {
+        for &node in &self.system.jacobian.joints {
+            rises[node + 1].x = rises[node].x;
+        }
+    }
+
     fn boundaries(&self) -> [Boundary; 2] {
         [0, 1].map(|which| {
             let contact = &self.coefficients.contacts[which];
@@ -32,7 +39,12 @@ impl Problem {
         let last = system.residual.len() - 1;
         let fluxes: Vec<Triple> = (0..last)
             .map(|k| {
-                let displacement = c.cells[k].displacement * (state.nodes[k + 1][0] - state.nodes[k][0]);
+                // The two nodes of a joint share their potential: what displacement passes between them is no flux of a state.
+                let displacement = if c.cells[k].width > 0.0 {
+                    c.cells[k].displacement * (state.nodes[k + 1][0] - state.nodes[k][0])
+                } else {
+                    0.0
+                };
                 -Triple::new(displacement, system.electron_flux[k], system.hole_flux[k])
             })
             .collect();
@@ -51,7 +63,8 @@ impl Problem {
                 source
             })
             .collect();
-        let rises = self.shifted.solve(&fluxes, &sources, &[-system.residual[0], -system.residual[last]]);
+        let mut rises = self.shifted.solve(&fluxes, &sources, &[-system.residual[0], -system.residual[last]]);
+        self.share(&mut rises);
         rises.iter().map(|z| Triple::new(z.x, z.x + z.y, z.x + z.z)).collect()
     }
 
@@ -67,7 +80,8 @@ impl Problem {
         let mut sources = vec![Triple::zeros(); last + 1];
         sources[last] = ends[1].law;
         let one = Triple::from_fn(|i, _| if ends[1].pinned[i] { 1.0 } else { 0.0 });
-        let rises = self.shifted.solve(&fluxes, &sources, &[Triple::zeros(), one]);
+        let mut rises = self.shifted.solve(&fluxes, &sources, &[Triple::zeros(), one]);
+        self.share(&mut rises);
         let (mut sum, mut magnitude) = (0.0, 0.0);
         let mut add = |term: f64| {
             sum += term;
