@@ -302,7 +302,7 @@ mod tests {
             let mut sources = vec![Triple::zeros(); 9];
             // Row sums by a common rise: 1 of the potential's, 1.25 and 0.75 of the levels' rows.
             sources[8] = -Triple::new(1.0, 1.25, 0.75) * hold;
-            let x = factors.solve(&vec![Triple::zeros(); 8], &sources, &[Triple::zeros(); 2]);
+            let x = factors.solve(&[Triple::zeros(); 8], &sources, &[Triple::zeros(); 2]);
             for (node, z) in x.iter().enumerate().skip(1) {
                 let expected = 1.0 + (node - 1) as f64 * hold;
                 assert!((z.x / expected - 1.0).abs() <= 1e-14, "{hold:e} {node} {}", z.x);
