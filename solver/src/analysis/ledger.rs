@@ -180,7 +180,13 @@ pub(super) fn edge_rounding(problem: &Problem, point: &Point, k: usize, largest_
 
 /// Rounding of the account of free energy, scaled: every rate and flux holds the rounding of the energies that its exponents
 /// are made from, every splitting that of two levels.
-fn energy_rounding(problem: &Problem, point: &Point, locals: &[Local], surfaces: &[Taken; 2]) -> f64 {
+fn energy_rounding(
+    problem: &Problem,
+    point: &Point,
+    locals: &[Local],
+    interfaces: &[(usize, f64, f64)],
+    surfaces: &[Taken; 2],
+) -> f64 {
     let c = &problem.coefficients;
     let system = problem.system();
     let light = point.state.light;
@@ -200,10 +206,10 @@ fn energy_rounding(problem: &Problem, point: &Point, locals: &[Local], surfaces:
             + rated(problem.generation[e] * light, 0.0, 0.0, levels);
         sizes.push((energies, levels));
     }
-    for interface in c.interfaces.iter().flatten() {
-        let (local, (energies, levels)) = (&locals[interface.entry], sizes[interface.entry]);
-        let rate = interface_recombination::<f64, f64>(interface, &local.side, local.splitting);
-        sum += rated(rate, local.splitting, energies, levels);
+    for (l, rate, energy) in interfaces {
+        let (front, rear) = (sizes[c.first[l + 1] - 1], sizes[c.first[l + 1]]);
+        let (energies, levels) = (front.0.max(rear.0), front.1.max(rear.1));
+        sum += rated(*rate, 0.0, energies, levels) + ROUNDINGS * energies * energy.abs();
     }
     for (which, (taken, (energies, levels))) in
         surfaces.iter().zip([sizes[0], sizes[sizes.len() - 1]]).enumerate()
@@ -402,7 +408,7 @@ pub(crate) fn ledger(
     }
     ledger.add(part, "", "delivered to the terminals", device_power - shunt - diode - series, false);
     ledger.energy_closure = balance.value() * power;
-    let rounding = energy_rounding(problem, point, &locals, &surfaces)
+    let rounding = energy_rounding(problem, point, &locals, &interfaces, &surfaces)
         + f64::EPSILON * terminal.magnitude * junction_voltage.abs();
     // What the last update leaves is its square.
     let left = f64::EPSILON.max(point.last_update * point.last_update) * balance.magnitude();

@@ -159,8 +159,10 @@ impl ShiftedFactors {
         let mut carried = Block::zeros();
         for node in 0..=last {
             let mut rest = m.sums[node];
-            // Nothing of a node's own knows of a common rise, but for contacts.
-            rest.set_column(0, &Triple::zeros());
+            // Nothing of a node's own knows of a common rise, but for contacts and what sees both sides of a joint.
+            let joined = m.joints.contains(&node) || node > 0 && m.joints.contains(&(node - 1));
+            let across = if joined { by_rise(&rest).column(0).into_owned() } else { Triple::zeros() };
+            rest.set_column(0, &across);
             let (mut back, mut coupling) = (Block::zeros(), Block::zeros());
             if node < last {
                 let whole = coupled(node);

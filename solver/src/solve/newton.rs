@@ -297,7 +297,7 @@ impl Problem {
     }
 
     /// The derivatives by the voltage, from the factors of the last iteration.
-    fn slope(&mut self, terminal: &Terminal, per_volt: f64) -> Slope {
+    pub(super) fn slope(&mut self, terminal: &Terminal, per_volt: f64) -> Slope {
         let mut tangent: Vec<Triple> = self.system.by_rear_level(&self.coefficients);
         for t in &mut tangent {
             *t *= -per_volt;
