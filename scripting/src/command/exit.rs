@@ -21,6 +21,8 @@ pub enum Exit {
     File,
     /// A fault of Epiloom itself.
     Internal,
+    /// All was done, but points of a sweep failed, and whoever asked wants to know.
+    PointsFailed,
     /// Stopped from the keyboard.
     Interrupted,
 }
@@ -42,6 +44,7 @@ pub const TABLE: &[(Exit, u8, &str)] = &[
     ),
     (Exit::File, 5, "a file cannot be read or written"),
     (Exit::Internal, 6, "a fault of Epiloom itself"),
+    (Exit::PointsFailed, 7, "with --strict: points of a sweep failed; the archive is whole all the same"),
     (Exit::Interrupted, 130, "stopped from the keyboard; what was finished is kept"),
 ];
 
@@ -107,6 +110,7 @@ mod tests {
             Exit::Differs,
             Exit::File,
             Exit::Internal,
+            Exit::PointsFailed,
             Exit::Interrupted,
         ];
         let codes: std::collections::BTreeSet<u8> = all.into_iter().map(Exit::code).collect();

@@ -37,6 +37,9 @@ pub struct Gather {
     /// A folder outside it that data files lay in, as it was given to the run
     #[arg(long, value_name = "DIR", value_hint = clap::ValueHint::DirPath)]
     pub allow_read: Vec<PathBuf>,
+    /// End with code 7 where a point of a sweep failed; the archive is whole all the same
+    #[arg(long)]
+    pub strict: bool,
     /// Threads to use; no result depends on it [default: all]
     #[arg(long, value_name = "N")]
     pub threads: Option<NonZeroUsize>,
@@ -98,12 +101,12 @@ impl Gather {
         }
         let mut recorder = Recorder::new(output, &source, self.quiet, writer, begun, None);
         let outcome = language::run(&script, options, &mut recorder);
-        let (writer, header, failed) = recorder.into_parts();
+        let (writer, header, failures) = recorder.into_parts();
         output.end_progress();
         for error in &outcome.errors {
             output.diagnostic(error, Some(&source));
         }
         end(output, writer, &header, &self.out, &outcome, self.quiet)?;
-        Ok(ending(&outcome, failed))
+        Ok(ending(&outcome, failures, self.strict))
     }
 }

@@ -18,15 +18,10 @@ fn value(input: &InputValue) -> Value {
 
 /// A number in the unit it was given in, such that reading it back in that unit gives the same bits.
 fn number(quantity: &Quantity) -> Value {
-    let Some(unit) = quantity.unit() else { return Value::number(quantity.value, "") };
-    let near = unit.from_si(quantity.value);
-    let same = |x: &f64| unit.to_si(*x).to_bits() == quantity.value.to_bits();
-    // conversion to SI and back may end one or two steps beside the number that was typed
-    let around =
-        [near, near.next_up(), near.next_down(), near.next_up().next_up(), near.next_down().next_down()];
-    // the shortest of those that fit is the one a person typed
-    let shortest = around.into_iter().filter(same).min_by_key(|x| format!("{x:e}").len());
-    Value::number(shortest.unwrap_or(near), unit.name)
+    match quantity.unit() {
+        Some(unit) => Value::number(unit.typed(quantity.value), unit.name),
+        None => Value::number(quantity.value, ""),
+    }
 }
 
 /// The value of an input as `--set` takes it.

@@ -37,6 +37,9 @@ pub struct Job {
     /// Threads of a task
     #[arg(long, value_name = "N", default_value = "1")]
     threads: NonZeroU64,
+    /// End the gathering with code 7 where a point of a sweep failed; the archive is whole all the same
+    #[arg(long)]
+    strict: bool,
     /// Longest time of a task, as Slurm takes it
     #[arg(long, value_name = "TIME")]
     time: Option<String>,
@@ -106,6 +109,7 @@ impl Job {
             "OPTIONS" => options.join(" "),
             "RUN" => run.join(" "),
             "READING" => reading.join(" "),
+            "STRICT" => if self.strict { "--strict" } else { "" }.to_string(),
             "NAME" => quoted(&job_name(&self.script.script)),
             "LOG" => quoted(&log_name(before, digits, &after)),
             "GATHER_LOG" => quoted(&format!("{}.gather.log", patternless(before.trim_end_matches(".part-")))),
@@ -196,7 +200,7 @@ gather)
         echo "none of the $parts parts is there" >&2
         exit 1
     fi
-    exec "$epiloom" gather "$@" --out "$whole" --data §DATA§ --threads §THREADS§ §READING§
+    exec "$epiloom" gather "$@" --out "$whole" --data §DATA§ --threads §THREADS§ §STRICT§ §READING§
     ;;
 *)
     echo "unknown step: $1" >&2
@@ -248,6 +252,7 @@ mod tests {
             parts: NonZeroU64::MIN.saturating_add(63),
             out: None,
             threads: NonZeroU64::MIN,
+            strict: true,
             time: Some("1:00:00".to_string()),
             partition: None,
             account: Some("o'neil".to_string()),
@@ -267,5 +272,6 @@ mod tests {
         assert!(text.contains("epiloom='/opt/epi loom'") && text.contains("--set 'base=2 um'"), "{text}");
         assert!(text.contains("--time=1:00:00") && text.contains(r"'--account=o'\''neil'"), "{text}");
         assert!(!text.contains("--partition") && text.contains("afterany"), "{text}");
+        assert!(text.contains("--threads 1 --strict"), "{text}");
     }
 }

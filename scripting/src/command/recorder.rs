@@ -16,6 +16,15 @@ use super::pictures::write_below;
 use super::report::{snapshot_text, stack_text, warnings_text};
 use super::sweeps::Tally;
 
+/// What of a run holds no solution.
+#[derive(Clone, Copy, Debug, Default, PartialEq, Eq)]
+pub struct Failures {
+    /// Snapshots.
+    pub snapshots: usize,
+    /// Points of sweeps, those that were found stored as well.
+    pub points: u64,
+}
+
 /// The listener of `epiloom run`.
 pub struct Recorder<'a> {
     output: &'a mut Output,
@@ -26,7 +35,7 @@ pub struct Recorder<'a> {
     shown: Option<Stack>,
     told: Vec<String>,
     told_of_earlier: bool,
-    failed: usize,
+    failures: Failures,
     share: Option<Share>,
     /// The points of the sweep that is going on, those that were found stored as they are read.
     tally: Arc<Mutex<Tally>>,
@@ -51,7 +60,7 @@ impl<'a> Recorder<'a> {
             shown: None,
             told: Vec::new(),
             told_of_earlier: false,
-            failed: 0,
+            failures: Failures::default(),
             share,
             tally: Arc::default(),
         }
@@ -65,9 +74,9 @@ impl<'a> Recorder<'a> {
         self.output.remark(&text);
     }
 
-    /// The archive, the description of the run, and how many snapshots hold no solution.
-    pub fn into_parts(self) -> (Writer<'static>, RunHeader, usize) {
-        (self.writer, self.header, self.failed)
+    /// The archive, the description of the run, and what of it holds no solution.
+    pub fn into_parts(self) -> (Writer<'static>, RunHeader, Failures) {
+        (self.writer, self.header, self.failures)
     }
 
     fn report(&mut self, snapshot: &Snapshot) {
@@ -166,7 +175,7 @@ impl Sink for Recorder<'_> {
         self.tell_of_earlier();
         kept.map_err(|error| error_text(&error))?;
         self.output.stored();
-        self.failed += usize::from(snapshot.label.status != Status::Solved);
+        self.failures.snapshots += usize::from(snapshot.label.status != Status::Solved);
         if !self.quiet {
             self.report(&snapshot);
         }
@@ -199,6 +208,7 @@ impl Sink for Recorder<'_> {
     fn sweep_done(&mut self, sweep: &SweepStart, left_out: u64) {
         let finished = self.writer.finish_sweep(&sweep.name, left_out);
         self.output.sweep_ends();
+        self.failures.points += tally_of(&self.tally).failed;
         if let Err(error) = finished {
             // the writer is broken now, or the archive lacks no point: finishing tells
             self.output.remark(&error_text(&error));

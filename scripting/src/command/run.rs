@@ -13,7 +13,7 @@ use crate::language::{self, Part};
 use super::exit::Exit;
 use super::holder::{Holder, holder_of};
 use super::output::{LOG_EVERY, Output};
-use super::recorder::{Recorder, header};
+use super::recorder::{Failures, Recorder, header};
 use super::script::ScriptArguments;
 use super::trouble::writing_error;
 
@@ -27,7 +27,8 @@ sweeps that are stored are not solved again, and the archive is the same to the 
 stopped. An unfinished archive of another run is kept under another name. An earlier archive of the same script is
 replaced when the run has ended well; the archive of another script never is.
 
-A failed point of a sweep is a row with its reason and no failure of the run.
+A failed point of a sweep is a row with its reason and no failure of the run: the summary counts it, and the code is 0.
+`--strict` is for scripts that must know: the archive is finished in the same way, and the code is 7.
 
 On several machines: `--part 3/64` solves every 64th point of each plan, beginning with the third, into an archive of
 its own; `epiloom gather` makes the whole of all parts, and `epiloom job` writes the script for a cluster.")]
@@ -43,6 +44,9 @@ pub struct Run {
     /// Begin anew: an unfinished archive of this very run is set aside, not gone on with
     #[arg(long)]
     anew: bool,
+    /// End with code 7 where a point of a sweep failed; the archive is whole all the same
+    #[arg(long)]
+    strict: bool,
     /// Threads to use; no result depends on it [default: all]
     #[arg(long, value_name = "N")]
     threads: Option<NonZeroUsize>,
@@ -95,7 +99,7 @@ impl Run {
         }
         let mut recorder = Recorder::new(output, &source, self.quiet, writer, first, self.part);
         let outcome = language::run(&script, options, &mut recorder);
-        let (writer, header, failed) = recorder.into_parts();
+        let (writer, header, failures) = recorder.into_parts();
         output.end_progress();
         for error in &outcome.errors {
             output.diagnostic(error, Some(&source));
@@ -106,7 +110,7 @@ impl Run {
                 "part {share} ends where the script reads the table of the sweep `{sweep}`: `epiloom gather` goes on from there with all parts"
             ));
         }
-        Ok(ending(&outcome, failed))
+        Ok(ending(&outcome, failures, self.strict))
     }
 
     fn archive_path(&self) -> PathBuf {
@@ -188,7 +192,7 @@ pub fn claim_error(error: &ArchiveError, path: &Path) -> Diagnostic {
 }
 
 /// How the run ended for the shell.
-pub fn ending(outcome: &language::RunOutcome, failed: usize) -> Exit {
+pub fn ending(outcome: &language::RunOutcome, failures: Failures, strict: bool) -> Exit {
     let worst = outcome.errors.iter().map(|error| match Exit::of(error.code) {
         exit @ (Exit::Internal | Exit::Interrupted) => exit,
         _ if error.code == codes::UNWRITABLE => Exit::File,
@@ -197,7 +201,8 @@ pub fn ending(outcome: &language::RunOutcome, failed: usize) -> Exit {
     match worst.max_by_key(|exit| exit.code()) {
         _ if outcome.interrupted => Exit::Interrupted,
         Some(exit) => exit,
-        None if failed > 0 => Exit::Fault,
+        None if failures.snapshots > 0 => Exit::Fault,
+        None if strict && failures.points > 0 => Exit::PointsFailed,
         None => Exit::Done,
     }
 }

@@ -60,7 +60,7 @@ pub fn coordinate_column(coordinate: &Coordinate) -> SweepColumn {
 pub fn coordinate_cell(value: &Dynamic, column: &SweepColumn) -> Cell {
     match any_quantity(value) {
         Some(q) => {
-            let number = unit(&column.unit).map_or(q.value, |u| u.from_si(q.value));
+            let number = unit(&column.unit).map_or(q.value, |u| u.typed(q.value));
             Cell::Number {
                 value: number,
                 error: q.error.map(|e| unit(&column.unit).map_or(e, |u| u.from_si(e))),
@@ -122,7 +122,10 @@ fn output(key: &str, value: &Dynamic) -> Result<PointOutput, Fault> {
         let convert = |v: f64| unit.map_or(v, |u| u.from_si(v));
         return Ok(PointOutput {
             column: SweepColumn { name: key.to_string(), unit: name },
-            cell: Cell::Number { value: convert(q.value), error: q.error.map(convert) },
+            cell: Cell::Number {
+                value: unit.map_or(q.value, |u| u.typed(q.value)),
+                error: q.error.map(convert),
+            },
         });
     }
     if let Ok(flag) = value.as_bool() {

@@ -16,7 +16,7 @@ impl Quantity {
 
     /// The number as it is typed in a script, in the unit it is shown in, all digits.
     pub fn literal(&self) -> String {
-        plain(self.unit().map_or(self.value, |u| u.from_si(self.value)))
+        plain(self.unit().map_or(self.value, |u| u.typed(self.value)))
     }
 }
 

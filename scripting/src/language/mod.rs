@@ -21,6 +21,7 @@ mod lower;
 mod plan;
 mod point;
 mod quantity;
+mod receivers;
 mod reference;
 mod report;
 mod result_value;
@@ -29,6 +30,7 @@ mod session;
 mod snapshot;
 mod solver_faults;
 mod spans;
+mod steps;
 mod sweep;
 mod table;
 mod topics;
@@ -114,6 +116,7 @@ fn evaluate(session: &std::sync::Arc<Session>) -> (Vec<Diagnostic>, Option<Strin
         Ok(ast) => ast,
         Err(error) => return (vec![report::parse_diagnostic(session, &error)], None),
     };
+    receivers::watch(&mut engine, &ast);
     let redefined = engine::redefined(&session.source.text, &ast);
     if !redefined.is_empty() {
         return (redefined, None);
@@ -145,6 +148,7 @@ fn strange_inputs(session: &std::sync::Arc<Session>) -> Option<Vec<Diagnostic>> 
     let rehearsal = session.rehearsal();
     let mut engine = engine::build(&rehearsal);
     let ast = engine::compile(&mut engine, &rehearsal.source.text).ok()?;
+    receivers::watch(&mut engine, &ast);
     point::allow(rehearsal.options.limits.operations);
     let rehearsed = engine::run(&engine, &ast, &rehearsal);
     point::allow(session.options.limits.operations);

@@ -102,7 +102,7 @@ impl Quantity {
             )
             .label(format!("this is {self}")));
         }
-        let mut result = self.map(unit.from_si(self.value), unit.from_si(1.0));
+        let mut result = self.map(unit.typed(self.value), unit.from_si(1.0));
         result.dimension = Dimension::NONE;
         result.shown_in = None;
         Ok(result)

@@ -144,9 +144,12 @@ fn faults(session: &Arc<Session>, error: &EvalAltResult) -> Vec<(Fault, Position
         }
         EvalAltResult::ErrorDataRace(name, _) => one(Fault::new(
             codes::WRONG_KIND,
-            format!("`{}` is changed while it is in use", first_word(name)),
+            format!("`{}` is used by a closure that its own method was given to", first_word(name)),
         )
-        .help("take a copy first: `let c = cell;`")),
+        .help(format!(
+            "take a copy above, `let all = {0};`, and use `all` in the closure",
+            first_word(name)
+        ))),
         EvalAltResult::ErrorAssignmentToConstant(name, _)
         | EvalAltResult::ErrorNonPureMethodCallOnConstant(name, _) => {
             one(Fault::new(codes::RESERVED_WORD, format!("`{name}` is a constant and cannot be changed"))

@@ -33,7 +33,7 @@ fn in_unit(value: f64, name: &str) -> f64 {
 pub fn value(quantity: &Quantity) -> Value {
     match quantity.unit() {
         Some(unit) if unit.name != "percent" && unit.name != "suns" => {
-            Value::number(unit.from_si(quantity.value), unit.name)
+            Value::number(unit.typed(quantity.value), unit.name)
         }
         _ if quantity.is_number() => Value::number(quantity.value, ""),
         _ => Value::number(quantity.value, quantity.dimension.base_units()),

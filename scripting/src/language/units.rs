@@ -44,7 +44,26 @@ impl Unit {
             Scale::Over(divisor) => value * divisor,
         }
     }
+
+    /// The number in this unit that a person types for an SI value: of those that give the value again to the bit, the
+    /// one with the fewest digits; [`from_si`](Unit::from_si) where none does.
+    ///
+    /// Conversion to SI and back may end a step or two beside the number that was typed.
+    pub fn typed(&self, value: f64) -> f64 {
+        let near = self.from_si(value);
+        let same = |number: &f64| self.to_si(*number).to_bits() == value.to_bits();
+        let length = |number: &f64| format!("{number:e}").len();
+        if same(&near) && length(&near) <= FEW_DIGITS {
+            return near;
+        }
+        let (up, down) = (near.next_up(), near.next_down());
+        let around = [near, up, down, up.next_up(), down.next_down()];
+        around.into_iter().filter(same).min_by_key(length).unwrap_or(near)
+    }
 }
+
+/// Letters of a number as `1.25e17` up to which no shorter one is looked for.
+const FEW_DIGITS: usize = 12;
 
 macro_rules! units {
     ($($name:literal $symbol:literal $scale:expr, $dimension:ident, $words:literal;)*) => {
@@ -168,6 +187,25 @@ mod tests {
         assert_eq!(unit("mS_per_cm2").unwrap().to_si(25.0), 250.0);
         assert_eq!(unit("nF_per_cm2").unwrap().to_si(50.0), 5e-4);
         assert_eq!(unit("percent").unwrap().to_si(5.0), 0.05);
+    }
+
+    /// Source of truth: the number that was typed, to the bit, for decades and for numbers of three digits in every unit; 1e23,
+    /// which is no number of the machine, is the SI value of 1e17 per cubic centimetre.
+    #[test]
+    fn what_was_typed_comes_back_from_si() {
+        for u in UNITS {
+            let numbers = (-8..=20).flat_map(|power| {
+                ["1", "2.5", "3", "7.77"].map(|digits| format!("{digits}e{power}").parse::<f64>().unwrap())
+            });
+            for number in numbers {
+                assert_eq!(u.typed(u.to_si(number)).to_bits(), number.to_bits(), "{number} {}", u.name);
+            }
+        }
+        let density = unit("per_cm3").unwrap();
+        assert_ne!(density.from_si(density.to_si(1e17)), 1e17, "the plain way back loses it");
+        // a value that no number gives: the plain way back
+        let between = density.to_si(1e17).next_up();
+        assert!(density.to_si(density.typed(between)) == between || density.typed(between) == density.from_si(between));
     }
 
     /// Source of truth: a table needs unique names, and every family its default unit.

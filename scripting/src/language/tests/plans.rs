@@ -69,6 +69,38 @@ fn captured_values_may_be_used_in_any_way() {
     assert_eq!(lines, ["39 0", "0 1 um 2 2 100 nm"]);
 }
 
+/// Source of truth: sums by hand; a closure may use the variable whose method it is given to, in a chain of calls, in a
+/// function, in a point, through another closure and inside an array.
+#[test]
+fn a_closure_may_use_the_variable_whose_method_it_is_given_to() {
+    let lines = printed(
+        r#"
+        let plan = grid(#{ x: [1, 2, 3] });
+        let t = plan.run("a", |p| #{ y: p.x * plan.size });
+        print(t.sum("y"));
+        print(t.filter(|r| r.y > t.mean("y")).len);
+        print(t.filter(|r| r.x > 1).derive("part", |r| r.y / t.sum("y")).sum("part") * 18);
+        let above = |r| r.y > t.mean("y");
+        print(`${t.filter(above).len} ${t.filter(|r| above.call(r)).len}`);
+        let tables = [t, t];
+        print(tables[0].filter(|r| r.y >= tables[1].mean("y")).len);
+        let within = #{ all: t };
+        print(within.all.filter(|r| r.y < within.all.best("y").y).len);
+        fn below(own) { own.filter(|r| r.y < own.mean("y")).len }
+        print(below(t));
+        let inner = plan.run("b", |p| #{ n: plan.run("inner", |q| plan.size * p.x).sum("value"), m: plan.filter(|q| q.x < plan.size).size });
+        print(`${inner.sum("n")} ${inner.sum("m")}`);
+        let n = 0;
+        print(t.filter(|r| { n += 1; r.y > t.mean("y") }).len + n);
+        t = t.filter(|r| r.y < t.best("y").y);
+        print(`${t.len} ${t.filter(|r| r.y == t.best("y").y).len}`);
+        "#,
+    );
+    assert_eq!(lines, ["18", "1", "15", "1 1", "2", "2", "1", "54 9", "4", "2 1"]);
+    let fault = fails("let list = [1, 2];\nlet n = list.map(|x| x / list.len()); // ~ E107");
+    assert!(fault.help.is_some_and(|help| help.contains("`let all = list;`")));
+}
+
 /// Source of truth: the specification: sweeps in functions and inside points; sums computed by hand.
 #[test]
 fn sweeps_nest_and_stand_in_functions() {

@@ -10,6 +10,7 @@ use crate::language::dimension::Dimension;
 use crate::language::fault::{Fault, Outcome, Place};
 use crate::language::quantity::Quantity;
 use crate::language::session::Session;
+use crate::language::steps;
 use crate::language::units::UNITS;
 use crate::language::value::{Number, any_quantity, give, quantity, text};
 use crate::language::vocabulary::{Answer, Call, function, getter, index_getter, topic};
@@ -71,7 +72,8 @@ topic! {
     }
     Function "linear" {
         forms: ["linear(from, to, count)"],
-        doc: "An array of so many values in equal steps from the first to the last, both included.",
+        doc: "An array of so many values in equal steps from the first to the last, both included. Each is what a person would type \
+              for it: of `linear(0, 1, 11)` the fourth is 0.3 to the last bit.",
         example: "for t in linear(20.nm, 100.nm, 5) { print(t); }",
         register: |engine, session| {
             function(engine, session, "linear", 3..=3, |call, arguments| spaced(call, arguments, false));
@@ -79,7 +81,8 @@ topic! {
     }
     Function "logarithmic" {
         forms: ["logarithmic(from, to, count)"],
-        doc: "An array of so many values in equal ratios from the first to the last, both included; both must be positive.",
+        doc: "An array of so many values in equal ratios from the first to the last, both included; both must be positive. Round ones \
+              are exact: every decade between 1e16 and 1e19.",
         example: "for density in logarithmic(1e16.per_cm3, 1e19.per_cm3, 4) { print(density); }",
         register: |engine, session| {
             function(engine, session, "logarithmic", 3..=3, |call, arguments| spaced(call, arguments, true));
@@ -240,13 +243,24 @@ fn spaced(call: &Call, arguments: &mut [&mut Dynamic], ratios: bool) -> Answer {
     }
     let last = count.value as usize - 1;
     let mut list = Array::with_capacity(last + 1);
+    // numbers in the unit that they are typed in, so that the values are those that a person would type
+    let unit = from.unit();
+    let typed = |q: &Quantity| unit.map_or(q.value, |unit| unit.typed(q.value));
+    let (first, end) = (typed(&from), typed(&to));
     for k in 0..=last {
         let share = Quantity::number(k as f64 / last as f64);
         let value = match k {
             0 => from.clone(),
             k if k == last => to.clone(),
-            _ if ratios => from.multiply(&to.divide(&from)?.power(&share)?)?,
-            _ => from.add(&to.subtract(&from)?.multiply(&share)?)?,
+            _ => {
+                let (rough, number) = if ratios {
+                    (from.multiply(&to.divide(&from)?.power(&share)?)?, steps::ratio(first, end, k, last))
+                } else {
+                    (from.add(&to.subtract(&from)?.multiply(&share)?)?, steps::step(first, end, k, last))
+                };
+                // errors and derivatives come from the arithmetic of quantities
+                Quantity { value: unit.map_or(number, |unit| unit.to_si(number)), ..rough }
+            }
         };
         list.push(give(Quantity { shown_in: from.shown_in, ..value }));
     }

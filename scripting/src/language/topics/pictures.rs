@@ -194,7 +194,7 @@ fn range(options: &Options, key: &str) -> Result<Option<(f64, f64)>, Fault> {
     };
     let list = value.read_lock::<Array>().map(|list| list.clone()).ok_or_else(wrong)?;
     let number =
-        |value: &Dynamic| any_quantity(value).map(|q| q.unit().map_or(q.value, |u| u.from_si(q.value)));
+        |value: &Dynamic| any_quantity(value).map(|q| q.unit().map_or(q.value, |u| u.typed(q.value)));
     match list.as_slice() {
         [from, to] => match (number(from), number(to)) {
             (Some(from), Some(to)) if from < to => Ok(Some((from, to))),

@@ -85,7 +85,20 @@ pub(super) fn size(value: f64, unit: &str) -> String {
     format!("{number} {}", si_unit(unit)).trim_end().to_string()
 }
 
-/// Whether positive numbers span so much that equal ratios show them better.
-pub(super) fn wants_log(numbers: &[f64]) -> bool {
-    extent(numbers).is_some_and(|(least, most)| least > 0.0 && most / least >= 50.0)
+/// Whether places along an axis, increasing, are shown better in equal ratios: they span much, or a decade in which they
+/// were chosen so.
+pub(super) fn wants_log(places: &[f64]) -> bool {
+    let (Some(&least), Some(&most)) = (places.first(), places.last()) else { return false };
+    if least <= 0.0 || places.len() < 3 {
+        return false;
+    }
+    let ratio = most / least;
+    (places.len() > 3 && ratio >= 50.0) || (ratio >= 10.0 && in_ratios(places))
+}
+
+/// Whether each place is the same multiple of the one before, to the digits that a plan has.
+fn in_ratios(places: &[f64]) -> bool {
+    let steps: Vec<f64> = places.windows(2).map(|pair| log10(pair[1] / pair[0])).collect();
+    let mean = steps.iter().sum::<f64>() / steps.len() as f64;
+    steps.iter().all(|step| (step - mean).abs() <= 1e-6 * mean)
 }

@@ -261,7 +261,7 @@ fn lines(
         .into_iter()
         .map(|(list, unit)| panel(columns, along, &list, &unit, &groups, share, notes))
         .collect();
-    let x = if wants_log(&along.values) && distinct(&along.values).len() > 3 {
+    let x = if wants_log(&distinct(&along.values)) {
         logarithmic(&words(&along.name), &along.unit, &along.values, DECADES, notes)
     } else {
         linear(&words(&along.name), &along.unit, &along.values)
@@ -413,7 +413,7 @@ fn map(
     }
     let axis = |column: &Numbers, notes: &mut Vec<String>| {
         let values = distinct(&column.values);
-        if wants_log(&values) && values.len() > 3 {
+        if wants_log(&values) {
             logarithmic(&words(&column.name), &column.unit, &values, DECADES, notes)
         } else {
             linear(&words(&column.name), &column.unit, &values)

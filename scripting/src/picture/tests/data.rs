@@ -216,6 +216,23 @@ fn texts_that_were_varied_part_the_curves() {
     assert_eq!(series[1].y, [0.26, 0.255, 0.21]);
 }
 
+/// Source of truth: the plan: a decade in equal ratios is shown in such, one in equal steps is not, nor is less than a decade.
+#[test]
+fn a_plan_in_ratios_gets_a_logarithmic_axis() {
+    let along = |densities: [f64; 4]| {
+        let mut columns = sample::sweep();
+        let rows = columns.columns[0].values.len();
+        columns.columns[0].values = (0..rows).map(|row| densities[row % 4]).collect();
+        let map = charts::table::chart("sweep", &columns, Kind::Map, &Choice::default()).unwrap();
+        let Body::Map(map) = map.body else { panic!("no map") };
+        map.x.scale
+    };
+    assert_eq!(along([1e16, 2.154_434_690_03e16, 4.641_588_833_61e16, 1e17]), Scale::Log);
+    assert_eq!(along([1e16, 4e16, 7e16, 1e17]), Scale::Linear);
+    assert_eq!(along([1e16, 2e16, 4e16, 8e16]), Scale::Linear);
+    assert_eq!(along([1e16, 2e16, 1e17, 6e17]), Scale::Log);
+}
+
 /// Source of truth: the specification of errors: what is wrong, what there is, the near name.
 #[test]
 fn wrong_wishes_are_told_with_what_there_is() {
