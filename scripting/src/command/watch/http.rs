@@ -61,19 +61,19 @@ impl Answer {
     }
 }
 
-/// Answers requests for ever; `site` gives what is at a path.
+/// Answers requests for ever; `site` gives what is at a path, `busy` counts the answers that are on their way.
 pub fn serve(
     listener: &TcpListener,
     port: u16,
+    busy: &Arc<AtomicUsize>,
     site: &(impl Fn(&str) -> Option<Answer> + Clone + Send + 'static),
 ) {
-    let busy = Arc::new(AtomicUsize::new(0));
     for stream in listener.incoming().flatten() {
         if busy.fetch_add(1, Ordering::SeqCst) >= MOST {
             busy.fetch_sub(1, Ordering::SeqCst);
             continue;
         }
-        let (site, done) = (site.clone(), Arc::clone(&busy));
+        let (site, done) = (site.clone(), Arc::clone(busy));
         std::thread::spawn(move || {
             // a client that has gone away is no fault
             let _ = converse(stream, port, &site);

@@ -5,7 +5,7 @@ mod http;
 use std::fs::File;
 use std::net::{Ipv4Addr, TcpListener};
 use std::path::{Path, PathBuf};
-use std::sync::atomic::{AtomicBool, AtomicU64, Ordering};
+use std::sync::atomic::{AtomicBool, AtomicU64, AtomicUsize, Ordering};
 use std::sync::{Arc, Mutex, PoisonError};
 use std::time::{Duration, Instant};
 
@@ -25,6 +25,9 @@ const LAST_CALL: Duration = Duration::from_secs(4);
 
 /// Making pages takes at most one part in so many of the time, so that the run keeps its cores.
 const SPARING: u32 = 10;
+
+/// How long an answer that is on its way then is waited for.
+const LAST_ANSWER: Duration = Duration::from_secs(60);
 
 /// `epiloom watch FILE`.
 #[derive(clap::Args, Debug)]
@@ -97,8 +100,10 @@ impl Watch {
             made: Mutex::new(Made::default()),
         });
         let site = Arc::clone(&watched);
+        let busy = Arc::new(AtomicUsize::new(0));
+        let answers = Arc::clone(&busy);
         // ends with the process
-        std::thread::spawn(move || http::serve(&listener, port, &move |path| site.answer(path)));
+        std::thread::spawn(move || http::serve(&listener, port, &answers, &move |path| site.answer(path)));
         output.result(&format!("http://127.0.0.1:{port}/\n"));
         let mut length = 0;
         while !is_over(&held) {
@@ -111,7 +116,7 @@ impl Watch {
         }
         watched.version.fetch_add(1, Ordering::SeqCst);
         watched.running.store(false, Ordering::SeqCst);
-        watched.last_call();
+        watched.last_call(&busy);
         if Archive::open(&watched.finished).is_ok_and(|archive| archive.is_finished()) {
             output.remark(&format!("the run has ended: {}", watched.finished.display()));
             return Ok(Exit::Done);
@@ -178,14 +183,14 @@ impl Watched {
     }
 
     /// Waits until a browser that has come has the last state, or has had time to ask for it.
-    fn last_call(&self) {
-        let end = Instant::now() + LAST_CALL;
+    fn last_call(&self, busy: &AtomicUsize) {
+        let ended = Instant::now();
         let last = self.version.load(Ordering::SeqCst) + 1;
-        while self.visited.load(Ordering::SeqCst) && Instant::now() < end {
+        while self.visited.load(Ordering::SeqCst) {
             std::thread::sleep(LOOK);
-            if self.fetched.load(Ordering::SeqCst) == last {
-                // its bytes are on their way
-                std::thread::sleep(LOOK);
+            let has_it = self.fetched.load(Ordering::SeqCst) == last || ended.elapsed() > LAST_CALL;
+            let sent = busy.load(Ordering::SeqCst) == 0 || ended.elapsed() > LAST_ANSWER;
+            if has_it && sent {
                 return;
             }
         }
