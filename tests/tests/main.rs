@@ -6,6 +6,7 @@ mod catalogue;
 #[cfg(unix)]
 mod cluster;
 mod floors;
+mod pictures;
 mod report;
 mod runs;
 mod scenarios;

@@ -11,11 +11,20 @@ pub enum Align {
 
 /// Rows of cells with two blanks between columns and `indent` before the first; a missing cell is empty.
 pub fn columns(rows: &[Vec<String>], align: &[Align], indent: usize) -> String {
-    let count = rows.iter().map(Vec::len).max().unwrap_or(0);
-    let width = |column: usize| {
-        rows.iter().filter_map(|r| r.get(column)).map(|c| c.chars().count()).max().unwrap_or(0)
-    };
-    let widths: Vec<usize> = (0..count).map(width).collect();
+    laid(rows, align, &widths(rows, Vec::new()), indent)
+}
+
+/// The letters of the longest cell of each column, those that are known already included.
+pub fn widths(rows: &[Vec<String>], mut known: Vec<usize>) -> Vec<usize> {
+    for row in rows {
+        known.resize(known.len().max(row.len()), 0);
+        known.iter_mut().zip(row).for_each(|(width, cell)| *width = cell.chars().count().max(*width));
+    }
+    known
+}
+
+/// Rows of cells in columns of these widths.
+pub fn laid(rows: &[Vec<String>], align: &[Align], widths: &[usize], indent: usize) -> String {
     let mut text = String::new();
     for row in rows {
         let mut line = " ".repeat(indent);

@@ -2,7 +2,7 @@
 
 use std::path::PathBuf;
 
-use crate::archive::export::{Format, Sheet, export, export_sheet};
+use crate::archive::export::{Format, export, export_sweep};
 use crate::diagnostics::{Diagnostic, codes};
 
 use super::exit::Exit;
@@ -16,7 +16,8 @@ CSV writes one file for each table: the first at PATH, the others beside it with
 NPZ is a zip of numpy arrays, one for each column. JSON holds everything. A file at PATH is replaced.
 
 A sweep is one table: a row a point with its index, coordinates, outputs and their numerical errors under names with
-their units, and the reason why a point failed. Parquet takes sweeps, and wants a program built with the feature
+their units, and the reason why a point failed. It is read as it is written: a sweep of any length takes little memory (NPZ
+and JSON hold some of its columns at a time). Parquet takes sweeps, and wants a program built with the feature
 `parquet`.")]
 pub struct Export {
     /// The archive
@@ -56,9 +57,9 @@ impl Export {
             return Exit::Usage;
         }
         let written = match sweep {
-            Some(sweep) => Sheet::of(&archive, sweep)
-                .and_then(|sheet| export_sheet(&sheet, format, &self.out))
-                .map(|()| vec![self.out.clone()]),
+            Some(sweep) => {
+                export_sweep(&archive, sweep, format, &self.out).map(|()| vec![self.out.clone()])
+            }
             None => archive.snapshot(&self.name).and_then(|snapshot| export(&snapshot, format, &self.out)),
         };
         match written {

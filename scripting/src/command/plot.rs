@@ -16,7 +16,7 @@ use super::trouble::picture_error;
 /// `epiloom plot FILE SNAPSHOT... -o figure.svg`.
 #[derive(clap::Args, Debug)]
 #[command(after_help = "\
-Charts: jv, power (a J-V curve); eqe (a spectral response); bands, carriers, field, rates, ledger (a bias point);
+Charts: jv, power (a J-V curve); cv (a capacitance); eqe (a spectral response); bands, carriers, field, rates, ledger (a bias point);
 lines, map, histogram (a table or a sweep; name columns with --x, --y, --z). Without --chart the first that the
 snapshot gives is drawn. Scales are chosen by the data unless set. Several snapshots are laid over each other, a colour
 for each. The ending of PATH says the format: .svg, .png (300 dots per inch) or .pdf; a file there is replaced.

@@ -1,10 +1,12 @@
 //! `epiloom show`: what an archive holds.
 
-use std::fmt::Write;
+use std::collections::BTreeMap;
+use std::fmt::Write as _;
+use std::io::{BufWriter, Write};
 use std::path::{Path, PathBuf};
 
-use crate::archive::export::{Sheet, json_listing, json_point, json_sheet, json_snapshot};
-use crate::archive::{Archive, ArchiveError, RunHeader, Status};
+use crate::archive::export::{Form, OrderError, Row, Sheet, json_listing, json_point, json_sheet, json_snapshot};
+use crate::archive::{Archive, ArchiveError, RunHeader, Status, Sweep};
 use crate::diagnostics::{Diagnostic, codes};
 
 use super::columns::{Align, columns};
@@ -12,7 +14,7 @@ use super::exit::Exit;
 use super::output::Output;
 use super::overview::{Look, overview, small_plot, stack_picture};
 use super::report::{snapshot_text, stack_text, value_text, warnings_text};
-use super::table::{FIRST_ROWS, point_of, point_text, sheet_text, sweep_line};
+use super::table::{FIRST_ROWS, TableText, point_of, point_text, sweep_line};
 use super::trouble::{archive_error, archive_warning, damage};
 
 /// `epiloom show FILE [SNAPSHOT]`.
@@ -102,34 +104,99 @@ impl Show {
 impl Show {
     /// Shows a sweep as a table.
     fn table(&self, archive: &Archive, name: &str, output: &mut Output) -> Exit {
-        let sheet = match archive.sweep(name).and_then(|sweep| Sheet::of(archive, sweep)) {
-            Ok(sheet) => sheet,
-            Err(error) => return tell(&error, output),
-        };
-        if self.json {
-            return match json_sheet(&sheet) {
-                Ok(text) => {
-                    output.result(&String::from_utf8_lossy(&text));
-                    condition(archive)
-                }
-                Err(error) => tell(&error, output),
-            };
-        }
-        let order = match sheet.order_by(self.sort.as_deref().unwrap_or("point"), self.descending) {
-            Ok(order) => order,
-            Err(names) => {
+        let shown = archive.sweep(name).map_err(OrderError::from).and_then(|sweep| {
+            let form = Form::of(archive, sweep)?;
+            if self.json {
+                json_sheet(&form, archive, sweep, BufWriter::with_capacity(1 << 16, Results(output)))?;
+                return Ok(());
+            }
+            self.rows_of(archive, sweep, &form, output)
+        });
+        match shown {
+            Ok(()) => condition(archive),
+            Err(OrderError::Archive(error)) => tell(&error, output),
+            Err(OrderError::Unknown(names)) => {
                 let wanted = self.sort.as_deref().unwrap_or_default();
                 let fault = Diagnostic::new(
                     codes::UNKNOWN_SNAPSHOT,
                     format!("the sweep `{name}` has no column `{wanted}`"),
                 );
                 output.diagnostic(&fault.help(format!("there is point, {}", names.join(", "))), None);
-                return Exit::Usage;
+                Exit::Usage
             }
+        }
+    }
+
+    /// Prints the rows that are wanted, some at a time.
+    fn rows_of(
+        &self,
+        archive: &Archive,
+        sweep: &Sweep,
+        form: &Form,
+        output: &mut Output,
+    ) -> Result<(), OrderError> {
+        let most = if self.all { form.rows } else { self.rows.min(form.rows) };
+        let order = match &self.sort {
+            Some(column) => Some(form.order(archive, sweep, column, self.descending, most)?),
+            None => None,
         };
-        let most = if self.all { usize::MAX } else { self.rows };
-        output.result(&sheet_text(&sheet, &order, most));
-        condition(archive)
+        let all = 0..form.columns.len();
+        let each = |take: &mut dyn FnMut(Sheet)| -> Result<(), ArchiveError> {
+            let Some(order) = &order else {
+                let mut rows = form.rows(archive, sweep).take(most);
+                let stretches = most.div_ceil(AT_ONCE);
+                for _ in 0..stretches {
+                    take(form.gathered(all.clone(), rows.by_ref().take(AT_ONCE))?);
+                }
+                return Ok(());
+            };
+            for wanted in order.chunks(AT_ONCE) {
+                let wanted: BTreeMap<usize, usize> =
+                    wanted.iter().enumerate().map(|(at, place)| (*place, at)).collect();
+                let mut found: Vec<(usize, Row)> = Vec::new();
+                for (place, row) in form.rows(archive, sweep).enumerate() {
+                    if let Some(at) = wanted.get(&place) {
+                        found.push((*at, row?));
+                    }
+                }
+                found.sort_by_key(|(at, _)| *at);
+                take(form.gathered(all.clone(), found.into_iter().map(|(_, row)| Ok(row)))?);
+            }
+            Ok(())
+        };
+        let mut table = TableText::new(form);
+        let mut kept = Vec::new();
+        each(&mut |sheet| {
+            table.measure(&sheet);
+            // a short table is not read again
+            if most <= AT_ONCE {
+                kept.push(sheet);
+            }
+        })?;
+        output.result(&table.head());
+        match kept.is_empty() {
+            true => each(&mut |sheet| output.result(&table.rows(&sheet)))?,
+            false => kept.iter().for_each(|sheet| output.result(&table.rows(sheet))),
+        }
+        output.result(&table.rest(most));
+        Ok(())
+    }
+}
+
+/// Rows of a table that are in memory at once.
+const AT_ONCE: usize = 50_000;
+
+/// Standard output for what is written in pieces.
+struct Results<'a>(&'a mut Output);
+
+impl Write for Results<'_> {
+    fn write(&mut self, bytes: &[u8]) -> std::io::Result<usize> {
+        // the buffer before it keeps pieces whole, and what writes JSON gives whole letters
+        self.0.result(&String::from_utf8_lossy(bytes));
+        Ok(bytes.len())
+    }
+    fn flush(&mut self) -> std::io::Result<()> {
+        Ok(())
     }
 }
 

@@ -2,11 +2,11 @@
 
 use std::fmt::Write;
 
-use crate::archive::export::{Sheet, SheetCells, SheetColumn};
+use crate::archive::export::{CellKind, Form, FormColumn, Sheet, SheetCells, SheetColumn};
 use crate::archive::{Archive, Cell, Status, StoredPoint, Sweep};
 use crate::figure_text::{figure_text, significant, unit_symbol};
 
-use super::columns::{Align, columns};
+use super::columns::{Align, columns, laid, widths};
 
 /// Rows of a table that are shown unless all are asked for.
 pub const FIRST_ROWS: usize = 30;
@@ -34,58 +34,92 @@ pub fn sweep_line(sweep: &Sweep) -> Vec<String> {
     vec![sweep.name.clone(), points, plan.to_string()]
 }
 
-/// A sheet in columns: the rows of that order, at most so many, and how many more there are.
-pub fn sheet_text(sheet: &Sheet, order: &[usize], most: usize) -> String {
-    let shown = &order[..order.len().min(most)];
-    let reasons = sheet.reasons.iter().any(|reason| !reason.is_empty());
-    let mut names = vec!["point".to_string()];
-    let mut units = vec![String::new()];
-    let mut align = vec![Align::Right];
-    for column in &sheet.columns {
-        names.push(column.name.clone());
-        units.push(match is_share(column) {
-            true => "%".to_string(),
-            false => unit_symbol(&column.unit),
-        });
-        align.push(match column.cells {
-            SheetCells::Numbers { .. } => Align::Right,
+/// A sweep in columns of text, written stretch by stretch: their widths are found first.
+pub struct TableText<'a> {
+    form: &'a Form,
+    align: Vec<Align>,
+    widths: Vec<usize>,
+}
+
+impl<'a> TableText<'a> {
+    /// A table of that sweep, with nothing in it yet.
+    pub fn new(form: &'a Form) -> Self {
+        let align = form.columns.iter().map(|column| match column.kind {
+            CellKind::Numbers { .. } => Align::Right,
             _ => Align::Left,
         });
+        let align: Vec<Align> = std::iter::once(Align::Right).chain(align).collect();
+        let mut table = TableText { form, align, widths: Vec::new() };
+        table.widths = widths(&table.heading(), table.widths);
+        table
     }
-    if reasons {
-        names.push("reason".to_string());
+
+    /// Makes room for these rows.
+    pub fn measure(&mut self, sheet: &Sheet) {
+        self.widths = widths(&self.cells(sheet), std::mem::take(&mut self.widths));
     }
-    let mut rows = vec![names];
-    if units.iter().any(|unit| !unit.is_empty()) {
-        rows.push(units);
+
+    /// The names of the columns and their units.
+    pub fn head(&self) -> String {
+        laid(&self.heading(), &self.align, &self.widths, 0)
     }
-    for &row in shown {
-        let mut cells = vec![sheet.indices[row].to_string()];
-        cells.extend(sheet.columns.iter().map(|column| cell_text(column, row)));
-        if reasons {
-            cells.push(shortened(&sheet.reasons[row]));
+
+    /// These rows.
+    pub fn rows(&self, sheet: &Sheet) -> String {
+        laid(&self.cells(sheet), &self.align, &self.widths, 0)
+    }
+
+    /// What stands below the rows where there are more.
+    pub fn rest(&self, shown: usize) -> String {
+        match self.form.rows.saturating_sub(shown) {
+            0 => String::new(),
+            more => format!("and {more} points more (--all shows them)\n"),
         }
-        rows.push(cells);
     }
-    let mut text = columns(&rows, &align, 0);
-    if order.len() > shown.len() {
-        let more = order.len() - shown.len();
-        // writing to a text cannot fail
-        let _ = writeln!(text, "and {more} points more (--all shows them)");
+
+    fn heading(&self) -> Vec<Vec<String>> {
+        let mut names = vec!["point".to_string()];
+        let mut units = vec![String::new()];
+        for column in &self.form.columns {
+            names.push(column.name.clone());
+            units.push(match is_share(column) {
+                true => "%".to_string(),
+                false => unit_symbol(&column.unit),
+            });
+        }
+        if self.form.reasons {
+            names.push("reason".to_string());
+        }
+        let mut rows = vec![names];
+        if units.iter().any(|unit| !unit.is_empty()) {
+            rows.push(units);
+        }
+        rows
     }
-    text
+
+    fn cells(&self, sheet: &Sheet) -> Vec<Vec<String>> {
+        let row = |row: usize| {
+            let mut cells = vec![sheet.indices[row].to_string()];
+            cells.extend(sheet.columns.iter().map(|column| cell_text(column, row)));
+            if self.form.reasons {
+                cells.push(shortened(&sheet.reasons[row]));
+            }
+            cells
+        };
+        (0..sheet.indices.len()).map(row).collect()
+    }
 }
 
 /// Fractions that the trade reads in percent; their unit says so, or their name.
-fn is_share(column: &SheetColumn) -> bool {
+fn is_share(column: &FormColumn) -> bool {
     let known = matches!(column.name.as_str(), "ff" | "fill_factor" | "efficiency");
-    matches!(column.cells, SheetCells::Numbers { .. }) && column.unit.is_empty() && known
+    matches!(column.kind, CellKind::Numbers { .. }) && column.unit.is_empty() && known
 }
 
 fn cell_text(column: &SheetColumn, row: usize) -> String {
     match &column.cells {
         SheetCells::Numbers { values, errors } => {
-            let factor = if is_share(column) { 100.0 } else { 1.0 };
+            let factor = if is_share(&column.form) { 100.0 } else { 1.0 };
             let error = errors.get(row).copied().flatten().map(|error| factor * error);
             values[row].map_or_else(|| "-".to_string(), |value| plain_figure(factor * value, error))
         }
@@ -168,38 +202,39 @@ pub fn point_of<'a>(archive: &'a Archive, name: &str) -> Option<(&'a Sweep, u64)
 #[cfg(test)]
 mod tests {
     use super::*;
+    use crate::archive::export::{Row, SheetCell};
 
     /// Source of truth: the layout as it is meant, written by hand.
     #[test]
     fn a_sweep_reads_as_a_table() {
-        let column = |name: &str, unit: &str, cells| SheetColumn {
+        let column = |name: &str, unit: &str, kind| FormColumn {
             name: name.to_string(),
             unit: unit.to_string(),
             coordinate: false,
-            cells,
+            kind,
         };
-        let sheet = Sheet {
+        let form = Form {
             name: "map".to_string(),
-            indices: vec![0, 1, 12],
-            columns: vec![
-                column(
-                    "bsf",
-                    "nm",
-                    SheetCells::Numbers { values: vec![Some(20.0), Some(50.0), Some(80.0)], errors: vec![] },
-                ),
-                column(
-                    "efficiency",
-                    "",
-                    SheetCells::Numbers {
-                        values: vec![Some(0.243_712), None, Some(0.251)],
-                        errors: vec![Some(2e-5), None, Some(3e-4)],
-                    },
-                ),
-                column("good", "", SheetCells::Flags(vec![Some(true), None, Some(false)])),
-            ],
-            reasons: vec![String::new(), "no convergence".to_string(), String::new()],
+            rows: 3,
             failed: 1,
+            reasons: true,
+            columns: vec![
+                column("bsf", "nm", CellKind::Numbers { errors: false }),
+                column("efficiency", "", CellKind::Numbers { errors: true }),
+                column("good", "", CellKind::Flags),
+            ],
+            ..Form::default()
         };
+        let row = |index, bsf, efficiency, good| Row {
+            index,
+            cells: vec![SheetCell::Number(bsf, None), efficiency, SheetCell::Flag(good)],
+            reason: String::new(),
+        };
+        let rows = [
+            row(12, 80.0, SheetCell::Number(0.251, Some(3e-4)), false),
+            row(0, 20.0, SheetCell::Number(0.243_712, Some(2e-5)), true),
+        ];
+        let sheet = form.gathered(0..3, rows.into_iter().map(Ok)).unwrap();
         let expected = "\
 point  bsf  efficiency  good  reason
         nm           %
@@ -207,11 +242,8 @@ point  bsf  efficiency  good  reason
     0   20      24.371  yes
 and 1 points more (--all shows them)
 ";
-        let order = sheet.order_by("efficiency", true).unwrap_or_default();
-        assert_eq!(order, [2, 0, 1], "a row without a value stands last");
-        assert_eq!(sheet_text(&sheet, &order, 2), expected);
-        assert_eq!(sheet.order_by("bsf_nm", false), Ok(vec![0, 1, 2]));
-        assert_eq!(sheet.order_by("point", true), Ok(vec![2, 1, 0]));
-        assert!(sheet.order_by("bfs", false).is_err_and(|names| names.contains(&"bsf".to_string())));
+        let mut table = TableText::new(&form);
+        table.measure(&sheet);
+        assert_eq!(format!("{}{}{}", table.head(), table.rows(&sheet), table.rest(2)), expected);
     }
 }

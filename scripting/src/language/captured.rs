@@ -145,6 +145,12 @@ fn address(inner: &Dynamic) -> usize {
 
 /// The fault of a closure that captures the variable whose method it is given to: the engine holds it during the call.
 pub fn in_use() -> Fault {
-    Fault::new(codes::WRONG_KIND, "a closure uses the variable whose method it is given to")
-        .help("take a copy above, `let all = map;`, and use that: map.filter(|r| r.voc > all.mean(\"voc\"))")
+    held("map")
+}
+
+/// The same for the variable of this name.
+pub fn held(name: &str) -> Fault {
+    Fault::new(codes::WRONG_KIND, "a closure uses the variable whose method it is given to").help(format!(
+        "take a copy above, `let all = {name};`, and use `all` in the closure"
+    ))
 }

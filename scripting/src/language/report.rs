@@ -139,17 +139,19 @@ fn faults(session: &Arc<Session>, error: &EvalAltResult) -> Vec<(Fault, Position
             one(Fault::new(codes::WRONG_KIND, "`for` goes through an array, a range or a text")
                 .help("for t in [20.nm, 30.nm] { .. }"))
         }
-        EvalAltResult::ErrorDataRace(name, _) if name.starts_with("argument") => {
-            one(super::captured::in_use())
+        EvalAltResult::ErrorDataRace(words, _) => {
+            // the engine names the function at the end of its words, and no place
+            let text = &session.source.text;
+            let method = words.rsplit('\'').nth(1).unwrap_or_default();
+            match super::spans::call_on_own_variable(text, method) {
+                Some((span, variable)) if position.is_none() => {
+                    let (line, column) = session.source.position(span.start);
+                    let short = |n: usize| u16::try_from(n).unwrap_or(u16::MAX);
+                    vec![(super::captured::held(variable), Position::new(short(line), short(column)))]
+                }
+                _ => one(super::captured::in_use()),
+            }
         }
-        EvalAltResult::ErrorDataRace(name, _) => one(Fault::new(
-            codes::WRONG_KIND,
-            format!("`{}` is used by a closure that its own method was given to", first_word(name)),
-        )
-        .help(format!(
-            "take a copy above, `let all = {0};`, and use `all` in the closure",
-            first_word(name)
-        ))),
         EvalAltResult::ErrorAssignmentToConstant(name, _)
         | EvalAltResult::ErrorNonPureMethodCallOnConstant(name, _) => {
             one(Fault::new(codes::RESERVED_WORD, format!("`{name}` is a constant and cannot be changed"))
@@ -597,8 +599,4 @@ fn too_many_operations(session: &Session) -> Fault {
         format!("the script did more than {} operations", limits.operations)
     };
     Fault::new(codes::TOO_MANY_OPERATIONS, message).label("stopped here")
-}
-
-fn first_word(text: &str) -> &str {
-    text.split(|c: char| !(c.is_alphanumeric() || c == '_')).find(|w| !w.is_empty()).unwrap_or("a value")
 }

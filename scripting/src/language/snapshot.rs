@@ -201,12 +201,22 @@ pub fn capacitance(name: &str, step: u64, solved: &Solved<Capacitance>, result: 
             column("voltage", "V", |p| p.voltage),
             column("capacitance", "nF_per_cm2", |p| p.capacitance.value),
             column("capacitance_error", "nF_per_cm2", |p| p.capacitance.error),
+            Column::new(
+                "inverse_square_capacitance_cm4_per_nF2",
+                "cm4_per_nF2",
+                result.points.iter().map(|p| inverse_square(in_unit(p.capacitance.value, "nF_per_cm2"))).collect(),
+            ),
             column("stored", "nF_per_cm2", |p| p.stored.value),
             column("stored_error", "nF_per_cm2", |p| p.stored.error),
             column("conductance", "mS_per_cm2", |p| p.conductance),
         ],
     ));
     snapshot
+}
+
+/// 1/C^2, which falls in a straight line with the voltage where the doping is uniform.
+fn inverse_square(capacitance: f64) -> f64 {
+    1.0 / (capacitance * capacitance)
 }
 
 /// A map of figures, or a table from an array of such maps.

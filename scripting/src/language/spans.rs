@@ -88,6 +88,40 @@ fn entry_of(text: &str, entry: Span, key: &str) -> Option<(Span, Span)> {
     Some((Span::new(entry.start, entry.start + spelled.len()), trimmed(text, start, entry.end)))
 }
 
+/// The first call of a method of this name whose arguments use the variable that its chain of calls begins with: the range of
+/// the name, and the variable.
+pub fn call_on_own_variable<'a>(text: &'a str, method: &str) -> Option<(Span, &'a str)> {
+    for (at, _) in text.match_indices(&format!(".{method}(")) {
+        let name = Span::new(at + 1, at + 1 + method.len());
+        let variable = word_at(text, chain_start(text, at));
+        let end = close(text, name.end).unwrap_or(text.len());
+        let mut inside = name.end;
+        while !variable.is_empty() && inside < end {
+            let word = word_at(text, inside);
+            if word == variable && !text[..inside].ends_with('.') {
+                return Some((name, variable));
+            }
+            inside += word.len().max(text[inside..].chars().next().map_or(1, char::len_utf8));
+        }
+    }
+    None
+}
+
+/// Where the chain of calls and properties begins that goes on with the point at this place.
+fn chain_start(text: &str, point: usize) -> usize {
+    let (mut start, mut depth) = (point, 0_i32);
+    for (at, letter) in text[..point].char_indices().rev() {
+        match letter {
+            ')' | ']' => depth += 1,
+            '(' | '[' if depth > 0 => depth -= 1,
+            _ if depth > 0 || letter.is_alphanumeric() || matches!(letter, '_' | '.') => {}
+            _ => break,
+        }
+        start = at;
+    }
+    start
+}
+
 /// The ranges of the bodies of the functions that `fn` defines.
 pub fn function_bodies(text: &str) -> Vec<Span> {
     let bytes = text.as_bytes();

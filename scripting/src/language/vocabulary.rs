@@ -4,12 +4,11 @@ use std::any::TypeId;
 use std::ops::RangeInclusive;
 use std::sync::Arc;
 
-use rhai::{Dynamic, Engine, FnPtr, NativeCallContext, Position};
+use rhai::{Dynamic, Engine, NativeCallContext, Position};
 
 use crate::diagnostics::codes;
 
 use super::fault::{Fault, Faults, Outcome};
-use super::receivers;
 use super::session::Session;
 use super::topics;
 use super::value::Unknown;
@@ -237,12 +236,6 @@ pub fn caller<T: rhai::Variant + Clone>(
                 let call = Call { session: &session, position: context.call_position(), context: &context };
                 // the receiver is copied, so that the engine sees that it is not changed
                 let mut values: Vec<Dynamic> = arguments.iter().map(|value| value.flatten_clone()).collect();
-                for value in values.iter_mut().skip(1) {
-                    let free = value.read_lock::<FnPtr>().and_then(|closure| receivers::released(&closure));
-                    if let Some(closure) = free {
-                        *value = Dynamic::from(closure);
-                    }
-                }
                 let mut references: Vec<&mut Dynamic> = values.iter_mut().collect();
                 settle_error(&call, body(&call, &mut references))
             },

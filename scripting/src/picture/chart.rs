@@ -13,6 +13,8 @@ pub enum Kind {
     CurrentVoltage,
     /// Delivered power against voltage.
     Power,
+    /// Capacitance and the inverse of its square against voltage.
+    Capacitance,
     /// Quantum efficiency, reflectance and absorption against wavelength.
     Response,
     /// Band edges and quasi-Fermi levels against depth.
@@ -38,6 +40,7 @@ impl Kind {
     pub const ALL: &'static [Kind] = &[
         Kind::CurrentVoltage,
         Kind::Power,
+        Kind::Capacitance,
         Kind::Response,
         Kind::Bands,
         Kind::Carriers,
@@ -54,6 +57,7 @@ impl Kind {
         match self {
             Kind::CurrentVoltage => "jv",
             Kind::Power => "power",
+            Kind::Capacitance => "cv",
             Kind::Response => "eqe",
             Kind::Bands => "bands",
             Kind::Carriers => "carriers",
@@ -71,6 +75,7 @@ impl Kind {
         match self {
             Kind::CurrentVoltage => "Current and voltage",
             Kind::Power => "Power",
+            Kind::Capacitance => "Capacitance and voltage",
             Kind::Response => "Spectral response",
             Kind::Bands => "Bands",
             Kind::Carriers => "Carriers",
@@ -220,6 +225,8 @@ pub enum Role {
     Power,
     /// Local ideality.
     Ideality,
+    /// Capacitance, or the inverse of its square.
+    Capacitance,
     /// External quantum efficiency.
     External,
     /// Internal quantum efficiency.

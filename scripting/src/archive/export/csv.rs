@@ -4,8 +4,9 @@
 //! or `-inf`, and an absent value is an empty cell.
 
 use std::collections::BTreeSet;
+use std::io::Write;
 
-use super::sheet::{Sheet, SheetCells};
+use super::sheet::{Form, Row, SheetCell};
 use super::{plain_name, unique_name};
 use crate::archive::error::ArchiveError;
 use crate::archive::model::{Figure, Ledger, Snapshot, Table};
@@ -82,58 +83,62 @@ fn optional(value: Option<f64>) -> String {
     value.map_or_else(String::new, number)
 }
 
-type Lines = csv::Writer<Vec<u8>>;
+type Lines<W> = csv::Writer<W>;
 
-fn written(fill: impl FnOnce(&mut Lines) -> csv::Result<()>) -> Result<Vec<u8>, ArchiveError> {
-    let failed = |reason: String| ArchiveError::Encoding { what: "CSV".to_owned(), reason };
-    let mut lines = csv::Writer::from_writer(Vec::new());
-    fill(&mut lines).map_err(|error| failed(error.to_string()))?;
-    lines.into_inner().map_err(|error| failed(error.to_string()))
+fn failed(error: impl std::fmt::Display) -> ArchiveError {
+    ArchiveError::Encoding { what: "CSV".to_owned(), reason: error.to_string() }
 }
 
-/// A sweep: the index of each point, its columns with units in their names and errors beside them, and the reason.
+fn written(fill: impl FnOnce(&mut Lines<Vec<u8>>) -> csv::Result<()>) -> Result<Vec<u8>, ArchiveError> {
+    let mut lines = csv::Writer::from_writer(Vec::new());
+    fill(&mut lines).map_err(failed)?;
+    lines.into_inner().map_err(failed)
+}
+
+/// A sweep, row by row: the index of each point, its columns with units in their names and errors beside them, and the
+/// reason.
 ///
 /// # Errors
-/// [`ArchiveError::Encoding`].
-pub fn csv_sheet(sheet: &Sheet) -> Result<Vec<u8>, ArchiveError> {
-    written(|lines| {
-        let mut taken = BTreeSet::new();
-        let mut heading = vec![unique_name("point".to_owned(), &mut taken)];
-        for column in &sheet.columns {
-            heading.push(unique_name(column.title(), &mut taken));
-            if matches!(&column.cells, SheetCells::Numbers { errors, .. } if !errors.is_empty()) {
-                heading.push(unique_name(column.error_title(), &mut taken));
-            }
+/// [`ArchiveError::Encoding`] and those of the rows.
+pub fn csv_sheet(
+    form: &Form,
+    rows: impl Iterator<Item = Result<Row, ArchiveError>>,
+    out: impl Write,
+) -> Result<(), ArchiveError> {
+    let mut lines = csv::Writer::from_writer(out);
+    let mut taken = BTreeSet::new();
+    let mut heading = vec![unique_name("point".to_owned(), &mut taken)];
+    for column in &form.columns {
+        heading.push(unique_name(column.title(), &mut taken));
+        if column.has_errors() {
+            heading.push(unique_name(column.error_title(), &mut taken));
         }
-        heading.push(unique_name("reason".to_owned(), &mut taken));
-        lines.write_record(&heading)?;
-        for (row, index) in sheet.indices.iter().enumerate() {
-            lines.write_field(index.to_string())?;
-            for column in &sheet.columns {
-                match &column.cells {
-                    SheetCells::Numbers { values, errors } => {
-                        lines.write_field(optional(values[row]))?;
-                        if let Some(error) = errors.get(row) {
-                            lines.write_field(optional(*error))?;
-                        }
-                    }
-                    SheetCells::Flags(flags) => {
-                        lines.write_field(match flags[row] {
-                            Some(true) => "yes",
-                            Some(false) => "no",
-                            None => "",
-                        })?;
-                    }
-                    SheetCells::Texts(texts) => {
-                        lines.write_field(texts[row].as_deref().unwrap_or_default())?
-                    }
-                }
-            }
-            lines.write_field(&sheet.reasons[row])?;
-            lines.write_record(None::<&[u8]>)?;
+    }
+    heading.push(unique_name("reason".to_owned(), &mut taken));
+    lines.write_record(&heading).map_err(failed)?;
+    for row in rows {
+        let row = row?;
+        line(&mut lines, form, &row).map_err(failed)?;
+    }
+    lines.flush().map_err(failed)
+}
+
+fn line(lines: &mut Lines<impl Write>, form: &Form, row: &Row) -> csv::Result<()> {
+    lines.write_field(row.index.to_string())?;
+    for (column, cell) in form.columns.iter().zip(&row.cells) {
+        let (text, error) = match cell {
+            SheetCell::Empty => (String::new(), None),
+            SheetCell::Number(value, error) => (number(*value), *error),
+            SheetCell::Flag(flag) => (if *flag { "yes" } else { "no" }.to_owned(), None),
+            SheetCell::Text(text) => (text.clone(), None),
+        };
+        lines.write_field(text)?;
+        if column.has_errors() {
+            lines.write_field(optional(error))?;
         }
-        Ok(())
-    })
+    }
+    lines.write_field(&row.reason)?;
+    lines.write_record(None::<&[u8]>)
 }
 
 fn table_bytes(table: &Table) -> Result<Vec<u8>, ArchiveError> {

@@ -1,7 +1,9 @@
 //! Everything as JSON: numbers read back as the same bits; what is no number is null, with the reason.
 
+use std::io::Write;
+
 use serde::Serialize;
-use serde::ser::{SerializeMap, Serializer};
+use serde::ser::{Error, SerializeMap, SerializeSeq, Serializer};
 
 use crate::archive::error::ArchiveError;
 use crate::archive::model::{
@@ -12,7 +14,7 @@ use crate::archive::reader::{Archive, Entry};
 use crate::archive::stored::Sweep;
 use crate::archive::sweep::{Cell, StoredPoint, SweepColumn};
 
-use super::sheet::{Sheet, SheetCells, SheetColumn};
+use super::sheet::{Form, Row, SheetCells, SheetColumn};
 
 /// The snapshot as JSON, ended by a line feed.
 ///
@@ -36,17 +38,22 @@ pub fn json_listing(archive: &Archive) -> Result<Vec<u8>, ArchiveError> {
     })
 }
 
-/// A sweep as JSON: its points' indices, its columns with units, errors and reasons, ended by a line feed.
+/// Writes a sweep as JSON: its points' indices, its columns with units, errors and reasons, ended by a line feed. The sweep
+/// is read once for every few columns.
 ///
 /// # Errors
 /// [`ArchiveError::Encoding`].
-pub fn json_sheet(sheet: &Sheet) -> Result<Vec<u8>, ArchiveError> {
-    text(&SheetView {
-        sweep: &sheet.name,
-        points: &sheet.indices,
-        columns: sheet.columns.iter().map(SheetColumnView::of).collect(),
-        reasons: &sheet.reasons,
-    })
+pub fn json_sheet(
+    form: &Form,
+    archive: &Archive,
+    sweep: &Sweep,
+    mut out: impl Write,
+) -> Result<(), ArchiveError> {
+    let read = Reading { form, archive, sweep };
+    let view =
+        SheetView { sweep: &form.name, points: Indices(&read), columns: Columns(&read), reasons: Reasons(&read) };
+    serde_json::to_writer_pretty(&mut out, &view).map_err(failed)?;
+    out.write_all(b"\n").and_then(|()| out.flush()).map_err(failed)
 }
 
 /// One point as JSON: coordinates, outputs, status, lines, warnings and the names of what it stored.
@@ -108,10 +115,58 @@ impl Serialize for CellView<'_> {
 #[derive(Serialize)]
 struct SheetView<'a> {
     sweep: &'a str,
-    points: &'a [u64],
-    columns: Vec<SheetColumnView<'a>>,
+    points: Indices<'a>,
+    columns: Columns<'a>,
     /// Why a point failed, or has no value in a column; empty where there is nothing to say.
-    reasons: &'a [String],
+    reasons: Reasons<'a>,
+}
+
+/// A sweep that is read while it is written.
+struct Reading<'a> {
+    form: &'a Form,
+    archive: &'a Archive,
+    sweep: &'a Sweep,
+}
+
+impl Reading<'_> {
+    /// Something of each row, one after the other.
+    fn each<S: Serializer, T: Serialize>(&self, serializer: S, of: fn(Row) -> T) -> Result<S::Ok, S::Error> {
+        let mut list = serializer.serialize_seq(Some(self.form.rows))?;
+        for row in self.form.rows(self.archive, self.sweep) {
+            list.serialize_element(&of(row.map_err(S::Error::custom)?))?;
+        }
+        list.end()
+    }
+}
+
+struct Indices<'a>(&'a Reading<'a>);
+struct Columns<'a>(&'a Reading<'a>);
+struct Reasons<'a>(&'a Reading<'a>);
+
+impl Serialize for Indices<'_> {
+    fn serialize<S: Serializer>(&self, serializer: S) -> Result<S::Ok, S::Error> {
+        self.0.each(serializer, |row| row.index)
+    }
+}
+
+impl Serialize for Reasons<'_> {
+    fn serialize<S: Serializer>(&self, serializer: S) -> Result<S::Ok, S::Error> {
+        self.0.each(serializer, |row| row.reason)
+    }
+}
+
+impl Serialize for Columns<'_> {
+    fn serialize<S: Serializer>(&self, serializer: S) -> Result<S::Ok, S::Error> {
+        let Reading { form, archive, sweep } = self.0;
+        let mut list = serializer.serialize_seq(Some(form.columns.len()))?;
+        for stretch in form.stretches() {
+            let sheet = form.gathered(stretch, form.rows(archive, sweep)).map_err(S::Error::custom)?;
+            for column in &sheet.columns {
+                list.serialize_element(&SheetColumnView::of(column))?;
+            }
+        }
+        list.end()
+    }
 }
 
 #[derive(Serialize)]
@@ -158,7 +213,8 @@ impl<'a> SheetColumnView<'a> {
             SheetCells::Flags(values) => CellsView::Flags { values },
             SheetCells::Texts(values) => CellsView::Texts { values },
         };
-        SheetColumnView { name: &column.name, unit: &column.unit, coordinate: column.coordinate, cells }
+        let form = &column.form;
+        SheetColumnView { name: &form.name, unit: &form.unit, coordinate: form.coordinate, cells }
     }
 }
 
@@ -189,10 +245,13 @@ impl<'a> SweepView<'a> {
 }
 
 fn text(view: &impl Serialize) -> Result<Vec<u8>, ArchiveError> {
-    let mut out = serde_json::to_vec_pretty(view)
-        .map_err(|error| ArchiveError::Encoding { what: "JSON".to_owned(), reason: error.to_string() })?;
+    let mut out = serde_json::to_vec_pretty(view).map_err(failed)?;
     out.push(b'\n');
     Ok(out)
+}
+
+fn failed(error: impl std::fmt::Display) -> ArchiveError {
+    ArchiveError::Encoding { what: "JSON".to_owned(), reason: error.to_string() }
 }
 
 /// What a number that JSON cannot hold is called.

@@ -7,16 +7,19 @@ mod npz;
 mod parquet;
 mod sheet;
 
+use std::io::{BufWriter, Seek, Write};
 use std::path::{Path, PathBuf};
 
 pub use self::csv::{CsvDocument, csv_documents, csv_names, csv_sheet};
 pub use self::json::{json_listing, json_point, json_sheet, json_snapshot};
 pub use self::npz::{npz, npz_sheet};
-pub use self::sheet::{Sheet, SheetCells, SheetColumn};
+pub use self::sheet::{CellKind, Form, FormColumn, OrderError, Row, Rows, Sheet, SheetCell, SheetCells, SheetColumn};
 
 use super::error::ArchiveError;
 use super::model::Snapshot;
-use super::storage::{Disk, Opening, Storage};
+use super::reader::Archive;
+use super::storage::{Disk, Storage};
+use super::stored::Sweep;
 
 /// The form of an export.
 #[derive(Clone, Copy, Debug, PartialEq, Eq)]
@@ -69,25 +72,32 @@ pub fn export(snapshot: &Snapshot, format: Format, path: &Path) -> Result<Vec<Pa
     Ok(files.into_iter().map(|(file, _)| file).collect())
 }
 
-/// Writes the sweep in that form to one file, beside its place and renamed.
+/// Writes the sweep in that form to one file, beside its place and renamed, as it is read: the memory that is taken does not
+/// grow with the sweep in CSV and Parquet, and holds a few columns at once in NPZ and JSON.
 ///
 /// # Errors
-/// [`ArchiveError::Io`], [`ArchiveError::Encoding`].
-pub fn export_sheet(sheet: &Sheet, format: Format, path: &Path) -> Result<(), ArchiveError> {
-    let bytes = match format {
-        Format::Csv => csv_sheet(sheet)?,
-        Format::Npz => npz_sheet(sheet)?,
-        Format::Json => json_sheet(sheet)?,
+/// A block that is damaged, [`ArchiveError::Io`], [`ArchiveError::Encoding`].
+pub fn export_sweep(
+    archive: &Archive,
+    sweep: &Sweep,
+    format: Format,
+    path: &Path,
+) -> Result<(), ArchiveError> {
+    let form = Form::of(archive, sweep)?;
+    let rows = || form.rows(archive, sweep);
+    write_with(path, |out| match format {
+        Format::Csv => csv_sheet(&form, rows(), out),
+        Format::Npz => npz_sheet(&form, archive, sweep, out),
+        Format::Json => json_sheet(&form, archive, sweep, out),
         #[cfg(feature = "parquet")]
-        Format::Parquet => self::parquet::parquet(sheet)?,
+        Format::Parquet => self::parquet::parquet(&form, rows(), out),
         #[cfg(not(feature = "parquet"))]
         Format::Parquet => {
             let reason =
                 "this program was built without it: cargo build --release --features parquet".to_owned();
-            return Err(ArchiveError::Encoding { what: "Parquet".to_owned(), reason });
+            Err(ArchiveError::Encoding { what: "Parquet".to_owned(), reason })
         }
-    };
-    write_whole(path, &bytes)
+    })
 }
 
 /// `path` with a suffix before its ending.
@@ -108,24 +118,95 @@ fn beside(path: &Path, suffix: Option<&str>) -> PathBuf {
 /// # Errors
 /// [`ArchiveError::Io`].
 pub fn write_whole(path: &Path, bytes: &[u8]) -> Result<(), ArchiveError> {
+    write_with(path, |out| {
+        let written = out.write_all(bytes);
+        written.map_err(|source| ArchiveError::Io { action: "write", path: path.to_owned(), source })
+    })
+}
+
+/// A file on its way, which keeps the first failure of the system: formats tell of theirs in words of their own.
+#[derive(Debug)]
+struct Written {
+    file: std::fs::File,
+    failure: Option<std::io::Error>,
+}
+
+impl Written {
+    fn noted<T>(&mut self, done: std::io::Result<T>) -> std::io::Result<T> {
+        done.map_err(|error| {
+            let same = error.raw_os_error().map_or_else(|| error.kind().into(), std::io::Error::from_raw_os_error);
+            self.failure.get_or_insert(error);
+            same
+        })
+    }
+}
+
+impl Write for Written {
+    fn write(&mut self, bytes: &[u8]) -> std::io::Result<usize> {
+        let done = self.file.write(bytes);
+        self.noted(done)
+    }
+    fn flush(&mut self) -> std::io::Result<()> {
+        let done = self.file.flush();
+        self.noted(done)
+    }
+}
+
+impl Seek for Written {
+    fn seek(&mut self, to: std::io::SeekFrom) -> std::io::Result<u64> {
+        let done = self.file.seek(to);
+        self.noted(done)
+    }
+}
+
+/// A file that is written from its beginning on.
+type Out = BufWriter<Written>;
+
+/// As [`write_whole`], of what `fill` writes.
+fn write_with(
+    path: &Path,
+    fill: impl FnOnce(&mut Out) -> Result<(), ArchiveError>,
+) -> Result<(), ArchiveError> {
     let failed = |source| ArchiveError::Io { action: "write", path: path.to_owned(), source };
-    // A pipe or a terminal is written to, not replaced.
+    // A pipe or a terminal is written to, not replaced; the folder of temporary files holds what comes first.
     if path.metadata().is_ok_and(|about| !about.is_file()) {
-        return std::fs::write(path, bytes).map_err(failed);
+        let beside = std::env::temp_dir().join(format!("epiloom-export-{}", std::process::id()));
+        let written = filled(&beside, fill, failed).and_then(|()| {
+            let copied = std::fs::File::open(&beside).and_then(|mut made| {
+                let mut out = std::fs::OpenOptions::new().write(true).open(path)?;
+                std::io::copy(&mut made, &mut out)
+            });
+            copied.map(|_| ()).map_err(failed)
+        });
+        let _ = Disk.remove(&beside);
+        return written;
     }
     let mut beside = path.as_os_str().to_owned();
     beside.push(".exporting");
     let beside = PathBuf::from(beside);
-    let mut file = Disk.open(&beside, Opening::Emptied).map_err(failed)?;
-    let written = file.write_at(0, bytes).and_then(|()| file.sync());
-    drop(file);
-    let moved = written.and_then(|()| Disk.rename(&beside, path));
-    if let Err(source) = moved {
+    let moved = filled(&beside, fill, failed).and_then(|()| Disk.rename(&beside, path).map_err(failed));
+    if moved.is_err() {
         // The first failure is the one to report.
         let _ = Disk.remove(&beside);
-        return Err(failed(source));
+        return moved;
     }
     Disk.sync_folder(path).map_err(failed)
+}
+
+/// A file with what `fill` writes, durable.
+fn filled(
+    path: &Path,
+    fill: impl FnOnce(&mut Out) -> Result<(), ArchiveError>,
+    failed: impl Fn(std::io::Error) -> ArchiveError,
+) -> Result<(), ArchiveError> {
+    let file = std::fs::File::create(path).map_err(&failed)?;
+    let mut out = BufWriter::with_capacity(1 << 16, Written { file, failure: None });
+    let done = fill(&mut out);
+    if let Some(source) = out.get_mut().failure.take() {
+        return Err(failed(source));
+    }
+    done?;
+    out.flush().and_then(|()| out.get_ref().file.sync_all()).map_err(&failed)
 }
 
 /// A name that can stand in a file name or as a key: path separators and control characters become `_`.

@@ -6,15 +6,17 @@
 //! snapshot gives the same bytes.
 
 use std::collections::BTreeSet;
-use std::io::{Cursor, Write};
+use std::io::{Cursor, Seek, Write};
 
 use zip::write::SimpleFileOptions;
 use zip::{CompressionMethod, DateTime, ZipWriter};
 
-use super::sheet::{Sheet, SheetCells};
+use super::sheet::{Form, Row, SheetCells, SheetColumn};
 use super::{plain_name, unique_name};
 use crate::archive::error::ArchiveError;
 use crate::archive::model::{Snapshot, Value};
+use crate::archive::reader::Archive;
+use crate::archive::stored::Sweep;
 
 /// The snapshot as the bytes of an NPZ file.
 ///
@@ -67,82 +69,124 @@ pub fn npz(snapshot: &Snapshot) -> Result<Vec<u8>, ArchiveError> {
     Ok(arrays.zip.finish().map_err(failed)?.into_inner())
 }
 
-/// The sweep as the bytes of an NPZ file: `point`, one array a column under its name with its unit (`bsf_nm`) and one
-/// for its errors (`voc_error_V`), `reason`. Absent numbers are NaN, flags `|b1` with `NAME_known` beside them where some
-/// are absent.
+/// Writes a sweep as an NPZ file: `point`, one array a column under its name with its unit (`bsf_nm`) and one for its
+/// errors (`voc_error_V`), `reason`. Absent numbers are NaN, flags `|b1` with `NAME_known` beside them where some are
+/// absent. The sweep is read once for every few columns.
 ///
 /// # Errors
-/// [`ArchiveError::Encoding`].
-pub fn npz_sheet(sheet: &Sheet) -> Result<Vec<u8>, ArchiveError> {
-    let mut arrays = Arrays { zip: ZipWriter::new(Cursor::new(Vec::new())), taken: BTreeSet::new() };
-    let indices: Vec<u8> = sheet.indices.iter().flat_map(|index| index.to_le_bytes()).collect();
-    arrays.put("point", "<u8", sheet.rows(), &indices)?;
-    let or_nan = |list: &[Option<f64>]| -> Vec<f64> { list.iter().map(|v| v.unwrap_or(f64::NAN)).collect() };
-    for column in &sheet.columns {
-        match &column.cells {
-            SheetCells::Numbers { values, errors } => {
-                arrays.numbers(&column.title(), &or_nan(values))?;
-                if !errors.is_empty() {
-                    arrays.numbers(&column.error_title(), &or_nan(errors))?;
-                }
-            }
-            SheetCells::Flags(flags) => {
-                let bytes: Vec<u8> = flags.iter().map(|flag| u8::from(*flag == Some(true))).collect();
-                arrays.put(&column.title(), "|b1", flags.len(), &bytes)?;
-                if flags.contains(&None) {
-                    let known: Vec<u8> = flags.iter().map(|flag| u8::from(flag.is_some())).collect();
-                    arrays.put(&format!("{}_known", column.name), "|b1", flags.len(), &known)?;
-                }
-            }
-            SheetCells::Texts(texts) => {
-                arrays
-                    .texts(&column.title(), texts.iter().map(|text| text.as_deref().unwrap_or_default()))?;
-            }
+/// [`ArchiveError::Encoding`] and those of reading the sweep.
+pub fn npz_sheet(
+    form: &Form,
+    archive: &Archive,
+    sweep: &Sweep,
+    out: impl Write + Seek,
+) -> Result<(), ArchiveError> {
+    let mut arrays = Arrays { zip: ZipWriter::new(out), taken: BTreeSet::new() };
+    let indices = form.rows(archive, sweep).map(|row| row.map(|row| row.index.to_le_bytes()));
+    let indices: Vec<[u8; 8]> = indices.collect::<Result<_, _>>()?;
+    arrays.put("point", "<u8", form.rows, indices.as_flattened())?;
+    drop(indices);
+    for stretch in form.stretches() {
+        let sheet = form.gathered(stretch, form.rows(archive, sweep).map(without_reason))?;
+        for column in &sheet.columns {
+            arrays.column(column)?;
         }
     }
-    arrays.texts("reason", sheet.reasons.iter().map(String::as_str))?;
-    Ok(arrays.zip.finish().map_err(failed)?.into_inner())
+    let reasons = form.gathered(0..0, form.rows(archive, sweep))?.reasons;
+    arrays.texts("reason", reasons.iter().map(String::as_str))?;
+    arrays.zip.finish().map_err(failed)?;
+    Ok(())
+}
+
+fn without_reason(row: Result<Row, ArchiveError>) -> Result<Row, ArchiveError> {
+    row.map(|row| Row { reason: String::new(), ..row })
 }
 
 fn failed(error: impl std::fmt::Display) -> ArchiveError {
     ArchiveError::Encoding { what: "NPZ".to_owned(), reason: error.to_string() }
 }
 
-struct Arrays {
-    zip: ZipWriter<Cursor<Vec<u8>>>,
+struct Arrays<W: Write + Seek> {
+    zip: ZipWriter<W>,
     taken: BTreeSet<String>,
 }
 
-impl Arrays {
+impl<W: Write + Seek> Arrays<W> {
+    /// A column of a sweep.
+    fn column(&mut self, column: &SheetColumn) -> Result<(), ArchiveError> {
+        let title = column.form.title();
+        match &column.cells {
+            SheetCells::Numbers { values, errors } => {
+                self.optional(&title, values)?;
+                if !errors.is_empty() {
+                    self.optional(&column.form.error_title(), errors)?;
+                }
+            }
+            SheetCells::Flags(flags) => {
+                let bytes: Vec<u8> = flags.iter().map(|flag| u8::from(*flag == Some(true))).collect();
+                self.put(&title, "|b1", flags.len(), &bytes)?;
+                if flags.contains(&None) {
+                    let known: Vec<u8> = flags.iter().map(|flag| u8::from(flag.is_some())).collect();
+                    self.put(&format!("{}_known", column.form.name), "|b1", flags.len(), &known)?;
+                }
+            }
+            SheetCells::Texts(texts) => {
+                self.texts(&title, texts.iter().map(|text| text.as_deref().unwrap_or_default()))?;
+            }
+        }
+        Ok(())
+    }
+
+    fn optional(&mut self, name: &str, values: &[Option<f64>]) -> Result<(), ArchiveError> {
+        let bytes: Vec<[u8; 8]> =
+            values.iter().map(|value| value.unwrap_or(f64::NAN).to_le_bytes()).collect();
+        self.put(name, "<f8", values.len(), bytes.as_flattened())
+    }
+
     fn numbers(&mut self, name: &str, values: &[f64]) -> Result<(), ArchiveError> {
         let bytes: Vec<u8> = values.iter().flat_map(|value| value.to_le_bytes()).collect();
         self.put(name, "<f8", values.len(), &bytes)
     }
 
-    /// Texts as UCS-4, each padded with zeros to the longest.
-    fn texts<'a>(&mut self, name: &str, texts: impl Iterator<Item = &'a str>) -> Result<(), ArchiveError> {
-        // A zero character ends a text for numpy; none of ours has a use for one.
-        let texts: Vec<Vec<u32>> =
-            texts.map(|text| text.replace('\0', " ").chars().map(u32::from).collect()).collect();
-        let width = texts.iter().map(Vec::len).max().unwrap_or(0).max(1);
-        let mut bytes = Vec::with_capacity(4 * width * texts.len());
-        for text in &texts {
-            let padded = text.iter().copied().chain(std::iter::repeat(0)).take(width);
+    /// Texts as UCS-4, each padded with zeros to the longest, written as they are made: padding may take much.
+    fn texts<'a>(
+        &mut self,
+        name: &str,
+        texts: impl Iterator<Item = &'a str> + Clone,
+    ) -> Result<(), ArchiveError> {
+        let (count, width) = texts.clone().fold((0, 1), |(count, width): (usize, usize), text| {
+            (count + 1, width.max(text.chars().count()))
+        });
+        self.begin(name, &format!("<U{width}"), count, 4 * width * count)?;
+        let mut bytes = Vec::new();
+        for text in texts {
+            // A zero character ends a text for numpy; none of ours has a use for one.
+            let letters = text.chars().map(|c| if c == '\0' { u32::from(' ') } else { u32::from(c) });
+            let padded = letters.chain(std::iter::repeat(0)).take(width);
             bytes.extend(padded.flat_map(u32::to_le_bytes));
+            if bytes.len() > 1 << 20 {
+                self.zip.write_all(&bytes).map_err(failed)?;
+                bytes.clear();
+            }
         }
-        self.put(name, &format!("<U{width}"), texts.len(), &bytes)
+        self.zip.write_all(&bytes).map_err(failed)
     }
 
     fn put(&mut self, name: &str, kind: &str, count: usize, data: &[u8]) -> Result<(), ArchiveError> {
+        self.begin(name, kind, count, data.len())?;
+        self.zip.write_all(data).map_err(failed)
+    }
+
+    /// Begins an array of so many bytes.
+    fn begin(&mut self, name: &str, kind: &str, count: usize, bytes: usize) -> Result<(), ArchiveError> {
         let name = unique_name(plain_name(name), &mut self.taken);
         let options = SimpleFileOptions::default()
             .compression_method(CompressionMethod::Stored)
             .last_modified_time(DateTime::default())
             .unix_permissions(0o644)
-            .large_file(data.len() >= 1 << 31);
+            .large_file(bytes >= 1 << 31);
         self.zip.start_file(format!("{name}.npy"), options).map_err(failed)?;
-        self.zip.write_all(&npy_header(kind, count)).map_err(failed)?;
-        self.zip.write_all(data).map_err(failed)
+        self.zip.write_all(&npy_header(kind, count)).map_err(failed)
     }
 }
 

@@ -2,7 +2,7 @@
 
 use std::path::{Component, Path};
 
-use rhai::{Array, Dynamic};
+use rhai::{Array, Dynamic, Map};
 
 use crate::archive::Snapshot;
 use crate::diagnostics::codes;
@@ -14,9 +14,9 @@ use crate::language::value::{Options, any_quantity, described, text};
 use crate::language::vocabulary::{Answer, Call, OptionRow, function, topic};
 use crate::picture::chart::Scale;
 use crate::picture::charts::{self, Choice};
-use crate::picture::{Format, Kind, PictureError, View, convert, draw};
+use crate::picture::{Chart, Format, Kind, PictureError, View, convert, draw, overlay};
 
-use super::results::snapshot_of;
+use super::results::{is_result, snapshot_of, stack_name};
 
 /// Bytes of a picture's name.
 const LONGEST_NAME: usize = 200;
@@ -24,8 +24,13 @@ const LONGEST_NAME: usize = 200;
 static OPTIONS: &[OptionRow] = &[
     OptionRow {
         key: "chart",
-        takes: "a text: `jv`, `power`, `eqe`, `bands`, `carriers`, `field`, `rates`, `ledger`, `lines`, `map` or `histogram`",
+        takes: "a text: `jv`, `power`, `cv`, `eqe`, `bands`, `carriers`, `field`, `rates`, `ledger`, `lines`, `map` or `histogram`",
         doc: "What to show; without it the first that the result gives.",
+    },
+    OptionRow {
+        key: "names",
+        takes: "an array of texts",
+        doc: "Names of several results in the legend, instead of the keys of their map or the names of their stacks.",
     },
     OptionRow {
         key: "title",
@@ -68,9 +73,10 @@ topic! {
     "Pictures go into the folder of the archive and below it, and nowhere else; checking and replaying write none.";
 
     Function "picture" {
-        forms: ["picture(\"bands.svg\", result)", "picture(\"bands.svg\", result, #{ options })"],
-        doc: "Draws a result (what `store` takes) into a file that ends in `.svg`, `.png` or `.pdf`. Each name once. What a picture \
-              leaves out, such as values off its scale, stands in its notes.",
+        forms: ["picture(\"bands.svg\", result)", "picture(\"jv.svg\", [result, ..])", "picture(\"jv.svg\", #{ name: result, .. })", "picture(\"bands.svg\", result, #{ options })"],
+        doc: "Draws a result (what `store` takes) into a file that ends in `.svg`, `.png` or `.pdf`. Several results of a kind are laid \
+              over each other, a colour for each, with a legend of their names. Each file name once. What a picture leaves out, such \
+              as values off its scale, stands in its notes.",
         options: OPTIONS,
         example: "let gaas = material(\"GaAs\", #{ electron_lifetime: 20.ns, hole_lifetime: 20.ns });\nlet cell = stack(\"diode\", [layer(\"emitter\", gaas, 100.nm, donors(2e18.per_cm3)), layer(\"base\", gaas, 2.um, acceptors(1e17.per_cm3))]);\npicture(\"carriers.svg\", cell.equilibrium(), #{ chart: \"carriers\", title: \"Carriers in the dark\" });",
         register: |engine, session| {
@@ -103,9 +109,18 @@ fn picture(call: &Call, arguments: &mut [&mut Dynamic]) -> Answer {
         )
         .into());
     }
-    let built = snapshot_of(&wish.title, 0, arguments[1]).map_err(|f| f.at(Place::Argument(1)))?;
-    let Some(snapshot) = built.filter(|_| !session.checking()) else { return Ok(Dynamic::UNIT) };
-    let bytes = drawn(&snapshot, &wish, format).map_err(|error| fault_of(&error).at(Place::Argument(1)))?;
+    let here_too = |fault: Fault| fault.at(Place::Argument(1));
+    let mut snapshots = Vec::new();
+    for (name, result) in results(arguments[1], &wish)? {
+        match snapshot_of(&name, 0, &result).map_err(here_too)? {
+            Some(snapshot) => snapshots.push(snapshot),
+            None => return Ok(Dynamic::UNIT),
+        }
+    }
+    if session.checking() {
+        return Ok(Dynamic::UNIT);
+    }
+    let bytes = drawn(&snapshots, &wish, format).map_err(|error| here_too(fault_of(&error)))?;
     session.write_picture(name.clone(), bytes).map_err(|refused| {
         here(match refused {
             PictureRefused::Outside => outside(&name),
@@ -117,8 +132,41 @@ fn picture(call: &Call, arguments: &mut [&mut Dynamic]) -> Answer {
     Ok(Dynamic::UNIT)
 }
 
+/// The results to draw with their names: one under the title of the picture, or several.
+fn results(given: &Dynamic, wish: &Wish) -> Result<Vec<(String, Dynamic)>, Fault> {
+    let mut found: Vec<(String, Dynamic)> = Vec::new();
+    if let Some(list) = given.read_lock::<Array>()
+        && list.iter().any(is_result)
+    {
+        for (place, result) in list.iter().enumerate() {
+            let stack = stack_name(result).filter(|name| list.iter().filter(|r| stack_name(r).as_ref() == Some(name)).count() == 1);
+            found.push((stack.unwrap_or_else(|| (place + 1).to_string()), result.flatten_clone()));
+        }
+    } else if let Some(map) = given.read_lock::<Map>()
+        && map.values().any(is_result)
+    {
+        found.extend(map.iter().map(|(name, result)| (name.to_string(), result.flatten_clone())));
+    } else {
+        let mut names = wish.names.iter();
+        let name = names.next().unwrap_or(&wish.title).clone();
+        return Ok(vec![(name, given.clone())]);
+    }
+    if !wish.names.is_empty() && wish.names.len() != found.len() {
+        return Err(Fault::new(
+            codes::WRONG_CHOICE,
+            format!("there are {} names for {} results", wish.names.len(), found.len()),
+        )
+        .at(Place::Option("names".to_string())));
+    }
+    for ((name, _), wanted) in found.iter_mut().zip(&wish.names) {
+        name.clone_from(wanted);
+    }
+    Ok(found)
+}
+
 /// What a script asks of a picture.
 struct Wish {
+    names: Vec<String>,
     kind: Option<Kind>,
     choice: Choice,
     view: View,
@@ -170,7 +218,7 @@ fn wish(name: &str, options: &Options) -> Result<Wish, Fault> {
         view.width = width;
     }
     let choice = Choice { x: word("x")?, y: texts(options, "y")?, z: word("z")?, least_is_best: false };
-    Ok(Wish { kind, choice, view, title: given_title.filter(|t| !t.is_empty()).unwrap_or(stem) })
+    Ok(Wish { names: texts(options, "names")?, kind, choice, view, title: given_title.filter(|t| !t.is_empty()).unwrap_or(stem) })
 }
 
 /// A text or an array of texts.
@@ -204,13 +252,24 @@ fn range(options: &Options, key: &str) -> Result<Option<(f64, f64)>, Fault> {
     }
 }
 
-fn drawn(snapshot: &Snapshot, wish: &Wish, format: Format) -> Result<Vec<u8>, PictureError> {
-    let kind = match wish.kind {
-        Some(kind) => kind,
-        None if wish.choice.z.is_some() => Kind::Map,
-        None => charts::first(snapshot)?,
-    };
-    let chart = charts::chart(snapshot, kind, &wish.choice)?;
+fn drawn(snapshots: &[Snapshot], wish: &Wish, format: Format) -> Result<Vec<u8>, PictureError> {
+    let mut charts: Vec<Chart> = Vec::new();
+    for snapshot in snapshots {
+        let kind = match (wish.kind, charts.first()) {
+            (Some(kind), _) => kind,
+            (None, Some(first)) => first.kind,
+            (None, None) if wish.choice.z.is_some() => Kind::Map,
+            (None, None) => charts::first(snapshot)?,
+        };
+        charts.push(charts::chart(snapshot, kind, &wish.choice)?);
+    }
+    let several = charts.len() > 1;
+    let nothing =
+        || PictureError::Nothing { snapshot: wish.title.clone(), of: String::new(), reason: String::new() };
+    let mut chart = overlay::overlay(charts)?.ok_or_else(nothing)?;
+    if several {
+        chart.title.clone_from(&wish.title);
+    }
     convert::bytes(&draw(&chart, &wish.view)?.svg, format)
 }
 

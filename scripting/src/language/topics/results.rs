@@ -536,3 +536,26 @@ pub fn snapshot_of(name: &str, step: u64, value: &Dynamic) -> Result<Option<Snap
     let wanted = "a result (`cell.jv(..)`, `cell.at(..)`, `cell.eqe(..)`, `cell.capacitance(..)`), a map of figures or an array of such maps";
     take::<CurveValue>(value, "what is stored or drawn", wanted).map(|_| None)
 }
+
+/// Whether a value is a result of an analysis or a table: something that a picture shows as a whole.
+pub fn is_result(value: &Dynamic) -> bool {
+    value.is::<CurveValue>()
+        || value.is::<StateValue>()
+        || value.is::<ResponseValue>()
+        || value.is::<CapacitanceValue>()
+        || value.is::<TableValue>()
+}
+
+/// The name of the stack that was solved.
+pub fn stack_name(value: &Dynamic) -> Option<String> {
+    if let Some(curve) = value.read_lock::<CurveValue>() {
+        return Some(curve.0.stack.name.clone());
+    }
+    if let Some(state) = value.read_lock::<StateValue>() {
+        return Some(state.0.stack.name.clone());
+    }
+    if let Some(response) = value.read_lock::<ResponseValue>() {
+        return Some(response.0.stack.name.clone());
+    }
+    value.read_lock::<CapacitanceValue>().map(|curve| curve.0.stack.name.clone())
+}

@@ -1,5 +1,6 @@
 //! From a snapshot to its charts: which kinds it gives, and the data of each.
 
+mod capacitance;
 mod curves;
 mod depth;
 mod ledger;
@@ -30,6 +31,9 @@ pub fn kinds(snapshot: &Snapshot) -> Vec<Kind> {
         if snapshot.label.kind == "light J-V" {
             found.push(Kind::Power);
         }
+    }
+    if rows(snapshot, "capacitance") > 0 {
+        found.push(Kind::Capacitance);
     }
     if rows(snapshot, "response") > 0 {
         found.push(Kind::Response);
@@ -90,6 +94,10 @@ pub fn chart(snapshot: &Snapshot, kind: Kind, choice: &Choice) -> Result<Chart, 
         Kind::CurrentVoltage | Kind::Power => {
             let points = table("points").ok_or_else(|| none(""))?;
             curves::body(snapshot, points, kind, &mut notes).ok_or_else(|| none("it has no such column"))?
+        }
+        Kind::Capacitance => {
+            let points = table("capacitance").ok_or_else(|| none(""))?;
+            capacitance::body(points, &mut notes).ok_or_else(|| none("a column is missing"))?
         }
         Kind::Response => {
             let response = table("response").ok_or_else(|| none(""))?;

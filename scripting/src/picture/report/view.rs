@@ -185,6 +185,7 @@ fn document_of(kind: Kind, snapshot: &Snapshot) -> Option<usize> {
     let table = |name: &str| snapshot.tables.iter().position(|table: &Table| table.name == name);
     match kind {
         Kind::CurrentVoltage | Kind::Power => table("points"),
+        Kind::Capacitance => table("capacitance"),
         Kind::Response => table("response"),
         Kind::Bands | Kind::Carriers | Kind::Field | Kind::Rates => table("profiles"),
         Kind::Ledger => (!snapshot.ledgers.is_empty()).then(|| csv_names(snapshot).len() - 1),
