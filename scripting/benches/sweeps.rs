@@ -6,18 +6,12 @@ use std::hint::black_box;
 use std::time::{Duration, Instant};
 
 use epiloom::archive::{Point, Snapshot, SweepStart};
-use epiloom::diagnostics::Diagnostic;
-use epiloom::language::{DataFile, InputRecord, RunOptions, Script, Sink, run};
+use epiloom::language::{RunOptions, Script, Sink, run};
 
 /// A listener that keeps nothing.
 struct Nothing;
 
 impl Sink for Nothing {
-    fn print(&mut self, _: &str) {}
-    fn input(&mut self, _: &InputRecord) {}
-    fn data_file(&mut self, _: &DataFile) {}
-    fn warning(&mut self, _: &Diagnostic) {}
-    fn working(&mut self, _: &str) {}
     fn snapshot(&mut self, snapshot: Snapshot) -> Result<(), String> {
         black_box(snapshot);
         Ok(())

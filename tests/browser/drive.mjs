@@ -1,7 +1,7 @@
 // Drives a report in a real browser and tells what it sees, as one line of JSON; the tests in Rust judge it.
 //
 //     EPILOOM_BROWSER=folder with node_modules/playwright-core  EPILOOM_CHROMIUM=program
-//     node drive.mjs look PAGE FOLDER | keyboard PAGE | sizes PAGE FOLDER | rows PAGE FOLDER | leaks PAGE | print PAGE FOLDER | watch ADDRESS
+//     node drive.mjs look PAGE FOLDER | keyboard PAGE | map PAGE | sizes PAGE FOLDER | rows PAGE FOLDER | leaks PAGE | print PAGE FOLDER | watch ADDRESS
 //
 // Everything that the browser asks of any network goes to a proxy in this process, which answers nothing and keeps count.
 
@@ -43,10 +43,12 @@ const deadEnd = async () => {
 /** A browser with an empty profile; `bypass`: an address that may be reached. */
 const withBrowser = async (act, { colorScheme = "light", viewport = { width: 1200, height: 900 }, bypass } = {}) => {
   const proxy = await deadEnd();
-  const profile = mkdtempSync(join(tmpdir(), "epiloom-browser-"));
+  const folder = mkdtempSync(join(tmpdir(), "epiloom-browser-"));
   // "<-loopback>": addresses of this machine go to the proxy too
   const through = [`--proxy-server=http://127.0.0.1:${proxy.port}`, `--proxy-bypass-list=${bypass ? bypass : "<-loopback>"}`];
-  const context = await chromium.launchPersistentContext(profile, {
+  const context = await chromium.launchPersistentContext(join(folder, "profile"), {
+    // what the browser leaves behind goes with the folder
+    env: { ...process.env, TMPDIR: folder },
     executablePath: process.env.EPILOOM_CHROMIUM,
     headless: true,
     args: [...FLAGS, ...through],
@@ -75,7 +77,7 @@ const withBrowser = async (act, { colorScheme = "light", viewport = { width: 120
     await context.close();
     proxy.server.close();
     proxy.server.closeAllConnections();
-    rmSync(profile, { recursive: true, force: true });
+    rmSync(folder, { recursive: true, force: true, maxRetries: 5 });
   }
 };
 
@@ -207,6 +209,36 @@ const keyboard = (file) => withBrowser(async (page, seen) => {
   return { ...told, seen };
 });
 
+/** Chooses points on the map of a sweep, with the pointer and with keys: what the page shows of them. */
+const map = (file) => withBrowser(async (page, seen) => {
+  await open(page, file);
+  const sweep = page.locator(".sweep").first();
+  const cells = sweep.locator(".cell");
+  await cells.first().waitFor();
+  const shown = async () => ({
+    title: await sweep.locator(".point > h4").first().innerText(),
+    words: await sweep.locator(".point").innerText(),
+    figures: await sweep.locator(".point figure[data-kind]").evaluateAll((all) => all.map((each) => each.dataset.kind)),
+  });
+  const told = { cells: await cells.count(), points: [] };
+  for (const place of [0, (told.cells - 1)]) {
+    const cell = cells.nth(place);
+    const [label, row] = [await cell.getAttribute("aria-label"), await cell.getAttribute("data-point")];
+    await cell.click();
+    await sweep.locator(".point figure").first().waitFor();
+    told.points.push({ label, row, ...(await shown()) });
+  }
+  // the chosen cell has the focus: one to the left, by keys
+  const before = told.points[1].title;
+  await page.keyboard.press("ArrowLeft");
+  await page.keyboard.press("Enter");
+  await page.waitForFunction((title) => document.querySelector(".sweep .point > h4").textContent !== title, before);
+  await sweep.locator(".point figure").first().waitFor();
+  told.byKeys = await shown();
+  told.empty = await empties(page);
+  return { ...told, seen };
+});
+
 /** Widths and colours; pictures of each go to the folder. */
 const sizes = async (file, folder) => {
   const told = [];
@@ -293,6 +325,6 @@ const watch = (address) => withBrowser(async (page, seen) => {
 }, { bypass: "127.0.0.1" });
 
 const [what, ...rest] = process.argv.slice(2);
-const told = await { look, keyboard, sizes, rows, leaks, print, watch }[what](...rest);
+const told = await { look, keyboard, map, sizes, rows, leaks, print, watch }[what](...rest);
 process.stdout.write(`${JSON.stringify(told)}\n`);
 process.exit(0);

@@ -11,7 +11,7 @@ use std::sync::OnceLock;
 use serde_json::Value;
 
 use crate::report::{HOSTILE, SlowRun, hostile_page, hundred};
-use crate::support::{Bench, column, figure, workspace};
+use crate::support::{Bench, SMALL_CELL, column, figure, workspace};
 
 fn runs(program: &str) -> bool {
     Command::new(program).arg("--version").output().is_ok_and(|output| output.status.success())
@@ -255,6 +255,47 @@ fn a_request_that_leaves_is_caught_and_the_policy_stops_it() {
         stopped["seen"]["console"].as_array().is_some_and(|list| !list.is_empty()),
         "the browser says why"
     );
+}
+
+/// Source of truth: the archive: the point that a person chooses on a map shows that point's own numbers and the curves that it
+/// stored, by the pointer and by keys.
+#[test]
+fn a_click_on_a_map_shows_the_curves_of_that_point() {
+    let Some(program) = chromium() else { return };
+    let sweep = r#"
+let plan = grid(#{ base: [300.nm, 600.nm, 900.nm], doping: [1e16.per_cm3, 1e17.per_cm3] });
+plan.run("map", |p| {
+    cell["base"].thickness = p.base;
+    cell["base"].doping = acceptors(p.doping);
+    let jv = cell.jv(lamp, [0.V, 0.2.V, 0.4.V]);
+    store("jv", jv);
+    #{ jsc: jv.jsc }
+});
+"#;
+    let bench = Bench::with("map.rhai", &format!("{SMALL_CELL}{sweep}"));
+    bench.ends(0, &["run", "map.rhai", "--quiet"]);
+    bench.ends(0, &["report", "map.epiloom", "-o", "map.html"]);
+    let told = drive(&program, "map", &[&bench.path("map.html")]);
+    quiet(&told["seen"]);
+    assert_eq!((&told["cells"], &told["empty"]), (&6.into(), &0.into()), "{told}");
+    let points = told["points"].as_array().expect("points");
+    let mut titles = std::collections::BTreeSet::new();
+    for shown in points {
+        let row = text(shown, "row");
+        assert_eq!(text(shown, "title"), format!("Point {row}"));
+        let stored = bench.ends(0, &["show", "map.epiloom", &format!("map/{row}"), "--json"]).out;
+        let stored: Value = serde_json::from_str(&stored).expect("JSON");
+        let jsc = stored["outputs"][0]["value"].as_f64().expect("a number");
+        let digits = format!("{jsc}");
+        assert!(text(shown, "words").contains(&digits) && text(shown, "label").contains(&digits), "{shown}");
+        let kinds: Vec<&str> =
+            shown["figures"].as_array().expect("figures").iter().filter_map(Value::as_str).collect();
+        assert!(kinds.contains(&"jv"), "{kinds:?}");
+        assert!(text(shown, "words").contains("jv"), "{shown}");
+        titles.insert(text(shown, "title"));
+    }
+    titles.insert(text(&told["byKeys"], "title"));
+    assert_eq!(titles.len(), 3, "three points, each its own: {titles:?}");
 }
 
 /// Source of truth: every plot has a drawing on paper, and the paper is a file.

@@ -22,6 +22,7 @@ mod compare;
 mod encoding;
 mod error;
 pub mod export;
+mod frames;
 mod gather;
 mod layout;
 mod reader;

@@ -6,13 +6,13 @@ use super::blocks::{BLOCK_BYTES, BLOCK_POINTS, BlockCache, PointPlace, sort_plac
 use super::claim::with_suffix;
 use super::encoding::{Index, IndexEntry, SweepPlace, sections};
 use super::error::ArchiveError;
+use super::frames::{Batch, label_weight, record_sections};
 use super::layout::{Digest, FOOTER_LENGTH, Footer, HEADER_LENGTH, Header, Kind, digest, start_bytes};
 use super::model::RunHeader;
 use super::reader::{Bytes, Source};
 use super::storage::{Opening, Storage, StoredFile};
 use super::stored::{Sweep, read_block};
 use super::sweep::{SnapshotPlace, StoredPoint, SweepStart};
-use super::writer::{Batch, label_weight, record_sections};
 
 /// What the whole is made of: snapshots and sweeps in an unfinished file.
 pub(crate) struct Parts<'a> {

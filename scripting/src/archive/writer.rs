@@ -2,22 +2,20 @@
 
 use std::path::{Path, PathBuf};
 
-use super::blocks::{BLOCK_BYTES, BLOCK_POINTS, PointPlace, block_sections, sort_places, weight};
 use super::claim::{Held, Left, claim, set_aside, with_suffix};
 use super::compare::compare_bits;
-use super::encoding::{BlockPlace, Sections, labelled_sections, sections, snapshot_sections};
+use super::encoding::{Sections, sections, snapshot_sections};
 use super::error::ArchiveError;
-use super::layout::{Digest, Header, Kind, START_LENGTH, start_bytes};
-use super::model::{Label, RunHeader, Snapshot};
+use super::layout::{Digest, Kind, START_LENGTH, start_bytes};
+use super::model::{RunHeader, Snapshot};
 use super::reader::Archive;
-use super::resume::{EarlierPoints, another_run, changed, says_nothing_new};
+use super::resume::{another_run, changed, says_nothing_new};
 use super::storage::{Disk, Storage};
 use super::stored::Sweep;
-use super::sweep::{
-    Point, Share, SnapshotPlace, StoredPoint, SweepRecord, SweepStart, point_of_name, point_order,
-    point_snapshot_name,
-};
+use super::sweep::{Share, SnapshotPlace, point_of_name};
 use super::whole;
+
+mod points;
 
 /// The name under which an archive stands while it is being written: `NAME.epiloom.unfinished`.
 pub fn unfinished_path(path: &Path) -> PathBuf {
@@ -379,156 +377,6 @@ impl<'a> Writer<'a> {
         if self.unsynced >= self.sync_every { self.sync() } else { Ok(()) }
     }
 
-    /// Begins a sweep, and gives those of its points that an earlier run has stored.
-    ///
-    /// # Errors
-    /// [`ArchiveError::NameTaken`] and those of [`append`](Writer::append).
-    pub fn begin_sweep(&mut self, start: &SweepStart) -> Result<EarlierPoints, ArchiveError> {
-        self.check()?;
-        self.settle()?;
-        let of_point = point_snapshot_name(&start.name, 0, "");
-        if point_of_name(&of_point).is_none_or(|(sweep, ..)| sweep != start.name) {
-            return Err(ArchiveError::Encoding {
-                what: format!("the sweep `{}`", start.name),
-                reason: "its name reads as that of a point of a sweep".to_owned(),
-            });
-        }
-        let of_its_points = |each: &Written| {
-            each.current && point_of_name(&each.place.label.name).is_some_and(|(of, ..)| of == start.name)
-        };
-        if self.name_taken(&start.name) || self.written.iter().any(of_its_points) {
-            return Err(ArchiveError::NameTaken { name: start.name.clone() });
-        }
-        let run = sections(Kind::Run, "the description of the run", &self.known)?.body_digest();
-        self.begin(SweepRecord { start: start.clone(), share: self.share, run, left_out: None })
-    }
-
-    /// Begins a sweep as another archive of the same run describes it.
-    pub(crate) fn adopt_sweep(&mut self, record: &SweepRecord) -> Result<EarlierPoints, ArchiveError> {
-        self.check()?;
-        self.settle()?;
-        self.begin(record.clone())
-    }
-
-    fn begin(&mut self, record: SweepRecord) -> Result<EarlierPoints, ArchiveError> {
-        let known = self.sweeps.iter().position(|each| each.sweep.name == record.start.name);
-        let same = |each: &WrittenSweep| {
-            !each.sweep.in_doubt && each.sweep.record().is_some_and(|known| known.same_points(&record))
-        };
-        let at = match known {
-            Some(at) if same(&self.sweeps[at]) => {
-                self.sweeps[at].current = true;
-                at
-            }
-            other => {
-                self.append_record(&record)?;
-                let begun = WrittenSweep { sweep: Sweep::of(record), current: true };
-                match other {
-                    Some(at) => {
-                        self.sweeps[at] = begun;
-                        at
-                    }
-                    None => {
-                        self.sweeps.push(begun);
-                        self.sweeps.len() - 1
-                    }
-                }
-            }
-        };
-        EarlierPoints::of(&self.held, &self.unfinished, self.run, &self.sweeps[at].sweep)
-    }
-
-    /// Stores points of a sweep that was begun, with what they stored, and syncs: they survive a power cut from here
-    /// on. A power cut before loses these points and no others.
-    ///
-    /// # Errors
-    /// As [`append`](Writer::append).
-    pub fn append_points(&mut self, sweep: &str, mut points: Vec<Point>) -> Result<(), ArchiveError> {
-        self.check()?;
-        let begun = self.sweeps.iter().position(|each| each.current && each.sweep.name == sweep);
-        let start = begun.and_then(|at| self.sweeps[at].sweep.record().map(|record| record.start.clone()));
-        let (Some(at), Some(start)) = (begun, start) else {
-            return Err(ArchiveError::NoSuchSweep { name: sweep.to_owned(), there: Vec::new() });
-        };
-        points.sort_by_key(|point| point.index);
-        let mut batch = Batch::new(self.length, self.ordinal, self.run);
-        let mut waiting: Vec<StoredPoint> = Vec::new();
-        let mut weighed = 0;
-        let mut blocks = Vec::new();
-        for mut point in points {
-            let snapshots = std::mem::take(&mut point.snapshots);
-            let labels: usize = snapshots.iter().map(|snapshot| label_weight(&snapshot.label)).sum();
-            let weight = weight(&point, labels);
-            if !waiting.is_empty() && (waiting.len() >= BLOCK_POINTS || weighed + weight > BLOCK_BYTES) {
-                blocks.push(batch.block(&start, std::mem::take(&mut waiting))?);
-                weighed = 0;
-            }
-            weighed += weight;
-            let mut places: Vec<SnapshotPlace> = Vec::new();
-            for snapshot in &snapshots {
-                let name = snapshot.name();
-                let inside = point_of_name(name).and_then(|(_, _, inside)| inside).unwrap_or_default();
-                let expected = point_snapshot_name(sweep, point.index, inside);
-                if name != expected || snapshot.label.order != point_order(start.step, point.index) {
-                    return Err(ArchiveError::Encoding {
-                        what: format!("snapshot `{name}` of point {} of the sweep `{sweep}`", point.index),
-                        reason: "it is not named and ordered as a point's".to_owned(),
-                    });
-                }
-                if places.iter().any(|place| place.label.name == name) {
-                    return Err(ArchiveError::NameTaken { name: name.to_owned() });
-                }
-                let (offset, length, header_digest) = batch.frame(&snapshot_sections(snapshot)?);
-                places.push(SnapshotPlace { label: snapshot.label.clone(), offset, length, header_digest });
-            }
-            waiting.push(StoredPoint { point, snapshots: places });
-        }
-        if !waiting.is_empty() {
-            blocks.push(batch.block(&start, waiting)?);
-        }
-        self.put(&batch.bytes)?;
-        self.ordinal = batch.ordinal;
-        self.sync()?;
-        let sweep = &mut self.sweeps[at].sweep;
-        for (place, indices) in blocks {
-            // Fewer than 2^32 blocks: each takes more than a hundred bytes.
-            let block = sweep.blocks.len() as u32;
-            sweep.blocks.push(place);
-            for (row, index) in indices.into_iter().enumerate() {
-                sweep.places.push(PointPlace { index, block, row: row as u32 });
-                sweep.incomplete.remove(&index);
-            }
-        }
-        Ok(())
-    }
-
-    /// All points of this run's share of the sweep are done; `left_out` counts the indices of the share that the
-    /// filter of its plan leaves out.
-    ///
-    /// # Errors
-    /// As [`append`](Writer::append).
-    pub fn finish_sweep(&mut self, sweep: &str, left_out: u64) -> Result<(), ArchiveError> {
-        self.check()?;
-        let begun = self.sweeps.iter().position(|each| each.current && each.sweep.name == sweep);
-        let record = begun.and_then(|at| self.sweeps[at].sweep.record.clone().map(|record| (at, record)));
-        let Some((at, record)) = record else {
-            return Err(ArchiveError::NoSuchSweep { name: sweep.to_owned(), there: Vec::new() });
-        };
-        sort_places(&mut self.sweeps[at].sweep.places);
-        if record.left_out == Some(left_out) {
-            return Ok(());
-        }
-        let record = SweepRecord { left_out: Some(left_out), ..record };
-        self.append_record(&record)?;
-        self.sweeps[at].sweep.record = Some(record);
-        self.sync()
-    }
-
-    fn append_record(&mut self, record: &SweepRecord) -> Result<(), ArchiveError> {
-        let made = record_sections(record)?;
-        self.append_frame(&made).map(|_| ())
-    }
-
     /// Makes everything stored so far survive a power cut.
     ///
     /// # Errors
@@ -626,78 +474,5 @@ impl<'a> Writer<'a> {
         self.put(&made.frame(&header))?;
         self.ordinal += 1;
         Ok(header.own_digest())
-    }
-}
-
-/// The sections of the description of a sweep.
-pub(crate) fn record_sections(record: &SweepRecord) -> Result<Sections, ArchiveError> {
-    let what = format!("the sweep `{}`", record.start.name);
-    labelled_sections(Kind::Sweep, &what, &record.start.name, record)
-}
-
-/// Bytes that the label of a point's snapshot takes in its block, about.
-pub(crate) fn label_weight(label: &Label) -> usize {
-    label.name.len() + label.kind.len() + 96
-}
-
-/// Frames that are written at once.
-pub(crate) struct Batch {
-    pub bytes: Vec<u8>,
-    pub ordinal: u64,
-    begin: u64,
-    run: Digest,
-}
-
-impl Batch {
-    /// None yet; the first will stand there and have that number.
-    pub(crate) fn new(begin: u64, ordinal: u64, run: Digest) -> Self {
-        Batch { bytes: Vec::new(), ordinal, begin, run }
-    }
-
-    /// Adds a frame: its place, length and header digest.
-    pub(crate) fn frame(&mut self, made: &Sections) -> (u64, u64, Digest) {
-        let header = made.header(self.ordinal, self.run);
-        let offset = self.begin + self.bytes.len() as u64;
-        let frame = made.frame(&header);
-        self.bytes.extend_from_slice(&frame);
-        self.ordinal += 1;
-        (offset, frame.len() as u64, header.own_digest())
-    }
-
-    /// Everything so far is written: the next frame will stand there.
-    pub(crate) fn start_again(&mut self, begin: u64) {
-        self.bytes.clear();
-        self.begin = begin;
-    }
-
-    /// Adds a frame of another file under its new number and run: its place and header digest.
-    pub(crate) fn resealed(&mut self, header: Header, rest: &[u8]) -> (u64, Digest) {
-        let header = Header { ordinal: self.ordinal, run: self.run, ..header };
-        let offset = self.begin + self.bytes.len() as u64;
-        self.bytes.extend_from_slice(&header.to_bytes());
-        self.bytes.extend_from_slice(rest);
-        self.ordinal += 1;
-        (offset, header.own_digest())
-    }
-
-    /// Adds the block of these points: its place and their indices.
-    pub(crate) fn block(
-        &mut self,
-        start: &SweepStart,
-        points: Vec<StoredPoint>,
-    ) -> Result<(BlockPlace, Vec<u64>), ArchiveError> {
-        let indices: Vec<u64> = points.iter().map(|each| each.point.index).collect();
-        let failed = points.iter().filter(|each| each.point.status != super::model::Status::Solved).count();
-        let (offset, length, header_digest) = self.frame(&block_sections(start, &points)?);
-        let place = BlockPlace {
-            first: indices.first().copied().unwrap_or(0),
-            last: indices.last().copied().unwrap_or(0),
-            count: indices.len() as u64,
-            failed: failed as u64,
-            offset,
-            length,
-            header_digest,
-        };
-        Ok((place, indices))
     }
 }

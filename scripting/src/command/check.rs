@@ -2,7 +2,7 @@
 
 use crate::archive::Snapshot;
 use crate::diagnostics::{Diagnostic, Severity};
-use crate::language::{self, DataFile, InputRecord, RunOptions, Sink};
+use crate::language::{self, RunOptions, Sink};
 
 use super::exit::Exit;
 use super::output::Output;
@@ -19,11 +19,6 @@ pub struct Check {
 struct Silence;
 
 impl Sink for Silence {
-    fn print(&mut self, _: &str) {}
-    fn input(&mut self, _: &InputRecord) {}
-    fn data_file(&mut self, _: &DataFile) {}
-    fn warning(&mut self, _: &Diagnostic) {}
-    fn working(&mut self, _: &str) {}
     fn snapshot(&mut self, _: Snapshot) -> Result<(), String> {
         Ok(())
     }

@@ -57,9 +57,7 @@ impl Export {
             return Exit::Usage;
         }
         let written = match sweep {
-            Some(sweep) => {
-                export_sweep(&archive, sweep, format, &self.out).map(|()| vec![self.out.clone()])
-            }
+            Some(sweep) => export_sweep(&archive, sweep, format, &self.out).map(|()| vec![self.out.clone()]),
             None => archive.snapshot(&self.name).and_then(|snapshot| export(&snapshot, format, &self.out)),
         };
         match written {

@@ -7,7 +7,7 @@ use crate::archive::{
     Archive, ArchiveError, Difference, Point, Share, Snapshot, SweepStart, compare_bits, compare_point,
 };
 use crate::diagnostics::{Diagnostic, SourceText, codes};
-use crate::language::{self, InputRecord, Part, RunOptions, Sink, StoredPoints};
+use crate::language::{self, Part, RunOptions, Sink, StoredPoints};
 
 use super::archived::{archived_script, overrides};
 use super::exit::Exit;
@@ -204,14 +204,6 @@ fn numbers(snapshot: &Snapshot) -> usize {
 }
 
 impl Sink for Comparison<'_> {
-    fn print(&mut self, _: &str) {}
-
-    fn input(&mut self, _: &InputRecord) {}
-
-    fn data_file(&mut self, _: &language::DataFile) {}
-
-    fn warning(&mut self, _: &Diagnostic) {}
-
     fn working(&mut self, what: &str) {
         self.output.working(what);
     }

@@ -5,7 +5,9 @@ use std::fmt::Write as _;
 use std::io::{BufWriter, Write};
 use std::path::{Path, PathBuf};
 
-use crate::archive::export::{Form, OrderError, Row, Sheet, json_listing, json_point, json_sheet, json_snapshot};
+use crate::archive::export::{
+    Form, OrderError, Row, Sheet, json_listing, json_point, json_sheet, json_snapshot,
+};
 use crate::archive::{Archive, ArchiveError, RunHeader, Status, Sweep};
 use crate::diagnostics::{Diagnostic, codes};
 

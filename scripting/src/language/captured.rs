@@ -150,7 +150,6 @@ pub fn in_use() -> Fault {
 
 /// The same for the variable of this name.
 pub fn held(name: &str) -> Fault {
-    Fault::new(codes::WRONG_KIND, "a closure uses the variable whose method it is given to").help(format!(
-        "take a copy above, `let all = {name};`, and use `all` in the closure"
-    ))
+    Fault::new(codes::WRONG_KIND, "a closure uses the variable whose method it is given to")
+        .help(format!("take a copy above, `let all = {name};`, and use `all` in the closure"))
 }

@@ -145,15 +145,15 @@ pub struct DataFile {
 /// Who listens to a run: the command line, a test, a replay. Calls come in the order of the script.
 pub trait Sink {
     /// The script printed a line.
-    fn print(&mut self, line: &str);
+    fn print(&mut self, _line: &str) {}
     /// The script declared an input.
-    fn input(&mut self, input: &InputRecord);
+    fn input(&mut self, _input: &InputRecord) {}
     /// The script read a data file for the first time.
-    fn data_file(&mut self, file: &DataFile);
+    fn data_file(&mut self, _file: &DataFile) {}
     /// Something a person should know; the run goes on.
-    fn warning(&mut self, warning: &Diagnostic);
+    fn warning(&mut self, _warning: &Diagnostic) {}
     /// An analysis begins ("jv of `Larch Bay 12`"), for a progress display.
-    fn working(&mut self, what: &str);
+    fn working(&mut self, _what: &str) {}
     /// The script stored a result. An error stops the script with this message.
     fn snapshot(&mut self, snapshot: Snapshot) -> Result<(), String>;
     /// A sweep begins. Gives those of its points that are stored already, in any order; they are not solved again.

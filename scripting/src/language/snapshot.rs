@@ -204,7 +204,11 @@ pub fn capacitance(name: &str, step: u64, solved: &Solved<Capacitance>, result: 
             Column::new(
                 "inverse_square_capacitance_cm4_per_nF2",
                 "cm4_per_nF2",
-                result.points.iter().map(|p| inverse_square(in_unit(p.capacitance.value, "nF_per_cm2"))).collect(),
+                result
+                    .points
+                    .iter()
+                    .map(|p| inverse_square(in_unit(p.capacitance.value, "nF_per_cm2")))
+                    .collect(),
             ),
             column("stored", "nF_per_cm2", |p| p.stored.value),
             column("stored_error", "nF_per_cm2", |p| p.stored.error),

@@ -72,7 +72,10 @@ mod tests {
             assert_eq!(step(-1.0, 0.0, k, 10), -step(0.0, 1.0, 10 - k, 10));
         }
         for k in 0..=14 {
-            assert_eq!(step(0.2, 0.9, k, 14), format!("{:.2}", 0.2 + 0.05 * k as f64).parse::<f64>().unwrap());
+            assert_eq!(
+                step(0.2, 0.9, k, 14),
+                format!("{:.2}", 0.2 + 0.05 * k as f64).parse::<f64>().unwrap()
+            );
         }
         assert_eq!(step(1e16, 1e17, 3, 9), 4e16);
         assert_eq!(step(2e-8, 1e-7, 1, 4), 4e-8);

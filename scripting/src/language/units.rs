@@ -205,7 +205,10 @@ mod tests {
         assert_ne!(density.from_si(density.to_si(1e17)), 1e17, "the plain way back loses it");
         // a value that no number gives: the plain way back
         let between = density.to_si(1e17).next_up();
-        assert!(density.to_si(density.typed(between)) == between || density.typed(between) == density.from_si(between));
+        assert!(
+            density.to_si(density.typed(between)) == between
+                || density.typed(between) == density.from_si(between)
+        );
     }
 
     /// Source of truth: a table needs unique names, and every family its default unit.

@@ -1,8 +1,7 @@
 //! The reference cases R1 and R3 once more, through the script language: what a person would write, read back from snapshots.
 
 use epiloom::archive::Snapshot;
-use epiloom::diagnostics::Diagnostic;
-use epiloom::language::{DataFile, InputRecord, RunOptions, Script, Sink, run};
+use epiloom::language::{RunOptions, Script, Sink, run};
 use epiloom_solver::analysis::Figure;
 
 use crate::check::{Check, Checks, Source, Tolerance};
@@ -24,11 +23,6 @@ const SCRIPTS: [(&str, &str); 2] = [
 struct Keeper(Vec<Snapshot>);
 
 impl Sink for Keeper {
-    fn print(&mut self, _: &str) {}
-    fn input(&mut self, _: &InputRecord) {}
-    fn data_file(&mut self, _: &DataFile) {}
-    fn warning(&mut self, _: &Diagnostic) {}
-    fn working(&mut self, _: &str) {}
     fn snapshot(&mut self, snapshot: Snapshot) -> Result<(), String> {
         self.0.push(snapshot);
         Ok(())

@@ -50,8 +50,12 @@ pub fn json_sheet(
     mut out: impl Write,
 ) -> Result<(), ArchiveError> {
     let read = Reading { form, archive, sweep };
-    let view =
-        SheetView { sweep: &form.name, points: Indices(&read), columns: Columns(&read), reasons: Reasons(&read) };
+    let view = SheetView {
+        sweep: &form.name,
+        points: Indices(&read),
+        columns: Columns(&read),
+        reasons: Reasons(&read),
+    };
     serde_json::to_writer_pretty(&mut out, &view).map_err(failed)?;
     out.write_all(b"\n").and_then(|()| out.flush()).map_err(failed)
 }

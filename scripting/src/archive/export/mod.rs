@@ -13,7 +13,9 @@ use std::path::{Path, PathBuf};
 pub use self::csv::{CsvDocument, csv_documents, csv_names, csv_sheet};
 pub use self::json::{json_listing, json_point, json_sheet, json_snapshot};
 pub use self::npz::{npz, npz_sheet};
-pub use self::sheet::{CellKind, Form, FormColumn, OrderError, Row, Rows, Sheet, SheetCell, SheetCells, SheetColumn};
+pub use self::sheet::{
+    CellKind, Form, FormColumn, OrderError, Row, Rows, Sheet, SheetCell, SheetCells, SheetColumn,
+};
 
 use super::error::ArchiveError;
 use super::model::Snapshot;
@@ -134,7 +136,8 @@ struct Written {
 impl Written {
     fn noted<T>(&mut self, done: std::io::Result<T>) -> std::io::Result<T> {
         done.map_err(|error| {
-            let same = error.raw_os_error().map_or_else(|| error.kind().into(), std::io::Error::from_raw_os_error);
+            let same =
+                error.raw_os_error().map_or_else(|| error.kind().into(), std::io::Error::from_raw_os_error);
             self.failure.get_or_insert(error);
             same
         })

@@ -39,8 +39,6 @@ impl Sink for Recorder {
     fn data_file(&mut self, file: &DataFile) {
         self.files.push(file.clone());
     }
-    fn warning(&mut self, _: &Diagnostic) {}
-    fn working(&mut self, _: &str) {}
     fn snapshot(&mut self, snapshot: Snapshot) -> Result<(), String> {
         self.snapshots.push(snapshot);
         Ok(())

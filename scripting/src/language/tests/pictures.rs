@@ -10,11 +10,6 @@ struct Album {
 }
 
 impl Sink for Album {
-    fn print(&mut self, _: &str) {}
-    fn input(&mut self, _: &InputRecord) {}
-    fn data_file(&mut self, _: &DataFile) {}
-    fn warning(&mut self, _: &Diagnostic) {}
-    fn working(&mut self, _: &str) {}
     fn snapshot(&mut self, _: Snapshot) -> Result<(), String> {
         Ok(())
     }

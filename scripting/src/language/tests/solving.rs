@@ -242,11 +242,6 @@ let response = cell.eqe([200.nm, 600.nm]);"#;
 fn a_snapshot_that_is_not_kept_stops_the_script() {
     struct Full;
     impl Sink for Full {
-        fn print(&mut self, _: &str) {}
-        fn input(&mut self, _: &InputRecord) {}
-        fn data_file(&mut self, _: &DataFile) {}
-        fn warning(&mut self, _: &Diagnostic) {}
-        fn working(&mut self, _: &str) {}
         fn snapshot(&mut self, _: Snapshot) -> Result<(), String> {
             Err("the disk is full".to_string())
         }

@@ -139,7 +139,8 @@ fn results(given: &Dynamic, wish: &Wish) -> Result<Vec<(String, Dynamic)>, Fault
         && list.iter().any(is_result)
     {
         for (place, result) in list.iter().enumerate() {
-            let stack = stack_name(result).filter(|name| list.iter().filter(|r| stack_name(r).as_ref() == Some(name)).count() == 1);
+            let stack = stack_name(result)
+                .filter(|name| list.iter().filter(|r| stack_name(r).as_ref() == Some(name)).count() == 1);
             found.push((stack.unwrap_or_else(|| (place + 1).to_string()), result.flatten_clone()));
         }
     } else if let Some(map) = given.read_lock::<Map>()
@@ -218,7 +219,13 @@ fn wish(name: &str, options: &Options) -> Result<Wish, Fault> {
         view.width = width;
     }
     let choice = Choice { x: word("x")?, y: texts(options, "y")?, z: word("z")?, least_is_best: false };
-    Ok(Wish { names: texts(options, "names")?, kind, choice, view, title: given_title.filter(|t| !t.is_empty()).unwrap_or(stem) })
+    Ok(Wish {
+        names: texts(options, "names")?,
+        kind,
+        choice,
+        view,
+        title: given_title.filter(|t| !t.is_empty()).unwrap_or(stem),
+    })
 }
 
 /// A text or an array of texts.

@@ -50,7 +50,8 @@ pub(super) fn body(table: &Table, notes: &mut Vec<String>) -> Option<Body> {
             ));
             let ends = [line.from, zero.min(x.range.1)];
             let look = Look { colour: None, dash: Dash::Long, filled: false, marks: false };
-            list.push(series("straight line", &ends, &ends.map(|v| line.at(v)), look));
+            // below the points
+            list.insert(0, series("straight line", &ends, &ends.map(|v| line.at(v)), look));
         } else {
             notes.push(format!("no straight line: it takes {FEWEST} points up to 0 V that fall"));
         }

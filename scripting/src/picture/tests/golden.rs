@@ -45,6 +45,7 @@ pub(super) fn drawings() -> Vec<(&'static str, String)> {
         ("light_jv", of(&chart(&sample::light("light J-V", 29.0), Kind::CurrentVoltage), &plain)),
         ("power", of(&chart(&sample::light("light J-V", 29.0), Kind::Power), &plain)),
         ("overlay", of(&two.unwrap().unwrap(), &plain)),
+        ("capacitance", of(&chart(&sample::capacitance(), Kind::Capacitance), &plain)),
         ("dark_jv", of(&chart(&sample::dark(), Kind::CurrentVoltage), &plain)),
         ("response", of(&chart(&sample::response(), Kind::Response), &plain)),
         ("bands", of(&chart(&point, Kind::Bands), &plain)),

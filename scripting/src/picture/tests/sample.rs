@@ -71,6 +71,24 @@ pub fn light(name: &str, photocurrent: f64) -> Snapshot {
     snapshot
 }
 
+/// C = 60 nF/cm2 / sqrt(1 - V / 1.2 V) on -3 to 0.6 V, and from 0.2 V on what is stored in forward bias.
+pub fn capacitance() -> Snapshot {
+    let voltage: Vec<f64> = (-30..=6).map(|k| f64::from(k) / 10.0).collect();
+    let stored = |v: f64| if v > 0.2 { 2.0 * exp_m1((v - 0.2) / 0.15) } else { 0.0 };
+    let values: Vec<f64> = voltage.iter().map(|v| 60.0 * pow(1.0 - v / 1.2, -0.5) + stored(*v)).collect();
+    let inverse = values.iter().map(|c| 1.0 / (c * c)).collect();
+    let mut snapshot = begin("C-V", "C-V", "dark");
+    snapshot.tables = vec![Table::new(
+        "capacitance",
+        vec![
+            column("voltage_V", "V", voltage),
+            column("capacitance_nF_per_cm2", "nF_per_cm2", values),
+            column("inverse_square_capacitance_cm4_per_nF2", "cm4_per_nF2", inverse),
+        ],
+    )];
+    snapshot
+}
+
 /// A dark curve down to 1e-25 mA/cm2 with an ideality that goes from 2 to 1, and reverse bias.
 pub fn dark() -> Snapshot {
     let voltage: Vec<f64> = (-10..=50).map(|k| f64::from(k) / 50.0).collect();
