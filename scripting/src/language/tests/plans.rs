@@ -401,11 +401,6 @@ fn what_is_no_plan_is_refused() {
     fails("grid(#{ x: [1, 2] }).run(\" \", |p| p.x); // ~ E122");
     fails("table([#{ a: 1 }, #{ b: 1 }]); // ~ E107");
     fails("table(3); // ~ E107");
-    let outcome = run_text("let plan = grid(#{ x: [1, 2] }); plan.run(\"a\", |p| plan.size);").0;
-    assert!(
-        outcome.errors[0].code == codes::WRONG_KIND
-            && outcome.errors[0].help.as_ref().is_some_and(|h| h.contains("copy"))
-    );
     fails("let t = grid(#{ x: [1, 2] }).run(\"a\", || 1); // ~ E330");
     fails("let t = grid(#{ x: [1, 2] }).run(\"a\", |p| #{ x: 3 }); // ~ E330");
     fails("let t = grid(#{ x: [1, 2] }).run(\"a\", |p| #{ y: [1] }); // ~ E330");
