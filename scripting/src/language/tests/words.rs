@@ -48,10 +48,12 @@ fn every_code_has_a_test() {
         include_str!("attacks.rs"),
         include_str!("devices.rs"),
         include_str!("files.rs"),
+        include_str!("material_models.rs"),
         include_str!("numbers.rs"),
         include_str!("pictures.rs"),
         include_str!("plans.rs"),
         include_str!("solving.rs"),
+        include_str!("temperature_models.rs"),
         include_str!("../solver_faults.rs"),
     ];
     // told by the solver alone, in states that no short script reaches on purpose; tested beside the solver
