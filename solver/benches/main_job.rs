@@ -50,6 +50,7 @@ fn layer(
         acceptors: Profile::Constant((-doping).max(0.0) * 1e6),
         composition: None,
         optics: LayerOptics::Absorbing,
+        defects: Vec::new(),
     }
 }
 
@@ -150,6 +151,7 @@ fn library_cell() -> Device {
         acceptors: Profile::Constant((-doping).max(0.0) * 1e6),
         composition: None,
         optics: LayerOptics::Absorbing,
+        defects: Vec::new(),
     };
     let mut stack = Stack::new(
         "library cell",

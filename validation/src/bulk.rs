@@ -93,6 +93,7 @@ impl Bulk {
             acceptors: Profile::Constant(acceptors),
             composition: None,
             optics: LayerOptics::Absorbing,
+            defects: Vec::new(),
         }
     }
 }

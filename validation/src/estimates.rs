@@ -144,6 +144,7 @@ pub fn cell(seed: u64) -> Result<(Stack, Light), Failure> {
                 acceptors,
                 composition: None,
                 optics: LayerOptics::Absorbing,
+                defects: Vec::new(),
             }
         })
         .collect();

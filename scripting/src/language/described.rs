@@ -10,7 +10,7 @@ use crate::archive::{Condition, Layer, MaterialValue, Value};
 
 use super::quantity::Quantity;
 use super::snapshot::value;
-use super::topics::{optics_word, parameter_dimension, side_word, statistics_word};
+use super::topics::{defect_words, optics_word, parameter_dimension, side_word, statistics_word};
 
 /// The stack as the script described it.
 pub fn described_stack(stack: &Stack<Quantity>) -> crate::archive::Stack {
@@ -125,6 +125,10 @@ fn layer(layer: &epiloom_solver::device::Layer<Quantity>) -> Layer {
         .collect();
     let chosen = layer.material.choices.iter();
     settings.extend(chosen.map(|(choice, word)| Condition::new(choice.key(), Value::text(*word))));
+    settings.extend(layer.defects.iter().map(|defect| {
+        let words = defect_words(defect, &profile_words(&defect.density));
+        Condition::new(format!("defect {}", defect.name), Value::text(words))
+    }));
     if layer.optics == LayerOptics::Inert {
         settings.push(Condition::new("optics", Value::text(optics_word(layer.optics))));
     }

@@ -4,7 +4,7 @@ use std::collections::BTreeMap;
 use std::sync::Arc;
 use std::sync::atomic::{AtomicBool, Ordering};
 
-use epiloom_solver::device::{Contact, Diode, Interface, Layer, Profile, Stack};
+use epiloom_solver::device::{Contact, Defect, Diode, Interface, Layer, Profile, Stack};
 use epiloom_solver::materials::Material;
 use epiloom_solver::optics::{Film, OpticalConstants, Reflectance};
 use rhai::Position;
@@ -45,6 +45,10 @@ pub struct InterfaceValue {
     /// Where it was written.
     pub place: (usize, usize),
 }
+
+/// A defect of a layer.
+#[derive(Clone, Debug)]
+pub struct DefectValue(pub Defect<Quantity>);
 
 /// A contact.
 #[derive(Clone, Debug)]

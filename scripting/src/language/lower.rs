@@ -2,7 +2,7 @@
 
 use std::cell::Cell;
 
-use epiloom_solver::device::{Circuit, Diode, Layer, Profile, Stack, StackOptics};
+use epiloom_solver::device::{Circuit, Defect, Diode, Layer, Profile, Spread, Stack, StackOptics};
 use epiloom_solver::materials::Material;
 use epiloom_solver::optics::{Film, Reflectance};
 
@@ -47,6 +47,24 @@ pub fn layer<P, R>(layer: &Layer<P>, f: &impl Fn(&P) -> R) -> Layer<R> {
         acceptors: profile(&layer.acceptors, f),
         composition: layer.composition.as_ref().map(|c| profile(c, f)),
         optics: layer.optics,
+        defects: layer.defects.iter().map(|d| defect(d, f)).collect(),
+    }
+}
+
+fn defect<P, R>(defect: &Defect<P>, f: &impl Fn(&P) -> R) -> Defect<R> {
+    Defect {
+        name: defect.name.clone(),
+        kind: defect.kind,
+        edge: defect.edge,
+        energy: f(&defect.energy),
+        spread: match &defect.spread {
+            Spread::Level => Spread::Level,
+            Spread::Gaussian(width) => Spread::Gaussian(f(width)),
+            Spread::Exponential(width) => Spread::Exponential(f(width)),
+        },
+        density: profile(&defect.density, f),
+        electron_cross_section: f(&defect.electron_cross_section),
+        hole_cross_section: f(&defect.hole_cross_section),
     }
 }
 

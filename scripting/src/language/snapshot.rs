@@ -397,7 +397,7 @@ fn outcome(name: &str, unit: &str, outcome: &Outcome, nodes: &[usize]) -> Figure
 
 /// The profiles of a bias point: word, values in SI, dimension, unit in archives.
 pub fn profile_columns(p: &Profiles) -> Vec<(&'static str, &[f64], Dimension, &'static str)> {
-    vec![
+    let mut columns: Vec<(&'static str, &[f64], Dimension, &'static str)> = vec![
         ("depth", &p.depth, Dimension::LENGTH, "um"),
         ("potential", &p.potential, Dimension::VOLTAGE, "V"),
         ("conduction_band", &p.conduction_band, Dimension::ENERGY, "eV"),
@@ -412,9 +412,14 @@ pub fn profile_columns(p: &Profiles) -> Vec<(&'static str, &[f64], Dimension, &'
         ("shockley_read_hall", &p.shockley_read_hall, Dimension::RATE, "per_cm3_s"),
         ("radiative", &p.radiative, Dimension::RATE, "per_cm3_s"),
         ("auger", &p.auger, Dimension::RATE, "per_cm3_s"),
+        ("defects", &p.defects, Dimension::RATE, "per_cm3_s"),
+        ("fixed_charge", &p.fixed_charge, Dimension::DENSITY, "per_cm3"),
         ("generation", &p.generation, Dimension::RATE, "per_cm3_s"),
         ("collection", &p.collection, Dimension::NONE, ""),
-    ]
+    ];
+    // Stacks without defects and without dopants ionised in part have no such columns.
+    columns.retain(|(word, values, ..)| !values.is_empty() || !["defects", "fixed_charge"].contains(word));
+    columns
 }
 
 fn profiles(p: &Profiles) -> Table {

@@ -75,6 +75,7 @@ pub fn device_fault(fault: &DeviceFault, stack: &StackValue) -> Fault {
                     };
                     layer_at(name, inner)
                 }
+                DevicePlace::Defect(name, _) => layer_at(name, Place::Option("defects".to_string())),
                 DevicePlace::Interface(front, _) => layer_at(front, Place::Argument(0)),
                 _ => Place::Call,
             };
@@ -95,6 +96,8 @@ pub fn device_fault(fault: &DeviceFault, stack: &StackValue) -> Fault {
             fault.message = format!("layer `{layer}`: {}", fault.message);
             fault
         }
+        DeviceFault::DuplicateDefect { layer, .. } => Fault::new(codes::DEFECT, fault.to_string())
+            .at(layer_at(layer, Place::Option("defects".to_string()))),
         DeviceFault::GradedCompound { layer, material } => Fault::new(
             codes::COMPOSITION,
             format!("layer `{layer}` grades the composition of `{material}`, which is no alloy"),
@@ -130,6 +133,9 @@ fn limits_of(quantity: &str) -> (Code, Dimension) {
         "series_resistance" | "shunt_resistance" => (codes::RESISTANCE, Dimension::AREA_RESISTANCE),
         "saturation_current_density" => (codes::DIODE, Dimension::CURRENT_DENSITY),
         "ideality" => (codes::DIODE, Dimension::NONE),
+        "energy" | "width" => (codes::DEFECT, Dimension::ENERGY),
+        "density" => (codes::DEFECT, Dimension::DENSITY),
+        q if q.ends_with("cross_section") => (codes::DEFECT, Dimension::AREA),
         "accuracy" => (codes::ACCURACY, Dimension::NONE),
         "x" | "composition" => (codes::COMPOSITION, Dimension::NONE),
         "electron_barrier" | "hole_barrier" | "work_function" => (codes::BARRIER, Dimension::ENERGY),

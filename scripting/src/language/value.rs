@@ -47,6 +47,7 @@ pub const KINDS: &[(&str, &str)] = &[
     ("material", "material"),
     ("layer", "layer"),
     ("doping", "doping"),
+    ("defect", "defect"),
     ("profile", "profile"),
     ("interface", "interface"),
     ("contact", "contact"),

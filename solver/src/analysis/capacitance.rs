@@ -127,7 +127,7 @@ fn answers(ladder: &mut Ladder, rung: usize, points: &[Point]) -> Result<Vec<Ans
         .collect()
 }
 
-/// Rise of the carriers per area in each node's volume with the voltage across the device, scaled, per V: `[nodes]`.
+/// Rise of the carriers per area in each node's volume, those that dopants and defects hold included, with the voltage across the device, scaled, per V: `[nodes]`.
 fn rises(problem: &Problem, point: &Point) -> Vec<[f64; 2]> {
     let c = &problem.coefficients;
     let rear = problem.rear_level(point.state.voltage);
@@ -143,6 +143,14 @@ fn rises(problem: &Problem, point: &Point) -> Vec<[f64; 2]> {
         let by_p = t[2] + per_volt * c.reference[1] - t[0];
         rises[i][0] += Num::exp(s.ln_n) * entry.volume * s.electron_slope * by_n;
         rises[i][1] += Num::exp(s.ln_p) * entry.volume * s.hole_slope * by_p;
+        if let Some(special) = c.special(e) {
+            let by = [t[0], t[1] + per_volt * c.reference[0], t[2] + per_volt * c.reference[1]];
+            let held = special.held(c.statistics, entry, [psi, phi_n, phi_p]);
+            for (rise, held) in rises[i].iter_mut().zip(held) {
+                let change = held.iter().zip(by).map(|(slope, by)| slope * by);
+                *rise += entry.volume * change.sum::<f64>();
+            }
+        }
     }
     // Electrons in states of interfaces: what comes from a conduction band stands in its electrons' row, what goes to a valence
     // band in its holes' row.

@@ -4,7 +4,7 @@
 //! times splitting equals delivered power plus recombination times splitting plus the transport losses of electrons and
 //! holes, each of which is >= 0.
 
-use crate::device::Device;
+use crate::device::{Device, Layer};
 use crate::discretise::residual::interface_recombination;
 use crate::discretise::{Carrier, Majority, Terminal, scales};
 use crate::math::sum::CompensatedSum;
@@ -103,6 +103,12 @@ impl Ledger {
 }
 
 const CHANNELS: [&str; 3] = ["Shockley-Read-Hall", "radiative", "Auger"];
+
+/// The channels of recombination in a layer: those that all have, and one for each defect.
+fn channels(layer: &Layer) -> Vec<String> {
+    let defects = layer.defects.iter().map(|defect| format!("defect {}", defect.name));
+    CHANNELS.iter().map(|name| name.to_string()).chain(defects).collect()
+}
 
 fn photon_lines(
     ledger: &mut Ledger,
@@ -270,9 +276,10 @@ pub(crate) fn ledger(
     // Sums over entries, by layer.
     let layers = c.layers();
     let mut generated = vec![0.0; layers];
-    let mut recombined = vec![[0.0; 3]; layers];
+    let channels: Vec<Vec<String>> = stack.layers.iter().map(channels).collect();
+    let mut recombined: Vec<Vec<f64>> = channels.iter().map(|names| vec![0.0; names.len()]).collect();
     let mut generated_energy = vec![0.0; layers];
-    let mut recombined_energy = vec![[0.0; 3]; layers];
+    let mut recombined_energy = recombined.clone();
     let mut gap_energy = vec![0.0; layers];
     for ((e, layer, _), local) in c.places().zip(&locals) {
         let entry = &c.entries[e];
@@ -280,8 +287,8 @@ pub(crate) fn ledger(
         generated[layer] += g;
         generated_energy[layer] += g * local.splitting;
         gap_energy[layer] += g * (entry.affinity_and_gap - entry.affinity);
-        for channel in 0..3 {
-            let r = local.rates[channel] * entry.volume;
+        for (channel, rate) in local.rates.iter().chain(&local.defects).enumerate() {
+            let r = rate * entry.volume;
             recombined[layer][channel] += r;
             recombined_energy[layer][channel] += r * local.splitting;
         }
@@ -318,8 +325,8 @@ pub(crate) fn ledger(
     for (layer, g) in stack.layers.iter().zip(&generated) {
         ledger.add(part, &layer.name, "generation", g * current, true);
     }
-    for (layer, rates) in stack.layers.iter().zip(&recombined) {
-        for (channel, r) in CHANNELS.iter().zip(rates) {
+    for ((layer, names), rates) in stack.layers.iter().zip(&channels).zip(&recombined) {
+        for (channel, r) in names.iter().zip(rates) {
             ledger.add(part, &layer.name, channel, r * current, false);
         }
     }
@@ -342,8 +349,8 @@ pub(crate) fn ledger(
         ledger.add(part, &layer.name, "free energy generated", g * power, true);
         balance.add(*g);
     }
-    for (layer, rates) in stack.layers.iter().zip(&recombined_energy) {
-        for (channel, r) in CHANNELS.iter().zip(rates) {
+    for ((layer, names), rates) in stack.layers.iter().zip(&channels).zip(&recombined_energy) {
+        for (channel, r) in names.iter().zip(rates) {
             ledger.add(part, &layer.name, channel, r * power, false);
             balance.add(-r);
         }

@@ -16,6 +16,10 @@ pub(crate) struct Local {
     pub splitting: f64,
     pub side: Side<f64>,
     pub rates: [f64; 3],
+    /// Recombination through each of the layer's defects: `[defects]`.
+    pub defects: Vec<f64>,
+    /// Charge of defects and of dopants that are not always ionised.
+    pub bound: f64,
 }
 
 /// Evaluates every entry: `[entries]`.
@@ -23,13 +27,19 @@ pub(crate) fn locals(problem: &Problem, point: &Point) -> Vec<Local> {
     let c = &problem.coefficients;
     let rear = problem.rear_level(point.state.voltage);
     c.places()
-        .map(|(e, _, i)| {
+        .map(|(e, layer, i)| {
             let [psi, u_n, u_p] = point.state.nodes[i];
             let (phi_n, phi_p) = (u_n + rear * c.reference[0], u_p + rear * c.reference[1]);
             let splitting = phi_p - phi_n;
             let at = side::<f64, f64>(c.statistics, &c.entries[e], psi, phi_n, phi_p);
             let rates = recombination(&c.entries[e], &at, splitting);
-            Local { phi_n, phi_p, splitting, side: at, rates }
+            let (mut defects, mut bound) = (Vec::new(), 0.0);
+            if let Some(special) = c.special(e) {
+                let count = c.defects[layer];
+                defects = special.rates::<f64>(count, &c.entries[e], &at, psi, splitting);
+                bound = special.bound::<f64>(&c.entries[e], &at, psi, phi_n, phi_p).charge;
+            }
+            Local { phi_n, phi_p, splitting, side: at, rates, defects, bound }
         })
         .collect()
 }
@@ -78,7 +88,7 @@ pub(crate) fn profiles(problem: &Problem, point: &Point, collection: &[f64]) -> 
         let nodes = &point.state.nodes;
         let on_edge = mean(&|k| -(nodes[k + 1][0] - nodes[k][0]) / c.cells[k].width);
         // At a layer's ends the field is that of the edge and what the half volume's charge adds up to the node (Gauss).
-        let charge = local.side.p - local.side.n + entry.doping;
+        let charge = local.side.p - local.side.n + entry.doping + local.bound;
         let field = match (left, right) {
             (Some(a), None) => on_edge + 0.5 * charge / c.cells[a].displacement,
             (None, Some(b)) => on_edge - 0.5 * charge / c.cells[b].displacement,
@@ -90,6 +100,10 @@ pub(crate) fn profiles(problem: &Problem, point: &Point, collection: &[f64]) -> 
         out.shockley_read_hall.push(local.rates[0] * rate);
         out.radiative.push(local.rates[1] * rate);
         out.auger.push(local.rates[2] * rate);
+        if !c.special.is_empty() {
+            out.defects.push(local.defects.iter().sum::<f64>() * rate);
+            out.fixed_charge.push((entry.doping + local.bound) * scales::DENSITY);
+        }
         out.generation.push(point.state.light * problem.generation[e] / entry.volume * rate);
         out.collection.push(collection.get(i).copied().unwrap_or(f64::NAN));
     }

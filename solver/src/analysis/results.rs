@@ -107,6 +107,10 @@ pub struct Profiles {
     pub electron_current: Vec<f64>,
     /// Hole current density at the entry, A/m^2, in the sign of the terminal current.
     pub hole_current: Vec<f64>,
+    /// Rate through the defects of the layers, m^-3 s^-1; empty where the stack has neither defects nor dopants ionised in part.
+    pub defects: Vec<f64>,
+    /// Ionised donors less ionised acceptors and the charge of defects, in elementary charges, m^-3; empty like `defects`.
+    pub fixed_charge: Vec<f64>,
     /// Shockley-Read-Hall rate, m^-3 s^-1.
     pub shockley_read_hall: Vec<f64>,
     /// Radiative rate, m^-3 s^-1.

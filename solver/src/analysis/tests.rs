@@ -2,6 +2,7 @@
 
 mod circuit;
 mod contacts;
+pub(crate) mod defects;
 mod floating;
 pub(crate) mod interface_levels;
 pub(crate) mod interfaces;
@@ -55,6 +56,7 @@ pub(crate) fn layer(
         acceptors: Profile::Constant(if doping < 0.0 { -doping * 1e6 } else { 0.0 }),
         composition: None,
         optics: if absorption > 0.0 { LayerOptics::Absorbing } else { LayerOptics::Inert },
+        defects: Vec::new(),
     }
 }
 

@@ -7,6 +7,7 @@ use crate::math::Scalar;
 use crate::optics::Reflectance;
 use crate::quantity::constants::{BOLTZMANN, ELEMENTARY_CHARGE};
 
+use super::defect::Defect;
 use super::fault::{Fault, Place, TableProblem};
 use super::profile::Profile;
 use super::stack::{Barrier, Contact, Interface, Layer, LevelEnergy, Offset, Side, Stack, Transport};
@@ -28,6 +29,10 @@ pub const ACCURACY_LIMITS: (f64, f64) = (1e-9, 1e-1);
 /// Largest gap over kT: beyond, densities of minority carriers leave the range of a double (e^-707), and with them what
 /// ties their levels.
 pub const LARGEST_REDUCED_GAP: f64 = 600.0;
+/// Widths of distributions of defects in energy, J.
+const DEFECT_WIDTHS: (f64, f64) = (1e-4 * ELEMENTARY_CHARGE, ELEMENTARY_CHARGE);
+/// Cross-sections for capture, m^2.
+const CROSS_SECTIONS: (f64, f64) = (1e-30, 1e-14);
 /// Most layers in a stack.
 pub const MOST_LAYERS: usize = 1000;
 /// Heights of a barrier that are accepted, J: 0 to 5 eV.
@@ -138,7 +143,31 @@ impl Checker {
         if let Some(own) = &layer.material.optical {
             self.constants(&place, "optical table", own);
         }
+        let mut names = BTreeSet::new();
+        for defect in &layer.defects {
+            if !names.insert(&defect.name) {
+                let (layer, defect) = (layer.name.clone(), defect.name.clone());
+                self.faults.push(Fault::DuplicateDefect { layer, defect });
+            }
+            self.defect(layer, defect);
+        }
         self.material(layer, temperature);
+    }
+
+    fn defect<P: Scalar>(&mut self, layer: &Layer<P>, defect: &Defect<P>) {
+        let place = Place::Defect(layer.name.clone(), defect.name.clone());
+        let ev = ELEMENTARY_CHARGE;
+        self.range(&place, "energy", defect.energy, (0.0, 10.0 * ev), "J");
+        if let Some(width) = defect.spread.width() {
+            self.range(&place, "width", width, DEFECT_WIDTHS, "J");
+        }
+        self.profile(&place, "density", &defect.density, (0.0, HIGHEST_DOPING), "m^-3");
+        for (word, area) in [
+            ("electron_cross_section", defect.electron_cross_section),
+            ("hole_cross_section", defect.hole_cross_section),
+        ] {
+            self.range(&place, word, area, CROSS_SECTIONS, "m^2");
+        }
     }
 
     fn constants(&mut self, place: &Place, word: &'static str, constants: &OpticalConstants) {

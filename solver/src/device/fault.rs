@@ -11,6 +11,8 @@ pub enum Place {
     Stack,
     /// A layer, by name.
     Layer(String),
+    /// A defect of a layer: layer and defect, by name.
+    Defect(String, String),
     /// Between two layers, by name, front first.
     Interface(String, String),
     /// The contact of a face.
@@ -22,6 +24,7 @@ impl std::fmt::Display for Place {
         match self {
             Place::Stack => write!(f, "the stack"),
             Place::Layer(name) => write!(f, "layer `{name}`"),
+            Place::Defect(layer, defect) => write!(f, "defect `{defect}` of layer `{layer}`"),
             Place::Interface(front, rear) => write!(f, "the interface between `{front}` and `{rear}`"),
             Place::Contact(Side::Front) => write!(f, "the front contact"),
             Place::Contact(Side::Rear) => write!(f, "the rear contact"),
@@ -55,6 +58,14 @@ pub enum Fault {
     DuplicateLayer {
         /// The name.
         layer: String,
+    },
+    /// Two defects of one name in a layer.
+    #[error("layer `{layer}` has two defects called `{defect}`: names of defects are unique in a layer")]
+    DuplicateDefect {
+        /// The layer.
+        layer: String,
+        /// The name.
+        defect: String,
     },
     /// A layer of no thickness.
     #[error("thickness of layer `{layer}` is zero: leave the layer out of the stack when it is not there")]

@@ -42,6 +42,7 @@ fn layer<P: Copy, Q>(layer: &Layer<P>, to: impl Fn(P) -> Q + Copy) -> Layer<Q> {
         acceptors: layer.acceptors.map(to),
         composition: layer.composition.as_ref().map(|profile| profile.map(to)),
         optics: layer.optics,
+        defects: layer.defects.iter().map(|defect| defect.map(to)).collect(),
     }
 }
 

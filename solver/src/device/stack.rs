@@ -4,6 +4,7 @@ use crate::materials::Material;
 use crate::optics::Reflectance;
 use crate::physics::Statistics;
 
+use super::defect::Defect;
 use super::profile::Profile;
 
 /// A face of the stack.
@@ -33,14 +34,16 @@ pub struct Layer<P = f64> {
     pub material: Material<P>,
     /// Thickness, m.
     pub thickness: P,
-    /// Ionised donor density, m^-3, against depth.
+    /// Donor density, m^-3, against depth.
     pub donors: Profile<P>,
-    /// Ionised acceptor density, m^-3, against depth.
+    /// Acceptor density, m^-3, against depth.
     pub acceptors: Profile<P>,
     /// Composition against depth, instead of the material's own constant one.
     pub composition: Option<Profile<P>>,
     /// Its part in the optics.
     pub optics: LayerOptics,
+    /// Its defects, besides the level that the material's lifetimes stand for.
+    pub defects: Vec<Defect<P>>,
 }
 
 /// How carriers cross an interface.

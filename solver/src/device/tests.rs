@@ -14,6 +14,7 @@ fn layer(name: &str, material: Material, thickness: f64) -> Layer {
         acceptors: Profile::Constant(0.0),
         composition: None,
         optics: LayerOptics::Absorbing,
+        defects: Vec::new(),
     }
 }
 

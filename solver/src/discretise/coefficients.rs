@@ -11,6 +11,7 @@ use crate::quantity::constants::{BOLTZMANN, ELEMENTARY_CHARGE, VACUUM_PERMITTIVI
 use super::contact::{Carrier, ContactLaw, Majority};
 use super::interface::{Joint, Source, at_level, level_depth};
 use super::scales;
+use super::special::{Prepared, Special};
 
 /// One side of a node: the material there and the half control volumes that belong to it.
 #[derive(Clone, Copy, Debug)]
@@ -25,7 +26,7 @@ pub struct Entry<P> {
     pub ln_conduction: P,
     /// ln Nv.
     pub ln_valence: P,
-    /// Donors minus acceptors.
+    /// Donors minus acceptors, as far as they are always ionised.
     pub doping: P,
     /// The Shockley-Read-Hall level.
     pub level: Level<P>,
@@ -94,6 +95,10 @@ pub struct Coefficients<P> {
     pub entries: Vec<Entry<P>>,
     /// First entry of each layer, and the number of entries: `[layers + 1]`.
     pub first: Vec<usize>,
+    /// What entries have beyond the common equations, by entry; most devices have none.
+    pub special: Vec<Special<P>>,
+    /// Number of defects of each layer: `[layers]`.
+    pub defects: Vec<usize>,
     /// How many of the interfaces before each layer have continuous levels, and so one node for two entries: `[layers]`.
     pub shared: Vec<usize>,
     /// Cells; cell `i` lies between nodes `i` and `i + 1`: `[nodes - 1]`. Between the two nodes of a joint it has no width, and a
@@ -133,6 +138,11 @@ fn sides<P: Scalar>(contacts: &[ContactLaw<P>; 2]) -> (f64, bool) {
             if at_front > at_rear { (1.0, true) } else { (-1.0, at_front < at_rear) }
         }
     }
+}
+
+/// What is there of an entry.
+fn find<P>(special: &[Special<P>], entry: usize) -> Option<&Special<P>> {
+    special.binary_search_by_key(&entry, |s| s.entry).ok().map(|at| &special[at])
 }
 
 /// Values at one place, in the scaled form of an entry (volume left at zero).
@@ -187,6 +197,7 @@ impl<P: Scalar + Over<P>> Coefficients<P> {
         let diffusion_scale = thermal_voltage * (scales::TIME / (scales::LENGTH * scales::LENGTH));
         let mut entries = Vec::with_capacity(mesh.entries());
         let mut depths = Vec::with_capacity(mesh.entries());
+        let mut special: Vec<Special<P>> = Vec::new();
         let mut cells: Vec<Cell<P>> = Vec::with_capacity(mesh.nodes() - 1);
         let mut first = vec![0];
         let mut gaps = Vec::new();
@@ -197,11 +208,16 @@ impl<P: Scalar + Over<P>> Coefficients<P> {
         let mut shift: Option<P> = None;
         for (index, layer) in stack.layers.iter().enumerate() {
             let fractions = &mesh.layers[index].fractions;
+            let prepared = Prepared::new(layer, stack.temperature, || device.values(index, P::constant(0.0)));
             let place = |fraction: f64| {
                 let z = layer.thickness * fraction;
                 let donors = layer.donors.at(z, layer.thickness);
                 let acceptors = layer.acceptors.at(z, layer.thickness);
-                (device.values(index, z), donors - acceptors)
+                let doping = match &prepared {
+                    Some(prepared) => prepared.ionised(donors, acceptors),
+                    None => (donors, acceptors),
+                };
+                (device.values(index, z), doping.0 - doping.1)
             };
             let uniform =
                 layer.composition.is_none() && layer.donors.is_constant() && layer.acceptors.is_constant();
@@ -224,6 +240,8 @@ impl<P: Scalar + Over<P>> Coefficients<P> {
                 entries.push(entry(&values, doping, thermal_energy));
                 depths.push(front + layer.thickness * fraction);
                 let here = entries.len() - 1;
+                let of_layer = prepared.as_ref();
+                special.extend(of_layer.map(|p| p.at(here, layer.thickness * fraction, &values)));
                 if let Some((before, e)) = previous {
                     let width = layer.thickness * ((fraction - before) * (1.0 / scales::LENGTH));
                     let (middle, _) = at(0.5 * (fraction + before));
@@ -309,7 +327,9 @@ impl<P: Scalar + Over<P>> Coefficients<P> {
             })
             .collect();
         let law = |e: usize, contact: &Contact<P>| {
-            ContactLaw::new(stack.statistics, &entries[e], contact, stack.temperature, |v| v * velocity_scale)
+            let own = find(&special, e);
+            let scaled = |v| v * velocity_scale;
+            ContactLaw::new(stack.statistics, &entries[e], own, contact, stack.temperature, scaled)
         };
         let contacts = [law(0, &stack.front), law(entries.len() - 1, &stack.rear)];
         let (polarity, junction) = sides(&contacts);
@@ -327,6 +347,8 @@ impl<P: Scalar + Over<P>> Coefficients<P> {
             entries,
             first,
             shared,
+            special,
+            defects: stack.layers.iter().map(|layer| layer.defects.len()).collect(),
             cells,
             depths,
             interfaces,
@@ -337,6 +359,11 @@ impl<P: Scalar + Over<P>> Coefficients<P> {
             junction,
             reference,
         }
+    }
+
+    /// What an entry has beyond the common equations.
+    pub fn special(&self, entry: usize) -> Option<&Special<P>> {
+        find(&self.special, entry)
     }
 
     /// Number of nodes.

@@ -9,6 +9,7 @@ use crate::quantity::constants::BOLTZMANN;
 use super::coefficients::Entry;
 use super::scales;
 use super::side::{side, sloped_side};
+use super::special::Special;
 
 /// A carrier.
 #[derive(Clone, Copy, Debug, PartialEq, Eq)]
@@ -62,8 +63,8 @@ const EQUAL: f64 = 1e-9;
 
 /// The neutral potential of an entry at a flat Fermi level of zero, kT/q, for plain numbers.
 ///
-/// Bracketed Newton iteration on `p - n + doping = 0`, monotone in the potential.
-pub fn neutral_potential(statistics: Statistics, entry: &Entry<f64>) -> f64 {
+/// Bracketed Newton iteration on `p - n + doping = 0`, with the charge of what is `special` there, monotone in the potential.
+pub fn neutral_potential(statistics: Statistics, entry: &Entry<f64>, special: Option<&Special<f64>>) -> f64 {
     // Between these the charge changes sign: the level deep in either band.
     let (mut low, mut high) = (-entry.affinity_and_gap - 2000.0, -entry.affinity + 2000.0);
     // Start where the majority's Boltzmann density equals the doping, or at the intrinsic level.
@@ -79,7 +80,8 @@ pub fn neutral_potential(statistics: Statistics, entry: &Entry<f64>) -> f64 {
     for _ in 0..200 {
         let s = sloped_side(statistics, entry, psi, 0.0, 0.0);
         let (n, p) = (Num::exp(s.ln_n), Num::exp(s.ln_p));
-        let charge = p - n + entry.doping;
+        let (bound, bound_slope) = bound_charge(statistics, entry, special, psi);
+        let charge = p - n + entry.doping + bound;
         if charge > 0.0 {
             low = psi;
         } else if charge < 0.0 {
@@ -87,7 +89,7 @@ pub fn neutral_potential(statistics: Statistics, entry: &Entry<f64>) -> f64 {
         } else {
             return psi;
         }
-        let slope = p * s.hole_slope + n * s.electron_slope;
+        let slope = p * s.hole_slope + n * s.electron_slope - bound_slope;
         let newton = psi + charge / slope;
         // A step too small to move off a bound is the root, not a step out of the bracket.
         let next = if newton >= low && newton <= high { newton } else { 0.5 * (low + high) };
@@ -99,14 +101,38 @@ pub fn neutral_potential(statistics: Statistics, entry: &Entry<f64>) -> f64 {
     psi
 }
 
+/// Charge of what is special at a flat level of zero, and its slope by the potential.
+fn bound_charge(
+    statistics: Statistics,
+    entry: &Entry<f64>,
+    special: Option<&Special<f64>>,
+    psi: f64,
+) -> (f64, f64) {
+    special.map_or((0.0, 0.0), |special| {
+        let charge = special.sloped(statistics, entry, [psi, 0.0, 0.0]).charge;
+        (charge.re, charge.d[0])
+    })
+}
+
 /// The neutral potential with its derivatives: one Newton step in the number's own kind from the plain root.
-pub fn neutral_potential_of<P: Scalar + crate::math::Over<P>>(statistics: Statistics, entry: &Entry<P>) -> P {
+pub fn neutral_potential_of<P: Scalar + crate::math::Over<P>>(
+    statistics: Statistics,
+    entry: &Entry<P>,
+    special: Option<&Special<P>>,
+) -> P {
     let plain = entry.plain();
-    let root = neutral_potential(statistics, &plain);
+    let plain_special = special.map(Special::plain);
+    let root = neutral_potential(statistics, &plain, plain_special.as_ref());
     let at = side::<P, P>(statistics, entry, P::constant(root), P::constant(0.0), P::constant(0.0));
     let sloped = sloped_side(statistics, &plain, root, 0.0, 0.0);
-    let slope = at.p.value() * sloped.hole_slope + at.n.value() * sloped.electron_slope;
-    P::constant(root) + (at.p - at.n + entry.doping) * (1.0 / slope)
+    let (_, bound_slope) = bound_charge(statistics, &plain, plain_special.as_ref(), root);
+    let slope = at.p.value() * sloped.hole_slope + at.n.value() * sloped.electron_slope - bound_slope;
+    let mut charge = at.p - at.n + entry.doping;
+    if let Some(special) = special {
+        let zero = P::constant(0.0);
+        charge = charge + special.bound(entry, &at, P::constant(root), zero, zero).charge;
+    }
+    P::constant(root) + charge * (1.0 / slope)
 }
 
 /// The majority carrier of an entry at a potential, with both densities.
@@ -129,15 +155,16 @@ fn majority<P: Scalar + crate::math::Over<P>>(
 }
 
 impl<P: Scalar + crate::math::Over<P>> ContactLaw<P> {
-    /// The law of a contact on `entry`, whose velocities `scaled` takes from m/s.
+    /// The law of a contact on `entry`, with what is special there, whose velocities `scaled` takes from m/s.
     pub fn new(
         statistics: Statistics,
         entry: &Entry<P>,
+        special: Option<&Special<P>>,
         contact: &Contact<P>,
         temperature: P,
         scaled: impl Fn(P) -> P,
     ) -> Self {
-        let balanced = neutral_potential_of(statistics, entry);
+        let balanced = neutral_potential_of(statistics, entry, special);
         let (neutral, _) = majority(statistics, entry, balanced);
         let per_kt = (temperature * BOLTZMANN).recip();
         let potential = match contact {

@@ -19,6 +19,7 @@ use super::coefficients::{Coefficients, Entry};
 use super::columns::Columns;
 use super::edge::sloped_flux;
 use super::side::sloped_side;
+use super::special::Special;
 
 /// What the kernels read and write, by quantity: `[entries]`; cells by their left entry.
 #[derive(Clone, Debug, Default)]
@@ -233,6 +234,11 @@ impl Work {
     /// Runs the kernels over all entries and cells at a width that the machine has.
     pub fn run(&mut self, width: Width, c: &Coefficients<f64>, columns: &Columns, at: &Condition<'_>) {
         at_width!(width, self, run_over, run_wide, (c, columns, at));
+        for special in &c.special {
+            let e = special.entry;
+            let state = [self.psi[e], self.u_n[e] + at.shifts[0], self.u_p[e] + at.shifts[1]];
+            self.add_special(c, special, state);
+        }
     }
 
     /// Runs the kernel of charge alone, at the potentials of the nodes and flat levels of 0.
@@ -243,6 +249,23 @@ impl Work {
                 .copy_from_slice(&psi[c.node(layer, entries.start)..c.node(layer, entries.end)]);
         }
         at_width!(width, self, charges_over, charges_wide, (columns));
+        for special in &c.special {
+            self.add_special(c, special, [self.psi[special.entry], 0.0, 0.0]);
+        }
+    }
+
+    /// Adds the charge and the recombination of what is special at an entry.
+    fn add_special(&mut self, c: &Coefficients<f64>, special: &Special<f64>, state: [f64; 3]) {
+        let e = special.entry;
+        let entry = &c.entries[e];
+        let bound = special.sloped(c.statistics, entry, state);
+        let (charge, net) = (bound.charge * entry.volume, bound.recombination * entry.volume);
+        self.charge[e] += charge.re;
+        self.net[e] += net.re;
+        for k in 0..3 {
+            self.charge_by[k][e] += charge.d[k];
+            self.net_by[k][e] += net.d[k];
+        }
     }
 
     #[cfg(target_arch = "x86_64")]

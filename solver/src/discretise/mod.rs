@@ -12,6 +12,7 @@ mod kernels;
 pub mod residual;
 pub mod scales;
 pub mod side;
+pub mod special;
 pub mod terminal;
 
 pub use assembly::System;
@@ -19,6 +20,7 @@ pub use coefficients::{Cell, Coefficients, Entry, InterfaceRecombination};
 pub use contact::{Carrier, ContactLaw, Majority};
 pub use interface::{Emission, Joint, Source};
 pub use side::Side;
+pub use special::Special;
 pub use terminal::Terminal;
 
 #[cfg(test)]

@@ -66,12 +66,18 @@ where
         let splitting = phi_p - phi_n;
         let [srh, rad, aug] = recombination(entry, &at, splitting);
         let mut net = (srh + rad + aug) * entry.volume - generation[e];
+        let mut charge = at.p - at.n + entry.doping;
+        if let Some(special) = c.special(e) {
+            let bound = special.bound(entry, &at, state[i][0], phi_n, phi_p);
+            net = net + bound.recombination * entry.volume;
+            charge = charge + bound.charge;
+        }
         for interface in c.interfaces.iter().flatten() {
             if interface.entry == e {
                 net = net + interface_recombination(interface, &at, splitting);
             }
         }
-        rows[i][0] = rows[i][0] + (at.p - at.n + entry.doping) * entry.volume;
+        rows[i][0] = rows[i][0] + charge * entry.volume;
         rows[i][1] = rows[i][1] - net;
         rows[i][2] = rows[i][2] + net;
         if e > c.first[layer] {

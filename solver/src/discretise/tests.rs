@@ -1,5 +1,6 @@
 //! The assembled Jacobian against dual numbers of the plain residual.
 
+use crate::analysis::tests::defects::with_everything;
 use crate::analysis::tests::interface_levels::charged_cell;
 use crate::analysis::tests::{r1, r3};
 use crate::device::{Barrier, Contact, Device, Interface, Stack, Transport};
@@ -54,6 +55,7 @@ fn jacobian_is_the_derivative_of_the_plain_residual() {
         ("R3", r3()),
         ("interface", with_interface),
         ("resistor", resistor),
+        ("bound", with_everything()),
         ("velocities and a barrier", passing),
         ("thermionic", emitting),
         ("levels", charged_cell(Transport::Continuous)),
@@ -137,7 +139,7 @@ fn jacobian_is_the_derivative_of_the_plain_residual() {
 #[test]
 fn every_width_gives_the_same_bits() {
     use crate::math::lanes::Width;
-    let mut stacks = vec![r1(), r3(), crate::analysis::tests::interfaces::emitting(None, None)];
+    let mut stacks = vec![r1(), r3(), crate::analysis::tests::interfaces::emitting(None, None), with_everything()];
     stacks[1].interfaces[1] = Some(Interface::recombining(1e3, 30.0));
     for cells in [4, 5, 6, 7] {
         for stack in &stacks {

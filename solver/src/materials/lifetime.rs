@@ -81,6 +81,15 @@ impl<P: Scalar> Material<P> {
                 needs: references[0].key(),
             });
         }
+        for (parameter, level) in [
+            (Parameter::DonorDegeneracy, Parameter::DonorLevel),
+            (Parameter::AcceptorDegeneracy, Parameter::AcceptorLevel),
+        ] {
+            if has(parameter) && !has(level) {
+                let (parameter, needs) = (parameter.key(), level.key());
+                faults.push(MaterialError::Needs { material: self.name().to_string(), parameter, needs });
+            }
+        }
         let radiative = super::choice::Choice::Radiative;
         if self.choices.get(&radiative) == Some(&"absorption") && has(Parameter::RadiativeCoefficient) {
             faults.push(MaterialError::Exclusive {

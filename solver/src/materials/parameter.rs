@@ -78,6 +78,10 @@ parameters! {
     DislocationDensity "dislocation_density" ArealDensity "Threading dislocations, at which carriers recombine besides: each lifetime's reciprocal gains pi^3 D / 4 times this, D the carrier's diffusion coefficient.";
     MinorityElectronMobility "minority_electron_mobility" Mobility "Mobility of electrons where acceptors are the majority, instead of `electron_mobility`; between the two by the share of acceptors.";
     MinorityHoleMobility "minority_hole_mobility" Mobility "Mobility of holes where donors are the majority, instead of `hole_mobility`; between the two by the share of donors.";
+    DonorLevel "donor_level" Energy "Depth of the donors below the conduction-band edge: given, they are ionised as far as the electrons' level lets them be.";
+    AcceptorLevel "acceptor_level" Energy "Height of the acceptors above the valence-band edge: given, they are ionised as far as the holes' level lets them be.";
+    DonorDegeneracy "donor_degeneracy" Number "Degeneracy of the donors' level, 2 unless given.";
+    AcceptorDegeneracy "acceptor_degeneracy" Number "Degeneracy of the acceptors' level, 4 unless given.";
     NarrowingCubeRoot "gap_narrowing_cube_root" Energy "Band-gap narrowing at a net doping of 1e18 cm^-3 that grows with its cube root; any of the three stands for the library's coefficients.";
     NarrowingFourthRoot "gap_narrowing_fourth_root" Energy "Band-gap narrowing at a net doping of 1e18 cm^-3 that grows with its fourth root.";
     NarrowingSquareRoot "gap_narrowing_square_root" Energy "Band-gap narrowing at a net doping of 1e18 cm^-3 that grows with its square root.";

@@ -41,6 +41,8 @@ impl Parameter {
             Parameter::VarshniAlpha => (0.0, 0.1 * ev),
             Parameter::NarrowingShare => (0.0, 1.0),
             Parameter::LifetimeDopingPower => (0.1, 10.0),
+            Parameter::DonorDegeneracy | Parameter::AcceptorDegeneracy => (0.1, 100.0),
+            Parameter::DonorLevel | Parameter::AcceptorLevel => (0.0, 2.0 * ev),
             Parameter::ElectronMass | Parameter::HoleMass => (1e-4, 1e3),
             p if p.moved_by_power().is_some() => (-20.0, 20.0),
             _ => match self.kind() {

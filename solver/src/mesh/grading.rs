@@ -106,7 +106,8 @@ impl Mesh {
                 let mut cells = 4.0 * c * elementary::tanh(c) / growth;
                 let varies = !layer.donors.is_constant()
                     || !layer.acceptors.is_constant()
-                    || layer.composition.is_some();
+                    || layer.composition.is_some()
+                    || layer.defects.iter().any(|defect| !defect.density.is_constant());
                 if varies {
                     // A profile inside the layer wants its own resolution: at least 24 cells on the coarsest mesh.
                     cells = cells.max(24.0);

@@ -4,8 +4,10 @@
 
 pub mod auger;
 pub mod carriers;
+pub mod defects;
 pub mod emission;
 pub mod interface_level;
+pub mod ionisation;
 pub mod radiative;
 pub mod shockley_read_hall;
 pub mod statistics;

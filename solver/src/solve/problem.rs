@@ -156,12 +156,13 @@ impl Problem {
             let potential = match known {
                 Some((l, doping, potential))
                     if l == layer
+                        && c.special.is_empty()
                         && doping == entry.doping
                         && c.entries[e - 1].affinity == entry.affinity =>
                 {
                     potential
                 }
-                _ => neutral_potential(c.statistics, entry),
+                _ => neutral_potential(c.statistics, entry, c.special(e)),
             };
             known = Some((layer, entry.doping, potential));
             // At an interface: midway between the two sides, of which each has a node where levels may jump.

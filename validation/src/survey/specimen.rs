@@ -145,6 +145,7 @@ pub fn specimen(seed: u64) -> (Stack, Light, f64) {
             acceptors,
             composition,
             optics: if r.chance(0.8) { LayerOptics::Absorbing } else { LayerOptics::Inert },
+            defects: Vec::new(),
         });
     }
     let mut stack = Stack::new("specimen", layers);

@@ -65,6 +65,7 @@ fn layer(name: &str, x: Option<f64>, own: &[(Parameter, f64)], layer: (&str, f64
         acceptors: Profile::Constant(acceptors),
         composition: None,
         optics: LayerOptics::Absorbing,
+        defects: Vec::new(),
     }
 }
 

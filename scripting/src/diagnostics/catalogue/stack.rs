@@ -78,6 +78,10 @@ super::rows! {
         "No absorption of this material was found that could be cited, and none is made up: light whose photons pass its gap \
          cannot be followed through the layer. Give `absorption` or `optical_constants`, or take the layer out of the optics.",
         "layer(\"window\", material(\"AlAs\"), 30.nm, donors(2e18.per_cm3), #{ optics: \"inert\" })";
+    DEFECT = "E231", "a defect that cannot be",
+        "A defect needs its kind, density, energy from one band edge, and both cross-sections; a distribution its width. Names are \
+         unique in a layer, and numbers within what a semiconductor can have. The message names what is wrong.",
+        "defect(\"deep\", #{ kind: \"acceptor\", density: 1e15.per_cm3, above_valence_band: 0.4.eV, .. })";
     BARRIER = "E236", "a contact's barrier that cannot be",
         "A Schottky contact has one barrier, told as that of electrons, that of holes, or by the metal's work function; \
          a contact must pass one carrier at least.",

@@ -77,3 +77,75 @@ fn one_name_for_matched_and_varied_alloys() {
     fails("material(\"GaInP\", #{ x: 1.2 }); // ~ E216");
     fails("material(\"AlGaInP\"); // ~ E216");
 }
+
+const DEEP: &str =
+    "below_conduction_band: 0.75.eV, electron_cross_section: 1e-15.cm2, hole_cross_section: 1e-16.cm2";
+
+/// Source of truth: the sign that the theory gives: a defect recombines, its line stands in the ledger and its rate in the
+/// profiles, the voltage falls; a stack without defects has no such column.
+#[test]
+fn a_defect_costs_voltage_and_has_its_line() {
+    let at = |defects: &str| {
+        let statements = format!(
+            "cell[\"base\"].defects = [{defects}];\nlet sun = spectrum(\"AM1.5G\");\nlet p = cell.at(0.9.V, sun);\nprint(p.profiles.contains(\"defects\"));\n\
+             print(p.total(\"carriers\", \"defect deep\").to(\"mA_per_cm2\"));\nprint(cell.jv(sun).voc.to(\"mV\"));"
+        );
+        printed(&cell("", &statements))
+    };
+    let number = |text: &str| text.parse::<f64>().expect("a number");
+    let with = at(&format!("defect(\"deep\", #{{ kind: \"neutral\", density: 1e15.per_cm3, {DEEP} }})"));
+    assert_eq!(with[0], "true");
+    assert!(number(&with[1]) > 1e-3, "{with:?}");
+    let without = printed(&cell(
+        "",
+        "let sun = spectrum(\"AM1.5G\");\nprint(cell.at(0.9.V, sun).profiles.contains(\"defects\"));\nprint(cell.jv(sun).voc.to(\"mV\"));",
+    ));
+    assert_eq!(without[0], "false");
+    assert!(number(&with[2]) < number(&without[1]) - 1.0, "{with:?} {without:?}");
+}
+
+/// Source of truth: dopants with a level freeze out: at 100 K a base whose acceptors lie 0.1 eV deep has fewer holes than
+/// acceptors, by the formula's root 2 N / (1 + sqrt(1 + 4 a N)), far below a thousandth.
+#[test]
+fn deep_acceptors_freeze_out() {
+    let lines = printed(&cell(
+        "",
+        "cell[\"base\"].acceptor_level = 0.1.eV;\ncell.temperature = 100.K;\nlet p = cell.equilibrium().profiles;\n\
+         print(p.holes[p.holes.len() - 1].to(\"per_cm3\") < 1e14);\nprint(p.fixed_charge[p.holes.len() - 1].to(\"per_cm3\") < 0);",
+    ));
+    assert_eq!(lines, ["true", "true"]);
+}
+
+/// Source of truth: the stated rules; place and code stand in each script.
+#[test]
+fn defects_are_checked_at_their_place() {
+    let with = |options: &str, code: &str| fails(&format!("defect(\"d\", #{{ {options} }}); // ~ {code}"));
+    let lacks = with(&format!("density: 1e15.per_cm3, {DEEP}"), "E231");
+    assert!(lacks.message.contains("`kind`"), "{}", lacks.message);
+    with(&format!("kind: \"donor\", {DEEP}"), "E231");
+    let word = with(&format!("kind: \"doner\", density: 1e15.per_cm3, {DEEP}"), "E122");
+    assert_eq!(word.help.as_deref(), Some("did you mean `donor`?"));
+    with(&format!("kind: \"donor\", density: 1e15.per_cm3, above_valence_band: 0.3.eV, {DEEP}"), "E231");
+    with(&format!("kind: \"donor\", density: 1e15.per_cm3, width: 50.meV, {DEEP}"), "E231");
+    with(&format!("kind: \"donor\", density: 1e15.per_cm3, distribution: \"gaussian\", {DEEP}"), "E231");
+    with("kind: \"donor\", density: 1e15.per_cm3, below_conduction_band: 0.75.eV", "E231");
+    with(&format!("kind: \"donor\", density: 1e15, {DEEP}"), "E200");
+    with(&format!("kind: \"donor\", densty: 1e15.per_cm3, density: 1e15.per_cm3, {DEEP}"), "E108");
+    with(&format!("kind: \"donor\", density: graded(\"linear\", 0, 1), {DEEP}"), "E202");
+    fails("layer(\"a\", material(\"GaAs\"), 1.um, intrinsic(), #{ defects: [1] }); // ~ E107");
+    fails("material(\"GaAs\", #{ donor_degeneracy: 2 }); // ~ E218");
+    let one = format!("defect(\"d\", #{{ kind: \"donor\", density: 1e15.per_cm3, {DEEP} }})");
+    let twice = cell("", "cell.at(0.V, dark());").replacen(
+        "acceptors(1e17.per_cm3))]);",
+        &format!("acceptors(1e17.per_cm3), #{{ defects: [{one}, {one}] }})]); // ~ E231"),
+        1,
+    );
+    expect_diagnostics(&twice, RunOptions { check_only: true, ..RunOptions::default() });
+    let large = one.replacen("1e-15.cm2", "1.cm2", 1);
+    let large = cell("", "cell.at(0.V, dark());").replacen(
+        "acceptors(1e17.per_cm3))]);",
+        &format!("acceptors(1e17.per_cm3), #{{ defects: [{large}] }})]); // ~ E231"),
+        1,
+    );
+    expect_diagnostics(&large, RunOptions { check_only: true, ..RunOptions::default() });
+}

@@ -8,7 +8,7 @@ use rhai::Dynamic;
 
 use crate::diagnostics::codes;
 use crate::language::device_value::{
-    ConstantsValue, DopingValue, Edit, InterfaceValue, LayerValue, MaterialValue, ProfileValue,
+    ConstantsValue, DefectValue, DopingValue, Edit, InterfaceValue, LayerValue, MaterialValue, ProfileValue,
 };
 use crate::language::dimension::Dimension;
 use crate::language::fault::{Fault, Faults, Place};
@@ -18,7 +18,7 @@ use crate::language::vocabulary::{
     Answer, Call, OptionRow, function, getter, index_getter, index_setter, setter, topic, unknown_property,
 };
 
-use super::materials;
+use super::{defects, materials};
 
 topic! {
     "Layers",
@@ -28,10 +28,11 @@ topic! {
     Function "layer" {
         forms: ["layer(\"name\", material, thickness, doping)", "layer(\"name\", material, thickness, doping, #{ options })"],
         doc: "A layer. Its options override values of the material in this layer alone; besides every option of `material` \
-              there is `optics`.",
+              there are `optics` and `defects`.",
         options: &[
             OptionRow { key: "optics", takes: "a text: \"absorbing\" or \"inert\"", doc: "Whether the layer takes part in the optics." },
             OptionRow { key: "x", takes: "a number from 0 to 1, or `graded(..)`", doc: "Composition of the alloy in this layer." },
+            OptionRow { key: "defects", takes: "an array of `defect(..)`", doc: "Defects of this layer, with their charge; none unless given." },
         ],
         example: "let gaas = material(\"GaAs\");\nlet base = layer(\"base\", gaas, 3.um, acceptors(1e17.per_cm3), #{ electron_lifetime: 5.ns });",
         register: |engine, session| {
@@ -125,6 +126,22 @@ topic! {
                     layer.donors = given.donors;
                     layer.acceptors = given.acceptors;
                 })
+            });
+        },
+    }
+    Property "defects" of "layer" {
+        forms: ["layer.defects", "cell[\"name\"].defects = [defect(..)]"],
+        doc: "Its defects, an array.",
+        example: "let base = layer(\"base\", material(\"GaAs\"), 3.um, acceptors(1e17.per_cm3));\nbase.defects = [defect(\"deep\", #{ kind: \"neutral\", density: 1e14.per_cm3, below_conduction_band: 0.7.eV,\n    electron_cross_section: 1e-15.cm2, hole_cross_section: 1e-15.cm2 })];\nprint(base.defects.len());",
+        register: |engine, session| {
+            getter::<LayerValue>(engine, session, "defects", |_, arguments| {
+                let layer = of(arguments[0])?.layer;
+                let list = layer.defects.iter().map(|defect| Dynamic::from(DefectValue(defect.clone())));
+                Ok(Dynamic::from(list.collect::<rhai::Array>()))
+            });
+            setter::<LayerValue>(engine, session, "defects", |call, arguments| {
+                let given = defects::defects(arguments[1]).map_err(|f| f.at(Place::Argument(0)))?;
+                change(call, arguments[0], |layer| layer.defects = given)
             });
         },
     }
@@ -263,9 +280,10 @@ fn build(call: &Call, arguments: &mut [&mut Dynamic]) -> Answer {
         acceptors: doping.acceptors,
         composition: material.graded,
         optics: LayerOptics::Absorbing,
+        defects: Vec::new(),
     };
     if let Some(options) = arguments.get(4) {
-        let keys: Vec<&str> = std::iter::once("optics").chain(materials::keys()).collect();
+        let keys: Vec<&str> = ["optics", "defects"].into_iter().chain(materials::keys()).collect();
         let options = Options::new(options, "`layer`", keys.iter().copied()).map_err(Faults)?;
         for (key, value) in options.iter() {
             if let Err(fault) = option(&mut layer, key, value) {
@@ -287,6 +305,7 @@ fn option(layer: &mut Layer<Quantity>, key: &str, value: &Dynamic) -> Result<(),
     let of = format!("layer `{}`", layer.name);
     match key {
         "optics" => layer.optics = optics(value)?,
+        "defects" => layer.defects = defects::defects(value)?,
         "x" => {
             let (number, profile) = materials::composition(value, &of)?;
             layer.composition = profile.map(|p| p.0);

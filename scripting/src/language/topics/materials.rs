@@ -173,6 +173,26 @@ const OPTIONS: &[OptionRow] = &[
         doc: "Mobility of holes where donors are the majority, instead of `hole_mobility`; between the two by the share of donors.",
     },
     OptionRow {
+        key: "donor_level",
+        takes: "an energy",
+        doc: "Depth of the donors below the conduction-band edge: given, they are ionised as far as the electrons' level lets them be.",
+    },
+    OptionRow {
+        key: "acceptor_level",
+        takes: "an energy",
+        doc: "Height of the acceptors above the valence-band edge: given, they are ionised as far as the holes' level lets them be.",
+    },
+    OptionRow {
+        key: "donor_degeneracy",
+        takes: "a number",
+        doc: "Degeneracy of the donors' level, 2 unless given.",
+    },
+    OptionRow {
+        key: "acceptor_degeneracy",
+        takes: "a number",
+        doc: "Degeneracy of the acceptors' level, 4 unless given.",
+    },
+    OptionRow {
         key: "gap_narrowing_cube_root",
         takes: "an energy",
         doc: "Band-gap narrowing at a net doping of 1e18 cm^-3 that grows with its cube root; any of the three stands for the library's coefficients.",

@@ -5,6 +5,7 @@ use super::vocabulary::Topic;
 mod analyses;
 mod circuit;
 mod contacts;
+mod defects;
 mod doping;
 mod files;
 mod functions;
@@ -25,6 +26,7 @@ pub(super) static ALL: &[&Topic] = &[
     &functions::TOPIC,
     &materials::TOPIC,
     &doping::TOPIC,
+    &defects::TOPIC,
     &layers::TOPIC,
     &contacts::TOPIC,
     &stacks::TOPIC,
@@ -42,6 +44,7 @@ pub(super) fn register_platform_replacements(engine: &mut rhai::Engine) {
     functions::replace_platform_functions(engine);
 }
 
+pub(super) use defects::defect_words;
 pub(super) use layers::optics_word;
 pub(super) use materials::{dimension as parameter_dimension, material_fault, range};
 pub(super) use results::{account, income};

@@ -146,7 +146,8 @@ topic! {
         forms: ["point.profiles"],
         doc: "A map of arrays against depth, the finest mesh's own values: `depth`, `layer`, `potential`, `conduction_band`, \
               `valence_band`, `electron_level`, `hole_level`, `electrons`, `holes`, `field`, `electron_current`, `hole_current`, \
-              `shockley_read_hall`, `radiative`, `auger`, `generation`, `collection`. An interface stands twice, once with each side's material.",
+              `shockley_read_hall`, `radiative`, `auger`, `generation`, `collection`; where a layer has defects or dopants ionised in part also \
+              `defects` (their recombination) and `fixed_charge`. An interface stands twice, once with each side's material.",
         example: "let gaas = material(\"GaAs\", #{ electron_lifetime: 20.ns, hole_lifetime: 20.ns });\nlet cell = stack(\"diode\", [layer(\"emitter\", gaas, 100.nm, donors(2e18.per_cm3)), layer(\"base\", gaas, 2.um, acceptors(1e17.per_cm3))]);\nlet p = cell.equilibrium().profiles;\nprint(`${p.depth[0]} ${p.electrons[0]}`);",
         register: |engine, session| {
             getter::<StateValue>(engine, session, "profiles", |_, arguments| {

@@ -50,6 +50,7 @@ fn stack<P: Scalar>(thickness: &[f64], optics: StackOptics<P>) -> Stack<P> {
         acceptors: Profile::Constant(zero),
         composition: None,
         optics: LayerOptics::Absorbing,
+        defects: Vec::new(),
     };
     let plain = Stack::new("test", Vec::new());
     Stack {
