@@ -66,7 +66,10 @@ const EQUAL: f64 = 1e-9;
 /// Bracketed Newton iteration on `p - n + doping = 0`, with the charge of what is `special` there, monotone in the potential.
 pub fn neutral_potential(statistics: Statistics, entry: &Entry<f64>, special: Option<&Special<f64>>) -> f64 {
     // Between these the charge changes sign: the level deep in either band.
-    let (mut low, mut high) = (-entry.affinity_and_gap - 2000.0, -entry.affinity + 2000.0);
+    // Dopants and defects are asked within what a double holds.
+    let margin = if special.is_some() && statistics == Statistics::Boltzmann { 600.0 } else { 2000.0 };
+    let (mut low, mut high) = (-entry.affinity_and_gap - margin, -entry.affinity + margin);
+    let mut before = high - low;
     // Start where the majority's Boltzmann density equals the doping, or at the intrinsic level.
     let intrinsic =
         -0.5 * (entry.affinity + entry.affinity_and_gap) + 0.5 * (entry.ln_valence - entry.ln_conduction);
@@ -91,8 +94,11 @@ pub fn neutral_potential(statistics: Statistics, entry: &Entry<f64>, special: Op
         }
         let slope = p * s.hole_slope + n * s.electron_slope - bound_slope;
         let newton = psi + charge / slope;
+        // Charge that levels off between the levels of defects: there, steps must shrink by halves, or the bracket is halved.
+        let shrinks = special.is_none() || (newton - psi).abs() <= 0.5 * before;
         // A step too small to move off a bound is the root, not a step out of the bracket.
-        let next = if newton >= low && newton <= high { newton } else { 0.5 * (low + high) };
+        let next = if newton >= low && newton <= high && shrinks { newton } else { 0.5 * (low + high) };
+        before = (next - psi).abs();
         if (next - psi).abs() <= 4.0 * f64::EPSILON * psi.abs() {
             return next;
         }

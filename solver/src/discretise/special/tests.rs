@@ -19,8 +19,8 @@ fn distributions_have_their_moments() {
     }
 }
 
-/// Truth: the occupancy of a distribution by a Fermi level, summed over 40,001 equal steps here: 1e-5 of all states, for widths
-/// above and below kT.
+/// Truth: the occupancy of a distribution by a Fermi level, summed over 40,001 equal steps here, for widths
+/// above and below kT; 3e-5 of all states where the level lies at the end of what is counted (6e-5 lie beyond).
 #[test]
 fn occupancy_of_a_distribution() {
     let kt = 0.02585;
@@ -33,7 +33,7 @@ fn occupancy_of_a_distribution() {
                 let w = (-0.5 * x * x).exp();
                 (sum + w * fermi(x * width - level), all + w)
             });
-            assert!((found - sum / all).abs() < 1e-5, "{width} {level}: {found} {}", sum / all);
+            assert!((found - sum / all).abs() < 3e-5, "{width} {level}: {found} {}", sum / all);
             let found: f64 = tail(width, kt, 3.0).iter().map(|(x, w)| w * fermi(x * width - level)).sum();
             let fine = (0..40_000).map(|k| 12.0 * (f64::from(k) + 0.5) / 40_000.0);
             let (sum, all) = fine.fold((0.0, 0.0), |(sum, all), x| {
