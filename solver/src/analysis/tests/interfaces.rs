@@ -343,6 +343,7 @@ fn behind_the_base(transport: Transport, graded: f64) -> Stack {
             acceptors: Profile::Constant((-doping).max(0.0)),
             composition: None,
             optics: LayerOptics::Absorbing,
+            defects: Vec::new(),
         }
     };
     let mut layers = vec![of("emitter", None, 100e-9, 2e24), of("base", None, 2e-6, -1e23)];
