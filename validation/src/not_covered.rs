@@ -10,7 +10,8 @@ pub const NOT_COVERED: [&str; 14] = [
     "Tunnelling: not in the model. Interfaces are checked with continuous quasi-Fermi levels, contacts as ohmic ones with a \
      recombination velocity; thermionic emission at interfaces, Schottky and selective contacts by the solver's own tests \
      against the law of thermionic emission, its limits and its symmetries.",
-    "Incomplete ionisation, band-gap narrowing, fields that saturate velocities, traps in the bulk that hold charge: not in the model.",
+    "Fields that saturate velocities: not in the model. Dopants ionised in part, band-gap narrowing and defects with charge are \
+     held to closed forms by the solver's own tests; no outside solution is compared.",
     "Several junctions in one stack: equations and ledgers are checked by the solver's own tests, no outside solution is.",
     "Coatings and rear reflection: the solver's own tests hold them to Fresnel's formulas and to closed sums; no measured \
      reflectance is compared.",
