@@ -167,7 +167,7 @@ const MOST: f64 = 400.0;
 
 /// Equal steps over a Gaussian: for functions as smooth as an occupancy over kT, steps of kT err by e^-19.
 fn gaussian(width: f64, kt: f64) -> Vec<(f64, f64)> {
-    let step = (kt / width).min(0.5).max(2.0 * GAUSSIAN / MOST);
+    let step = (kt / width).clamp(2.0 * GAUSSIAN / MOST, 0.5);
     let count = (GAUSSIAN / step).ceil();
     let points = (-(count as i32)..=count as i32).map(|k| GAUSSIAN * f64::from(k) / count);
     shares(points.map(|x| (x, elementary::exp(-0.5 * x * x))).collect())

@@ -139,7 +139,8 @@ fn jacobian_is_the_derivative_of_the_plain_residual() {
 #[test]
 fn every_width_gives_the_same_bits() {
     use crate::math::lanes::Width;
-    let mut stacks = vec![r1(), r3(), crate::analysis::tests::interfaces::emitting(None, None), with_everything()];
+    let mut stacks =
+        vec![r1(), r3(), crate::analysis::tests::interfaces::emitting(None, None), with_everything()];
     stacks[1].interfaces[1] = Some(Interface::recombining(1e3, 30.0));
     for cells in [4, 5, 6, 7] {
         for stack in &stacks {
