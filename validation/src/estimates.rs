@@ -7,11 +7,14 @@ use epiloom_solver::discretise::Coefficients;
 use epiloom_solver::mesh::{Grading, Mesh};
 use epiloom_solver::optics::{Light, LitStack, Spectrum};
 use epiloom_solver::solve::extrapolation::extrapolate;
-use epiloom_solver::solve::{Drive, Problem, Tolerances};
+use epiloom_solver::solve::{Drive, Point, Problem, Tolerances};
 use rayon::prelude::*;
 
 use crate::stored::Failure;
 use crate::survey::specimen::{Random, built_in, custom};
+
+/// The relative accuracy that cells are solved to: the default.
+pub const ACCURACY: f64 = 1e-5;
 
 /// One figure of one cell.
 #[derive(Clone, Debug)]
@@ -33,6 +36,11 @@ impl Scored {
     pub fn factor(&self) -> f64 {
         (self.stated.value - self.reference).abs() / self.stated.error
     }
+    /// The same, less what the reference itself may be off: what it proves.
+    pub fn proven(&self) -> f64 {
+        let off = (self.stated.value - self.reference).abs() - self.doubt;
+        if off.is_nan() { f64::INFINITY } else { off.max(0.0) / self.stated.error }
+    }
     /// Whether the reference is known ten times better than the error stated.
     pub fn resolved(&self) -> bool {
         self.doubt <= 0.1 * self.stated.error
@@ -46,21 +54,22 @@ pub struct Population {
     pub scored: Vec<Scored>,
     /// Cells.
     pub cells: usize,
+    /// Cells without a reference, or without a solution: left out.
+    pub failed: usize,
     /// Fewest nodes of a reference's finest mesh.
     pub nodes: usize,
 }
 
 impl Population {
-    /// Cells of which every figure keeps within its error.
+    /// Cells of which no figure is proven to be off by more than its error.
     pub fn held(&self) -> usize {
-        let mut seeds: Vec<u64> =
-            self.scored.iter().filter(|s| s.factor().is_nan() || s.factor() > 1.0).map(|s| s.seed).collect();
+        let mut seeds: Vec<u64> = self.scored.iter().filter(|s| s.proven() > 1.0).map(|s| s.seed).collect();
         seeds.dedup();
         self.cells - seeds.len()
     }
     /// The largest factor by which an error is exceeded.
     pub fn worst(&self) -> f64 {
-        self.scored.iter().map(Scored::factor).fold(0.0, f64::max)
+        self.scored.iter().map(Scored::proven).fold(0.0, f64::max)
     }
     /// The median of stated over true error.
     pub fn median_excess(&self) -> f64 {
@@ -75,24 +84,28 @@ impl Population {
     /// Whether the estimate is as honest as it should be: 95 of 100 cells, never by more than ten times, and not more than
     /// ten times too large in the median.
     pub fn is_honest(&self) -> bool {
-        self.held() * 100 >= self.cells * 95 && self.worst() <= 10.0 && self.median_excess() <= 10.0
+        self.failed * 10 <= self.cells
+            && self.held() * 100 >= self.cells * 95
+            && self.worst() <= 10.0
+            && self.median_excess() <= 10.0
     }
     /// The figures for a person.
     pub fn report(&self) -> String {
         let mut text = format!(
             "{} cells, {} figures: within their errors all figures of {} cells ({} figures beyond); most {:.2} times the error; \
              the error stated is {:.1} times the true one in the median; references on {} nodes at least, {} figures of which \
-             the reference is not ten times better than the error\n",
+             the reference is not ten times better than the error; {} cells were left out, without a reference or a solution\n",
             self.cells,
             self.scored.len(),
             self.held(),
-            self.scored.iter().filter(|s| s.factor() > 1.0).count(),
+            self.scored.iter().filter(|s| s.proven() > 1.0).count(),
             self.worst(),
             self.median_excess(),
             self.nodes,
             self.unresolved(),
+            self.failed,
         );
-        for s in self.scored.iter().filter(|s| s.factor() > 1.0) {
+        for s in self.scored.iter().filter(|s| s.proven() > 1.0) {
             text += &format!(
                 "cell {}: {} {:.12e} +- {:.1e}, reference {:.12e}: {:.2} times the error\n",
                 s.seed,
@@ -100,7 +113,7 @@ impl Population {
                 s.stated.value,
                 s.stated.error,
                 s.reference,
-                s.factor()
+                s.proven()
             );
         }
         text
@@ -168,14 +181,70 @@ pub fn cell(seed: u64) -> Result<(Stack, Light), Failure> {
     Ok((stack, light))
 }
 
-/// Jsc, Voc, the power at a voltage and the fill factor on the mesh of one level, with its nodes.
+/// The figures that are compared.
+const FIGURES: [&str; 6] =
+    ["Jsc", "Voc", "maximum power", "fill factor", "voltage of maximum power", "current of maximum power"];
+
+/// The point again from itself: its slopes, which come from the state before the last update, err by rounding alone then.
+fn sharpened(problem: &mut Problem, point: Point) -> Point {
+    problem.newton(&point.state, Drive::Terminal(point.voltage), &Tolerances::default()).unwrap_or(point)
+}
+
+/// The root of `J + V dJ/dV` near a voltage: Newton's method, the curvature from a second point near by. Power, voltage and
+/// current there; the last step is added to them, and where it is rounding that keeps steps from shrinking, it is how far they may be off.
+fn maximum_power(problem: &mut Problem, start: &Point, near: f64) -> Result<[[f64; 3]; 2], Failure> {
+    const BESIDE: f64 = 1e-4;
+    let tolerances = Tolerances::default();
+    let mut here = problem.advance(None, start, near, &tolerances)?;
+    let rise = (1e-3 * near.abs()).min(BESIDE);
+    let mut last = f64::INFINITY;
+    for _ in 0..20 {
+        here = sharpened(problem, here);
+        let beside = problem.advance(None, &here, here.voltage + rise, &tolerances)?;
+        let beside = sharpened(problem, beside);
+        let bending = (beside.conductance - here.conductance) / (beside.voltage - here.voltage);
+        let slope = 2.0 * here.conductance + here.voltage * bending;
+        let step = -(here.current + here.voltage * here.conductance) / slope;
+        // Far below what is asked for (the step is taken besides), or as near as the slopes' rounding lets it come.
+        let share = |step: f64| step.abs() / here.voltage.abs();
+        let rounding = share(last) <= 1e-3 && step.abs() > 0.5 * last.abs();
+        if share(step) <= 1e-8 || rounding {
+            let voltage = here.voltage + step;
+            let current = -(here.current + here.conductance * step);
+            let off = step.abs();
+            return Ok([
+                [-here.current * here.voltage, voltage, current],
+                [0.0, off, off * here.conductance.abs()],
+            ]);
+        }
+        here = problem.advance(None, &here, here.voltage + step, &tolerances)?;
+        last = step;
+    }
+    Err(format!("maximum power was not found near {near} V").into())
+}
+
+/// The voltage without current near a voltage: Newton's method, the last step added.
+fn open_circuit(problem: &mut Problem, start: &Point, near: f64) -> Result<f64, Failure> {
+    let tolerances = Tolerances::default();
+    let mut here = problem.advance(None, start, near, &tolerances)?;
+    for _ in 0..20 {
+        let step = -here.current / here.conductance;
+        if step.abs() <= 1e-7 * here.voltage.abs() {
+            return Ok(here.voltage + step);
+        }
+        here = problem.advance(None, &here, here.voltage + step, &tolerances)?;
+    }
+    Err(format!("open circuit was not found near {near} V").into())
+}
+
+/// The figures on the mesh of one level, how far rounding leaves each open, and the nodes.
 fn on_mesh(
     device: &Device,
     light: &Light,
     level: u32,
     power_voltage: f64,
     open_voltage: f64,
-) -> Result<([f64; 4], usize), Failure> {
+) -> Result<([[f64; 6]; 2], usize), Failure> {
     let stack = device.stack();
     let mesh = Mesh::new(device, &Grading::default(), level);
     let c = Coefficients::new(device, &mesh);
@@ -187,25 +256,25 @@ fn on_mesh(
     let mut problem = Problem::new(c, &generation, stack.circuit.series_resistance, shunt);
     let tolerances = Tolerances::default();
     let short = problem.short_circuit(&tolerances)?;
-    let best = problem.advance(None, &short, power_voltage, &tolerances)?;
-    let near = problem.advance(Some(&short), &best, open_voltage, &tolerances)?;
-    let open = problem.finish(&near, Drive::Current(0.0), &tolerances)?;
-    let power = -best.current * power_voltage;
-    let figures = [-short.current, open.voltage, power, power / (-short.current * open.voltage)];
-    Ok((figures, mesh.nodes()))
+    let [[power, voltage, current], off] = maximum_power(&mut problem, &short, power_voltage)?;
+    let open = open_circuit(&mut problem, &short, open_voltage)?;
+    let fill = power / (-short.current * open);
+    let figures = [-short.current, open, power, fill, voltage, current];
+    Ok(([figures, [0.0, 0.0, off[0], 0.0, off[1], off[2]]], mesh.nodes()))
 }
 
 /// The figures of a cell against its reference; none where the cell has no figures (its light drives no current, or it gives
 /// no power).
-pub fn score(seed: u64, least_nodes: usize) -> Result<Option<(Vec<Scored>, usize)>, Failure> {
-    let (stack, light) = cell(seed)?;
+pub fn score(seed: u64, least_nodes: usize, accuracy: f64) -> Result<Option<(Vec<Scored>, usize)>, Failure> {
+    let (mut stack, light) = cell(seed)?;
+    stack.accuracy = accuracy;
     let device = match Device::new(stack) {
         Ok(device) => device,
         Err(faults) => return Err(format!("cell {seed} is refused: {faults:?}").into()),
     };
     let curve = current_voltage(&device, &light, &Voltages::Given(Vec::new()))?;
-    let (Ok(jsc), Ok(voc), Ok(power), Ok(fill), Ok(at)) =
-        (curve.jsc, curve.voc, curve.max_power, curve.fill_factor, curve.mpp_voltage)
+    let (Ok(jsc), Ok(voc), Ok(power), Ok(fill), Ok(at), Ok(current)) =
+        (curve.jsc, curve.voc, curve.max_power, curve.fill_factor, curve.mpp_voltage, curve.mpp_current)
     else {
         return Ok(None);
     };
@@ -221,14 +290,15 @@ pub fn score(seed: u64, least_nodes: usize) -> Result<Option<(Vec<Scored>, usize
         values.push(figures);
         nodes = of;
     }
-    let names = ["Jsc", "Voc", "maximum power", "fill factor"];
-    let scored = [jsc, voc, power, fill]
+    let scored = [jsc, voc, power, fill, at, current]
         .into_iter()
-        .zip(names)
+        .zip(FIGURES)
         .enumerate()
         .map(|(k, (stated, figure))| {
-            let levels: Vec<f64> = values.iter().map(|v| v[k]).collect();
+            let levels: Vec<f64> = values.iter().map(|[v, _]| v[k]).collect();
+            let open = values.iter().map(|[_, off]| off[k]).fold(0.0, f64::max);
             let (reference, doubt) = reference(&levels);
+            let doubt = doubt + 2.0 * open;
             Scored { seed, figure, stated, reference, doubt }
         })
         .collect();
@@ -236,11 +306,17 @@ pub fn score(seed: u64, least_nodes: usize) -> Result<Option<(Vec<Scored>, usize
 }
 
 /// The value from three meshes of a reference, and how well it is known: what the coarser two say differs by fifteen times
-/// its error, plus rounding.
+/// its error, plus rounding. Where the last two differences are not as one to four, something else than the mesh is seen: all
+/// of the last one.
 fn reference(levels: &[f64]) -> (f64, f64) {
-    let fine = extrapolate(levels).value;
+    let fine = extrapolate(levels);
     let coarse = extrapolate(&levels[..2]).value;
-    (fine, (fine - coarse).abs() / 15.0 + 2e-13 * fine.abs())
+    let doubt = if (1.9..=2.1).contains(&fine.order) {
+        (fine.value - coarse).abs() / 15.0
+    } else {
+        (levels[levels.len() - 1] - levels[levels.len() - 2]).abs()
+    };
+    (fine.value, doubt + 2e-13 * fine.value.abs())
 }
 
 /// Scores cells of a seed until `count` have figures, on all threads; `told` hears how many are done.
@@ -248,42 +324,45 @@ pub fn population(
     seed: u64,
     count: usize,
     least_nodes: usize,
+    accuracy: f64,
     told: impl Fn(usize) + Sync,
 ) -> Result<Population, Failure> {
     let done = std::sync::atomic::AtomicUsize::new(0);
     let mut list: Vec<(Vec<Scored>, usize)> = Vec::new();
+    let mut failed = 0;
     let mut next = 0_u64;
     while list.len() < count && next < 20 * count as u64 {
         let wanted = (count - list.len()) as u64;
         let batch: Vec<_> = (next..next + wanted)
             .into_par_iter()
             .map(|index| {
-                let result = score(seed.wrapping_mul(1_000_000).wrapping_add(index), least_nodes);
+                let result = score(seed.wrapping_mul(1_000_000).wrapping_add(index), least_nodes, accuracy);
                 told(1 + done.fetch_add(1, std::sync::atomic::Ordering::Relaxed));
-                result.map_err(|failure| failure.to_string())
+                result.map_err(|failure| format!("cell {index} of seed {seed}: {failure}"))
             })
             .collect();
         next += wanted;
         for result in batch {
-            if let Some(scored) = result? {
-                list.push(scored);
+            match result {
+                Ok(scored) => list.extend(scored),
+                Err(_) => failed += 1,
             }
         }
     }
     let nodes = list.iter().map(|(_, nodes)| *nodes).min().unwrap_or(0);
     let cells = list.len();
-    Ok(Population { scored: list.into_iter().flat_map(|(scored, _)| scored).collect(), cells, nodes })
+    Ok(Population { failed, scored: list.into_iter().flat_map(|(scored, _)| scored).collect(), cells, nodes })
 }
 
 #[cfg(test)]
 mod tests {
     use super::*;
 
-    /// Truth: the same cells on meshes of at least 10,000 nodes, extrapolated (known ten times better than the errors in
-    /// question, but for a few). The demands are those on the whole hundred.
+    /// Truth: the same cells on meshes of at least 10,000 nodes, extrapolated (known ten times better than most of the errors in
+    /// question). The demands are those on the whole hundred, of which twenty say less: one may miss.
     #[test]
     fn the_stated_error_holds_the_true_one() {
-        let found = population(1, 20, 10_000, |_| ()).unwrap();
+        let found = population(1, 20, 10_000, ACCURACY, |_| ()).unwrap();
         assert_eq!(found.cells, 20);
         assert!(found.is_honest(), "{}", found.report());
     }

@@ -13,6 +13,7 @@ mod estimates;
 #[cfg(test)]
 mod mutations;
 mod not_covered;
+mod populations;
 mod report;
 mod stored;
 mod survey;
@@ -59,6 +60,9 @@ enum Command {
         /// Fewest nodes of the finest reference.
         #[arg(long, default_value_t = 40_000)]
         nodes: usize,
+        /// The relative accuracy asked for.
+        #[arg(long, default_value_t = estimates::ACCURACY)]
+        accuracy: f64,
         /// Lists every figure: cell, name, value, error, reference, its doubt, the value on each mesh.
         #[arg(long)]
         list: bool,
@@ -111,8 +115,8 @@ fn run(command: Option<Command>) -> Result<bool, stored::Failure> {
             print!("{}", found.report());
             Ok(found.reach_the_goal())
         }
-        Some(Command::Errors { count, seed, nodes, list }) => {
-            let found = estimates::population(seed, count, nodes, progress)?;
+        Some(Command::Errors { count, seed, nodes, accuracy, list }) => {
+            let found = estimates::population(seed, count, nodes, accuracy, progress)?;
             eprintln!();
             if list {
                 for s in &found.scored {

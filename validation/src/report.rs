@@ -2,6 +2,7 @@
 
 use crate::check::{Check, Tolerance};
 use crate::not_covered::NOT_COVERED;
+use crate::populations::POPULATIONS;
 
 const HEADERS: [&str; 9] =
     ["topic", "what", "source", "reference", "ours", "difference", "tolerance", "why this tolerance", "pass"];
@@ -66,6 +67,10 @@ pub fn markdown(checks: &[Check]) -> String {
     text.push_str(&format!("|{}\n", "---|".repeat(HEADERS.len())));
     for check in checks {
         text.push_str(&format!("| {} |\n", row(check).map(|c| c.replace('|', "\\|")).join(" | ")));
+    }
+    text.push_str("\n## Populations of random devices\n\n");
+    for population in POPULATIONS {
+        text.push_str(&format!("- {population}\n"));
     }
     text.push_str("\n## Not covered\n\n");
     for gap in NOT_COVERED {

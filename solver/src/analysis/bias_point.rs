@@ -8,7 +8,7 @@ use super::collection::collection_probability;
 use super::figure::Figure;
 use super::interfaces::interface_states;
 use super::ladder::{AnalysisError, Ladder, MOST, check_voltage};
-use super::ledger::{Ledger, LedgerPart, ledger};
+use super::ledger::{EXTRACTED, Ledger, LedgerPart, ledger};
 use super::profiles::{barriers, profiles, sheet_resistance};
 use super::results::{BiasPoint, Warning};
 
@@ -17,35 +17,55 @@ pub fn bias_point(device: &Device, light: &Light, voltage: f64) -> Result<BiasPo
     check_voltage(voltage)?;
     let mut ladder = Ladder::new(device, light)?;
     let mut points = vec![ladder.coarse(voltage)?];
+    let thermal_voltage = ladder.rungs[0].problem.coefficients.thermal_voltage;
     let mut ledgers = vec![account(&mut ladder, 0, &points[0])];
-    loop {
+    let missed = loop {
         let rung = points.len();
         let drive = ladder.rungs[rung].problem.drive(voltage);
         let point = ladder.finer(rung, &points[rung - 1], drive)?;
         ledgers.push(account(&mut ladder, rung, &point));
         points.push(point);
-        if points.len() >= MOST || points.len() > 2 && accurate(device.stack().accuracy, &points, &ledgers) {
-            break;
+        if points.len() > 2 {
+            let missed = missed_accuracy(device.stack().accuracy, thermal_voltage, &points, &ledgers);
+            if points.len() >= MOST || missed.is_empty() {
+                break missed;
+            }
         }
         ladder.refine()?;
-    }
+    };
     ladder.not_stopped()?;
-    Ok(collect(&mut ladder, voltage, points, ledgers))
+    let mut found = collect(&mut ladder, voltage, points, ledgers);
+    found.warnings.extend(ladder.missed(&missed));
+    Ok(found)
 }
 
-/// Whether the current and the carrier lines are as accurate as asked: the current (or where it is nothing beside the
-/// turnover, a thousandth of that) to the accuracy, each line that matters (1e-9 of the turnover) to a hundred times it.
-fn accurate(accuracy: f64, points: &[Point], ledgers: &[Ledger]) -> bool {
+/// What is less accurate than asked for: the current (the accuracy counts of it, of what kT/q adds to it, or of a thousandth of
+/// the turnover, whichever is most: near open circuit it is nothing) and each carrier line that matters (1e-9 of the turnover)
+/// to a hundred times the accuracy.
+fn missed_accuracy(accuracy: f64, thermal_voltage: f64, points: &[Point], ledgers: &[Ledger]) -> Vec<String> {
     let lines: Vec<Vec<f64>> =
         ledgers.iter().map(|l| l.part(LedgerPart::Carriers).map(|l| l.value).collect()).collect();
     let finest = &lines[lines.len() - 1];
     let turnover = finest.iter().fold(0.0, |a: f64, b| a.max(b.abs()));
     let current = Figure::from_levels(points.iter().map(|p| p.current).collect());
-    current.error <= accuracy * current.value.abs().max(1e-3 * turnover)
-        && (0..finest.len()).all(|k| {
-            let line = Figure::from_levels(lines.iter().map(|m| m[k]).collect());
-            line.value.abs() < 1e-9 * turnover || line.error <= 100.0 * accuracy * line.value.abs()
-        })
+    let mut missed = Vec::new();
+    let slope = points.last().map_or(0.0, |p| p.conductance.abs());
+    let scale = current.value.abs().max(slope * thermal_voltage).max(1e-3 * turnover);
+    if current.error > accuracy * scale {
+        missed.push(format!("the current to {:.0e}", current.error / scale));
+    }
+    for (k, named) in ledgers[0].part(LedgerPart::Carriers).enumerate() {
+        if named.channel == EXTRACTED {
+            // The current again.
+            continue;
+        }
+        let line = Figure::from_levels(lines.iter().map(|m| m[k]).collect());
+        let size = line.value.abs();
+        if size >= 1e-9 * turnover && line.error > 100.0 * accuracy * size {
+            missed.push(format!("`{} {}` to {:.0e}", named.place, named.channel, line.error / size));
+        }
+    }
+    missed
 }
 
 /// The numerical error of the finest mesh's slope, from its values on all meshes and the finest one's own rounding.

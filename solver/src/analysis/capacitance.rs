@@ -48,24 +48,23 @@ pub fn capacitance(device: &Device, light: &Light, voltages: &[f64]) -> Result<C
     let mut ladder = Ladder::new(device, light)?;
     let mut points = coarse(&mut ladder, voltages)?;
     let mut by_mesh = vec![answers(&mut ladder, 0, &points)?];
-    loop {
+    let missed = loop {
         let rung = by_mesh.len();
         for (point, voltage) in points.iter_mut().zip(voltages) {
             let drive = ladder.rungs[rung].problem.drive(*voltage);
             *point = ladder.finer(rung, point, drive)?;
         }
         by_mesh.push(answers(&mut ladder, rung, &points)?);
-        let accuracy = device.stack().accuracy;
-        let settled = |figure: Figure| figure.error <= accuracy * figure.value.abs();
-        let done = by_mesh.len() > 2
-            && (0..voltages.len()).all(|k| {
-                settled(figure(&by_mesh, k, |a| a.capacitance)) && settled(figure(&by_mesh, k, |a| a.stored))
-            });
-        if by_mesh.len() >= MOST || done {
-            break;
+        if by_mesh.len() > 2 {
+            let missed = missed_accuracy(device.stack().accuracy, voltages, &by_mesh);
+            if by_mesh.len() >= MOST || missed.is_empty() {
+                break missed;
+            }
         }
         ladder.refine()?;
-    }
+    };
+    let mut warnings = ladder.warnings();
+    warnings.extend(ladder.missed(&missed));
     let points = points
         .iter()
         .enumerate()
@@ -76,7 +75,23 @@ pub fn capacitance(device: &Device, light: &Light, voltages: &[f64]) -> Result<C
             conductance: point.conductance,
         })
         .collect();
-    Ok(Capacitance { points, nodes: ladder.nodes(), counts: ladder.work(), warnings: ladder.warnings() })
+    Ok(Capacitance { points, nodes: ladder.nodes(), counts: ladder.work(), warnings })
+}
+
+/// What is less accurate than asked for.
+fn missed_accuracy(accuracy: f64, voltages: &[f64], by_mesh: &[Vec<Answer>]) -> Vec<String> {
+    let mut missed = Vec::new();
+    for (k, voltage) in voltages.iter().enumerate() {
+        for (name, found) in [
+            ("the capacitance", figure(by_mesh, k, |a| a.capacitance)),
+            ("the stored charge's slope", figure(by_mesh, k, |a| a.stored)),
+        ] {
+            if found.error > accuracy * found.value.abs() {
+                missed.push(format!("{name} at {voltage} V to {:.0e}", found.error / found.value.abs()));
+            }
+        }
+    }
+    missed
 }
 
 fn figure(by_mesh: &[Vec<Answer>], k: usize, pick: impl Fn(&Answer) -> f64) -> Figure {
@@ -127,8 +142,9 @@ fn answers(ladder: &mut Ladder, rung: usize, points: &[Point]) -> Result<Vec<Ans
         .collect()
 }
 
-/// Rise of the carriers per area in each node's volume, those that dopants and defects hold included, with the voltage across the device, scaled, per V: `[nodes]`.
-fn rises(problem: &Problem, point: &Point) -> Vec<[f64; 2]> {
+/// Rise of the carriers per area in each node's volume, those that dopants and defects hold included, with the voltage across
+/// the device, scaled, per V: `[nodes]`.
+fn rises(problem: &Problem, point: &Point, tangent: &[Triple]) -> Vec<[f64; 2]> {
     let c = &problem.coefficients;
     let rear = problem.rear_level(point.state.voltage);
     let per_volt = c.polarity / c.thermal_voltage;
@@ -138,7 +154,7 @@ fn rises(problem: &Problem, point: &Point) -> Vec<[f64; 2]> {
         let entry = &c.entries[e];
         let (phi_n, phi_p) = (u_n + rear * c.reference[0], u_p + rear * c.reference[1]);
         let s = sloped_side(c.statistics, entry, psi, phi_n, phi_p);
-        let t = &point.tangent[i];
+        let t = &tangent[i];
         let by_n = t[0] - (t[1] + per_volt * c.reference[0]);
         let by_p = t[2] + per_volt * c.reference[1] - t[0];
         rises[i][0] += Num::exp(s.ln_n) * entry.volume * s.electron_slope * by_n;
@@ -159,7 +175,7 @@ fn rises(problem: &Problem, point: &Point) -> Vec<[f64; 2]> {
         let e = c.first[layer + 1] - 1;
         let nodes = [c.node(layer, e), c.node(layer + 1, e + 1)];
         let sides = [0, 1].map(|s| {
-            let ([psi, u_n, u_p], t) = (point.state.nodes[nodes[s]], &point.tangent[nodes[s]]);
+            let ([psi, u_n, u_p], t) = (point.state.nodes[nodes[s]], &tangent[nodes[s]]);
             let along = |re: f64, d: f64| Dual { re, d: [d] };
             let level =
                 |u: f64, t: f64, reference: f64| along(u + rear * reference, t + per_volt * reference);
@@ -184,12 +200,19 @@ fn answer(problem: &mut Problem, point: &Point) -> Result<Answer, Singular> {
     let terminal = Terminal::new(&problem.coefficients, problem.system());
     let mut lambda: Vec<Triple> = terminal.gradient.clone();
     problem.solve_transposed(&mut lambda);
+    // The point's own tangent is that of the state before its last update, and errs by that update.
+    let per_volt = problem.coefficients.polarity / problem.coefficients.thermal_voltage;
+    let mut tangent = problem.system().by_rear_level(&problem.coefficients);
+    for t in &mut tangent {
+        *t *= -per_volt;
+    }
+    problem.solve(&mut tangent);
     let c = &problem.coefficients;
-    let rises = rises(problem, point);
+    let rises = rises(problem, point, &tangent);
     let last = rises.len() - 1;
     let displacement = |k: usize| {
         // Scaled, positive towards the rear: minus the permittivity times the potential's slope.
-        -c.cells[k].displacement * (point.tangent[k + 1][0] - point.tangent[k][0])
+        -c.cells[k].displacement * (tangent[k + 1][0] - tangent[k][0])
     };
     let stored = match c.terminal_pair() {
         Some((front, _)) => {
@@ -228,3 +251,6 @@ fn answer(problem: &mut Problem, point: &Point) -> Result<Answer, Singular> {
     let scale = CHARGE / (circuit * circuit);
     Ok(Answer { capacitance: scale * (stored - lag), stored: scale * stored })
 }
+
+#[cfg(test)]
+mod tests;

@@ -9,18 +9,28 @@ use crate::solve::{Drive, Point, State};
 use super::bias_point::conductance_error;
 use super::figure::{Absent, Figure, Outcome};
 use super::ladder::{AnalysisError, Correction, LARGEST_VOLTAGE, Ladder, MOST, check_voltage};
-use super::results::{CurrentVoltage, JvPoint, Voltages, Warning};
+use super::results::{CurrentVoltage, JvPoint, Voltages};
 
 /// Step of the scan that brackets open circuit and maximum power, V.
 const SCAN: f64 = 0.05;
 /// Step of automatic curves, V.
 const AUTOMATIC: f64 = 0.02;
-/// The maximum-power voltage is solved to this step, V; the power errs by its square.
+/// The maximum-power voltage is solved to this step, V, or this share of it; the power errs by its square.
 const POWER_STEP: f64 = 1e-9;
+const POWER_SHARE: f64 = 1e-6;
 /// A step of the search for maximum power this small, V, that is not half the one before it is the rounding of the slopes.
 const POWER_NOISE: f64 = 1e-4;
 /// Points this far apart, V, tell how the slope of the current grows.
 const TELLING: f64 = 1e-6;
+/// What two sums that nearly cancel leave of their rounding, a share of their size.
+const CANCELLATION: f64 = 4.0 * f64::EPSILON;
+/// Voltage and current of maximum power are no extremes: their slopes change with the mesh less evenly than the figures
+/// themselves, and this share of the last difference is added to their errors (empirical).
+const UNEVEN: f64 = 1.0 / 64.0;
+/// Points of a curve without figures are as accurate as asked for at so many times the accuracy ...
+const POINTS: f64 = 10.0;
+/// ... but for those that are this share of the largest: zero bias in the dark.
+const NOTHING: f64 = 1e-30;
 
 /// The solved points of one mesh.
 #[derive(Default)]
@@ -31,6 +41,25 @@ struct Curve {
     power: Option<Point>,
     /// How fast the slope of the current grows with the voltage about maximum power, 1/V.
     bending: Option<f64>,
+}
+
+impl Curve {
+    /// Voltage and current of maximum power: of the point solved there, and the last step, which it does not take.
+    fn best(&self) -> Option<(f64, f64)> {
+        let point = self.power.as_ref()?;
+        let step = power_step(point, self.bending?);
+        Some((point.voltage + step, point.current + point.conductance * step))
+    }
+    /// How far that voltage may be off, and its current: slopes err by the size of their state's last update, or by what kept
+    /// the steps from shrinking.
+    fn best_doubt(&self) -> Option<(f64, f64)> {
+        let point = self.power.as_ref()?;
+        let bending = self.bending?;
+        let step = power_step(point, bending).abs();
+        let slopes = (point.voltage * point.last_update / (2.0 + point.voltage * bending)).abs();
+        let voltage = if step > POWER_STEP { slopes.max(step) } else { slopes };
+        Some((voltage, voltage * point.conductance.abs()))
+    }
 }
 
 /// A current-voltage curve under `light`, at terminal voltages given or automatic.
@@ -56,7 +85,15 @@ pub fn current_voltage(
     let mut curves: Vec<Curve> = Vec::new();
     let mut rung = 1;
     loop {
-        let finer = finer_curve(&mut ladder, rung, &curve, &mut stopped)?;
+        let finer = match finer_curve(&mut ladder, rung, &curve, &mut stopped) {
+            Ok(finer) => finer,
+            // What the coarser meshes have is kept: their error says how good it is.
+            Err(_) if rung > 1 => {
+                ladder.rungs.truncate(rung);
+                break;
+            }
+            Err(error) => return Err(error),
+        };
         curves.push(std::mem::replace(&mut curve, finer));
         // Points beyond the first failure of any mesh are left out.
         let solved = curve.points.len();
@@ -216,7 +253,7 @@ fn maximum_power(ladder: &mut Ladder, rung: usize, mut a: Point, mut b: Point) -
         let mut next = here.voltage + step;
         let (low, high) = (a.voltage.min(b.voltage), a.voltage.max(b.voltage));
         // Rounding of the slope may keep the step above what the bracket allows.
-        if arrived(step, &mut before) || high - low <= POWER_STEP {
+        if arrived(step, here.voltage, &mut before) || high - low <= POWER_STEP {
             return Some((here, rate));
         }
         if !(next > low && next < high) || step.abs() > 0.5 * steps[0] {
@@ -249,12 +286,12 @@ fn bending(here: &Point, other: &Point) -> f64 {
     if ratio > 0.0 && distance != 0.0 { crate::math::elementary::ln(ratio) / distance } else { 0.0 }
 }
 
-/// Whether a step towards maximum power says that it is reached; `before` holds the size of the step before it.
-fn arrived(step: f64, before: &mut f64) -> bool {
+/// Whether a step from a voltage towards maximum power says that it is reached; `before` holds the size of the step before it.
+fn arrived(step: f64, voltage: f64, before: &mut f64) -> bool {
     let size = step.abs();
     let noise = size <= POWER_NOISE && size > 0.5 * *before;
     *before = size;
-    size <= POWER_STEP || noise
+    size <= POWER_STEP.min(POWER_SHARE * voltage.abs()) || noise
 }
 
 /// Newton step on the power's slope, with `J'' = J'` times the bending.
@@ -344,7 +381,7 @@ fn finer_power(
         if !step.is_finite() {
             break;
         }
-        if arrived(step, &mut before) {
+        if arrived(step, here.voltage, &mut before) {
             return Ok(Some(here));
         }
         let aim = here.voltage + step.clamp(-SCAN, SCAN);
@@ -398,28 +435,29 @@ fn worst_error(done: &[Curve], last: &Curve) -> f64 {
     (0..last.points.len())
         .filter_map(|k| read(&|c| c.points.get(k).map(|p| p.current)).map(|e| (e, last.points[k].current)))
         // A point that is nothing beside the curve (zero bias in the dark) asks for no finer mesh.
-        .filter(|(_, current)| current.abs() > 1e-30 * scale)
-        .map(|(error, _)| 0.1 * error)
+        .filter(|(_, current)| current.abs() > NOTHING * scale)
+        .map(|(error, _)| error / POINTS)
         .fold(0.0, f64::max)
 }
 
-/// A warning where figures of merit are less accurate than asked for on the finest mesh that is tried.
-fn missed_accuracy(ladder: &Ladder, figures: &[(&str, &Outcome)]) -> Option<Warning> {
-    let asked = ladder.device.stack().accuracy;
-    let missed: Vec<String> = figures
+/// What is less accurate than asked for on the finest mesh that is tried: figures of merit, or points where there are none.
+fn missed_accuracy(accuracy: f64, figures: &[(&str, &Outcome)], points: &[JvPoint]) -> Vec<String> {
+    let words = |name: &str, figure: &Figure| format!("{name} to {:.0e}", figure.error / figure.value.abs());
+    if figures.iter().any(|(_, outcome)| outcome.is_ok()) {
+        return figures
+            .iter()
+            .filter_map(|(name, outcome)| Some((name, outcome.as_ref().ok()?)))
+            .filter(|(_, figure)| figure.error > accuracy * figure.value.abs())
+            .map(|(name, figure)| words(name, figure))
+            .collect();
+    }
+    let scale = points.iter().map(|p| p.current_density.abs()).fold(0.0, f64::max);
+    points
         .iter()
-        .filter_map(|(name, outcome)| Some((name, outcome.as_ref().ok()?)))
-        .filter(|(_, figure)| figure.error > asked * figure.value.abs())
-        .map(|(name, figure)| format!("{name} to {:.0e}", figure.error / figure.value.abs()))
-        .collect();
-    (!missed.is_empty()).then(|| Warning {
-        code: "W313",
-        message: format!(
-            "the relative accuracy of {asked:e} was not reached on {} meshes: {}",
-            ladder.rungs.len(),
-            missed.join(", ")
-        ),
-    })
+        .filter(|p| p.current_density.abs() > NOTHING * scale)
+        .filter(|p| p.extrapolated.error > POINTS * accuracy * p.extrapolated.value.abs())
+        .map(|p| words(&format!("the current at {} V", p.voltage), &p.extrapolated))
+        .collect()
 }
 
 fn collect(
@@ -432,7 +470,7 @@ fn collect(
 ) -> CurrentVoltage {
     let finest = &curves[curves.len() - 1];
     let count = curves.iter().map(|c| c.points.len()).min().unwrap_or(0);
-    let points = (0..count)
+    let points: Vec<JvPoint> = (0..count)
         .map(|k| {
             let p = &finest.points[k];
             JvPoint {
@@ -466,21 +504,47 @@ fn collect(
             Err(reason(&format!("{what} was not reached within the voltages that could be solved")))
         }
     };
-    let jsc = figure("short circuit", &|c| c.short.as_ref().map(|p| -p.current));
-    let voc = figure("open circuit", &|c| c.open.as_ref().map(|p| p.voltage));
-    let max_power = figure("maximum power", &|c| c.power.as_ref().map(power));
-    let mpp_voltage = figure("maximum power", &|c| c.power.as_ref().map(|p| p.voltage));
-    let mpp_current = figure("maximum power", &|c| c.power.as_ref().map(|p| -p.current));
+    // Beside the mesh: rounding of a current that is the difference of what is generated and what recombines, carried on to
+    // each figure.
+    let rounding = CANCELLATION * ladder.rungs[0].problem.generated();
+    let voltage_of = |p: &Option<Point>| p.as_ref().map_or(0.0, |p| p.voltage.abs());
+    let open_rounding = finest.open.as_ref().map_or(0.0, |p| rounding / p.conductance.abs());
+    let power_rounding = rounding * voltage_of(&finest.power);
+    let jsc = figure("short circuit", &|c| c.short.as_ref().map(|p| -p.current)).map(|f| f.besides(rounding));
+    let voc =
+        figure("open circuit", &|c| c.open.as_ref().map(|p| p.voltage)).map(|f| f.besides(open_rounding));
+    let max_power =
+        figure("maximum power", &|c| c.power.as_ref().map(power)).map(|f| f.besides(power_rounding));
+    let doubt = curves.iter().filter_map(Curve::best_doubt).fold((0.0, 0.0), |a: (f64, f64), b| {
+        // The last mesh counts four thirds in the extrapolation, the one before one third.
+        (a.0.max(2.0 * b.0), a.1.max(2.0 * b.1))
+    });
+    let uneven = |f: Figure, doubt: f64| {
+        let error = doubt + UNEVEN * f.last_difference();
+        f.besides(error)
+    };
+    let mpp_voltage =
+        figure("maximum power", &|c| c.best().map(|(voltage, _)| voltage)).map(|f| uneven(f, doubt.0));
+    let mpp_current = figure("maximum power", &|c| c.best().map(|(_, current)| -current))
+        .map(|f| uneven(f, doubt.1 + rounding));
     let fill_factor = figure("maximum power", &|c| {
         Some(power(c.power.as_ref()?) / (-c.short.as_ref()?.current * c.open.as_ref()?.voltage))
+    })
+    .map(|f| {
+        let share = |figure: &Outcome, error: f64| figure.as_ref().map_or(0.0, |g| error / g.value.abs());
+        let shares = share(&jsc, rounding) + share(&voc, open_rounding) + share(&max_power, power_rounding);
+        let error = f.value.abs() * shares;
+        f.besides(error)
     });
     let input_power = ladder.rungs[0].illumination.input_power;
     let efficiency = match input_power {
-        Some(input) => figure("maximum power", &|c| Some(power(c.power.as_ref()?) / input)),
+        Some(input) => figure("maximum power", &|c| Some(power(c.power.as_ref()?) / input))
+            .map(|f| f.besides(power_rounding / input)),
         None => Err(reason(why_none.unwrap_or("the light has no wavelength, so its photons have no energy"))),
     };
     let mut warnings = ladder.warnings();
-    warnings.extend(missed_accuracy(ladder, &[("jsc", &jsc), ("voc", &voc), ("max_power", &max_power)]));
+    let figures = [("jsc", &jsc), ("voc", &voc), ("max_power", &max_power)];
+    warnings.extend(ladder.missed(&missed_accuracy(ladder.device.stack().accuracy, &figures, &points)));
     CurrentVoltage {
         points,
         jsc,

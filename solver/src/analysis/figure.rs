@@ -27,6 +27,18 @@ impl Figure {
         let e = crate::solve::extrapolation::extrapolate(&levels);
         Figure { value: e.value, error: e.error, levels }
     }
+    /// The figure with a further error, of another kind than the mesh's.
+    pub(crate) fn besides(mut self, error: f64) -> Figure {
+        self.error += error;
+        self
+    }
+    /// The size of the last difference between meshes.
+    pub(crate) fn last_difference(&self) -> f64 {
+        match self.levels[..] {
+            [.., before, last] => (last - before).abs(),
+            _ => 0.0,
+        }
+    }
     /// The grid convergence index of the last three meshes, which halve the spacing; `None` with fewer or without an order.
     pub fn grid_convergence(&self) -> Option<crate::solve::GridConvergence> {
         match self.levels[..] {

@@ -91,6 +91,13 @@ pub(crate) struct Ladder<'a> {
     pub grading: Grading,
 }
 
+/// Most voltages on the way to a current, and the largest step between them, V.
+const MOST_VOLTAGES: usize = 40;
+const LARGEST_AIM: f64 = 0.1;
+
+/// Most figures that a warning names.
+const MOST_NAMED: usize = 4;
+
 /// Fewest and most nested meshes.
 pub(crate) const FEWEST: usize = 2;
 pub(crate) const MOST: usize = 6;
@@ -208,7 +215,9 @@ impl<'a> Ladder<'a> {
             .short_circuit(&tolerances)
             .and_then(|start| problem.advance(None, &start, voltage, &tolerances))
             .and_then(|point| match drive {
-                Drive::Current(_) => problem.finish(&point, drive, &tolerances),
+                Drive::Current(target) => problem
+                    .finish(&point, drive, &tolerances)
+                    .or_else(|error| by_voltage(problem, point, target, &tolerances).ok_or(error)),
                 _ => Ok(point),
             });
         result.map_err(|e| self.located(rung, e))
@@ -256,6 +265,25 @@ impl<'a> Ladder<'a> {
         nodes
     }
 
+    /// The warning that figures are less accurate than asked for on the finest mesh that is tried: each in words, with how
+    /// accurate it is. None without any.
+    pub fn missed(&self, figures: &[String]) -> Option<Warning> {
+        let shown = figures.len().min(MOST_NAMED);
+        let more = match figures.len() - shown {
+            0 => String::new(),
+            more => format!(" and {more} more"),
+        };
+        (!figures.is_empty()).then(|| Warning {
+            code: "W313",
+            message: format!(
+                "the accuracy of {:e} was not reached on {} meshes: {}{more}",
+                self.device.stack().accuracy,
+                self.rungs.len(),
+                figures[..shown].join(", ")
+            ),
+        })
+    }
+
     /// Warnings that hold whatever the bias: of the device, and light outside the tables.
     pub fn warnings(&self) -> Vec<Warning> {
         let mut warnings: Vec<Warning> = self.device.warnings().iter().map(Warning::of_device).collect();
@@ -291,6 +319,28 @@ impl<'a> Ladder<'a> {
         }
         warnings
     }
+}
+
+/// The point of a current near a solved one, by Newton's method on the voltage, each point reached in the ways that voltages have
+/// and a current has not.
+fn by_voltage(problem: &mut Problem, start: Point, target: f64, tolerances: &Tolerances) -> Option<Point> {
+    let mut here = start;
+    let mut last = f64::INFINITY;
+    for _ in 0..MOST_VOLTAGES {
+        let step = (target - here.current) / here.conductance;
+        // As near as the last place of the voltage, or as rounding lets it come.
+        let rounding = 4.0 * f64::EPSILON * here.voltage.abs();
+        if step.abs() <= rounding || last <= 1e-9 && step.abs() > 0.5 * last {
+            return Some(here);
+        }
+        if !(here.conductance > 0.0 && step.is_finite()) {
+            return None;
+        }
+        let aim = here.voltage + step.clamp(-LARGEST_AIM, LARGEST_AIM);
+        here = problem.advance(None, &here, aim, tolerances).ok()?;
+        last = step.abs();
+    }
+    None
 }
 
 /// What a finer mesh's solution adds to the interpolated one of the mesh before it, at one point of a curve.

@@ -102,6 +102,9 @@ impl Ledger {
     }
 }
 
+/// The line of what leaves at the terminals.
+pub(super) const EXTRACTED: &str = "extracted";
+
 const CHANNELS: [&str; 3] = ["Shockley-Read-Hall", "radiative", "Auger"];
 
 /// The channels of recombination in a layer: those that all have, and one for each defect.
@@ -339,7 +342,7 @@ pub(crate) fn ledger(
     }
     // Pairs that part to the two contacts; where both ends pin the same carrier, current takes none.
     let delivered = if terminal.from_rows { -terminal.sense * terminal.current } else { 0.0 };
-    ledger.add(part, "", "extracted", delivered * current, false);
+    ledger.add(part, "", EXTRACTED, delivered * current, false);
 
     // Free energy.
     let part = LedgerPart::FreeEnergy;

@@ -8,6 +8,9 @@ use super::collection::collection_probability;
 use super::ladder::{AnalysisError, Ladder, MOST, check_voltage, layer_positions};
 use super::results::SpectralResponse;
 
+/// Efficiencies are not asked to be more accurate than this: rounding of a sum over a thousand volumes.
+const FINEST: f64 = 1e-9;
+
 /// External and internal quantum efficiency at the given vacuum wavelengths (m), at a terminal voltage (V) under bias light.
 ///
 /// EQE counts photons on the total area; IQE divides by (1 - shading)(1 - reflectance). The response to a small probe:
@@ -53,7 +56,7 @@ pub fn spectral_response(
         let worst = (0..wavelengths.len())
             .map(|w| extrapolate(&by_mesh.iter().map(|m| m[w]).collect::<Vec<f64>>()).error)
             .fold(0.0, f64::max);
-        if meshes >= MOST || meshes >= 2 && worst <= device.stack().accuracy.max(1e-9) {
+        if meshes >= MOST || meshes >= 2 && worst <= device.stack().accuracy.max(FINEST) {
             break (absorbed, operator.shares().to_vec(), covered);
         }
         if meshes >= ladder.rungs.len() {
@@ -69,6 +72,14 @@ pub fn spectral_response(
     let internal =
         external.iter().zip(&reflectance).map(|(e, r)| e / ((1.0 - shading) * (1.0 - r))).collect();
     let mut warnings = ladder.warnings();
+    let accuracy = device.stack().accuracy.max(FINEST);
+    let missed: Vec<String> = wavelengths
+        .iter()
+        .zip(&extrapolated)
+        .filter(|(_, e)| e.error > accuracy)
+        .map(|(w, e)| format!("the efficiency at {} nm to {:.0e}", (w * 1e12).round() / 1e3, e.error))
+        .collect();
+    warnings.extend(ladder.missed(&missed));
     for (layer, covered) in device.stack().layers.iter().zip(&uncovered) {
         let missing = covered.iter().filter(|c| !**c).count();
         if missing > 0 {

@@ -135,6 +135,11 @@ impl Problem {
             || self.stop.as_ref().is_some_and(|flag| flag.load(Ordering::Relaxed))
     }
 
+    /// What is generated, A/m^2.
+    pub(crate) fn generated(&self) -> f64 {
+        scales::CURRENT * self.generation.iter().sum::<f64>()
+    }
+
     /// Whether any light is absorbed.
     pub fn is_lit(&self) -> bool {
         self.generation.iter().any(|g| *g != 0.0)

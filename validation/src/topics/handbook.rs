@@ -2,7 +2,8 @@
 
 use epiloom_solver::device::Stack;
 use epiloom_solver::discretise::{Coefficients, scales};
-use epiloom_solver::materials::Material;
+use epiloom_solver::materials::{Material, Parameter};
+use epiloom_solver::math::elementary::exp;
 use epiloom_solver::mesh::Mesh;
 use epiloom_solver::optics::Spectrum;
 use epiloom_solver::quantity::constants::{ELEMENTARY_CHARGE, LIGHT_SPEED, PLANCK};
@@ -32,6 +33,53 @@ fn intrinsic(nc: f64, nv: f64, gap: f64) -> Result<f64, Failure> {
     stack.temperature = 300.0;
     let coefficients = Coefficients::new(&device(stack)?, &Mesh::from_fractions(vec![vec![0.0, 1.0]]));
     Ok(coefficients.entries[0].level.n1 * scales::DENSITY)
+}
+
+/// Densities of states (m^-3) of masses (m0) and the intrinsic density of a gap (eV) at a temperature, as the solver has them.
+fn from_masses(masses: [f64; 2], gap: f64, temperature: f64) -> Result<[f64; 3], Failure> {
+    let mut layer = Bulk { gap, electron_lifetime: 1e-9, hole_lifetime: 1e-9, ..Bulk::default() }
+        .layer("bulk", 1e-6, 1e21, 0.0);
+    let values = &mut layer.material.overrides;
+    for (density, mass, value) in [
+        (Parameter::ConductionDensity, Parameter::ElectronMass, masses[0]),
+        (Parameter::ValenceDensity, Parameter::HoleMass, masses[1]),
+    ] {
+        values.remove(&density);
+        values.insert(mass, value);
+    }
+    let mut stack = Stack::new("bulk", vec![layer]);
+    stack.temperature = temperature;
+    let coefficients = Coefficients::new(&device(stack)?, &Mesh::from_fractions(vec![vec![0.0, 1.0]]));
+    let entry = &coefficients.entries[0];
+    Ok([exp(entry.ln_conduction), exp(entry.ln_valence), entry.level.n1].map(|d| d * scales::DENSITY))
+}
+
+/// A textbook's table of masses, densities and intrinsic densities.
+fn masses(checks: &mut Checks) -> Result<(), Failure> {
+    checks.source(TEXTBOOK);
+    let digits = "the source's digits";
+    let own = "the source's density does not follow from its own mass (8.09e24)";
+    for (name, masses, gap, valence, hot, tolerances, reason) in [
+        ("Ge", [0.56, 0.29], 0.66, 3.92e24, 3.1e20, [2e-3, 5e-3], digits),
+        ("Si", [1.08, 0.81], 1.12, 1.83e25, 8.55e17, [2e-3, 1e-2], digits),
+        ("GaAs", [0.067, 0.47], 1.424, 8.68e24, 6.24e14, [8e-2, 1.5e-2], own),
+    ] {
+        let [_, nv, _] = from_masses(masses, gap, 300.0)?;
+        checks.relative(
+            format!("{name}, Nv from the source's mass, m^-3"),
+            valence,
+            nv,
+            tolerances[0],
+            reason,
+        );
+        let [_, _, ni] = from_masses(masses, gap, 373.15)?;
+        let what = format!("{name}, intrinsic density at 100 C from the source's masses, m^-3");
+        checks.relative(what, hot, ni, tolerances[1], "the source's digits, and its kT/q of three");
+    }
+    checks.source(NSM);
+    let [nc, _, _] = from_masses([0.08, 0.6], 1.344, 300.0)?;
+    checks.relative("InP, Nc from the source's mass, m^-3", 5.7e23, nc, 1e-2, digits);
+    Ok(())
 }
 
 fn densities(checks: &mut Checks) -> Result<(), Failure> {
@@ -128,6 +176,7 @@ fn spectra(checks: &mut Checks) -> Result<(), Failure> {
 pub fn checks() -> Result<Vec<Check>, Failure> {
     let mut checks = Checks::new("handbook", TEXTBOOK);
     densities(&mut checks)?;
+    masses(&mut checks)?;
     gaps(&mut checks)?;
     spectra(&mut checks)?;
     Ok(checks.done())
