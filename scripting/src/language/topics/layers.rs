@@ -132,7 +132,7 @@ topic! {
     Property "defects" of "layer" {
         forms: ["layer.defects", "cell[\"name\"].defects = [defect(..)]"],
         doc: "Its defects, an array.",
-        example: "let base = layer(\"base\", material(\"GaAs\"), 3.um, acceptors(1e17.per_cm3));\nbase.defects = [defect(\"deep\", #{ kind: \"neutral\", density: 1e14.per_cm3, below_conduction_band: 0.7.eV,\n    electron_cross_section: 1e-15.cm2, hole_cross_section: 1e-15.cm2 })];\nprint(base.defects.len());",
+        example: "let base = layer(\"base\", material(\"GaAs\"), 3.um, acceptors(1e17.per_cm3));\nbase.defects = [defect(\"deep\", #{ kind: \"neutral\", density: 1e14.per_cm3, below_conduction_band: 0.7.eV,\n    electron_cross_section: 1e-15.cm2, hole_cross_section: 1e-15.cm2 })];\nlet bar = stack(\"bar\", [base]);\nprint(bar.name);",
         register: |engine, session| {
             getter::<LayerValue>(engine, session, "defects", |_, arguments| {
                 let layer = of(arguments[0])?.layer;
