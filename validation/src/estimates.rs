@@ -190,8 +190,32 @@ fn sharpened(problem: &mut Problem, point: Point) -> Point {
     problem.newton(&point.state, Drive::Terminal(point.voltage), &Tolerances::default()).unwrap_or(point)
 }
 
-/// The root of `J + V dJ/dV` near a voltage: Newton's method, the curvature from a second point near by. Power, voltage and
-/// current there; the last step is added to them, and where it is rounding that keeps steps from shrinking, it is how far they may be off.
+/// Voltage and power at the summit of the parabola through the powers of a point and of two beside it, from where it says first.
+fn summit(problem: &mut Problem, start: &Point, reach: f64) -> Result<(f64, f64), Failure> {
+    let tolerances = Tolerances::default();
+    let mut here = start.clone();
+    let mut found = (here.voltage, -here.current * here.voltage);
+    for _ in 0..6 {
+        let [a, b, c] = [here.voltage - reach, here.voltage, here.voltage + reach];
+        let mut power = |v: f64| -> Result<f64, Failure> {
+            let point = problem.advance(None, &here, v, &tolerances)?;
+            Ok(-point.current * point.voltage)
+        };
+        let (p_a, p_b, p_c) = (power(a)?, power(b)?, power(c)?);
+        let (slope, bend) = ((p_c - p_a) / (2.0 * reach), (p_c - 2.0 * p_b + p_a) / (reach * reach));
+        let step = (-slope / bend).clamp(-4.0 * reach, 4.0 * reach);
+        found = (b + step, p_b + 0.5 * slope * step);
+        if step.abs() <= 0.5 * reach {
+            break;
+        }
+        here = problem.advance(None, &here, b + step, &tolerances)?;
+    }
+    Ok(found)
+}
+
+/// The root of `J + V dJ/dV` near a voltage: Newton's method, the curvature from a second point near by; power, voltage and
+/// current there, the last step added. Where rounding of the slopes keeps steps from shrinking, the summit of the power itself.
+/// And how far each may be off by that.
 fn maximum_power(problem: &mut Problem, start: &Point, near: f64) -> Result<[[f64; 3]; 2], Failure> {
     const BESIDE: f64 = 1e-4;
     let tolerances = Tolerances::default();
@@ -208,13 +232,23 @@ fn maximum_power(problem: &mut Problem, start: &Point, near: f64) -> Result<[[f6
         // Far below what is asked for (the step is taken besides), or as near as the slopes' rounding lets it come.
         let share = |step: f64| step.abs() / here.voltage.abs();
         let rounding = share(last) <= 1e-3 && step.abs() > 0.5 * last.abs();
-        if share(step) <= 1e-8 || rounding {
+        if rounding {
+            let wide = summit(problem, &here, 2e-3 * here.voltage.abs())?;
+            let near = summit(problem, &here, 1e-3 * here.voltage.abs())?;
+            let (voltage, power) = near;
+            let off = (wide.0 - voltage).abs();
+            return Ok([
+                [power, voltage, power / voltage],
+                [(wide.1 - power).abs(), off, off * (power / (voltage * voltage)).abs()],
+            ]);
+        }
+        if share(step) <= 1e-8 {
             let voltage = here.voltage + step;
             let current = -(here.current + here.conductance * step);
             let off = step.abs();
             return Ok([
                 [-here.current * here.voltage, voltage, current],
-                [0.0, off, off * here.conductance.abs()],
+                [0.5 * slope.abs() * off * off, off, off * here.conductance.abs()],
             ]);
         }
         here = problem.advance(None, &here, here.voltage + step, &tolerances)?;
