@@ -134,14 +134,15 @@ mod tests {
     use super::*;
 
     /// Truth: constancy of the current, accounts and agreement of meshes, derived again by `examine`. Every device must be
-    /// solved or diagnosed and none may panic or hang; of each 75, at most three unsolved (measured: 251, 272 and 281 are), and
-    /// at most two on which something disagrees unwarned (measured: 261). The goal is none: these bounds may only fall.
+    /// solved, and none may panic or hang. Of each 75, at most two on which something disagrees unwarned (measured: 55, 151 and
+    /// 180, whose currents are below 2e-13 A/m2) and eight warned of (measured: 3, 7, 3 and 5). The goal is none: these bounds may
+    /// only fall.
     fn chunk(first: u64) {
         let found = survey(0, first, 75, |_| ());
         let text = found.report();
         assert!(found.panicked.is_empty() && found.hung.is_empty() && found.undiagnosed.is_empty(), "{text}");
-        assert!(found.unsolved.len() <= 3 && found.wrong.len() <= 2, "{text}");
-        assert!(found.warned.len() <= 15, "{text}");
+        assert!(found.unsolved.is_empty() && found.wrong.len() <= 2, "{text}");
+        assert!(found.warned.len() <= 8, "{text}");
     }
 
     #[test]
